@@ -1,0 +1,258 @@
+//! Stretches: the parts of each edge where a pin may stand, in closed form.
+//!
+//! A pin of radius r that touches edge e at p has its centre at p - r n. While p runs along e the centre runs along a
+//! parallel line, and it meets another edge f exactly while it is inside the capsule of radius r around f. A capsule is
+//! convex, so each other edge forbids one interval of e, found here from a strip and two discs. Nothing is sampled,
+//! so nothing thin is missed.
+
+use super::Hand;
+use crate::part::{Edge, EdgeId, Outline, Part};
+use nalgebra::{Point2, Vector2};
+use rstar::primitives::{GeomWithData, Line};
+use rstar::{AABB, RTree};
+
+/// A maximal interval of an edge where a finger may be.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct Stretch {
+    /// Edge, numbered as in the file.
+    pub edge: EdgeId,
+    /// Start, mm from the edge's first vertex.
+    pub from_mm: f64,
+    /// End, mm from the edge's first vertex; may equal the start.
+    pub to_mm: f64,
+}
+
+impl Stretch {
+    /// Length, mm.
+    pub fn length_mm(&self) -> f64 {
+        self.to_mm - self.from_mm
+    }
+
+    /// Distance from a position to the nearer end, mm; negative outside.
+    pub fn room_mm(&self, along_mm: f64) -> f64 {
+        (along_mm - self.from_mm).min(self.to_mm - along_mm)
+    }
+}
+
+/// A pin that only grazes an edge is not stopped by it: the capsule is shrunk by this fraction of the radius, well
+/// above rounding and well below any drawing's precision.
+const GRAZE: f64 = 1e-9;
+
+/// All stretches of a part for the pins of a hand, in order of edge and position.
+pub fn stretches(part: &Part, hand: &Hand) -> Vec<Stretch> {
+    let outline = part.outline();
+    let neighbours = Neighbours::of(outline, hand.pin_radius_mm);
+    let mut all = Vec::new();
+    for (index, edge) in outline.edges().iter().enumerate() {
+        let from = hand.corner_clearance_mm;
+        let to = edge.length_mm() - hand.corner_clearance_mm;
+        if from > to {
+            continue;
+        }
+        let mut blocked: Vec<(f64, f64)> = part
+            .keep_outs()
+            .iter()
+            .filter(|keep_out| keep_out.edge == edge.id())
+            .map(|keep_out| (keep_out.from_mm, keep_out.to_mm))
+            .collect();
+        neighbours.block(outline, index, &mut blocked);
+        free_intervals(from, to, &mut blocked, |from_mm, to_mm| {
+            all.push(Stretch { edge: edge.id(), from_mm, to_mm });
+        });
+    }
+    all
+}
+
+/// The stretch a position lies on, if any; a hair outside still counts, so that a position that went through a file
+/// in decimal is found again.
+pub fn stretch_around(stretches: &[Stretch], edge: EdgeId, along_mm: f64) -> Option<&Stretch> {
+    let first = stretches.partition_point(|stretch| stretch.edge < edge);
+    stretches[first..]
+        .iter()
+        .take_while(|stretch| stretch.edge == edge)
+        .find(|stretch| stretch.room_mm(along_mm) >= -1e-9 * (1.0 + stretch.to_mm.abs()))
+}
+
+/// True when two pins with these contact points and inward normals keep the hand's gap.
+pub fn apart(hand: &Hand, a: (Point2<f64>, Vector2<f64>), b: (Point2<f64>, Vector2<f64>)) -> bool {
+    let r = hand.pin_radius_mm;
+    let least = 2.0 * r + hand.gap_mm;
+    let between = (a.0 - a.1 * r) - (b.0 - b.1 * r);
+    // Touching is allowed up to rounding of the positions themselves.
+    between.norm() >= least * (1.0 - 1e-12)
+}
+
+/// Shortest piece left between two obstacles that is still a place to stand, mm.
+const SHORTEST_MM: f64 = 1e-9;
+
+/// Emits what is left of `[from, to]` when open intervals are taken out. The single points left between two
+/// obstacles, or between an obstacle and a corner, are no place for a finger; an edge cut to one point by the corner
+/// clearance alone is.
+fn free_intervals(from: f64, to: f64, blocked: &mut [(f64, f64)], mut emit: impl FnMut(f64, f64)) {
+    blocked.sort_by(|a, b| a.0.total_cmp(&b.0));
+    let mut at = from;
+    let mut cut = false;
+    for &mut (start, end) in blocked {
+        if end <= at {
+            continue;
+        }
+        if start >= to {
+            break;
+        }
+        if start - at > SHORTEST_MM {
+            emit(at, start);
+        }
+        at = end;
+        cut = true;
+    }
+    if !cut || to - at > SHORTEST_MM {
+        emit(at, to);
+    }
+}
+
+/// Edges near each edge, by a tree of segments; empty for point fingers, which nothing can stop.
+struct Neighbours {
+    radius: f64,
+    tree: RTree<GeomWithData<Line<[f64; 2]>, usize>>,
+}
+
+impl Neighbours {
+    fn of(outline: &Outline, radius: f64) -> Self {
+        let xy = |p: Point2<f64>| [p.x, p.y];
+        let lines = if radius > 0.0 {
+            let line = |(i, e): (usize, &Edge)| GeomWithData::new(Line::new(xy(e.start()), xy(e.end())), i);
+            outline.edges().iter().enumerate().map(line).collect()
+        } else {
+            Vec::new()
+        };
+        Self { radius, tree: RTree::bulk_load(lines) }
+    }
+
+    /// Adds the interval of edge `index` that each other edge forbids.
+    fn block(&self, outline: &Outline, index: usize, blocked: &mut Vec<(f64, f64)>) {
+        if self.radius <= 0.0 {
+            return;
+        }
+        let edge = &outline.edges()[index];
+        let out = -edge.normal_at(0.0) * self.radius;
+        let (a, b) = (edge.start() + out, edge.end() + out);
+        let r = self.radius;
+        let near = AABB::from_corners([a.x.min(b.x) - r, a.y.min(b.y) - r], [a.x.max(b.x) + r, a.y.max(b.y) + r]);
+        for other in self.tree.locate_in_envelope_intersecting(near) {
+            if other.data != index
+                && let Some(interval) = inside_capsule(a, edge.direction_at(0.0), &outline.edges()[other.data], r)
+            {
+                blocked.push(interval);
+            }
+        }
+    }
+}
+
+/// Positions s for which `start + s * direction` is closer than `radius` to a segment: one open interval or none.
+fn inside_capsule(start: Point2<f64>, direction: Vector2<f64>, segment: &Edge, radius: f64) -> Option<(f64, f64)> {
+    let r = radius * (1.0 - GRAZE);
+    let mut low = f64::INFINITY;
+    let mut high = f64::NEG_INFINITY;
+    let mut cover = |from: f64, to: f64| {
+        if from < to {
+            low = low.min(from);
+            high = high.max(to);
+        }
+    };
+    for end in [segment.start(), segment.end()] {
+        let to_end = end - start;
+        let middle = to_end.dot(&direction);
+        let off = to_end.perp(&direction);
+        let half = r * r - off * off;
+        if half > 0.0 {
+            cover(middle - half.sqrt(), middle + half.sqrt());
+        }
+    }
+    // The strip: distance from the segment's line below r, foot within the segment.
+    let along = segment.direction_at(0.0);
+    let to_start = start - segment.start();
+    let (foot, foot_rate) = (to_start.dot(&along), direction.dot(&along));
+    let (off, off_rate) = (along.perp(&to_start), along.perp(&direction));
+    let strip = meet_band(foot, foot_rate, 0.0, segment.length_mm());
+    let slab = meet_band(off, off_rate, -r, r);
+    cover(strip.0.max(slab.0), strip.1.min(slab.1));
+    (low < high).then_some((low, high))
+}
+
+/// The s with `low < value + rate * s < high`.
+fn meet_band(value: f64, rate: f64, low: f64, high: f64) -> (f64, f64) {
+    if rate.abs() < f64::MIN_POSITIVE * 1e16 {
+        return if low < value && value < high { (f64::NEG_INFINITY, f64::INFINITY) } else { (1.0, 0.0) };
+    }
+    let (a, b) = ((low - value) / rate, (high - value) / rate);
+    (a.min(b), a.max(b))
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::part::PartDescription;
+
+    fn part(rings: Vec<Vec<[f64; 2]>>) -> Part {
+        Part::new(PartDescription::bare("test", rings)).unwrap()
+    }
+
+    fn with_radius(pin_radius_mm: f64) -> Hand {
+        Hand { pin_radius_mm, ..Hand::default() }
+    }
+
+    /// Elementary geometry: a disc of radius r in a right inner corner touches both sides at r from the corner.
+    #[test]
+    fn an_inner_corner_keeps_a_pin_off_by_its_radius() {
+        let ell = part(vec![vec![[0.0, 0.0], [120.0, 0.0], [120.0, 40.0], [40.0, 40.0], [40.0, 120.0], [0.0, 120.0]]]);
+        let found = stretches(&ell, &with_radius(3.0));
+        let on = |edge| {
+            let all: Vec<_> = found.iter().filter(|s| s.edge == EdgeId { ring: 0, edge }).collect();
+            assert_eq!(all.len(), 1);
+            (all[0].from_mm, all[0].to_mm)
+        };
+        let (from, to) = on(2);
+        assert!(from.abs() < 1e-6 && (to - 77.0).abs() < 1e-6, "{from} {to}");
+        let (from, to) = on(3);
+        assert!((from - 3.0).abs() < 1e-6 && (to - 80.0).abs() < 1e-6, "{from} {to}");
+        assert_eq!(on(0), (0.0, 120.0));
+    }
+
+    /// A pin wider than a slot cannot enter it; a pin that just fits can.
+    #[test]
+    fn a_slot_admits_only_pins_that_fit() {
+        let slotted = part(vec![vec![
+            [0.0, 0.0],
+            [50.0, 0.0],
+            [50.0, 30.0],
+            [30.0, 30.0],
+            [30.0, 10.0],
+            [20.0, 10.0],
+            [20.0, 30.0],
+            [0.0, 30.0],
+        ]]);
+        let floor = EdgeId { ring: 0, edge: 4 };
+        let on_floor = |r: f64| stretches(&slotted, &with_radius(r)).into_iter().filter(|s| s.edge == floor).count();
+        assert_eq!(on_floor(4.0), 1);
+        assert_eq!(on_floor(5.5), 0);
+    }
+
+    #[test]
+    fn a_keep_out_and_clearance_cut_an_edge() {
+        let mut described =
+            PartDescription::bare("plate", vec![vec![[0.0, 0.0], [80.0, 0.0], [80.0, 40.0], [0.0, 40.0]]]);
+        described.keep_outs.push(crate::part::KeepOutDescription {
+            ring: 0,
+            edge: 0,
+            from: Some(30.0),
+            to: Some(50.0),
+            reason: "seal".into(),
+        });
+        let plate = Part::new(described).unwrap();
+        let hand = Hand { corner_clearance_mm: 2.0, ..Hand::default() };
+        let first: Vec<_> = stretches(&plate, &hand).into_iter().filter(|s| s.edge.edge == 0).collect();
+        assert_eq!(first.iter().map(|s| (s.from_mm, s.to_mm)).collect::<Vec<_>>(), [(2.0, 30.0), (50.0, 78.0)]);
+        assert!(stretch_around(&stretches(&plate, &hand), EdgeId { ring: 0, edge: 0 }, 40.0).is_none());
+        assert!(stretch_around(&stretches(&plate, &hand), EdgeId { ring: 0, edge: 0 }, 30.0).is_some());
+    }
+}

@@ -1,0 +1,246 @@
+//! The whole reading of one grasp, and its confirmation by a second way.
+
+use super::closure::{self, Verdict};
+use super::escape::Escape;
+use super::force_polygon::PlanarScore;
+use super::program::{self, Balance, Solved};
+use super::quality::{self, Weakest};
+use super::wrench::{Frame, Wrenches};
+use super::{MARGINAL, friction};
+use nalgebra::Vector3;
+
+pub use super::placement::Placement;
+
+/// Why a number is not to be trusted: the two ways to it disagree.
+#[derive(Debug, Clone, PartialEq, thiserror::Error)]
+pub enum Doubt {
+    /// Closure.
+    #[error("closure: the kernel says {kernel}, the linear program {program}")]
+    Closure {
+        /// Kernel's verdict.
+        kernel: &'static str,
+        /// The program's.
+        program: &'static str,
+    },
+    /// Quality.
+    #[error("quality: the kernel says {kernel}, the definition {definition}")]
+    Quality {
+        /// Kernel's value.
+        kernel: f64,
+        /// By definition.
+        definition: f64,
+    },
+    /// Placement tolerance.
+    #[error("placement: the kernel says {kernel} mm, the linear program {program} mm")]
+    Placement {
+        /// Kernel's value.
+        kernel: f64,
+        /// The program's.
+        program: f64,
+    },
+    /// Friction needed.
+    #[error("friction needed {kernel}: the linear program does not change its verdict there")]
+    Friction {
+        /// Kernel's value.
+        kernel: f64,
+    },
+    /// The solver's answer did not pass its checks.
+    #[error("the solver: {0}")]
+    Solver(&'static str),
+}
+
+/// Proof of a verdict.
+#[derive(Debug, Clone, PartialEq)]
+pub enum Certificate {
+    /// Positive weights that balance.
+    Balance(Balance),
+    /// A direction u with `u . w <= 0` for every generator.
+    Direction(Vector3<f64>),
+    /// A marginal grasp has none.
+    None,
+}
+
+/// Every planar score of a grasp.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Assessment {
+    /// Closed, open or marginal.
+    pub verdict: Verdict,
+    /// Radius of the largest ball in the wrench hull; 0 when not closed.
+    pub quality: f64,
+    /// The same with each finger limited.
+    pub quality_per_finger: f64,
+    /// Least mu at which the grasp closes, on the setup's scale; nothing when no mu does.
+    pub friction_needed_closure: Option<f64>,
+    /// Least mu at which the grasp closes and holds every load.
+    pub friction_needed: Option<f64>,
+    /// mu over friction needed; nothing when none is needed.
+    pub friction_margin: Option<f64>,
+    /// The same in degrees; nothing when no mu closes the grasp.
+    pub friction_margin_deg: Option<f64>,
+    /// Placement tolerance.
+    pub placement: Placement,
+    /// Weakest direction of a closed grasp.
+    pub weakest: Option<Weakest>,
+    /// Motion out of an open grasp.
+    pub escape: Option<Escape>,
+}
+
+impl Assessment {
+    /// Reads a grasp.
+    ///
+    /// `setup_mu` is the mu that friction needed is reported on: the factor on all contacts' friction times this.
+    /// `rooms_mm` holds each finger's distance to the end of its stretch.
+    pub fn of(wrenches: &Wrenches, frame: &Frame, setup_mu: f64, rooms_mm: &[f64]) -> Self {
+        let score = quality::planar(wrenches);
+        let verdict = Verdict::of(wrenches, &score);
+        let closed = verdict == Verdict::Closed;
+        let friction = FrictionReading::of(wrenches, setup_mu);
+        Self {
+            verdict,
+            quality: if closed { score.signed_quality } else { 0.0 },
+            quality_per_finger: if closed { quality::per_finger(wrenches) } else { 0.0 },
+            friction_needed_closure: friction.needed,
+            friction_needed: friction.needed,
+            friction_margin: friction.margin,
+            friction_margin_deg: friction.margin_deg,
+            placement: Placement::new(&if closed { score } else { not_closed(score) }, frame.scale_mm, rooms_mm),
+            weakest: closed.then_some(Weakest { direction: score.direction }),
+            escape: match verdict {
+                Verdict::Open => program::separating_direction(wrenches).map(|u| Escape::along(&u, frame)),
+                Verdict::Closed | Verdict::Marginal => None,
+            },
+        }
+    }
+
+    /// The verdict with every contact's friction scaled from `setup_mu` to another mu of the band.
+    pub fn verdict_at(wrenches: &Wrenches, setup_mu: f64, mu: f64) -> Verdict {
+        let scaled = scaled_to(wrenches, setup_mu, mu);
+        Verdict::of(&scaled, &quality::planar(&scaled))
+    }
+
+    /// Confirms the reading by the linear programs and the plain definition of the hull. Empty when all agree.
+    pub fn doubts(&self, wrenches: &Wrenches, frame: &Frame, setup_mu: f64) -> Vec<Doubt> {
+        let mut doubts = Vec::new();
+        confirm_closure(self, wrenches, &mut doubts);
+        let definition = quality::by_definition(wrenches.generators());
+        let by_definition = if definition.signed_quality > MARGINAL { definition.signed_quality } else { 0.0 };
+        if !((self.quality - by_definition).abs() <= AGREE_QUALITY * (1.0 + by_definition)) {
+            doubts.push(Doubt::Quality { kernel: self.quality, definition: by_definition });
+        }
+        if self.verdict == Verdict::Closed && self.quality > LP_BLUR {
+            confirm_placement(self, wrenches, frame, &mut doubts);
+            confirm_friction(self, wrenches, setup_mu, &mut doubts);
+        }
+        doubts
+    }
+
+    /// The proof of the verdict.
+    pub fn certificate(&self, wrenches: &Wrenches) -> Certificate {
+        match self.verdict {
+            Verdict::Closed => match program::closure(wrenches) {
+                Solved::Answer(balance) => Certificate::Balance(balance),
+                _ => Certificate::None,
+            },
+            Verdict::Open => program::separating_direction(wrenches).map_or(Certificate::None, Certificate::Direction),
+            Verdict::Marginal => Certificate::None,
+        }
+    }
+}
+
+/// The wrenches with friction scaled so that the setup's mu becomes another; contacts follow in proportion, or take the
+/// new mu outright when the setup's is 0.
+pub fn scaled_to(wrenches: &Wrenches, setup_mu: f64, mu: f64) -> Wrenches {
+    if setup_mu > 0.0 {
+        wrenches.with_friction_times(mu / setup_mu)
+    } else {
+        wrenches.with_friction(wrenches.mus().iter().map(|own| if *own > 0.0 { *own } else { mu }).collect())
+    }
+}
+
+fn not_closed(score: PlanarScore) -> PlanarScore {
+    PlanarScore { torque_up: 0.0, torque_down: 0.0, ..score }
+}
+
+struct FrictionReading {
+    needed: Option<f64>,
+    margin: Option<f64>,
+    margin_deg: Option<f64>,
+}
+
+impl FrictionReading {
+    fn of(wrenches: &Wrenches, setup_mu: f64) -> Self {
+        let frictionless = wrenches.mus().iter().all(|&mu| mu <= 0.0);
+        let ones = vec![1.0; wrenches.finger_count()];
+        // Without any friction to scale, ask what common mu would do.
+        let (mus, unit) = if frictionless { (&ones[..], 1.0) } else { (wrenches.mus(), setup_mu) };
+        match friction::factor_needed(wrenches.levers(), mus) {
+            None => Self { needed: None, margin: Some(0.0), margin_deg: None },
+            Some(factor) => {
+                let needed = factor * unit;
+                let margin = if factor > 0.0 { Some(if frictionless { 0.0 } else { 1.0 / factor }) } else { None };
+                let margin_deg =
+                    if frictionless { -needed.atan().to_degrees() } else { friction::margin_deg(mus, factor) };
+                Self { needed: Some(needed), margin, margin_deg: Some(margin_deg) }
+            }
+        }
+    }
+}
+
+/// Qualities below this are within the solver's own tolerance; the plain definition alone confirms them.
+const LP_BLUR: f64 = 1e-6;
+/// Agreement asked of the two ways to the quality.
+const AGREE_QUALITY: f64 = 1e-9;
+/// Agreement asked of the kernel and the placement programs, relative.
+const AGREE_PLACEMENT: f64 = 1e-6;
+/// Step to either side of friction needed at which the programs must disagree, as a part of the setup's friction.
+const FRICTION_STEP: f64 = 1e-4;
+
+fn confirm_closure(a: &Assessment, wrenches: &Wrenches, doubts: &mut Vec<Doubt>) {
+    let program_says = match program::closure(wrenches) {
+        Solved::Answer(_) if closure::rank(wrenches) == 3 => Verdict::Closed,
+        Solved::Answer(_) | Solved::Infeasible => Verdict::Open,
+        Solved::Inconclusive(why) => {
+            doubts.push(Doubt::Solver(why));
+            return;
+        }
+    };
+    let clear = match a.verdict {
+        Verdict::Closed => a.quality > LP_BLUR,
+        Verdict::Open => quality::least_reach(wrenches.generators()).0 < -LP_BLUR,
+        Verdict::Marginal => false,
+    };
+    if clear && program_says != a.verdict {
+        doubts.push(Doubt::Closure { kernel: a.verdict.word(), program: program_says.word() });
+    }
+}
+
+fn confirm_placement(a: &Assessment, wrenches: &Wrenches, frame: &Frame, doubts: &mut Vec<Doubt>) {
+    let mut least = f64::INFINITY;
+    for sense in [1.0, -1.0] {
+        match program::pure_torque(wrenches, sense) {
+            Solved::Answer(torque) => least = least.min(torque * frame.scale_mm),
+            Solved::Infeasible => least = 0.0,
+            Solved::Inconclusive(why) => {
+                doubts.push(Doubt::Solver(why));
+                return;
+            }
+        }
+    }
+    let kernel = a.placement.torque_mm;
+    if !((kernel - least).abs() <= AGREE_PLACEMENT * (frame.scale_mm + kernel)) {
+        doubts.push(Doubt::Placement { kernel, program: least });
+    }
+}
+
+fn confirm_friction(a: &Assessment, wrenches: &Wrenches, setup_mu: f64, doubts: &mut Vec<Doubt>) {
+    let (Some(needed), true) = (a.friction_needed_closure, setup_mu > 0.0) else { return };
+    let factor = needed / setup_mu;
+    let closes = |factor: f64| {
+        let scaled = wrenches.with_friction_times(factor);
+        matches!(program::closure(&scaled), Solved::Answer(_)) && closure::rank(&scaled) == 3
+    };
+    let step = FRICTION_STEP * factor.max(1.0);
+    if !closes(factor + step) || (factor > step && closes(factor - step)) {
+        doubts.push(Doubt::Friction { kernel: needed });
+    }
+}

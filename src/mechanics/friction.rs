@@ -1,0 +1,128 @@
+//! Friction needed: how much of the friction one counts on is really called for.
+//!
+//! Cones only grow with mu, so there is one least factor on all friction coefficients at which a grasp is closed. It is
+//! found by a bracketing root finder on the kernel, with every generator scaled to unit force: scaling a generator
+//! changes no verdict, and puts contacts of different mu on one circle.
+
+use super::force_polygon::ForcePolygon;
+use super::wrench::{Lever, MOST_GENERATORS};
+
+/// State of the surfaces in contact.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Condition {
+    /// Clean and dry.
+    Dry,
+    /// Oily or greasy.
+    Oily,
+    /// Wet.
+    Wet,
+}
+
+/// Friction of the finger tips on the part: a band, never one number alone.
+#[derive(Debug, Clone, PartialEq)]
+pub struct FrictionBand {
+    /// The value every score uses.
+    pub mu: f64,
+    /// Low end of the band.
+    pub low: Option<f64>,
+    /// Middle of the band.
+    pub nominal: Option<f64>,
+    /// High end of the band.
+    pub high: Option<f64>,
+    /// Coefficient once slip has begun; never above `mu`.
+    pub sliding: Option<f64>,
+    /// State of the surfaces.
+    pub condition: Option<Condition>,
+    /// Where the values come from.
+    pub source: Option<String>,
+}
+
+impl Default for FrictionBand {
+    /// mu 0.2: smooth dry metal on metal (CTU Code 2014, Annex 7, App. 2), with no band.
+    fn default() -> Self {
+        Self { mu: 0.2, low: None, nominal: None, high: None, sliding: None, condition: None, source: None }
+    }
+}
+
+/// Friction coefficients beyond this are not looked at: no dry pair comes near.
+pub const LARGEST_MU: f64 = 1000.0;
+/// Width of the final bracket on mu.
+const WIDTH: f64 = 1e-11;
+/// A friction needed below this is none.
+const NONE: f64 = 1e-9;
+/// Signed quality (of unit-force generators) above which the root finder takes a grasp for closed.
+const CLOSED: f64 = 1e-12;
+
+/// Signed quality of the generators scaled to unit force, with every mu multiplied by a factor. Its sign is the verdict.
+pub fn signed_quality_at(levers: &[Lever], mus: &[f64], factor: f64) -> f64 {
+    let mut forces = [[0.0; 2]; MOST_GENERATORS];
+    let mut torques = [0.0; MOST_GENERATORS];
+    for (finger, (lever, mu)) in levers.iter().zip(mus).enumerate() {
+        let mu = mu * factor;
+        let length = (1.0 + mu * mu).sqrt();
+        for (side, m) in [(0, mu), (1, -mu)] {
+            let at = 2 * finger + side;
+            forces[at] =
+                [(lever.normal.x + m * lever.tangent.x) / length, (lever.normal.y + m * lever.tangent.y) / length];
+            torques[at] = (lever.normal_torque + m * lever.tangent_torque) / length;
+        }
+    }
+    let n = 2 * levers.len();
+    let polygon = ForcePolygon::new(&forces[..n]);
+    polygon.score(&polygon.heights(&torques[..n])).signed_quality
+}
+
+/// Least factor on all friction coefficients at which the contacts close, to about 1e-10 of mu; nothing when even
+/// [`LARGEST_MU`] does not close them, or when there is no friction to scale.
+pub fn factor_needed(levers: &[Lever], mus: &[f64]) -> Option<f64> {
+    let largest = mus.iter().copied().fold(0.0, f64::max);
+    let at = |factor: f64| signed_quality_at(levers, mus, factor) - CLOSED;
+    let (mut low, mut at_low) = (0.0, at(0.0));
+    if at_low > 0.0 {
+        return Some(0.0);
+    }
+    if largest <= 0.0 {
+        return None;
+    }
+    let (mut high, mut at_high) = (1.0, at(1.0));
+    while at_high <= 0.0 {
+        (low, at_low) = (high, at_high);
+        if high * largest >= LARGEST_MU {
+            return None;
+        }
+        high = (high * 2.0).min(LARGEST_MU / largest);
+        at_high = at(high);
+    }
+    // Regula falsi with halved weights (Illinois), and a bisection whenever the bracket shrinks too slowly.
+    let mut slow = false;
+    for _ in 0..200 {
+        let width = high - low;
+        if width * largest <= WIDTH * (1.0 + high * largest) {
+            break;
+        }
+        let chord = high - at_high * width / (at_high - at_low);
+        let middle = if slow || !chord.is_finite() || chord <= low || chord >= high {
+            low + width / 2.0
+        } else {
+            // A step just past the root, so that the far end of the bracket moves too.
+            chord
+        };
+        let value = at(middle);
+        if value > 0.0 {
+            (high, at_high) = (middle, value);
+            at_low /= 2.0;
+        } else {
+            (low, at_low) = (middle, value);
+            at_high /= 2.0;
+        }
+        slow = high - low > width / 2.0 && !slow;
+    }
+    Some(if high * largest < NONE { 0.0 } else { high })
+}
+
+/// Margin in degrees: the least of `atan mu - atan (factor mu)` over the contacts. Every contact normal may be off by
+/// less than this, all at once, and the grasp still closes: the cone at the factor turned by less stays inside the cone
+/// that is there.
+pub fn margin_deg(mus: &[f64], factor: f64) -> f64 {
+    mus.iter().map(|mu| (mu.atan() - (factor * mu).atan()).to_degrees()).fold(f64::INFINITY, f64::min)
+}

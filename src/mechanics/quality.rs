@@ -1,0 +1,215 @@
+//! Grasp quality: the largest disturbance held in every direction.
+//!
+//! Quality with a limit on the total normal force is the radius of the largest ball about 0 inside the convex hull of
+//! the generators (Ferrari & Canny 1992; Kirkpatrick, Mishra & Yap 1992). With a limit on each finger's normal force it
+//! is the same ball inside the Minkowski sum over fingers of conv{0, the finger's generators}.
+//!
+//! Both are least values over unit directions u of a support function, and every direction tried gives an upper bound.
+//! So the plain definition is computed without any test that could go wrong: take every direction that *might* be a
+//! facet's normal, and keep the least support.
+
+use super::force_polygon::{ForcePolygon, PlanarScore};
+use super::wrench::{MOST_GENERATORS, Wrenches};
+use nalgebra::Vector3;
+
+/// The direction in which a closed grasp resists least: unit (fx, fy, tau/l), the normal of the hull's nearest facet.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct Weakest {
+    /// Unit wrench direction.
+    pub direction: Vector3<f64>,
+}
+
+impl Weakest {
+    /// Angle of the force part in degrees from +x, counter-clockwise; nothing when the direction is pure torque.
+    pub fn force_deg(&self) -> Option<f64> {
+        (self.force() > 1e-9).then(|| self.direction.y.atan2(self.direction.x).to_degrees())
+    }
+
+    /// Share of force, 0 to 1.
+    pub fn force(&self) -> f64 {
+        self.direction.x.hypot(self.direction.y)
+    }
+
+    /// Share of torque over l, -1 to 1, counter-clockwise positive.
+    pub fn torque(&self) -> f64 {
+        self.direction.z
+    }
+}
+
+/// Shortest cross product of two chords whose direction still says something.
+const LEAST_AREA_SQUARE: f64 = 1e-28;
+/// Share of a plane's normal along the torque axis below which it does not cross that axis.
+const LEAST_SLOPE: f64 = 1e-11;
+
+/// Closure, quality and placement by the kernel where one friction coefficient holds for all contacts and the kernel is
+/// certain, by the plain definition elsewhere.
+pub fn planar(wrenches: &Wrenches) -> PlanarScore {
+    if let Some(mu) = wrenches.common_mu() {
+        let polygon = ForcePolygon::of_levers(wrenches.levers(), mu);
+        let score = polygon.score(&polygon.heights_of_levers(wrenches.levers(), mu));
+        if score.certain {
+            return score;
+        }
+    }
+    by_definition(wrenches.generators())
+}
+
+/// Closure, quality and placement by the plain definition: the planes through every three generators, both sides.
+pub fn by_definition(generators: &[Vector3<f64>]) -> PlanarScore {
+    let n = generators.len().min(MOST_GENERATORS);
+    let mut score = PlanarScore {
+        signed_quality: f64::INFINITY,
+        torque_up: f64::INFINITY,
+        torque_down: f64::INFINITY,
+        direction: Vector3::z(),
+        certain: true,
+    };
+    // Padding repeats the first generator: it never reaches farther than the set itself.
+    let mut xs = [0.0; MOST_GENERATORS];
+    let mut ys = [0.0; MOST_GENERATORS];
+    let mut zs = [0.0; MOST_GENERATORS];
+    for i in 0..MOST_GENERATORS {
+        let w = generators.get(i).or(generators.first()).copied().unwrap_or_default();
+        (xs[i], ys[i], zs[i]) = (w.x, w.y, w.z);
+    }
+    let scale = generators.iter().map(Vector3::norm_squared).fold(1.0, f64::max);
+    for i in 0..n {
+        for j in i + 1..n {
+            let a = generators[j] - generators[i];
+            for k in j + 1..n {
+                let normal = a.cross(&(generators[k] - generators[i]));
+                let square = normal.norm_squared();
+                if square <= LEAST_AREA_SQUARE * scale * scale {
+                    continue;
+                }
+                let (mut high, mut low) = (f64::NEG_INFINITY, f64::INFINITY);
+                for m in 0..MOST_GENERATORS {
+                    let reach = normal.x * xs[m] + normal.y * ys[m] + normal.z * zs[m];
+                    high = if reach > high { reach } else { high };
+                    low = if reach < low { reach } else { low };
+                }
+                let norm = square.sqrt();
+                for (reach, sign) in [(high, 1.0), (-low, -1.0)] {
+                    if reach < score.signed_quality * norm {
+                        score.signed_quality = reach / norm;
+                        score.direction = normal * (sign / norm);
+                    }
+                    let slope = sign * normal.z;
+                    if slope > LEAST_SLOPE * norm {
+                        score.torque_up = score.torque_up.min(reach / slope);
+                    } else if slope < -LEAST_SLOPE * norm {
+                        score.torque_down = score.torque_down.min(reach / -slope);
+                    }
+                }
+            }
+        }
+    }
+    if !(wall(generators) > 0.0) {
+        score.torque_up = f64::NEG_INFINITY;
+        score.torque_down = f64::NEG_INFINITY;
+    }
+    if score.signed_quality.is_infinite() {
+        score.signed_quality = f64::NEG_INFINITY;
+    }
+    score
+}
+
+/// Least reach of the forces over plane directions that might be normal to a side of their hull: above 0 iff the forces
+/// positively span the plane.
+fn wall(generators: &[Vector3<f64>]) -> f64 {
+    let mut wall = f64::INFINITY;
+    let mut chords = 0;
+    for (i, a) in generators.iter().enumerate() {
+        for b in &generators[i + 1..] {
+            let (dx, dy) = (b.x - a.x, b.y - a.y);
+            let length = dx.hypot(dy);
+            if length <= 1e-14 {
+                continue;
+            }
+            chords += 1;
+            for (ux, uy) in [(dy / length, -dx / length), (-dy / length, dx / length)] {
+                let reach = generators.iter().map(|w| ux * w.x + uy * w.y).fold(f64::NEG_INFINITY, f64::max);
+                wall = wall.min(reach);
+            }
+        }
+    }
+    if chords == 0 { f64::NEG_INFINITY } else { wall }
+}
+
+/// Least reach of the wrench set over all unit directions, and the direction: below 0 it is minus the distance from 0
+/// to the hull. Unlike the facet distances of [`planar`], it is exact for open grasps too; slower.
+pub fn least_reach(generators: &[Vector3<f64>]) -> (f64, Vector3<f64>) {
+    let facets = by_definition(generators);
+    let mut best = (facets.signed_quality, facets.direction);
+    if best.0.is_infinite() {
+        best.0 = f64::INFINITY;
+    }
+    let mut attempt = |u: Vector3<f64>, scale: f64| {
+        let norm = u.norm();
+        if norm > 1e-14 * scale {
+            let u = u / norm;
+            let reach = generators.iter().map(|w| u.dot(w)).fold(f64::NEG_INFINITY, f64::max);
+            if reach < best.0 {
+                best = (reach, u);
+            }
+        }
+    };
+    for (i, a) in generators.iter().enumerate() {
+        // The nearest point of an open hull is a corner, or lies on an edge, or inside a facet.
+        attempt(-a, 1.0);
+        for b in &generators[i + 1..] {
+            let edge = b - a;
+            let length = edge.norm();
+            if length > 1e-14 {
+                let along = edge / length;
+                attempt(-(a - along * a.dot(&along)), 1.0);
+            }
+            // Flat sets have no facets; the normals of the planes through 0 take their place.
+            let normal = a.cross(b);
+            attempt(normal, a.norm() * b.norm());
+            attempt(-normal, a.norm() * b.norm());
+        }
+    }
+    best
+}
+
+/// Quality with each finger's normal force limited to 1; 0 when not closed. Exact: all normals of the Minkowski sum's
+/// facets are tried, the cross products of two edges of the fingers' triangles conv{0, w+, w-}.
+pub fn per_finger(wrenches: &Wrenches) -> f64 {
+    let generators = wrenches.generators();
+    let mut edges: Vec<Vector3<f64>> = Vec::with_capacity(3 * wrenches.finger_count());
+    let mut first = 0;
+    while first < generators.len() {
+        let finger = wrenches.fingers()[first];
+        let two = wrenches.fingers().get(first + 1) == Some(&finger);
+        edges.push(generators[first]);
+        if two {
+            edges.push(generators[first + 1]);
+            edges.push(generators[first] - generators[first + 1]);
+        }
+        first += if two { 2 } else { 1 };
+    }
+    let mut least = f64::INFINITY;
+    for (i, a) in edges.iter().enumerate() {
+        for b in &edges[i + 1..] {
+            let normal = a.cross(b);
+            let norm = normal.norm();
+            if norm <= 1e-14 * a.norm() * b.norm() {
+                continue;
+            }
+            // One pass gives both senses: each finger pushes as far as it can along u, or not at all.
+            let (mut up, mut down) = (0.0, 0.0);
+            let mut at = 0;
+            while at < generators.len() {
+                let x = normal.dot(&generators[at]);
+                let two = wrenches.fingers().get(at + 1) == Some(&wrenches.fingers()[at]);
+                let y = if two { normal.dot(&generators[at + 1]) } else { x };
+                up += x.max(y).max(0.0);
+                down += (-x).max(-y).max(0.0);
+                at += if two { 2 } else { 1 };
+            }
+            least = least.min(up.min(down) / norm);
+        }
+    }
+    if least.is_finite() { least } else { 0.0 }
+}

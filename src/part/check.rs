@@ -1,0 +1,253 @@
+//! The rules of an outline. Crossing and touching are decided by exact predicates (Shewchuk 1997, crate `robust`).
+
+use super::EdgeId;
+use super::fault::{PartFault, PartFaults, Touch};
+use super::mass;
+use nalgebra::Point2;
+use robust::{Coord, orient2d};
+use rstar::primitives::{GeomWithData, Rectangle};
+use rstar::{AABB, RTree};
+use std::cmp::Ordering;
+
+/// Coordinates farther from the origin than this are refused: beyond it the predicates could overflow and a
+/// position has fewer than seven digits below a millimetre.
+pub(super) const FARTHEST_MM: f64 = 1e9;
+/// Smallest part, mm across (a nanometre).
+const SMALLEST_MM: f64 = 1e-6;
+/// Two vertices closer than this fraction of the part are the same vertex written twice.
+const SAME_VERTEX: f64 = 1e-13;
+/// A ring whose area is below this fraction of its bounding square encloses nothing.
+const LEAST_AREA: f64 = 1e-12;
+/// Vertices the checks take: a drawing with more is a scan, not a part.
+const MOST_VERTICES: usize = 2_000_000;
+/// Faults listed before giving up.
+const MOST_FAULTS: usize = 20;
+
+type Ring = Vec<[f64; 2]>;
+
+/// Collects faults up to a limit.
+#[derive(Default)]
+struct Faults(Vec<PartFault>);
+
+impl Faults {
+    /// Notes a fault; false when the list is full.
+    fn note(&mut self, fault: PartFault) -> bool {
+        if self.0.len() < MOST_FAULTS {
+            self.0.push(fault);
+            return true;
+        }
+        if self.0.len() == MOST_FAULTS {
+            self.0.push(PartFault::AndMore);
+        }
+        false
+    }
+
+    fn settle(self) -> Result<(), PartFaults> {
+        if self.0.is_empty() { Ok(()) } else { Err(PartFaults(self.0)) }
+    }
+}
+
+/// Checks everything but areas and returns the rings without their repeated closing vertices.
+pub(super) fn cleaned(rings: &[Ring], unit_mm: f64) -> Result<Vec<Ring>, PartFaults> {
+    let rings = numbers(rings, unit_mm)?;
+    let mut faults = Faults::default();
+    vertices(&rings, &mut faults);
+    // A repeated vertex makes its neighbours touch; crossings are looked for once each ring is sound by itself.
+    faults.settle()?;
+    let mut faults = Faults::default();
+    meetings(&rings, &mut faults);
+    faults.settle()?;
+    let mut faults = Faults::default();
+    nesting(&rings, &mut faults);
+    faults.settle()?;
+    Ok(rings)
+}
+
+/// Finite numbers within range, enough of them, and the closing vertex dropped.
+fn numbers(rings: &[Ring], unit_mm: f64) -> Result<Vec<Ring>, PartFaults> {
+    let mut faults = Faults::default();
+    let have = rings.iter().map(Vec::len).sum();
+    if have > MOST_VERTICES {
+        return Err(PartFaults(vec![PartFault::TooManyVertices { have, most: MOST_VERTICES }]));
+    }
+    if rings.is_empty() {
+        return Err(PartFaults(vec![PartFault::NoRing]));
+    }
+    for (number, ring) in rings.iter().enumerate() {
+        for (vertex, point) in ring.iter().enumerate() {
+            if !point.iter().all(|x| x.is_finite()) {
+                faults.note(PartFault::NotFinite { ring: number, vertex });
+            } else if let Some(&value) = point.iter().find(|&&x| (x * unit_mm).abs() > FARTHEST_MM) {
+                faults.note(PartFault::TooFar { ring: number, vertex, value });
+            }
+        }
+    }
+    let mut cleaned: Vec<Ring> = rings.to_vec();
+    for (number, ring) in cleaned.iter_mut().enumerate() {
+        #[expect(clippy::float_cmp, reason = "a closing vertex repeats the first digit for digit")]
+        if ring.len() > 1 && ring[0] == ring[ring.len() - 1] {
+            ring.pop();
+        }
+        if ring.len() < 3 {
+            faults.note(PartFault::TooFewVertices { ring: number, have: ring.len() });
+        }
+    }
+    faults.settle()?;
+    let size_mm = size(&cleaned[0]) * unit_mm;
+    if size_mm < SMALLEST_MM {
+        return Err(PartFaults(vec![PartFault::TooSmall { size_mm, least_mm: SMALLEST_MM }]));
+    }
+    Ok(cleaned)
+}
+
+/// Larger side of a ring's bounding box.
+fn size(ring: &Ring) -> f64 {
+    let side = |axis: usize| {
+        let (low, high) = ring
+            .iter()
+            .fold((f64::INFINITY, f64::NEG_INFINITY), |(low, high), p| (low.min(p[axis]), high.max(p[axis])));
+        high - low
+    };
+    side(0).max(side(1))
+}
+
+/// No repeated vertex and no spike.
+fn vertices(rings: &[Ring], faults: &mut Faults) {
+    let same = SAME_VERTEX * size(&rings[0]);
+    for (number, ring) in rings.iter().enumerate() {
+        let n = ring.len();
+        for vertex in 0..n {
+            let (u, v, w) = (ring[(vertex + n - 1) % n], ring[vertex], ring[(vertex + 1) % n]);
+            if (v[0] - u[0]).abs() <= same && (v[1] - u[1]).abs() <= same {
+                faults.note(PartFault::RepeatedVertex { ring: number, vertex, before: (vertex + n - 1) % n });
+            } else if turns_back(u, v, w) {
+                faults.note(PartFault::Spike { ring: number, vertex });
+            }
+        }
+    }
+}
+
+/// True when u, v, w lie on one line with u and w on the same side of v.
+fn turns_back(u: [f64; 2], v: [f64; 2], w: [f64; 2]) -> bool {
+    let same_side = |axis: usize| {
+        let (a, b) = (u[axis].total_cmp(&v[axis]), w[axis].total_cmp(&v[axis]));
+        a == b && a != Ordering::Equal
+    };
+    turn(u, v, w) == Ordering::Equal && (same_side(0) || same_side(1))
+}
+
+/// Exact side of w from the line u to v: Greater = left, Less = right, Equal = on it.
+fn turn(u: [f64; 2], v: [f64; 2], w: [f64; 2]) -> Ordering {
+    let coord = |p: [f64; 2]| Coord { x: p[0], y: p[1] };
+    orient2d(coord(u), coord(v), coord(w)).partial_cmp(&0.0).unwrap_or(Ordering::Equal)
+}
+
+/// How two segments meet, exactly.
+fn meet(a: [[f64; 2]; 2], b: [[f64; 2]; 2]) -> Option<Touch> {
+    let (b0, b1) = (turn(a[0], a[1], b[0]), turn(a[0], a[1], b[1]));
+    if b0 == b1 && b0 != Ordering::Equal {
+        return None;
+    }
+    let (a0, a1) = (turn(b[0], b[1], a[0]), turn(b[0], b[1], a[1]));
+    if a0 == a1 && a0 != Ordering::Equal {
+        return None;
+    }
+    if [a0, a1, b0, b1].iter().all(|&side| side != Ordering::Equal) {
+        return Some(Touch::Cross);
+    }
+    let on = |side: Ordering, s: [[f64; 2]; 2], p: [f64; 2]| {
+        side == Ordering::Equal
+            && (0..2).all(|axis| s[0][axis].min(s[1][axis]) <= p[axis] && p[axis] <= s[0][axis].max(s[1][axis]))
+    };
+    let touches = on(b0, a, b[0]) || on(b1, a, b[1]) || on(a0, b, a[0]) || on(a1, b, a[1]);
+    touches.then_some(Touch::Touch)
+}
+
+/// No two edges meet but neighbours at their shared vertex.
+fn meetings(rings: &[Ring], faults: &mut Faults) {
+    let mut boxes = Vec::with_capacity(rings.iter().map(Vec::len).sum());
+    for (ring, vertices) in rings.iter().enumerate() {
+        for edge in 0..vertices.len() {
+            let (p, q) = (vertices[edge], vertices[(edge + 1) % vertices.len()]);
+            boxes.push(GeomWithData::new(Rectangle::from_corners(p, q), EdgeId { ring, edge }));
+        }
+    }
+    let segment = |id: EdgeId| {
+        let ring = &rings[id.ring];
+        [ring[id.edge], ring[(id.edge + 1) % ring.len()]]
+    };
+    let neighbours = |a: EdgeId, b: EdgeId| {
+        let n = rings[a.ring].len();
+        a.ring == b.ring && ((a.edge + 1) % n == b.edge || (b.edge + 1) % n == a.edge)
+    };
+    let tree = RTree::bulk_load(boxes);
+    let mut found = Vec::new();
+    for item in tree.iter() {
+        let a = item.data;
+        let [p, q] = segment(a);
+        for other in tree.locate_in_envelope_intersecting(AABB::from_corners(p, q)) {
+            let b = other.data;
+            if b <= a || neighbours(a, b) {
+                continue;
+            }
+            if let Some(how) = meet(segment(a), segment(b)) {
+                found.push((a, b, how));
+            }
+        }
+        if found.len() > 4 * MOST_FAULTS {
+            break;
+        }
+    }
+    found.sort_by_key(|&(a, b, _)| (a, b));
+    for (a, b, how) in found {
+        if !faults.note(PartFault::Meet { a, b, how }) {
+            break;
+        }
+    }
+}
+
+/// Every hole inside the outer ring and outside every other hole. The rings are known not to meet, so one vertex
+/// decides for its ring.
+fn nesting(rings: &[Ring], faults: &mut Faults) {
+    let boxes: Vec<_> = rings.iter().map(|ring| AABB::from_points(ring.iter())).collect();
+    let holes = RTree::bulk_load(
+        (1..rings.len()).map(|ring| GeomWithData::new(Rectangle::from_aabb(boxes[ring]), ring)).collect(),
+    );
+    for (number, ring) in rings.iter().enumerate().skip(1) {
+        if !inside(&rings[0], ring[0]) {
+            faults.note(PartFault::HoleOutside { ring: number });
+        }
+        let around = holes.locate_all_at_point(ring[0]);
+        let mut outers: Vec<usize> = around.map(|hole| hole.data).filter(|&outer| outer != number).collect();
+        outers.sort_unstable();
+        if let Some(outer) = outers.into_iter().find(|&outer| inside(&rings[outer], ring[0])) {
+            faults.note(PartFault::HoleInHole { ring: number, outer });
+        }
+    }
+}
+
+/// Exact point in ring, by the parity of crossings with a ray to +x; the point is known not to be on the ring.
+fn inside(ring: &Ring, p: [f64; 2]) -> bool {
+    let mut inside = false;
+    for (i, &a) in ring.iter().enumerate() {
+        let b = ring[(i + 1) % ring.len()];
+        let (low, high) = if a[1] <= b[1] { (a, b) } else { (b, a) };
+        if low[1] <= p[1] && p[1] < high[1] && turn(low, high, p) == Ordering::Greater {
+            inside = !inside;
+        }
+    }
+    inside
+}
+
+/// Every ring encloses an area its numbers can carry.
+pub(super) fn areas(rings: &[Vec<Point2<f64>>]) -> Result<(), PartFaults> {
+    let mut faults = Faults::default();
+    for (number, ring) in rings.iter().enumerate() {
+        let area_mm2 = mass::signed_area(ring).abs();
+        let span = ring.iter().fold(0.0_f64, |far, p| far.max((p - ring[0]).norm()));
+        if !(area_mm2 > LEAST_AREA * span * span) {
+            faults.note(PartFault::NoArea { ring: number, area_mm2 });
+        }
+    }
+    faults.settle()
+}

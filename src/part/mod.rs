@@ -1,0 +1,261 @@
+//! What is held: the outline of a part, its mass, and the marks on its edges.
+//!
+//! A [`Part`] can only be made from rings that pass every rule of an outline, so the rooms above never meet a
+//! polygon that crosses itself, a hole outside its part, or a number that is not one.
+
+mod check;
+mod fault;
+mod mass;
+pub mod material;
+mod outline;
+
+pub use fault::{PartFault, PartFaults, Touch};
+pub use mass::{Mass, RegionMoments};
+pub use outline::{Edge, EdgeId, Outline};
+
+use nalgebra::Point2;
+
+/// An interval of an edge that no finger may touch.
+#[derive(Debug, Clone, PartialEq)]
+pub struct KeepOut {
+    /// The edge, numbered as in the part file.
+    pub edge: EdgeId,
+    /// Start along the edge in mm from its first vertex.
+    pub from_mm: f64,
+    /// End along the edge in mm from its first vertex.
+    pub to_mm: f64,
+    /// Why, in the words of the part file.
+    pub reason: String,
+}
+
+/// An edge whose friction differs from the setup's: a rubber strip, a painted face.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct EdgeFriction {
+    /// The edge, numbered as in the part file.
+    pub edge: EdgeId,
+    /// Friction coefficient of that edge.
+    pub mu: f64,
+}
+
+/// A keep-out as it stands in a description: interval ends may be left open and are in the description's unit.
+#[derive(Debug, Clone, PartialEq)]
+pub struct KeepOutDescription {
+    /// Ring number, 0 for the outer ring.
+    pub ring: usize,
+    /// Edge number in the ring.
+    pub edge: usize,
+    /// Start along the edge; the edge's start when absent.
+    pub from: Option<f64>,
+    /// End along the edge; the edge's end when absent.
+    pub to: Option<f64>,
+    /// Why.
+    pub reason: String,
+}
+
+/// Everything that may be said about a part before it is checked; see [`Part::new`].
+#[derive(Debug, Clone, PartialEq)]
+pub struct PartDescription {
+    /// Name for people.
+    pub name: String,
+    /// Length of one unit of the coordinates in mm.
+    pub unit_mm: f64,
+    /// Rings of vertices: the outer ring first, then the holes. Either winding; a closing vertex may repeat the first.
+    pub rings: Vec<Vec<[f64; 2]>>,
+    /// Thickness in the description's unit.
+    pub thickness: Option<f64>,
+    /// Material, a row of [`material::DENSITIES`] where it is to give the density.
+    pub material: Option<String>,
+    /// Density in kg/m3; wins over the material.
+    pub density_kg_m3: Option<f64>,
+    /// Mass in kg; wins over any density.
+    pub mass_kg: Option<f64>,
+    /// Centre of mass in the description's unit; the centroid when absent.
+    pub com: Option<[f64; 2]>,
+    /// Intervals that no finger may touch.
+    pub keep_outs: Vec<KeepOutDescription>,
+    /// Edges with their own friction: ring, edge, mu.
+    pub edge_friction: Vec<(usize, usize, f64)>,
+}
+
+impl PartDescription {
+    /// A description with nothing but a name, rings in mm, and every option absent.
+    pub fn bare(name: &str, rings: Vec<Vec<[f64; 2]>>) -> Self {
+        Self {
+            name: name.to_owned(),
+            unit_mm: 1.0,
+            rings,
+            thickness: None,
+            material: None,
+            density_kg_m3: None,
+            mass_kg: None,
+            com: None,
+            keep_outs: Vec::new(),
+            edge_friction: Vec::new(),
+        }
+    }
+}
+
+/// A checked part. Positions are in mm in the *local frame*: file coordinates less [`Part::origin`], so that a part
+/// drawn a kilometre from the origin loses no digits in its torques. Only what is shown or saved adds the origin back.
+#[derive(Debug, Clone)]
+pub struct Part {
+    name: String,
+    outline: Outline,
+    thickness_mm: Option<f64>,
+    material: Option<String>,
+    mass: Option<Mass>,
+    com: Point2<f64>,
+    keep_outs: Vec<KeepOut>,
+    edge_friction: Vec<EdgeFriction>,
+}
+
+impl Part {
+    /// Checks a description and builds the part.
+    ///
+    /// # Errors
+    /// Every fault found, the outline's first; a part with any fault is not built.
+    pub fn new(description: PartDescription) -> Result<Self, PartFaults> {
+        let d = description;
+        let mut faults = Vec::new();
+        for (key, value) in [("thickness", d.thickness), ("density_kg_m3", d.density_kg_m3), ("mass_kg", d.mass_kg)] {
+            if let Some(value) = value
+                && !(value.is_finite() && value > 0.0)
+            {
+                faults.push(PartFault::NotPositive { key, value });
+            }
+        }
+        if let Some(com) = d.com
+            && !com.iter().all(|x| x.is_finite() && (x * d.unit_mm).abs() <= check::FARTHEST_MM)
+        {
+            faults.push(PartFault::BadCentreOfMass { x: com[0], y: com[1] });
+        }
+        let outline = match Outline::new(&d.rings, d.unit_mm) {
+            Ok(outline) => outline,
+            Err(outline_faults) => {
+                let mut all = outline_faults.0;
+                all.extend(faults);
+                return Err(PartFaults(all));
+            }
+        };
+        let keep_outs = checked_keep_outs(&d, &outline, &mut faults);
+        let edge_friction = checked_edge_friction(&d, &outline, &mut faults);
+        if !faults.is_empty() {
+            return Err(PartFaults(faults));
+        }
+        let first = d.rings[0][0];
+        let com = match d.com {
+            Some([x, y]) => Point2::new((x - first[0]) * d.unit_mm, (y - first[1]) * d.unit_mm),
+            None => outline.region().centroid,
+        };
+        let thickness_mm = d.thickness.map(|t| t * d.unit_mm);
+        let density =
+            d.density_kg_m3.or_else(|| d.material.as_deref().and_then(material::density).map(|row| row.kg_m3));
+        let mass_kg = d.mass_kg.or_else(|| Some(density? * thickness_mm? * outline.region().area_mm2 * 1e-9));
+        let mass = mass_kg.map(|kg| Mass::of(kg, outline.region(), com));
+        Ok(Self { name: d.name, outline, thickness_mm, material: d.material, mass, com, keep_outs, edge_friction })
+    }
+
+    /// Name for people, as written in the file.
+    pub fn name(&self) -> &str {
+        &self.name
+    }
+
+    /// The outline.
+    pub fn outline(&self) -> &Outline {
+        &self.outline
+    }
+
+    /// Thickness in mm, when known.
+    pub fn thickness_mm(&self) -> Option<f64> {
+        self.thickness_mm
+    }
+
+    /// Material as written in the file.
+    pub fn material(&self) -> Option<&str> {
+        self.material.as_deref()
+    }
+
+    /// Mass and polar moment, when the file gives enough to know them.
+    pub fn mass(&self) -> Option<&Mass> {
+        self.mass.as_ref()
+    }
+
+    /// Centre of mass in the local frame, mm.
+    pub fn com(&self) -> Point2<f64> {
+        self.com
+    }
+
+    /// Where nothing may touch.
+    pub fn keep_outs(&self) -> &[KeepOut] {
+        &self.keep_outs
+    }
+
+    /// Edges with their own friction.
+    pub fn edge_friction(&self) -> &[EdgeFriction] {
+        &self.edge_friction
+    }
+
+    /// Friction coefficient of an edge: its own, or `mu` where it has none. The last entry for an edge wins.
+    pub fn mu_on(&self, edge: EdgeId, mu: f64) -> f64 {
+        self.edge_friction.iter().rev().find(|own| own.edge == edge).map_or(mu, |own| own.mu)
+    }
+
+    /// A local point in the file's frame, mm: what is shown and saved.
+    pub fn file_point(&self, local: Point2<f64>) -> Point2<f64> {
+        local + self.outline.origin()
+    }
+
+    /// Distance from the centre of mass to the farthest point of the outer ring, mm: the default torque scale.
+    pub fn reach_mm(&self) -> f64 {
+        self.outline.farthest_from(self.com)
+    }
+
+    /// Radius of gyration about the centre of mass, mm; depends on the shape alone, not on the mass.
+    pub fn gyration_mm(&self) -> f64 {
+        self.outline.region().gyration_about(self.com)
+    }
+}
+
+fn checked_keep_outs(d: &PartDescription, outline: &Outline, faults: &mut Vec<PartFault>) -> Vec<KeepOut> {
+    let mut kept = Vec::with_capacity(d.keep_outs.len());
+    for (entry, raw) in d.keep_outs.iter().enumerate() {
+        let id = EdgeId { ring: raw.ring, edge: raw.edge };
+        let Some(edge) = outline.edge(id) else {
+            faults.push(PartFault::NoSuchEdge { table: "keep_out", entry, edge: id, have: outline.ring_sizes() });
+            continue;
+        };
+        let from_mm = raw.from.map_or(0.0, |from| from * d.unit_mm);
+        let to_mm = raw.to.map_or(edge.length_mm(), |to| to * d.unit_mm);
+        // `to` may overshoot the edge by what rounding in a drawing leaves; it is cut to the edge.
+        if !(from_mm.is_finite()
+            && to_mm.is_finite()
+            && from_mm >= 0.0
+            && from_mm < to_mm
+            && from_mm < edge.length_mm())
+        {
+            faults.push(PartFault::BadInterval { entry, edge: id, from_mm, to_mm, length_mm: edge.length_mm() });
+            continue;
+        }
+        kept.push(KeepOut { edge: id, from_mm, to_mm: to_mm.min(edge.length_mm()), reason: raw.reason.clone() });
+    }
+    kept
+}
+
+fn checked_edge_friction(d: &PartDescription, outline: &Outline, faults: &mut Vec<PartFault>) -> Vec<EdgeFriction> {
+    let mut own = Vec::with_capacity(d.edge_friction.len());
+    for (entry, &(ring, edge, mu)) in d.edge_friction.iter().enumerate() {
+        let id = EdgeId { ring, edge };
+        if outline.edge(id).is_none() {
+            faults.push(PartFault::NoSuchEdge { table: "edge_friction", entry, edge: id, have: outline.ring_sizes() });
+        } else if !(mu.is_finite() && (0.0..=MU_LARGEST).contains(&mu)) {
+            faults.push(PartFault::BadEdgeFriction { entry, mu });
+        } else {
+            own.push(EdgeFriction { edge: id, mu });
+        }
+    }
+    own
+}
+
+/// Largest friction coefficient taken as a number rather than a slip of the keyboard. Tacky rubber reaches about 4
+/// (common practice, no source); ten leaves room.
+pub const MU_LARGEST: f64 = 10.0;

@@ -1,0 +1,15 @@
+//! Which grasps are good: sites on the stretches, candidate sets, their scores, families, order, the background job.
+
+mod families;
+pub mod job;
+mod order;
+mod rank;
+mod scene;
+mod screen;
+mod setup;
+mod sites;
+
+pub use order::Key;
+pub use rank::{Cancel, Cancelled, Listed, Listing, Progress, Ranking, rank};
+pub use scene::{Grasp, PlaceFault, Scene, Spot};
+pub use setup::{Floors, SearchSettings, Setup, SetupFault, TorqueScale};
