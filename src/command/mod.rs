@@ -1,0 +1,1 @@
+//! What is asked: the command line, one file for each command.

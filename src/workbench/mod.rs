@@ -1,0 +1,1 @@
+//! What is seen and touched: state, update, view, terminal.
