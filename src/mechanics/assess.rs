@@ -94,7 +94,7 @@ impl Assessment {
         let score = quality::planar(wrenches);
         let verdict = Verdict::of(wrenches, &score);
         let closed = verdict == Verdict::Closed;
-        let friction = FrictionReading::of(wrenches, setup_mu);
+        let friction = FrictionReading::of(wrenches, setup_mu, closed);
         Self {
             verdict,
             quality: if closed { score.signed_quality } else { 0.0 },
@@ -168,7 +168,7 @@ struct FrictionReading {
 }
 
 impl FrictionReading {
-    fn of(wrenches: &Wrenches, setup_mu: f64) -> Self {
+    fn of(wrenches: &Wrenches, setup_mu: f64, closed: bool) -> Self {
         let frictionless = wrenches.mus().iter().all(|&mu| mu <= 0.0);
         let ones = vec![1.0; wrenches.finger_count()];
         // Without any friction to scale, ask what common mu would do.
@@ -177,7 +177,12 @@ impl FrictionReading {
             None => Self { needed: None, margin: Some(0.0), margin_deg: None },
             Some(factor) => {
                 let needed = factor * unit;
-                let margin = if factor > 0.0 { Some(if frictionless { 0.0 } else { 1.0 / factor }) } else { None };
+                let margin = if frictionless && !closed {
+                    // However little would do, there is none.
+                    Some(0.0)
+                } else {
+                    (factor > 0.0).then(|| 1.0 / factor)
+                };
                 let margin_deg =
                     if frictionless { -needed.atan().to_degrees() } else { friction::margin_deg(mus, factor) };
                 Self { needed: Some(needed), margin, margin_deg: Some(margin_deg) }
