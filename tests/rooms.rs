@@ -38,10 +38,10 @@ fn sources(folder: &Path) -> Vec<PathBuf> {
     found
 }
 
-/// Code lines without comments.
+/// Code lines without comments and without the unit tests at the end of a file.
 fn code(path: &Path) -> Vec<String> {
     let text = fs::read_to_string(path).unwrap();
-    text.lines().map(|line| line.split("//").next().unwrap_or("").to_owned()).collect()
+    text.lines().take_while(|line| *line != "#[cfg(test)]").map(|line| line.split("//").next().unwrap_or("").to_owned()).collect()
 }
 
 /// True when a line names a room of this crate.
