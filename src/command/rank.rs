@@ -146,7 +146,7 @@ fn rows(text: &mut String, scene: &Scene, key: Key, listing: Listing, ranking: &
 }
 
 const LEGEND: &str = "
-ring:edge@mm  ring 0 is the outer one; mm from the edge's first vertex, file order
+ring:edge@mm  ring 0 is the outer one; mm count from the edge's first vertex
 quality   a disturbance of size 1 (force, or torque over the torque scale) in any
           direction is held with a total finger force of 1 / quality
 margin    mu over the friction needed; - where no friction is needed
