@@ -1,5 +1,6 @@
 //! The commands as a shell sees them: results, diagnostics, exit codes.
-#![allow(clippy::unwrap_used, clippy::expect_used, clippy::float_cmp)]
+#![allow(clippy::unwrap_used, clippy::expect_used, reason = "a test that cannot go on has failed")]
+#![allow(clippy::float_cmp, reason = "numbers that pass through JSON must come out digit for digit")]
 
 use holdwright::file::{Keep, read_part, save, setup_from_text};
 use holdwright::part::EdgeId;
@@ -241,6 +242,10 @@ fn the_table_fits_eighty_columns_and_says_what_it_is() {
         let rows =
             text.lines().filter(|line| line.trim_start().starts_with(char::is_numeric) && line.contains(":")).count();
         assert!((1..=7).contains(&rows), "{text}");
+        let output =
+            bench.run(&["rank", "bar.toml", "--fingers", fingers, "--sort", "quality_per_finger", "--top", "2"]);
+        assert!(out(&output).contains("qual/f"), "{}", out(&output));
+        assert!(out(&output).lines().all(|line| line.chars().count() <= 80), "{}", out(&output));
     }
     let sampled = bench.run(&["rank", "bar.toml", "--budget", "1000"]);
     assert!(out(&sampled).contains("a sample: the budget is 1000 sets"), "{}", out(&sampled));
@@ -460,6 +465,11 @@ fn check_notices_a_part_that_changed() {
     let output = bench.run(&["check", "bar.grasps.toml"]);
     assert_eq!(output.status.code(), Some(1));
     assert!(out(&output).contains("middle: no longer fits: ring 0 edge 0 is 30 mm long"), "{}", out(&output));
+    // Not where it was.
+    std::fs::remove_file(&bench.part).unwrap();
+    let output = bench.run(&["check", "bar.grasps.toml"]);
+    assert_eq!(output.status.code(), Some(2));
+    assert!(err(&output).contains("bar.toml: there is no such file") && err(&output).contains("--part"));
     // The old part under another name still passes.
     bench.write("old.toml", BAR);
     assert_eq!(bench.run(&["check", "bar.grasps.toml", "--part", "old.toml"]).status.code(), Some(0));

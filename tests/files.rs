@@ -1,5 +1,6 @@
 //! Part, setup and grasp files: what is written is read back, and each thing that can be wrong is said with its line.
-#![allow(clippy::unwrap_used, clippy::expect_used)]
+#![allow(clippy::unwrap_used, clippy::expect_used, reason = "a test that cannot go on has failed")]
+#![allow(clippy::float_cmp, reason = "what was written in decimal must be read back digit for digit")]
 
 use holdwright::file::{
     CAUTION, FileFault, GraspFile, Keep, SaveFault, Scores, default_grasp_path, default_setup_text, grasps_from_text,
@@ -558,7 +559,7 @@ fn a_saved_grasp_is_read_back_number_for_number() {
 fn the_same_grasp_twice_gives_the_same_lines() {
     let (_folder, part_path, path) = bench();
     let kept = keep("a", &Setup::default(), &FACING);
-    let first = save(&path, &part_path, &hinge(), &[kept.clone()], None).unwrap();
+    let first = save(&path, &part_path, &hinge(), std::slice::from_ref(&kept), None).unwrap();
     save(&path, &part_path, &hinge(), &[kept.clone(), kept], Some(&first)).unwrap();
     let text = std::fs::read_to_string(&path).unwrap();
     assert!(lines_of_grasp(&text, 0).len() > 12);

@@ -1,5 +1,5 @@
 //! Input nobody would write on purpose, and disks that fail: an answer in words every time, and no file harmed.
-#![allow(clippy::unwrap_used, clippy::expect_used)]
+#![allow(clippy::unwrap_used, clippy::expect_used, reason = "a test that cannot go on has failed")]
 
 use holdwright::file::{
     FileFaults, Keep, SaveFault, grasps_from_text, part_from_text, read_grasps, read_part, read_setup, save,
@@ -146,7 +146,7 @@ fn ring() -> impl Strategy<Value = Vec<[i8; 2]>> {
 }
 
 proptest! {
-    #![proptest_config(ProptestConfig::with_cases(1500))]
+    #![proptest_config(ProptestConfig { cases: 1500, failure_persistence: None, ..ProptestConfig::default() })]
 
     #[test]
     fn any_bytes(bytes in prop::collection::vec(any::<u8>(), 0..400)) {
@@ -211,6 +211,18 @@ fn a_million_vertices() {
     // A few seconds on a slow machine; reading that grows with the square of the size would take hours.
     assert!(took < Duration::from_secs(60), "{took:?}");
     println!("a million vertices: {took:?}");
+}
+
+/// Read as values these would take some gigabytes.
+#[test]
+fn a_file_too_large_is_not_even_parsed() {
+    let folder = tempfile::tempdir().unwrap();
+    let path = folder.path().join("scan.toml");
+    std::fs::write(&path, vec![b'['; 13_000_000]).unwrap();
+    assert!(read_part(&path).unwrap_err().to_string().ends_with("holds more values than any outline; simplify it"));
+    // A hole in the file system's sense: 300 MiB that take no room on the disk.
+    std::fs::File::create(&path).unwrap().set_len(300 << 20).unwrap();
+    assert!(read_part(&path).unwrap_err().to_string().contains("is larger than 256 MiB"));
 }
 
 #[test]

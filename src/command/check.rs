@@ -87,7 +87,12 @@ struct Change {
 
 pub(super) fn run(args: &CheckArgs) -> Result<Answer, Stop> {
     let saved = file::read_grasps(&args.grasps)?;
-    let part = knobs::part(args.part.as_ref().unwrap_or(&saved.part_path))?;
+    let part = match &args.part {
+        Some(path) => knobs::part(path)?,
+        None => knobs::part(&saved.part_path).inspect_err(|_| {
+            output::note("the grasp file names this part; --part FILE takes another");
+        })?,
+    };
     let report = check(&saved, &part, &args.knobs)?;
     let answer = if report.all_hold && !report.part_changed { Answer::Done } else { Answer::No };
     let printed = if args.json { output::print_json(&report) } else { output::print(&in_words(&report, &saved)) };

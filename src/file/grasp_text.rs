@@ -84,11 +84,12 @@ fn write_grasp(text: &mut String, keep: &Keep, name: &str, part: &Part, time: ji
         Some(Escape::Slide { toward_deg }) => {
             writeln!(text, "escape = {{ kind = \"slide\", toward_deg = {} }}", number(toward_deg))?;
         }
-        Some(Escape::Turn { about, sense }) => {
+        // A centre too far away for a number says no more than the verdict.
+        Some(Escape::Turn { about, sense }) if about.iter().all(|x| x.is_finite()) => {
             let (at, sense) = (part.file_point(about), if sense == Sense::Clockwise { "cw" } else { "ccw" });
             writeln!(text, "escape = {{ kind = \"turn\", about_mm = {}, sense = \"{sense}\" }}", pair(at.x, at.y))?;
         }
-        None => {}
+        Some(Escape::Turn { .. }) | None => {}
     }
     let drive = keep.setup.hand.drive;
     writeln!(text, "drive = \"{}\"", word_for(&DRIVES, drive))?;

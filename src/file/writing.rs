@@ -1,6 +1,6 @@
 //! Values as TOML text, and careful writing: beside the old file, synced, renamed over it.
 
-use std::fs::{self, File, Permissions};
+use std::fs::{self, File, OpenOptions, Permissions};
 use std::io::{self, ErrorKind, Write};
 use std::path::{Path, PathBuf};
 
@@ -54,19 +54,16 @@ pub(super) fn replace(
     let folder = folder_of(target);
     let mut prefix = std::ffi::OsString::from(".");
     prefix.push(target.file_name().unwrap_or_default());
-    let mut builder = tempfile::Builder::new();
-    builder.prefix(&prefix).suffix(".part");
-    #[cfg(unix)]
-    {
-        // What any program asks for; the umask takes its share.
-        use std::os::unix::fs::PermissionsExt;
-        builder.permissions(Permissions::from_mode(0o666));
-    }
-    let mut beside = builder.tempfile_in(&folder).map_err(bare)?;
-    beside.write_all(bytes).map_err(bare)?;
+    let mut options = OpenOptions::new();
+    options.write(true).create_new(true);
+    // Opened here and not by the builder, which would make it unreadable for everyone else and name it in every error.
+    let beside =
+        tempfile::Builder::new().prefix(&prefix).suffix(".part").make_in(&folder, |path| options.open(path))?;
+    // Before anything is in it that the old file may keep from others.
     if let Some(permissions) = &old {
         beside.as_file().set_permissions(permissions.clone())?;
     }
+    (&mut beside.as_file()).write_all(bytes)?;
     beside.as_file().sync_all()?;
     if !still_good() {
         return Ok(false);
@@ -75,17 +72,11 @@ pub(super) fn replace(
     match taken {
         Ok(_) => {}
         Err(error) if error.error.kind() == ErrorKind::AlreadyExists => return Ok(false),
-        Err(error) => return Err(bare(error.error)),
+        Err(error) => return Err(error.error),
     }
     // The new name must be on the disk too. Some file systems cannot sync a folder; the file is whole either way.
     if let Ok(folder) = File::open(&folder) {
         let _ = folder.sync_all();
     }
     Ok(true)
-}
-
-/// The system's own error, without the name of the file written beside, which means nothing to anyone.
-fn bare(error: io::Error) -> io::Error {
-    let inner = error.get_ref().and_then(|wrapped| wrapped.source()?.downcast_ref::<io::Error>()?.raw_os_error());
-    inner.map_or(error, io::Error::from_raw_os_error)
 }
