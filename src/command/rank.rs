@@ -156,7 +156,8 @@ quality   a disturbance of size 1 (force, or torque over the torque scale) in
 ";
 const QUALITY_PER_FINGER: &str = "\
 qual/f    quality per finger: a disturbance of size 1 (force, or torque over the
-          torque scale) in any direction is held with 1 / qual/f from each finger
+          torque scale) in any direction is held with at most 1 / (qual/f) from
+          each finger
 ";
 const LEGEND: &str = "\
 margin    mu over the friction needed; - where no friction is needed
