@@ -91,3 +91,53 @@ fn quick() {
         println!("k {k} kernel {k1} ns, definition {k2} ns, friction {} ns {s}", t.elapsed().as_nanos() / 10000);
     }
 }
+#[test]
+fn ranking() {
+    use holdwright::part::*;
+    use holdwright::search::*;
+    use std::sync::Arc;
+    let mut ring = vec![];
+    for i in 0..12 {
+        let a = i as f64 * std::f64::consts::TAU / 12.0;
+        let r = 50.0 + 13.0 * ((i * 7 % 5) as f64) / 5.0;
+        ring.push([r * a.cos(), r * a.sin()]);
+    }
+    for (key, listing) in [
+        (Key::Quality, Listing::Families),
+        (Key::Quality, Listing::Members),
+        (Key::Friction, Listing::Families),
+        (Key::Placement, Listing::Families),
+        (Key::QualityPerFinger, Listing::Families),
+    ] {
+        for (k, budget) in [(2, 2_000_000), (3, 2_000_000), (4, 2_000_000)] {
+            let part = Arc::new(Part::new(PartDescription::bare("x", vec![ring.clone()])).unwrap());
+            let mut setup = Setup::default();
+            setup.hand.fingers = holdwright::hand::FingerCount::new(k).unwrap();
+            setup.search.budget = budget;
+            let scene = Scene::new(part, setup).unwrap();
+            let mut out = vec![];
+            for threads in [1, 2] {
+                let pool = rayon::ThreadPoolBuilder::new().num_threads(threads).build().unwrap();
+                let t = std::time::Instant::now();
+                let r = pool.install(|| rank(&scene, key, listing, 20, &Cancel::default(), &|_| ())).unwrap();
+                let best = &r.grasps[0];
+                println!(
+                    "{key:?} {listing:?} k{k} threads {threads} {:?} sites {} examined {} closed {} inc {} compl {} fam {} best q {} need {:?} pl {} fam {:?}",
+                    t.elapsed(),
+                    r.sites,
+                    r.examined,
+                    r.closed,
+                    r.inconclusive,
+                    r.complete,
+                    r.families,
+                    best.assessment.quality,
+                    best.assessment.friction_needed,
+                    best.assessment.placement.mm,
+                    best.family
+                );
+                out.push(r);
+            }
+            assert_eq!(out[0], out[1]);
+        }
+    }
+}

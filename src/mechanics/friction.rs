@@ -51,7 +51,7 @@ const WIDTH: f64 = 1e-11;
 /// A friction needed below this is none.
 const NONE: f64 = 1e-9;
 /// Signed quality (of unit-force generators) above which the root finder takes a grasp for closed.
-const CLOSED: f64 = 1e-12;
+pub const CLOSED: f64 = 1e-12;
 
 /// Signed quality of the generators scaled to unit force, with every mu multiplied by a factor. Its sign is the verdict.
 pub fn signed_quality_at(levers: &[Lever], mus: &[f64], factor: f64) -> f64 {

@@ -10,6 +10,7 @@
 
 use super::force_polygon::{ForcePolygon, PlanarScore};
 use super::wrench::{MOST_GENERATORS, Wrenches};
+use crate::hand::FingerCount;
 use nalgebra::Vector3;
 
 /// The direction in which a closed grasp resists least: unit (fx, fy, tau/l), the normal of the hull's nearest facet.
@@ -173,43 +174,48 @@ pub fn least_reach(generators: &[Vector3<f64>]) -> (f64, Vector3<f64>) {
     best
 }
 
-/// Quality with each finger's normal force limited to 1; 0 when not closed. Exact: all normals of the Minkowski sum's
-/// facets are tried, the cross products of two edges of the fingers' triangles conv{0, w+, w-}.
+/// Quality with each finger's normal force limited to 1; 0 when not closed.
 pub fn per_finger(wrenches: &Wrenches) -> f64 {
-    let generators = wrenches.generators();
-    let mut edges: Vec<Vector3<f64>> = Vec::with_capacity(3 * wrenches.finger_count());
-    let mut first = 0;
-    while first < generators.len() {
-        let finger = wrenches.fingers()[first];
-        let two = wrenches.fingers().get(first + 1) == Some(&finger);
-        edges.push(generators[first]);
-        if two {
-            edges.push(generators[first + 1]);
-            edges.push(generators[first] - generators[first + 1]);
-        }
-        first += if two { 2 } else { 1 };
+    let pairs: Vec<[Vector3<f64>; 2]> =
+        wrenches.levers().iter().zip(wrenches.mus()).map(|(lever, &mu)| lever.generators(mu)).collect();
+    per_finger_of(&pairs).0
+}
+
+/// How far the fingers together push in direction u: each as far as it can with a unit normal force, or not at all.
+pub fn reach_per_finger(pairs: &[[Vector3<f64>; 2]], u: &Vector3<f64>) -> f64 {
+    pairs.iter().map(|[a, b]| u.dot(a).max(u.dot(b)).max(0.0)).sum()
+}
+
+/// Quality with each finger limited, from each finger's two generators (equal where mu is 0), and the direction that
+/// attains it. Exact: all normals of the Minkowski sum's facets are tried, the cross products of two edges of the
+/// fingers' triangles conv{0, w+, w-}.
+pub fn per_finger_of(pairs: &[[Vector3<f64>; 2]]) -> (f64, Vector3<f64>) {
+    let mut edges = [Vector3::zeros(); 3 * FingerCount::MOST];
+    for (three, [a, b]) in edges.chunks_exact_mut(3).zip(pairs) {
+        three.copy_from_slice(&[*a, *b, a - b]);
     }
-    let mut least = f64::INFINITY;
+    let edges = &edges[..3 * pairs.len()];
+    let mut least = (f64::INFINITY, Vector3::z());
     for (i, a) in edges.iter().enumerate() {
         for b in &edges[i + 1..] {
             let normal = a.cross(b);
-            let norm = normal.norm();
-            if norm <= 1e-14 * a.norm() * b.norm() {
+            let square = normal.norm_squared();
+            if square <= 1e-28 * a.norm_squared() * b.norm_squared() {
                 continue;
             }
-            // One pass gives both senses: each finger pushes as far as it can along u, or not at all.
             let (mut up, mut down) = (0.0, 0.0);
-            let mut at = 0;
-            while at < generators.len() {
-                let x = normal.dot(&generators[at]);
-                let two = wrenches.fingers().get(at + 1) == Some(&wrenches.fingers()[at]);
-                let y = if two { normal.dot(&generators[at + 1]) } else { x };
+            for [p, q] in pairs {
+                let (x, y) = (normal.dot(p), normal.dot(q));
                 up += x.max(y).max(0.0);
-                down += (-x).max(-y).max(0.0);
-                at += if two { 2 } else { 1 };
+                down -= x.min(y).min(0.0);
             }
-            least = least.min(up.min(down) / norm);
+            let norm = square.sqrt();
+            for (reach, sign) in [(up, 1.0), (down, -1.0)] {
+                if reach < least.0 * norm {
+                    least = (reach / norm, normal * (sign / norm));
+                }
+            }
         }
     }
-    if least.is_finite() { least } else { 0.0 }
+    if least.0.is_finite() { least } else { (0.0, least.1) }
 }

@@ -3,6 +3,7 @@
 mod families;
 pub mod job;
 mod order;
+mod plan;
 mod rank;
 mod scene;
 mod screen;

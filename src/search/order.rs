@@ -1,4 +1,12 @@
-//! The order of grasps: a key, then fixed tie-breaks, total and independent of threads.
+//! The order of grasps: a key, then fixed tie-breaks; total, and independent of threads.
+//!
+//! Scores are compared in whole quanta well above rounding, so that grasps that are equal in truth (along a plateau, or
+//! after the part was turned) are equal here, and the later tie-breaks decide: less friction needed, more placement
+//! tolerance, more room on the stretch (the middle of a plateau), then the site numbers.
+
+use crate::hand::FingerCount;
+use std::cmp::Ordering;
+use std::collections::BinaryHeap;
 
 /// What grasps are sorted by.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, Hash)]
@@ -30,5 +38,102 @@ impl Key {
     /// The key of a word.
     pub fn from_word(word: &str) -> Option<Self> {
         Self::ALL.into_iter().find(|key| key.word() == word)
+    }
+}
+
+/// Quantum of qualities and of lengths over the torque scale.
+const SCORE_QUANTUM: f64 = 1e-10;
+/// Quantum of friction needed, as a factor on the setup's friction. Wider: it comes from a root finder.
+pub(super) const FRICTION_QUANTUM: f64 = 1e-8;
+
+/// A score in quanta.
+pub(super) fn quanta(score: f64) -> i64 {
+    (score / SCORE_QUANTUM).round() as i64
+}
+
+/// A friction factor in quanta.
+pub(super) fn friction_quanta(factor: f64) -> i64 {
+    (factor / FRICTION_QUANTUM).round() as i64
+}
+
+/// The sites of a candidate set, ascending.
+pub(super) type SiteSet = [u32; FingerCount::MOST];
+
+/// A closed candidate set with what decides its place.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub(super) struct Candidate {
+    /// Quanta of the key, larger is better.
+    pub key: i64,
+    /// Quanta of friction needed.
+    pub friction: i64,
+    /// Quanta of placement tolerance over l.
+    pub placement: i64,
+    /// Quanta of room over l.
+    pub room: i64,
+    /// Sites; entries past the number of fingers are 0.
+    pub sites: SiteSet,
+}
+
+impl Ord for Candidate {
+    /// Less means better: sorting puts the best first.
+    fn cmp(&self, other: &Self) -> Ordering {
+        (other.key.cmp(&self.key))
+            .then(self.friction.cmp(&other.friction))
+            .then(other.placement.cmp(&self.placement))
+            .then(other.room.cmp(&self.room))
+            .then(self.sites.cmp(&other.sites))
+    }
+}
+
+impl PartialOrd for Candidate {
+    fn partial_cmp(&self, other: &Self) -> Option<Ordering> {
+        Some(self.cmp(other))
+    }
+}
+
+/// The best candidates so far, at most a fixed number.
+#[derive(Debug, Clone)]
+pub(super) struct Top {
+    most: usize,
+    heap: BinaryHeap<Candidate>,
+    /// Nothing behind this is wanted, however short the list.
+    bar: Option<Candidate>,
+}
+
+impl Top {
+    pub(super) fn new(most: usize) -> Self {
+        Self { most, heap: BinaryHeap::new(), bar: None }
+    }
+
+    /// An empty list that takes only what this one would still take.
+    pub(super) fn above(&self) -> Self {
+        Self { most: self.most, heap: BinaryHeap::new(), bar: self.worst().copied() }
+    }
+
+    /// The candidate a newcomer has to beat.
+    pub(super) fn worst(&self) -> Option<&Candidate> {
+        if self.heap.len() < self.most { self.bar.as_ref() } else { self.heap.peek() }
+    }
+
+    pub(super) fn offer(&mut self, candidate: Candidate) {
+        if self.most == 0 || self.worst().is_some_and(|worst| candidate >= *worst) {
+            return;
+        }
+        self.heap.push(candidate);
+        if self.heap.len() > self.most {
+            self.heap.pop();
+        }
+    }
+
+    pub(super) fn merge(mut self, other: Self) -> Self {
+        for candidate in other.heap {
+            self.offer(candidate);
+        }
+        self
+    }
+
+    /// Best first.
+    pub(super) fn sorted(&self) -> Vec<Candidate> {
+        self.heap.clone().into_sorted_vec()
     }
 }

@@ -1,1 +1,535 @@
-//! screen
+//! Screening: the kernel run over the candidate sets of a family, keeping what may be listed.
+//!
+//! All members of a family press in the same directions, so the force polygon is built once for the family and only the
+//! torques change from member to member. What prunes what:
+//! - forces that do not positively span the plane: no member closes, and no torque is looked at;
+//! - ties on the key (plateaus are common) are settled by closure tests at the incumbent's friction needed, one kernel
+//!   call each; the root finder runs only for a candidate that takes the lead.
+
+use super::families::Family;
+use super::order::{self, Candidate, FRICTION_QUANTUM, Key, SiteSet, Top};
+use super::rank::{Cancel, Cancelled, Listing};
+use super::scene::Scene;
+use super::sites::{Site, Sites};
+use crate::hand::FingerCount;
+use crate::mechanics::force_polygon::{ForcePolygon, PlanarScore};
+use crate::mechanics::wrench::MOST_GENERATORS;
+use crate::mechanics::{Lever, MARGINAL, friction, quality};
+use crate::part::MU_LARGEST;
+use nalgebra::Vector3;
+use std::cmp::Ordering;
+use std::collections::HashMap;
+use std::ops::Range;
+
+/// What a ranking is asked for; the same for all families.
+pub(super) struct Screen<'a> {
+    pub scene: &'a Scene,
+    pub sites: &'a Sites,
+    pub key: Key,
+    pub listing: Listing,
+    pub cancel: &'a Cancel,
+    /// Least distance between the axes of two pins, squared, mm2; 0 when any distance will do.
+    least_apart_square: f64,
+    scale_mm: f64,
+}
+
+/// Counts and the best of what was screened.
+#[derive(Debug, Clone)]
+pub(super) struct Tally {
+    pub examined: u64,
+    pub closed: u64,
+    /// Families with a grasp to list, other than those in `best`.
+    families: usize,
+    top: Top,
+    /// The best so far of families whose sets are spread over several parcels.
+    best: HashMap<Family, Candidate>,
+}
+
+impl Tally {
+    pub(super) fn new(most: usize) -> Self {
+        Self { examined: 0, closed: 0, families: 0, top: Top::new(most), best: HashMap::new() }
+    }
+
+    /// An empty tally for a thread to fill, that need not keep what this one would not.
+    pub(super) fn fresh(&self) -> Self {
+        Self { examined: 0, closed: 0, families: 0, top: self.top.above(), best: HashMap::new() }
+    }
+
+    pub(super) fn merge(mut self, mut other: Self) -> Self {
+        if self.best.len() < other.best.len() {
+            std::mem::swap(&mut self.best, &mut other.best);
+        }
+        for (family, candidate) in other.best {
+            self.keep(family, candidate);
+        }
+        Self {
+            examined: self.examined + other.examined,
+            closed: self.closed + other.closed,
+            families: self.families + other.families,
+            top: self.top.merge(other.top),
+            best: self.best,
+        }
+    }
+
+    fn keep(&mut self, family: Family, candidate: Candidate) {
+        let kept = self.best.entry(family).or_insert(candidate);
+        *kept = candidate.min(*kept);
+    }
+
+    /// Families with a grasp to list.
+    pub(super) fn families(&self) -> usize {
+        self.families + self.best.len()
+    }
+
+    /// The list, best first.
+    pub(super) fn sorted(&self) -> Vec<Candidate> {
+        let mut top = self.top.clone();
+        self.best.values().for_each(|candidate| top.offer(*candidate));
+        let mut sorted = top.sorted();
+        sorted.dedup();
+        sorted
+    }
+}
+
+/// Sets looked at between two questions whether to stop.
+const BETWEEN_CANCEL: u64 = 4096;
+
+impl<'a> Screen<'a> {
+    pub(super) fn new(scene: &'a Scene, sites: &'a Sites, key: Key, listing: Listing, cancel: &'a Cancel) -> Self {
+        let hand = &scene.setup().hand;
+        // Touching is allowed up to rounding of the positions themselves, as in `hand::apart`.
+        let least = (2.0 * hand.pin_radius_mm + hand.gap_mm) * (1.0 - 1e-12);
+        Self { scene, sites, key, listing, cancel, least_apart_square: least * least, scale_mm: scene.frame().scale_mm }
+    }
+
+    fn apart(&self, a: u32, b: u32) -> bool {
+        let (a, b) = (self.sites.get(a).centre, self.sites.get(b).centre);
+        (a - b).norm_squared() >= self.least_apart_square
+    }
+
+    /// True when the family's forces positively span the plane, so that members may close.
+    pub(super) fn may_close(&self, family: &Family) -> bool {
+        FamilyForces::new(self, family).may_close()
+    }
+
+    /// Screens every candidate set of a family whose first finger stands on one of these sites.
+    pub(super) fn every(&self, family: &Family, first: Range<usize>, tally: &mut Tally) -> Result<(), Cancelled> {
+        let whole = self.sites.on(family.stretches()[0] as usize) == first;
+        let mut run = Run::new(self, family, tally);
+        if !run.forces.may_close() && self.least_apart_square <= 0.0 && whole {
+            run.tally.examined += u64::try_from(family.count(self.sites)).unwrap_or(u64::MAX);
+            return Ok(());
+        }
+        run.every_set(0, first)?;
+        run.finish(whole);
+        Ok(())
+    }
+
+    /// Screens candidate sets of a family, one from each of these strata of its numbering, cut into `of` equal ones.
+    pub(super) fn sample(
+        &self,
+        family: &Family,
+        strata: Range<u64>,
+        of: u64,
+        uniform: &mut dyn FnMut() -> f64,
+        tally: &mut Tally,
+    ) -> Result<(), Cancelled> {
+        let count = family.count(self.sites);
+        let whole = strata == (0..of);
+        let mut run = Run::new(self, family, tally);
+        let stride = count as f64 / of as f64;
+        for stratum in strata {
+            let number = if u128::from(of) == count {
+                u128::from(stratum)
+            } else {
+                ((stratum as f64 + uniform()) * stride) as u128
+            };
+            run.set = family.nth(self.sites, number.min(count - 1));
+            if run.keeps_gaps() {
+                run.look()?;
+            }
+        }
+        run.finish(whole);
+        Ok(())
+    }
+
+    /// Screens one candidate set by itself.
+    pub(super) fn one(&self, family: &Family, set: SiteSet, tally: &mut Tally) -> Result<(), Cancelled> {
+        let mut run = Run::new(self, family, tally);
+        run.set = set;
+        if run.keeps_gaps() {
+            run.look()?;
+        }
+        run.finish(false);
+        Ok(())
+    }
+}
+
+/// What all members of a family have in common.
+struct FamilyForces {
+    mus: [f64; FingerCount::MOST],
+    /// The contacts' one mu, when they share it.
+    mu: Option<f64>,
+    /// Of the generators at the setup's friction when all contacts share one mu, else of the generators scaled to unit
+    /// force, which tells closure but not quality.
+    polygon: ForcePolygon,
+}
+
+/// Force polygon of generators scaled to unit force.
+fn unit_polygon(levers: &[Lever], mus: &[f64], factor: f64) -> ForcePolygon {
+    let mut forces = [[0.0; 2]; MOST_GENERATORS];
+    for ((pair, lever), mu) in forces.chunks_exact_mut(2).zip(levers).zip(mus) {
+        let mu = mu * factor;
+        let length = (1.0 + mu * mu).sqrt();
+        for (force, m) in pair.iter_mut().zip([mu, -mu]) {
+            let f = (lever.normal + lever.tangent * m) / length;
+            *force = [f.x, f.y];
+        }
+    }
+    ForcePolygon::new(&forces[..2 * levers.len()])
+}
+
+impl FamilyForces {
+    #[expect(clippy::float_cmp, reason = "equal means copied from the same setting, digit for digit")]
+    fn new(screen: &Screen, family: &Family) -> Self {
+        let k = family.stretches().len();
+        let mut levers = [NO_LEVER; FingerCount::MOST];
+        let mut mus = [0.0; FingerCount::MOST];
+        for (finger, &stretch) in family.stretches().iter().enumerate() {
+            let site = screen.sites.get(screen.sites.on(stretch as usize).start as u32);
+            (levers[finger], mus[finger]) = (site.lever, site.mu);
+        }
+        let mu = mus[..k].iter().all(|&mu| mu == mus[0]).then_some(mus[0]);
+        let polygon = match mu {
+            Some(mu) => ForcePolygon::of_levers(&levers[..k], mu),
+            None => unit_polygon(&levers[..k], &mus[..k], 1.0),
+        };
+        Self { mus, mu, polygon }
+    }
+
+    /// The quality is at most the distance to the wall; unit forces are shorter than the true ones by at most
+    /// `sqrt(1 + MU_LARGEST^2)`.
+    fn may_close(&self) -> bool {
+        let shorter = if self.mu.is_some() { 1.0 } else { MU_LARGEST.hypot(1.0) };
+        self.polygon.wall() * shorter > MARGINAL
+    }
+}
+
+const NO_LEVER: Lever = Lever {
+    normal: nalgebra::Vector2::new(0.0, 0.0),
+    tangent: nalgebra::Vector2::new(0.0, 0.0),
+    normal_torque: 0.0,
+    tangent_torque: 0.0,
+};
+
+/// The screening of one family.
+struct Run<'a, 'b> {
+    screen: &'a Screen<'a>,
+    family: &'a Family,
+    k: usize,
+    forces: FamilyForces,
+    /// Least friction margin asked for, and the polygon at the friction it leaves.
+    margin_floor: Option<(f64, ForcePolygon)>,
+    /// The last factor a closure test was made at, and its polygon.
+    at_factor: Option<(f64, ForcePolygon)>,
+    /// The candidate set being looked at.
+    set: SiteSet,
+    best: Option<Candidate>,
+    lead_friction_known: bool,
+    /// Direction in which the family's best grasp is weakest under a limit on each finger.
+    weak_per_finger: Option<Vector3<f64>>,
+    looked: u64,
+    tally: &'b mut Tally,
+}
+
+impl<'a, 'b> Run<'a, 'b> {
+    fn new(screen: &'a Screen<'a>, family: &'a Family, tally: &'b mut Tally) -> Self {
+        Self {
+            screen,
+            family,
+            k: family.stretches().len(),
+            forces: FamilyForces::new(screen, family),
+            margin_floor: None,
+            at_factor: None,
+            set: SiteSet::default(),
+            best: None,
+            lead_friction_known: false,
+            weak_per_finger: None,
+            looked: 0,
+            tally,
+        }
+    }
+
+    /// Hands in the family's best grasp; `whole` when no other parcel has sets of this family.
+    fn finish(mut self, whole: bool) {
+        let Some(mut best) = self.best else { return };
+        if !self.lead_friction_known {
+            let wanted = self.tally.top.worst().is_none_or(|worst| worst.key <= best.key);
+            if wanted || !whole {
+                best.friction = self.friction_quanta(&best.sites);
+            }
+        }
+        if whole {
+            self.tally.top.offer(best);
+            self.tally.families += 1;
+        } else {
+            self.tally.keep(*self.family, best);
+        }
+        self.best = None;
+    }
+
+    fn site(&self, finger: usize) -> &'a Site {
+        self.screen.sites.get(self.set[finger])
+    }
+
+    fn keeps_gaps(&self) -> bool {
+        (0..self.k).all(|i| (i + 1..self.k).all(|j| self.screen.apart(self.set[i], self.set[j])))
+    }
+
+    /// Walks all sets with finger `finger` on these sites of its stretch and the later fingers anywhere after it.
+    fn every_set(&mut self, finger: usize, on: Range<usize>) -> Result<(), Cancelled> {
+        let next = self.family.stretches().get(finger + 1).copied();
+        let same = next == Some(self.family.stretches()[finger]);
+        for site in on {
+            self.set[finger] = site as u32;
+            if self.screen.least_apart_square > 0.0
+                && !(0..finger).all(|other| self.screen.apart(self.set[other], site as u32))
+            {
+                continue;
+            }
+            match next {
+                None => self.look()?,
+                Some(stretch) => {
+                    let range = self.screen.sites.on(stretch as usize);
+                    let from = if same { site + 1 } else { range.start };
+                    self.every_set(finger + 1, from..range.end)?;
+                }
+            }
+        }
+        Ok(())
+    }
+
+    /// Looks at the current set.
+    fn look(&mut self) -> Result<(), Cancelled> {
+        self.looked += 1;
+        if self.looked.is_multiple_of(BETWEEN_CANCEL) && self.screen.cancel.is_cancelled() {
+            return Err(Cancelled);
+        }
+        self.tally.examined += 1;
+        let Some(score) = self.closed_score() else { return Ok(()) };
+        self.tally.closed += 1;
+        let floors = &self.screen.scene.setup().floors;
+        let room_mm = (0..self.k).map(|finger| self.site(finger).room_mm).fold(f64::INFINITY, f64::min);
+        let placement_mm = (score.torque_up.min(score.torque_down) * self.screen.scale_mm).min(room_mm);
+        if score.signed_quality < floors.quality || placement_mm < floors.placement_mm || !self.keeps_margin_floor() {
+            return Ok(());
+        }
+        let placement = order::quanta(placement_mm / self.screen.scale_mm);
+        let room = order::quanta(room_mm / self.screen.scale_mm);
+        let Some(key) = self.key(&score, placement) else { return Ok(()) };
+        let mut candidate = Candidate { key, friction: 0, placement, room, sites: self.set };
+        match self.screen.listing {
+            Listing::Families => {
+                if self.takes_lead(&mut candidate) {
+                    self.best = Some(candidate);
+                }
+            }
+            Listing::Members => {
+                let worst = self.tally.top.worst().copied();
+                if worst.is_none_or(|worst| self.comes_before(&mut candidate, &worst)) {
+                    candidate.friction = self.friction_quanta(&candidate.sites);
+                    self.tally.top.offer(candidate);
+                }
+            }
+        }
+        Ok(())
+    }
+
+    /// Quanta of the key, or nothing when the current set is already known to be no better than the family's best.
+    fn key(&mut self, score: &PlanarScore, placement: i64) -> Option<i64> {
+        Some(match self.screen.key {
+            Key::Quality => order::quanta(score.signed_quality),
+            Key::Placement => placement,
+            Key::QualityPerFinger => order::quanta(self.per_finger()?),
+            // Decided with the friction tie-break.
+            Key::Friction => 0,
+        })
+    }
+
+    /// Whether the current set becomes the family's best. A leader's friction needed is found only once someone ties
+    /// with it: while quality rises along an edge the lead changes at every step.
+    fn takes_lead(&mut self, candidate: &mut Candidate) -> bool {
+        self.lead_friction_known &= match self.best {
+            None => false,
+            Some(best) => best.key >= candidate.key,
+        };
+        let Some(mut best) = self.best else { return true };
+        match best.key.cmp(&candidate.key) {
+            Ordering::Less => return true,
+            Ordering::Greater => return false,
+            Ordering::Equal => {}
+        }
+        if !self.lead_friction_known {
+            best.friction = self.friction_quanta(&best.sites);
+            self.best = Some(best);
+            self.lead_friction_known = true;
+        }
+        let takes = self.comes_before(candidate, &best);
+        if takes && candidate.friction != best.friction {
+            candidate.friction = self.friction_quanta(&candidate.sites);
+        }
+        takes
+    }
+
+    /// Score of the current set when it is closed. Where contacts differ in mu the polygon of unit forces filters, and
+    /// the plain definition scores.
+    fn closed_score(&self) -> Option<PlanarScore> {
+        if !self.forces.may_close() {
+            return None;
+        }
+        let mut torques = [0.0; MOST_GENERATORS];
+        for (finger, pair) in torques.chunks_exact_mut(2).take(self.k).enumerate() {
+            pair.copy_from_slice(&self.site(finger).torques);
+        }
+        let polygon = &self.forces.polygon;
+        let score = match self.forces.mu {
+            Some(_) => {
+                let score = polygon.score(&polygon.heights(&torques[..2 * self.k]));
+                if score.certain { score } else { self.by_definition() }
+            }
+            None => {
+                for (finger, pair) in torques.chunks_exact_mut(2).take(self.k).enumerate() {
+                    let mu = self.forces.mus[finger];
+                    let length = (1.0 + mu * mu).sqrt();
+                    pair.iter_mut().for_each(|torque| *torque /= length);
+                }
+                // Unit forces are the shorter ones: what closes has at least this quality with the longer.
+                let score = polygon.score(&polygon.heights(&torques[..2 * self.k]));
+                if score.certain && score.signed_quality <= 0.0 {
+                    return None;
+                }
+                self.by_definition()
+            }
+        };
+        (score.signed_quality > MARGINAL).then_some(score)
+    }
+
+    fn by_definition(&self) -> PlanarScore {
+        let mut generators = [Vector3::zeros(); MOST_GENERATORS];
+        let mut n = 0;
+        for finger in 0..self.k {
+            let count = if self.forces.mus[finger] > 0.0 { 2 } else { 1 };
+            let edges = self.site(finger).lever.generators(self.forces.mus[finger]);
+            generators[n..n + count].copy_from_slice(&edges[..count]);
+            n += count;
+        }
+        quality::by_definition(&generators[..n])
+    }
+
+    /// Whether the current set comes before a candidate whose friction is known. Its own friction is set when equal.
+    fn comes_before(&mut self, candidate: &mut Candidate, other: &Candidate) -> bool {
+        let order = other.key.cmp(&candidate.key).then_with(|| self.friction_against(other.friction));
+        match order {
+            Ordering::Less => {
+                candidate.friction = i64::MIN;
+                true
+            }
+            Ordering::Greater => false,
+            Ordering::Equal => {
+                candidate.friction = other.friction;
+                *candidate < *other
+            }
+        }
+    }
+
+    /// Less when the current set needs less friction than so many quanta, by closure tests half a quantum to either side.
+    fn friction_against(&mut self, quanta: i64) -> Ordering {
+        let half = FRICTION_QUANTUM / 2.0;
+        let at = quanta as f64 * FRICTION_QUANTUM;
+        if quanta > 0 && self.closes_at(at - half) {
+            Ordering::Less
+        } else if self.closes_at(at + half) {
+            Ordering::Equal
+        } else {
+            Ordering::Greater
+        }
+    }
+
+    /// Friction needed by a set of this family, in quanta.
+    fn friction_quanta(&self, set: &SiteSet) -> i64 {
+        let levers = set.map(|site| self.screen.sites.get(site).lever);
+        let factor = friction::factor_needed(&levers[..self.k], &self.forces.mus[..self.k]);
+        order::friction_quanta(factor.unwrap_or(0.0))
+    }
+
+    fn levers(&self) -> [Lever; FingerCount::MOST] {
+        let mut levers = [NO_LEVER; FingerCount::MOST];
+        for (finger, lever) in levers[..self.k].iter_mut().enumerate() {
+            *lever = self.site(finger).lever;
+        }
+        levers
+    }
+
+    /// Whether the current set closes with all friction multiplied by a factor.
+    fn closes_at(&mut self, factor: f64) -> bool {
+        let polygon = match self.at_factor {
+            #[expect(clippy::float_cmp, reason = "a cache: only the very same factor will do")]
+            Some((cached, polygon)) if cached == factor => polygon,
+            _ => {
+                let polygon = unit_polygon(&self.levers()[..self.k], &self.forces.mus[..self.k], factor);
+                self.at_factor = Some((factor, polygon));
+                polygon
+            }
+        };
+        self.closes_on(&polygon, factor)
+    }
+
+    fn closes_on(&self, polygon: &ForcePolygon, factor: f64) -> bool {
+        let mut torques = [0.0; MOST_GENERATORS];
+        for (finger, pair) in torques.chunks_exact_mut(2).take(self.k).enumerate() {
+            let (mu, lever) = (self.forces.mus[finger] * factor, &self.site(finger).lever);
+            let length = (1.0 + mu * mu).sqrt();
+            for (torque, m) in pair.iter_mut().zip([mu, -mu]) {
+                *torque = (lever.normal_torque + m * lever.tangent_torque) / length;
+            }
+        }
+        polygon.score(&polygon.heights(&torques[..2 * self.k])).signed_quality > friction::CLOSED
+    }
+
+    fn keeps_margin_floor(&mut self) -> bool {
+        let floor = self.screen.scene.setup().floors.friction_margin;
+        if floor <= 1.0 {
+            return true;
+        }
+        let polygon = match self.margin_floor {
+            Some((_, polygon)) => polygon,
+            None => {
+                let polygon = unit_polygon(&self.levers()[..self.k], &self.forces.mus[..self.k], 1.0 / floor);
+                self.margin_floor = Some((floor, polygon));
+                polygon
+            }
+        };
+        self.closes_on(&polygon, 1.0 / floor)
+    }
+
+    /// Quality with each finger limited, or nothing when a direction already tried shows that the family's best is better.
+    fn per_finger(&mut self) -> Option<f64> {
+        let mut generators = [[Vector3::zeros(); 2]; FingerCount::MOST];
+        for (finger, pair) in generators[..self.k].iter_mut().enumerate() {
+            *pair = self.site(finger).lever.generators(self.forces.mus[finger]);
+        }
+        let generators = &generators[..self.k];
+        let least = match self.screen.listing {
+            Listing::Families => self.best,
+            Listing::Members => self.tally.top.worst().copied(),
+        };
+        if let (Some(least), Some(u)) = (least, self.weak_per_finger)
+            && order::quanta(quality::reach_per_finger(generators, &u)) < least.key
+        {
+            return None;
+        }
+        let (value, direction) = quality::per_finger_of(generators);
+        self.weak_per_finger = Some(direction);
+        Some(value)
+    }
+}
