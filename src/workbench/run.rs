@@ -263,7 +263,7 @@ impl<'a> Bench<'a> {
         let ranker = Ranker::new(move |news| {
             // The loop may be gone already; then nobody wants the news.
             let _ = sender.send(Message::News(news));
-        });
+        })?;
         Ok(Self {
             options,
             recovery,

@@ -3,7 +3,7 @@
 use super::action::{self, Action, Key};
 use super::entry;
 use super::look::Marker;
-use super::state::{Entry, EntryKind, Job, Layer, Mark, Order, Panel, Question, Reading, State};
+use super::state::{Entry, EntryKind, Job, Layer, Mark, Panel, Question, Reading, State};
 use crate::file::Keep;
 use crate::hand::FingerCount;
 use crate::search::job::{News, Request, What};
