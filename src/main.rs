@@ -1,1 +1,5 @@
-fn main() {}
+//! The `holdwright` program.
+
+fn main() -> std::process::ExitCode {
+    holdwright::command::main()
+}

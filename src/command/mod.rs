@@ -1,1 +1,157 @@
-//! What is asked: the command line, one file for each command.
+//! What is asked: the command line, its exit codes, one file for each command.
+
+mod json;
+mod knobs;
+mod output;
+mod progress;
+mod rank;
+mod reading;
+mod score;
+
+use crate::file::{self, shown};
+use crate::workbench;
+use clap::{Args, Parser, Subcommand, ValueEnum};
+use knobs::Knobs;
+use output::{Answer, Stop};
+use std::io::{self, IsTerminal, Write};
+use std::path::PathBuf;
+use std::process::ExitCode;
+
+/// Says where fingers, jaws or clamps should touch a flat part, and what the grip can take.
+#[derive(Debug, Parser)]
+#[command(
+    version,
+    args_conflicts_with_subcommands = true,
+    subcommand_negates_reqs = true,
+    arg_required_else_help = true,
+    after_help = "Without a command the workbench opens on PART; a part named like a command is opened as ./NAME.\n\
+                  Exit codes: 0 done, 1 the answer is no (check), 2 bad usage or input, 3 internal fault."
+)]
+struct Cli {
+    #[command(flatten)]
+    open: Open,
+    #[command(subcommand)]
+    command: Option<Command>,
+}
+
+#[derive(Debug, Args)]
+struct Open {
+    /// Part file to open the workbench on
+    #[arg(required = true)]
+    part: Option<PathBuf>,
+    #[command(flatten)]
+    knobs: Knobs,
+    /// File grasps are kept in [default: PART with the ending .grasps.toml]
+    #[arg(long, value_name = "FILE")]
+    grasps: Option<PathBuf>,
+    /// When to use colours
+    #[arg(long, value_enum, default_value_t = ColorWord::Auto)]
+    color: ColorWord,
+    /// What to draw the outline with [default: by locale]
+    #[arg(long, value_enum)]
+    marker: Option<MarkerWord>,
+}
+
+#[derive(Debug, Clone, Copy, ValueEnum)]
+enum ColorWord {
+    Auto,
+    Always,
+    Never,
+}
+
+#[derive(Debug, Clone, Copy, ValueEnum)]
+enum MarkerWord {
+    Ascii,
+    Line,
+    Braille,
+}
+
+#[derive(Debug, Subcommand)]
+enum Command {
+    /// Rank grasps of a part
+    Rank(rank::RankArgs),
+    /// Score given contacts
+    Score(score::ScoreArgs),
+    /// Print the default setup as a file to start from
+    Setup,
+}
+
+/// Runs the program on its command line.
+pub fn main() -> ExitCode {
+    std::panic::set_hook(Box::new(|panic| {
+        let payload = panic.payload();
+        let said = payload.downcast_ref::<&str>().copied().or(payload.downcast_ref::<String>().map(String::as_str));
+        let said = said.unwrap_or("no message");
+        let place = panic.location().map_or(String::new(), |at| format!(" ({}:{})", at.file(), at.line()));
+        let _ = writeln!(io::stderr(), "error: internal fault: {}{place}", shown(said));
+    }));
+    let cli = match Cli::try_parse() {
+        Ok(cli) => cli,
+        Err(usage) => {
+            // Help and version come this way too; a closed pipe is no error.
+            let _ = usage.print();
+            return ExitCode::from(if usage.use_stderr() { 2 } else { 0 });
+        }
+    };
+    match std::panic::catch_unwind(|| run(cli)) {
+        Ok(Ok(Answer::Done)) | Ok(Err(Stop::Closed)) => ExitCode::SUCCESS,
+        Ok(Err(Stop::Bad(lines))) => {
+            for line in lines {
+                let _ = writeln!(io::stderr(), "error: {line}");
+            }
+            ExitCode::from(2)
+        }
+        Ok(Err(Stop::Output(error))) => {
+            let _ = writeln!(io::stderr(), "error: standard output: {error}");
+            ExitCode::from(3)
+        }
+        // The hook has said what happened.
+        Err(_) => ExitCode::from(3),
+    }
+}
+
+fn run(cli: Cli) -> Result<Answer, Stop> {
+    match cli.command {
+        None => open(cli.open),
+        Some(Command::Rank(args)) => rank::run(&args),
+        Some(Command::Score(args)) => score::run(&args),
+        Some(Command::Setup) => {
+            output::print(&file::default_setup_text())?;
+            Ok(Answer::Done)
+        }
+    }
+}
+
+fn open(args: Open) -> Result<Answer, Stop> {
+    let Some(part_path) = args.part else {
+        return Err(Stop::bad("name a part file"));
+    };
+    if !(io::stdin().is_terminal() && io::stdout().is_terminal()) {
+        return Err(Stop::bad(format!(
+            "the workbench needs a terminal for input and output; `holdwright rank {}` lists grasps without one",
+            shown(&part_path.display().to_string())
+        )));
+    }
+    let part = knobs::part(&part_path)?;
+    let setup = args.knobs.setup()?;
+    args.knobs.use_threads_everywhere()?;
+    let options = workbench::Options {
+        grasp_path: args.grasps.unwrap_or_else(|| file::default_grasp_path(&part_path)),
+        part_path,
+        setup_path: args.knobs.setup.clone(),
+        part,
+        setup,
+        color: match args.color {
+            ColorWord::Auto => workbench::ColorChoice::Auto,
+            ColorWord::Always => workbench::ColorChoice::Always,
+            ColorWord::Never => workbench::ColorChoice::Never,
+        },
+        marker: args.marker.map(|word| match word {
+            MarkerWord::Ascii => workbench::Marker::Ascii,
+            MarkerWord::Line => workbench::Marker::Line,
+            MarkerWord::Braille => workbench::Marker::Braille,
+        }),
+    };
+    workbench::run(options).map_err(|error| Stop::bad(format!("the terminal: {error}")))?;
+    Ok(Answer::Done)
+}

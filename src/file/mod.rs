@@ -1,5 +1,14 @@
 //! What is kept: part, setup and grasp files, and careful writing.
 
+mod part_file;
+mod reading;
+mod setup_file;
+mod toml_reader;
+mod writing;
+
+pub use part_file::{part_from_text, read_part, read_part_with_notes};
+pub use setup_file::{CLOSINGS, CONDITIONS, DRIVES, TIPS, default_setup_text, read_setup, setup_from_text, word_for};
+
 use crate::mechanics::Assessment;
 use crate::part::Part;
 use crate::search::{Grasp, Setup};
@@ -14,9 +23,9 @@ pub struct FileFault {
     pub text: String,
 }
 
-/// Every fault of a file, the deciding one first.
+/// Every fault of a file, sorted by line; shown as one line for each.
 #[derive(Debug, Clone, PartialEq, thiserror::Error)]
-#[error("{}", .path.display())]
+#[error("{}", self.lines().join("\n"))]
 pub struct FileFaults {
     /// The file.
     pub path: PathBuf,
@@ -24,20 +33,22 @@ pub struct FileFaults {
     pub faults: Vec<FileFault>,
 }
 
-/// Reads a part file.
-///
-/// # Errors
-/// Every fault found.
-pub fn read_part(path: &Path) -> Result<Part, FileFaults> {
-    Err(FileFaults { path: path.to_owned(), faults: Vec::new() })
+impl FileFault {
+    /// The fault with the place it is at, as `FILE:LINE: text`; fit for a terminal.
+    pub fn at(&self, path: &Path) -> String {
+        let path = shown(&path.display().to_string());
+        match self.line {
+            Some(line) => format!("{path}:{line}: {}", shown(&self.text)),
+            None => format!("{path}: {}", shown(&self.text)),
+        }
+    }
 }
 
-/// Reads a setup file.
-///
-/// # Errors
-/// Every fault found.
-pub fn read_setup(path: &Path) -> Result<Setup, FileFaults> {
-    Err(FileFaults { path: path.to_owned(), faults: Vec::new() })
+impl FileFaults {
+    /// One line for each fault, as `FILE:LINE: text`; fit for a terminal.
+    pub fn lines(&self) -> Vec<String> {
+        self.faults.iter().map(|fault| fault.at(&self.path)).collect()
+    }
 }
 
 /// Contents of a grasp file as last seen, to notice a change by someone else.
@@ -110,9 +121,15 @@ pub fn default_grasp_path(part_path: &Path) -> PathBuf {
     part_path.with_extension("grasps.toml")
 }
 
-/// Text from a file as it may be shown on a terminal: control characters removed.
+/// Text from a file as it may be shown on a terminal: control characters removed, and with them the marks that change
+/// the direction of writing or break a line (Unicode 16.0, section 23.2 and UAX 9), which could make a message read as
+/// something else.
 pub fn shown(text: &str) -> String {
-    text.chars().filter(|c| !c.is_control()).collect()
+    let hidden = |c: char| {
+        c.is_control()
+            || matches!(c, '\u{200b}'..='\u{200f}' | '\u{2028}'..='\u{202e}' | '\u{2060}'..='\u{2069}' | '\u{61c}' | '\u{feff}')
+    };
+    text.chars().filter(|&c| !hidden(c)).collect()
 }
 
 /// The caution that stands wherever results are read.

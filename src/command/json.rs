@@ -1,0 +1,181 @@
+//! The JSON report of `rank` and `score`: one object, numbers in full precision, null for what has no value.
+
+use super::reading::{Reading, sense_word};
+use crate::file::{DRIVES, word_for};
+use crate::mechanics::Assessment;
+use crate::mechanics::escape::Escape;
+use crate::part::Part;
+use crate::search::{Grasp, Scene};
+use nalgebra::{Point2, Vector2};
+use serde::Serialize;
+
+/// The whole report.
+#[derive(Debug, Serialize)]
+pub(super) struct Report<'a> {
+    schema: u32,
+    part: PartReport<'a>,
+    setup: SetupReport,
+    pub(super) examined: u64,
+    pub(super) closed: u64,
+    pub(super) inconclusive: u64,
+    pub(super) complete: bool,
+    pub(super) grasps: Vec<GraspReport>,
+}
+
+#[derive(Debug, Serialize)]
+struct PartReport<'a> {
+    name: &'a str,
+    area_mm2: f64,
+    centroid_mm: [f64; 2],
+    com_mm: [f64; 2],
+    mass_kg: Option<f64>,
+    polar_kg_m2: Option<f64>,
+    reach_mm: f64,
+}
+
+#[derive(Debug, Serialize)]
+struct SetupReport {
+    mu: f64,
+    fingers: usize,
+    torque_scale_mm: f64,
+    seed: u64,
+    drive: &'static str,
+}
+
+/// One grasp.
+#[derive(Debug, Serialize)]
+pub(super) struct GraspReport {
+    rank: usize,
+    contacts: Vec<ContactReport>,
+    verdict: &'static str,
+    quality: f64,
+    quality_per_finger: f64,
+    friction_needed: Option<f64>,
+    friction_needed_closure: Option<f64>,
+    friction_margin: Option<f64>,
+    friction_margin_deg: Option<f64>,
+    placement_mm: f64,
+    placement_torque_mm: f64,
+    weakest: Option<WeakestReport>,
+    escape: Option<EscapeReport>,
+    squeeze_n: Option<f64>,
+    load_margin: Option<f64>,
+    loads: [(); 0],
+}
+
+#[derive(Debug, Serialize)]
+struct ContactReport {
+    ring: usize,
+    edge: usize,
+    along_mm: f64,
+    point_mm: [f64; 2],
+    normal: [f64; 2],
+    mu: f64,
+}
+
+#[derive(Debug, Serialize)]
+struct WeakestReport {
+    force_deg: Option<f64>,
+    force: f64,
+    torque: f64,
+}
+
+#[derive(Debug, Serialize)]
+#[serde(tag = "kind", rename_all = "lowercase")]
+enum EscapeReport {
+    Slide { toward_deg: f64 },
+    Turn { about_mm: [f64; 2], sense: &'static str },
+}
+
+impl<'a> Report<'a> {
+    /// A report without grasps.
+    pub(super) fn new(scene: &'a Scene) -> Self {
+        let (part, setup) = (scene.part(), scene.setup());
+        Self {
+            schema: 1,
+            part: part_report(part),
+            setup: SetupReport {
+                mu: setup.friction.mu,
+                fingers: setup.hand.fingers.get(),
+                torque_scale_mm: scene.frame().scale_mm,
+                seed: setup.search.seed,
+                drive: word_for(&DRIVES, setup.hand.drive),
+            },
+            examined: 0,
+            closed: 0,
+            inconclusive: 0,
+            complete: true,
+            grasps: Vec::new(),
+        }
+    }
+
+    /// Adds a reading below those that are there.
+    pub(super) fn add(&mut self, scene: &Scene, reading: &Reading) {
+        self.add_scores(scene, &reading.grasp, &reading.assessment, reading.verdict());
+    }
+
+    /// Adds a grasp with its scores below those that are there.
+    pub(super) fn add_scores(&mut self, scene: &Scene, grasp: &Grasp, a: &Assessment, verdict: &'static str) {
+        self.grasps.push(GraspReport {
+            rank: self.grasps.len() + 1,
+            contacts: contacts(scene.part(), grasp),
+            verdict,
+            quality: a.quality,
+            quality_per_finger: a.quality_per_finger,
+            friction_needed: a.friction_needed,
+            friction_needed_closure: a.friction_needed_closure,
+            friction_margin: a.friction_margin,
+            friction_margin_deg: a.friction_margin_deg,
+            placement_mm: a.placement.mm,
+            placement_torque_mm: a.placement.torque_mm,
+            weakest: a.weakest.map(|weakest| WeakestReport {
+                force_deg: weakest.force_deg(),
+                force: weakest.force(),
+                torque: weakest.torque(),
+            }),
+            escape: a.escape.map(|way| match way {
+                Escape::Slide { toward_deg } => EscapeReport::Slide { toward_deg },
+                Escape::Turn { about, sense } => {
+                    EscapeReport::Turn { about_mm: point(scene.part().file_point(about)), sense: sense_word(sense) }
+                }
+            }),
+            squeeze_n: None,
+            load_margin: None,
+            loads: [],
+        });
+    }
+}
+
+fn part_report(part: &Part) -> PartReport<'_> {
+    let region = part.outline().region();
+    PartReport {
+        name: part.name(),
+        area_mm2: region.area_mm2,
+        centroid_mm: point(part.file_point(region.centroid)),
+        com_mm: point(part.file_point(part.com())),
+        mass_kg: part.mass().map(|mass| mass.kg),
+        polar_kg_m2: part.mass().map(|mass| mass.polar_kg_m2),
+        reach_mm: part.reach_mm(),
+    }
+}
+
+fn contacts(part: &Part, grasp: &Grasp) -> Vec<ContactReport> {
+    let one = |(spot, contact): (&crate::search::Spot, &crate::mechanics::Contact)| ContactReport {
+        ring: spot.edge.ring,
+        edge: spot.edge.edge,
+        along_mm: spot.along_mm,
+        point_mm: point(part.file_point(contact.point)),
+        normal: vector(contact.normal),
+        mu: contact.mu,
+    };
+    grasp.spots.iter().zip(&grasp.contacts).map(one).collect()
+}
+
+// Adding 0 turns minus nought into nought, which reads better and means the same.
+fn point(p: Point2<f64>) -> [f64; 2] {
+    [p.x + 0.0, p.y + 0.0]
+}
+
+fn vector(v: Vector2<f64>) -> [f64; 2] {
+    [v.x + 0.0, v.y + 0.0]
+}

@@ -1,0 +1,103 @@
+//! One grasp as commands read it, and its numbers in words.
+
+use crate::mechanics::assess::{Doubt, Placement};
+use crate::mechanics::escape::{Escape, Sense};
+use crate::mechanics::placement::Governor;
+use crate::mechanics::{Assessment, Verdict};
+use crate::search::{Grasp, Scene, Spot};
+
+/// A grasp, its scores, and what speaks against the scores.
+pub(super) struct Reading {
+    /// Where the fingers stand.
+    pub(super) grasp: Grasp,
+    /// Every score.
+    pub(super) assessment: Assessment,
+    /// Disagreements of the two ways to the scores; any makes the reading inconclusive.
+    pub(super) doubts: Vec<Doubt>,
+}
+
+impl Reading {
+    /// Reads a grasp.
+    pub(super) fn of(scene: &Scene, grasp: Grasp) -> Self {
+        let (assessment, doubts) = scene.assess(&grasp);
+        Self { grasp, assessment, doubts }
+    }
+
+    /// The verdict's word; a reading in doubt has none.
+    pub(super) fn verdict(&self) -> &'static str {
+        if self.doubts.is_empty() { self.assessment.verdict.word() } else { "inconclusive" }
+    }
+
+    /// True when the grasp is closed beyond doubt.
+    pub(super) fn is_closed(&self) -> bool {
+        self.doubts.is_empty() && self.assessment.verdict == Verdict::Closed
+    }
+}
+
+/// Decimals of a position on a part of a size: four figures or more, and at least one decimal.
+pub(super) fn decimals(reach_mm: f64) -> usize {
+    // Reach is finite and above 0; the cast saturates.
+    (2.0 - reach_mm.log10().floor()).clamp(1.0, 9.0) as usize
+}
+
+/// The fingers as `ring:edge@along`, mm.
+pub(super) fn fingers(spots: &[Spot], decimals: usize) -> String {
+    let one = |spot: &Spot| format!("{}:{}@{:.decimals$}", spot.edge.ring, spot.edge.edge, spot.along_mm + 0.0);
+    spots.iter().map(one).collect::<Vec<_>>().join(" ")
+}
+
+/// A score in few characters: five decimals, or two figures where they would hide it.
+pub(super) fn short(value: f64) -> String {
+    if value != 0.0 && value.abs() < 1e-3 { format!("{value:.1e}") } else { format!("{value:.5}") }
+}
+
+/// A ratio or coefficient in few characters.
+pub(super) fn ratio(value: f64) -> String {
+    if value >= 1000.0 { format!("{value:.0}") } else { format!("{value:.3}") }
+}
+
+/// A length in few characters, mm.
+pub(super) fn length(value: f64) -> String {
+    if value != 0.0 && value.abs() < 1e-2 { format!("{value:.1e}") } else { format!("{value:.3}") }
+}
+
+/// How the part gets out.
+pub(super) fn escape(scene: &Scene, escape: &Escape) -> String {
+    match escape {
+        Escape::Slide { toward_deg } => format!("slides toward {:.1} deg", toward_deg + 0.0),
+        Escape::Turn { about, sense } => {
+            let at = scene.part().file_point(*about);
+            format!("turns {} about ({:.1}, {:.1}) mm", sense_word(*sense), at.x, at.y)
+        }
+    }
+}
+
+/// The short word of a sense of turning.
+pub(super) fn sense_word(sense: Sense) -> &'static str {
+    match sense {
+        Sense::Clockwise => "cw",
+        Sense::CounterClockwise => "ccw",
+    }
+}
+
+/// What limits the placement.
+pub(super) fn governor(placement: &Placement) -> String {
+    match placement.governor {
+        Governor::Closure => "closure".to_owned(),
+        Governor::Stretch { finger } => format!("the end of finger {}'s stretch", finger + 1),
+    }
+}
+
+/// Why fingers may not stand where they do; nothing when they may.
+pub(super) fn misfits(grasp: &Grasp) -> Vec<String> {
+    let rooms = grasp.rooms_mm.iter().enumerate().filter(|(_, room)| **room < 0.0);
+    let mut reasons: Vec<_> = rooms
+        .map(|(finger, _)| {
+            format!("finger {} does not fit there: a corner, a keep-out or another edge is in its way", finger + 1)
+        })
+        .collect();
+    reasons.extend(
+        grasp.too_near.iter().map(|(a, b)| format!("fingers {} and {} are nearer than the gap allows", a + 1, b + 1)),
+    );
+    reasons
+}
