@@ -287,9 +287,11 @@ impl State {
         self.marks.iter().find(|mark| mark.keep.grasp.spots == spots)
     }
 
-    /// Reads the selected grasp again.
+    /// Reads the selected grasp again; while nothing is listed, the one last selected, so that it can be seen how it
+    /// comes open.
     pub(super) fn read(&mut self) {
-        let spots = self.row().map(|row| row.grasp.spots.clone());
+        let last = || self.reading.as_ref().map(|reading| reading.grasp.spots.clone());
+        let spots = self.row().map(|row| row.grasp.spots.clone()).or_else(last);
         self.reading = spots.and_then(|spots| Reading::of(&self.order.scene, &spots));
     }
 

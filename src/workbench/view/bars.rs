@@ -19,13 +19,22 @@ pub(super) fn header(state: &State, area: Rect, buf: &mut Buffer) {
         Listing::Families => "families",
         Listing::Members => "every grasp",
     };
-    let knobs = format!(
-        "mu {}  {} fingers  by {}  {listing}  sites {} mm",
-        number::mu(setup.friction.mu),
-        setup.hand.fingers.get(),
-        state.order.key.word().replace('_', " "),
-        number::mm(setup.search.spacing_for(part)),
-    );
+    // Knobs that do not fit leave from the right, none is cut.
+    let mut knobs = String::new();
+    for knob in [
+        format!("mu {}", number::mu(setup.friction.mu)),
+        format!("{} fingers", setup.hand.fingers.get()),
+        format!("by {}", state.order.key.word().replace('_', " ")),
+        listing.to_owned(),
+        format!("sites {} mm", number::mm(setup.search.spacing_for(part))),
+    ] {
+        let gap = if knobs.is_empty() { "" } else { "  " };
+        if knobs.len() + gap.len() + knob.len() > usize::from(left.width) {
+            break;
+        }
+        knobs.push_str(gap);
+        knobs.push_str(&knob);
+    }
     let name = shown(part.name());
     // The knobs matter more than the name: a long name is cut so that they stay.
     let room = usize::from(left.width).saturating_sub(knobs.chars().count() + 2);

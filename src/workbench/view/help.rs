@@ -18,7 +18,7 @@ const NUMBERS: [(&str, &str); 9] = [
     ("margin", "mu over the friction needed; below 1 the grasp is not closed, \"any\" needs no friction"),
     ("place", "mm every finger may be off along its edge, all at once, before closure or the stretch is lost"),
     ("weakest", "the push and turn against which this grasp gives least"),
-    ("=", "no row of the list beats this one on one of quality, margin and place and matches it on the rest"),
+    ("^", "no row of the list is better on one of quality, margin and place and as good on the others"),
     ("edges", "ring:edge as in the part file; 0 is the outer ring, @ is mm from the edge's first vertex"),
 ];
 

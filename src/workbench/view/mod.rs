@@ -116,7 +116,7 @@ impl Layout {
         let (wide, high) = (area.width >= FULL.0, area.height >= FULL.1);
         match (wide, high) {
             (true, true) => {
-                let rows = (body.height * 9 / 20).clamp(5, 14);
+                let rows = (body.height * 9 / 20).clamp(5, 12);
                 let (upper, lower) = split_rows(body, body.height - rows);
                 layout.reading = Some(lower);
                 layout.beside(upper, Panel::Outline);
@@ -144,7 +144,7 @@ impl Layout {
 
     fn beside(&mut self, area: Rect, left: Panel) {
         // The table needs about forty columns for three fingers; what is more goes to the picture first.
-        let table_width = (area.width * 9 / 20).clamp(30, 62);
+        let table_width = (area.width * 9 / 20).clamp(38, 62).min(area.width / 2 + 8);
         let left_area = Rect { width: area.width - table_width - 1, ..area };
         self.divider = Some(Rect { x: left_area.right(), width: 1, ..area });
         self.table = Some(Rect { x: left_area.right() + 1, width: table_width, ..area });

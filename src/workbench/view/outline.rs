@@ -33,14 +33,14 @@ pub(super) fn render(state: &State, area: Rect, buf: &mut Buffer) {
     let signs = pen.part(scene);
     if let Some(reading) = &state.reading {
         if state.cones {
-            pen.cones(&reading.grasp);
+            pen.cones(&reading.grasp, scene);
         }
         pen.fingers(&reading.grasp);
     }
     pen.sheet.render(picture, buf);
     if keyed {
         let row = Rect { y: area.bottom() - 1, height: 1, ..area };
-        super::put(buf, row, &signs.text(state), state.look.dim());
+        super::put(buf, row, &signs.text(state, usize::from(row.width)), state.look.dim());
     }
 }
 
@@ -52,7 +52,8 @@ struct Signs {
 }
 
 impl Signs {
-    fn text(&self, state: &State) -> String {
+    /// As many explanations as fit, none cut.
+    fn text(&self, state: &State, width: usize) -> String {
         let mut parts = vec!["@ centre of mass"];
         if self.keep_out {
             parts.push("x keep-out");
@@ -67,7 +68,15 @@ impl Signs {
         if state.cones {
             parts.push(": cone");
         }
-        parts.join("  ")
+        let mut text = String::new();
+        for part in parts {
+            let gap = if text.is_empty() { "" } else { "  " };
+            if text.len() + gap.len() + part.len() <= width {
+                text.push_str(gap);
+                text.push_str(part);
+            }
+        }
+        text
     }
 }
 
@@ -188,18 +197,20 @@ impl Pen {
         }
     }
 
-    fn cones(&mut self, grasp: &Grasp) {
+    /// The two sides of each cone, as far as the part's box reaches.
+    fn cones(&mut self, grasp: &Grasp, scene: &Scene) {
         let style = self.look.cone();
+        let (low, high) = scene.part().outline().bounds();
+        let ((left, bottom), (right, top)) = (self.fit.rounded(low), self.fit.rounded(high));
         for contact in &grasp.contacts {
             let tangent = Vector2::new(-contact.normal.y, contact.normal.x);
             let (column, row) = self.fit.cell(contact.point);
             for side in [1.0, -1.0] {
                 let (dx, dy) = self.fit.step(contact.normal + tangent * (side * contact.mu));
-                // A ray leaves the sheet, or enters it no more, within its longest side.
-                for k in 1..1000 {
+                for k in 1..=(right - left).max(bottom - top) {
                     let k = f64::from(k);
                     let (x, y) = ((column + k * dx).round() as i32, (row + k * dy).round() as i32);
-                    if !self.sheet.holds(x, y) {
+                    if !(left..=right).contains(&x) || !(top..=bottom).contains(&y) {
                         break;
                     }
                     self.sheet.put(x, y, ':', Depth::Cone, style);

@@ -12,15 +12,21 @@ use ratatui::text::{Line, Span};
 
 /// Width of the names on the left.
 const NAMES: usize = 11;
+/// Width of the values beside them.
+const VALUES: usize = 11;
 
 /// The lines of the reading for a width; `full` tells everything, one finger to a line.
 pub(super) fn lines(state: &State, width: u16, full: bool) -> Vec<Line<'static>> {
-    let (Some(reading), Some(row)) = (&state.reading, state.row()) else {
+    let Some(reading) = &state.reading else {
         return vec![Line::raw("No grasp is selected.")];
     };
     let mut page = Page { width: usize::from(width), full, state, lines: Vec::new() };
     if full {
-        page.heading(state, &table::heading(state, row));
+        let edges = table::edges(&state.order.scene, &reading.grasp.spots);
+        let rank = state.row().map_or_else(|| "not listed".to_owned(), |_| format!("number {}", state.selected + 1));
+        page.heading(&format!("grasp on edges {edges}, {rank}"), reading);
+    } else if state.row().is_none() {
+        page.tell("not listed", "", state.look.bad(), "the grasp last selected, under the present knobs");
     }
     page.doubts(reading);
     page.verdict(reading);
@@ -54,6 +60,8 @@ impl Page<'_> {
     /// A name, a value and what it means; on the full page what does not fit goes to further lines.
     fn tell(&mut self, name: &str, value: &str, style: Style, meaning: &str) {
         let look = self.state.look;
+        // Values line up where there is room for it.
+        let value = if value.is_empty() || self.width < 60 { value.to_owned() } else { format!("{value:<VALUES$}") };
         let gap = if value.is_empty() { "" } else { "  " };
         let room = self.width.saturating_sub(NAMES + value.chars().count() + gap.len());
         let mut rest = Vec::new();
@@ -74,7 +82,7 @@ impl Page<'_> {
         };
         self.lines.push(Line::from(vec![
             Span::styled(format!("{name:<NAMES$}"), look.dim()),
-            Span::styled(value.to_owned(), style),
+            Span::styled(value, style),
             Span::raw(format!("{gap}{first}")),
         ]));
         for line in rest {
@@ -82,9 +90,10 @@ impl Page<'_> {
         }
     }
 
-    fn heading(&mut self, state: &State, text: &str) {
+    fn heading(&mut self, text: &str, reading: &Reading) {
+        let state = self.state;
         self.lines.push(Line::styled(text.to_owned(), state.look.title()));
-        if let Some(mark) = state.row().and_then(|row| state.mark_on(&row.grasp.spots)) {
+        if let Some(mark) = state.mark_on(&reading.grasp.spots) {
             let saved = if mark.saved { "saved" } else { "not saved" };
             let name = crate::file::shown(&mark.keep.name);
             let note = crate::file::shown(&mark.keep.note);
@@ -114,9 +123,7 @@ impl Page<'_> {
         let look = self.state.look;
         let a = &reading.assessment;
         let (style, meaning) = match a.verdict {
-            Verdict::Closed => {
-                (look.good(), "any push and any turn can be balanced by pressing hard enough".to_owned())
-            }
+            Verdict::Closed => (look.good(), "every push and turn can be balanced by pressing enough".to_owned()),
             Verdict::Marginal => (look.bad(), "on the very edge of closing: not to be relied on".to_owned()),
             Verdict::Open => (
                 look.bad(),
@@ -152,12 +159,19 @@ impl Page<'_> {
         match a.friction_needed {
             None => self.tell("friction", "no mu", look.bad(), "closes this grasp"),
             Some(needed) => {
-                let value = format!("{} needed", number::mu(needed));
+                let none = needed < 5e-5;
+                let value = match (a.verdict, none) {
+                    (Verdict::Closed, true) if self.state.setup().friction.mu <= 0.0 => "none needed".to_owned(),
+                    // The least friction is a limit that is not reached: at exactly 0 such a grasp is open.
+                    (_, true) => "0+ needed".to_owned(),
+                    _ => format!("{} needed", number::mu(needed)),
+                };
                 let meaning = match (a.verdict, a.friction_margin_deg) {
                     (Verdict::Closed, Some(degrees)) => format!(
-                        "of mu {mu}: margin {}, every normal may be off by {degrees:.1} deg",
+                        "of mu {mu}: margin {}, normals may be off {degrees:.1} deg",
                         number::margin(a.friction_margin)
                     ),
+                    _ if none => format!("any mu above 0 closes it; mu is {mu}"),
                     _ => format!("mu is {mu}"),
                 };
                 self.tell("friction", &value, look.title(), &meaning);
@@ -196,9 +210,9 @@ impl Page<'_> {
     fn placement(&mut self, a: &Assessment) {
         let placement = &a.placement;
         let governs = match placement.governor {
-            Governor::Closure => "every finger may be off by this before closure is lost".to_owned(),
+            Governor::Closure => "every finger may be off this far before closure is lost".to_owned(),
             Governor::Stretch { finger } => format!(
-                "then finger {} leaves its stretch; closure lasts to {} mm",
+                "then finger {} leaves its stretch; closure to {} mm",
                 finger + 1,
                 number::mm(placement.torque_mm)
             ),
@@ -207,16 +221,16 @@ impl Page<'_> {
     }
 
     fn weakest(&mut self, weakest: &Weakest) {
-        let turn = if weakest.torque() >= 0.0 { "counter-clockwise" } else { "clockwise" };
-        let share = number_share(weakest.torque().abs());
-        let meaning = match weakest.force_deg() {
-            Some(degrees) => format!(
-                "the fingers give least toward {} deg (share {}), turning {turn} (share {share})",
-                number::degrees(degrees),
-                number_share(weakest.force())
-            ),
-            None => format!("the fingers give least in turning {turn}"),
-        };
+        let mut told = Vec::new();
+        if let Some(degrees) = weakest.force_deg() {
+            told.push(format!("toward {} deg (share {:.2})", number::degrees(degrees), weakest.force()));
+        }
+        // A share that would be shown as nothing is left out.
+        if weakest.torque().abs() >= 0.005 {
+            let turn = if weakest.torque() > 0.0 { "counter-clockwise" } else { "clockwise" };
+            told.push(format!("turning {turn} (share {:.2})", weakest.torque().abs()));
+        }
+        let meaning = format!("fingers give least {}", told.join(", "));
         self.tell("weakest", "", self.state.look.plain(), &meaning);
     }
 
@@ -265,10 +279,6 @@ impl Page<'_> {
         }
         self.tell("assumed", "", state.look.plain(), &assumed);
     }
-}
-
-fn number_share(share: f64) -> String {
-    format!("{share:.2}")
 }
 
 fn spot_word(spot: &Spot) -> String {

@@ -10,8 +10,8 @@ use ratatui::style::Style;
 pub(super) enum Depth {
     Empty,
     Cone,
-    Centre,
     Edge,
+    Centre,
     Finger,
 }
 
@@ -47,13 +47,10 @@ impl Sheet {
         }
     }
 
-    pub(super) fn holds(&self, column: i32, row: i32) -> bool {
-        (0..self.width).contains(&column) && (0..self.height).contains(&row)
-    }
-
     /// What lies in a cell; outside the sheet it counts as taken.
     pub(super) fn depth(&self, column: i32, row: i32) -> Depth {
-        if self.holds(column, row) { self.cells[(row * self.width + column) as usize].depth } else { Depth::Finger }
+        let held = (0..self.width).contains(&column) && (0..self.height).contains(&row);
+        if held { self.cells[(row * self.width + column) as usize].depth } else { Depth::Finger }
     }
 
     /// Draws a character unless something above it is there already.

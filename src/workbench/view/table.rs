@@ -47,18 +47,21 @@ fn title(state: &State) -> (String, String) {
         0 => String::new(),
         n => format!("{n} in doubt "),
     };
-    (number::count(ranking.families as u64, "family", "families"), format!("{doubtful}{sample}").trim().to_owned())
+    let floors = if floors(&state.setup().floors).is_empty() { "" } else { "above floors " };
+    let right = format!("{floors}{doubtful}{sample}").trim().to_owned();
+    (number::count(ranking.families as u64, "family", "families"), right)
 }
 
 /// Columns of numbers: heading and width.
-const COLUMNS: [(&str, usize); 3] = [("quality", 8), ("margin", 7), ("place", 7)];
+const COLUMNS: [(&str, usize); 3] = [("quality", 7), ("margin", 7), ("place", 6)];
 
 fn rows(state: &State, shown: &Shown, area: Rect, buf: &mut Buffer) {
     let width = usize::from(area.width);
     // Two signs, the Pareto sign, the rank, a space.
     let lead = 7;
-    // Number columns leave from the right when the edges would get less than this.
-    let least_edges = 8;
+    // Number columns leave from the right before the edges are cut, unless there are very many fingers.
+    let longest = |row: &Listed| edges(&shown.order.scene, &row.grasp.spots).chars().count();
+    let least_edges = shown.ranking.grasps.iter().map(longest).max().unwrap_or(0).clamp(6, 24);
     let mut columns = COLUMNS.len();
     let numbers = |columns: usize| COLUMNS[..columns].iter().map(|(_, width)| width).sum::<usize>();
     while columns > 1 && lead + least_edges + numbers(columns) > width {
@@ -80,7 +83,7 @@ fn rows(state: &State, shown: &Shown, area: Rect, buf: &mut Buffer) {
             "{}{}{}{:>3} {}",
             if selected { '>' } else { ' ' },
             if state.mark_on(&row.grasp.spots).is_some() { '*' } else { ' ' },
-            if shown.unbeaten.get(i) == Some(&true) { '=' } else { ' ' },
+            if shown.unbeaten.get(i) == Some(&true) { '^' } else { ' ' },
             i + 1,
             padded(&edges(&shown.order.scene, &row.grasp.spots), edges_width),
         );
@@ -188,9 +191,4 @@ pub(super) fn floors(floors: &Floors) -> Vec<String> {
         asked.push(format!("placement {} mm", number::mm(floors.placement_mm)));
     }
     asked
-}
-
-/// The selected row, for the reading's heading.
-pub(super) fn heading(state: &State, row: &Listed) -> String {
-    format!("grasp {} on edges {}", state.selected + 1, edges(&state.order.scene, &row.grasp.spots))
 }
