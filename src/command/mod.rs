@@ -1,5 +1,6 @@
 //! What is asked: the command line, its exit codes, one file for each command.
 
+mod check;
 mod json;
 mod knobs;
 mod output;
@@ -72,6 +73,8 @@ enum Command {
     Rank(rank::RankArgs),
     /// Score given contacts
     Score(score::ScoreArgs),
+    /// Score saved grasps again; exit code 1 when one no longer holds or the part changed
+    Check(check::CheckArgs),
     /// Print the default setup as a file to start from
     Setup,
 }
@@ -95,6 +98,7 @@ pub fn main() -> ExitCode {
     };
     match std::panic::catch_unwind(|| run(cli)) {
         Ok(Ok(Answer::Done)) | Ok(Err(Stop::Closed)) => ExitCode::SUCCESS,
+        Ok(Ok(Answer::No)) => ExitCode::from(1),
         Ok(Err(Stop::Bad(lines))) => {
             for line in lines {
                 let _ = writeln!(io::stderr(), "error: {line}");
@@ -115,6 +119,7 @@ fn run(cli: Cli) -> Result<Answer, Stop> {
         None => open(cli.open),
         Some(Command::Rank(args)) => rank::run(&args),
         Some(Command::Score(args)) => score::run(&args),
+        Some(Command::Check(args)) => check::run(&args),
         Some(Command::Setup) => {
             output::print(&file::default_setup_text())?;
             Ok(Answer::Done)

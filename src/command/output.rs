@@ -9,6 +9,8 @@ use std::path::Path;
 pub(super) enum Answer {
     /// Done.
     Done,
+    /// Done, and what was asked is not so.
+    No,
 }
 
 /// Why a command stopped.

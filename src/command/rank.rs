@@ -129,26 +129,37 @@ fn rows(text: &mut String, scene: &Scene, key: Key, listing: Listing, ranking: &
     let decimals = decimals(scene.part().reach_mm());
     let places: Vec<_> = ranking.grasps.iter().map(|listed| fingers(&listed.grasp.spots, decimals)).collect();
     let width = places.iter().map(String::len).max().unwrap_or(0).max("ring:edge@mm".len());
-    writeln!(text, "rank  {:width$} quality margin needed place mm", "ring:edge@mm")?;
+    // Two qualities beside each other would not fit; the one sorted by is shown.
+    let per_finger = key == Key::QualityPerFinger;
+    let quality = if per_finger { "qual/f" } else { "quality" };
+    writeln!(text, "rank  {:width$} {quality:>7} margin needed place mm", "ring:edge@mm")?;
     for (number, (Listed { assessment: a, .. }, place)) in ranking.grasps.iter().zip(&places).enumerate() {
         writeln!(
             text,
             "{:4}  {place:width$} {:>7} {:>6} {:>6} {:>8}",
             number + 1,
-            short(a.quality),
+            short(if per_finger { a.quality_per_finger } else { a.quality }),
             a.friction_margin.map_or("-".to_owned(), ratio),
             a.friction_needed.map_or("-".to_owned(), ratio),
             length(a.placement.mm)
         )?;
     }
+    text.push_str("\nring:edge@mm  ring 0 is the outer one; mm count from the edge's first vertex\n");
+    text.push_str(if per_finger { QUALITY_PER_FINGER } else { QUALITY });
     text.push_str(LEGEND);
     Ok(())
 }
 
-const LEGEND: &str = "
-ring:edge@mm  ring 0 is the outer one; mm from the edge's first vertex, file order
-quality   a disturbance of size 1 (force, or torque over the torque scale) in any
-          direction is held with a total finger force of 1 / quality
+const QUALITY: &str = "\
+quality   a disturbance of size 1 (force, or torque over the torque scale) in
+          any direction is held with a total finger force of 1 / quality
+";
+const QUALITY_PER_FINGER: &str = "\
+qual/f    quality per finger: a disturbance of size 1 (force, or torque over the
+          torque scale) in any direction is held with at most 1 / (qual/f) from
+          each finger
+";
+const LEGEND: &str = "\
 margin    mu over the friction needed; - where no friction is needed
 needed    least mu at which the grasp closes; as an angle, its arc tangent
 place mm  how far every finger may be off along its edge, all at once

@@ -1,17 +1,21 @@
 //! What is kept: part, setup and grasp files, and careful writing.
 
+mod digest;
+mod grasp_file;
+mod grasp_text;
 mod part_file;
 mod reading;
+mod saving;
 mod setup_file;
 mod toml_reader;
 mod writing;
 
+pub use digest::part_digest;
+pub use grasp_file::{GraspFile, SCORES, SavedGrasp, Scores, WEAKEST, grasps_from_text, read_grasps};
 pub use part_file::{part_from_text, read_part, read_part_with_notes};
+pub use saving::{Keep, SaveFault, Stamp, save, stamp};
 pub use setup_file::{CLOSINGS, CONDITIONS, DRIVES, TIPS, default_setup_text, read_setup, setup_from_text, word_for};
 
-use crate::mechanics::Assessment;
-use crate::part::Part;
-use crate::search::{Grasp, Setup};
 use std::path::{Path, PathBuf};
 
 /// One fault of a file.
@@ -45,75 +49,15 @@ impl FileFault {
 }
 
 impl FileFaults {
+    /// One fault of the whole file.
+    pub(crate) fn of_whole(path: &Path, text: &str) -> Self {
+        Self { path: path.to_owned(), faults: vec![FileFault { line: None, text: text.to_owned() }] }
+    }
+
     /// One line for each fault, as `FILE:LINE: text`; fit for a terminal.
     pub fn lines(&self) -> Vec<String> {
         self.faults.iter().map(|fault| fault.at(&self.path)).collect()
     }
-}
-
-/// Contents of a grasp file as last seen, to notice a change by someone else.
-#[derive(Debug, Clone, PartialEq, Eq)]
-pub struct Stamp(String);
-
-/// A grasp to be saved.
-#[derive(Debug, Clone, PartialEq)]
-pub struct Keep {
-    /// Name for people.
-    pub name: String,
-    /// Why it was kept.
-    pub note: String,
-    /// Where the fingers stand.
-    pub grasp: Grasp,
-    /// Its scores.
-    pub assessment: Assessment,
-    /// The setup they were scored under.
-    pub setup: Setup,
-}
-
-/// Why nothing was saved. The old file is untouched in every case.
-#[derive(Debug, thiserror::Error)]
-pub enum SaveFault {
-    /// The file is not the one that was read.
-    #[error("{}: changed by someone else meanwhile", .0.display())]
-    ChangedMeanwhile(PathBuf),
-    /// What stands there is no grasp file of this part.
-    #[error("{0}")]
-    Unreadable(FileFaults),
-    /// The file belongs to another part.
-    #[error("{}: holds grasps of another part, or of this part before it changed", .0.display())]
-    OtherPart(PathBuf),
-    /// The system refused.
-    #[error("{}: {source}", .path.display())]
-    Io {
-        /// The file.
-        path: PathBuf,
-        /// Why.
-        source: std::io::Error,
-    },
-}
-
-/// Appends grasps to a grasp file, making it when there is none: written beside, synced, renamed.
-///
-/// `known` is the stamp from the last read or save (nothing when the file was not there); a file that differs is not
-/// written over.
-///
-/// # Errors
-/// [`SaveFault`]; the old file is untouched.
-pub fn save(
-    path: &Path,
-    part_path: &Path,
-    part: &Part,
-    keeps: &[Keep],
-    known: Option<&Stamp>,
-) -> Result<Stamp, SaveFault> {
-    let _ = (part_path, part, keeps, known);
-    Err(SaveFault::ChangedMeanwhile(path.to_owned()))
-}
-
-/// The stamp of a grasp file as it is now; nothing when there is none.
-pub fn stamp(path: &Path) -> Option<Stamp> {
-    let _ = path;
-    None
 }
 
 /// Where a part's grasps are kept unless told otherwise: `<part>.grasps.toml` beside the part file.

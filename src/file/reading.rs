@@ -8,6 +8,10 @@ use std::path::Path;
 /// Largest file read, bytes.
 const MOST_BYTES: u64 = 256 << 20;
 
+/// Most values a file may hold, told by the marks between them: twice what the largest outline needs. Reading more
+/// would fill the memory of a small machine before anyone could say that they are too many.
+const MOST_VALUES: usize = 12_000_000;
+
 /// The text of a file.
 ///
 /// # Errors
@@ -29,6 +33,9 @@ pub(super) fn text_of(path: &Path) -> Result<String, FileFaults> {
             return Err(fault(None, format!("is larger than {} MiB; simplify the outline", MOST_BYTES >> 20)));
         }
         Ok(_) => {}
+    }
+    if bytes.iter().filter(|byte| matches!(byte, b',' | b'[' | b'=' | b'\n')).count() > MOST_VALUES {
+        return Err(fault(None, "holds more values than any outline; simplify it".into()));
     }
     String::from_utf8(bytes).map_err(|error| {
         let before = &error.as_bytes()[..error.utf8_error().valid_up_to()];

@@ -218,11 +218,16 @@ fn hand_rows(h: &Hand) -> Vec<Row> {
     ]
 }
 
-fn search_rows(s: &SearchSettings) -> Vec<Row> {
-    let scale = match s.torque_scale {
+/// A torque scale as a TOML value.
+pub(super) fn torque_scale_word(scale: TorqueScale) -> String {
+    match scale {
         TorqueScale::Mm(mm) => number(mm),
         named => word(word_for(&TORQUE_SCALES, named)),
-    };
+    }
+}
+
+fn search_rows(s: &SearchSettings) -> Vec<Row> {
+    let scale = torque_scale_word(s.torque_scale);
     vec![
         option("spacing_mm", s.spacing_mm.map(number), "2.0", "between sites; perimeter / 200 when left out"),
         row("budget", s.budget.to_string(), "candidate sets looked at before sampling takes over"),

@@ -8,6 +8,7 @@
 use super::Hand;
 use crate::part::{Edge, EdgeId, Outline, Part};
 use nalgebra::{Point2, Vector2};
+use rayon::prelude::*;
 use rstar::primitives::{GeomWithData, Line};
 use rstar::{AABB, RTree};
 
@@ -42,12 +43,12 @@ const GRAZE: f64 = 1e-9;
 pub fn stretches(part: &Part, hand: &Hand) -> Vec<Stretch> {
     let outline = part.outline();
     let neighbours = Neighbours::of(outline, hand.pin_radius_mm);
-    let mut all = Vec::new();
-    for (index, edge) in outline.edges().iter().enumerate() {
+    let on_edge = |(index, edge): (usize, &Edge)| {
+        let mut free = Vec::new();
         let from = hand.corner_clearance_mm;
         let to = edge.length_mm() - hand.corner_clearance_mm;
         if from > to {
-            continue;
+            return free;
         }
         let mut blocked: Vec<(f64, f64)> = part
             .keep_outs()
@@ -57,10 +58,11 @@ pub fn stretches(part: &Part, hand: &Hand) -> Vec<Stretch> {
             .collect();
         neighbours.block(outline, index, &mut blocked);
         free_intervals(from, to, &mut blocked, |from_mm, to_mm| {
-            all.push(Stretch { edge: edge.id(), from_mm, to_mm });
+            free.push(Stretch { edge: edge.id(), from_mm, to_mm });
         });
-    }
-    all
+        free
+    };
+    outline.edges().par_iter().enumerate().map(on_edge).collect::<Vec<_>>().concat()
 }
 
 /// The stretch a position lies on, if any; a hair outside still counts, so that a position that went through a file

@@ -3,6 +3,7 @@
 use super::EdgeId;
 use super::fault::{PartFault, PartFaults, Touch};
 use super::mass;
+use super::sweep;
 use nalgebra::Point2;
 use robust::{Coord, orient2d};
 use rstar::primitives::{GeomWithData, Rectangle};
@@ -19,11 +20,11 @@ const SAME_VERTEX: f64 = 1e-13;
 /// A ring whose area is below this fraction of its bounding square encloses nothing.
 const LEAST_AREA: f64 = 1e-12;
 /// Vertices the checks take: a drawing with more is a scan, not a part.
-const MOST_VERTICES: usize = 2_000_000;
+const MOST_VERTICES: usize = 250_000;
 /// Faults listed before giving up.
 const MOST_FAULTS: usize = 20;
 
-type Ring = Vec<[f64; 2]>;
+pub(super) type Ring = Vec<[f64; 2]>;
 
 /// Collects faults up to a limit.
 #[derive(Default)]
@@ -137,13 +138,13 @@ fn turns_back(u: [f64; 2], v: [f64; 2], w: [f64; 2]) -> bool {
 }
 
 /// Exact side of w from the line u to v: Greater = left, Less = right, Equal = on it.
-fn turn(u: [f64; 2], v: [f64; 2], w: [f64; 2]) -> Ordering {
+pub(super) fn turn(u: [f64; 2], v: [f64; 2], w: [f64; 2]) -> Ordering {
     let coord = |p: [f64; 2]| Coord { x: p[0], y: p[1] };
     orient2d(coord(u), coord(v), coord(w)).partial_cmp(&0.0).unwrap_or(Ordering::Equal)
 }
 
 /// How two segments meet, exactly.
-fn meet(a: [[f64; 2]; 2], b: [[f64; 2]; 2]) -> Option<Touch> {
+pub(super) fn meet(a: [[f64; 2]; 2], b: [[f64; 2]; 2]) -> Option<Touch> {
     let (b0, b1) = (turn(a[0], a[1], b[0]), turn(a[0], a[1], b[1]));
     if b0 == b1 && b0 != Ordering::Equal {
         return None;
@@ -163,8 +164,12 @@ fn meet(a: [[f64; 2]; 2], b: [[f64; 2]; 2]) -> Option<Touch> {
     touches.then_some(Touch::Touch)
 }
 
+/// Pairs of edges tested for the list of meetings once it is known that there is one.
+const MOST_PAIRS: usize = 20_000_000;
+
 /// No two edges meet but neighbours at their shared vertex.
 fn meetings(rings: &[Ring], faults: &mut Faults) {
+    let Some(first) = sweep::first_meeting(rings) else { return };
     let mut boxes = Vec::with_capacity(rings.iter().map(Vec::len).sum());
     for (ring, vertices) in rings.iter().enumerate() {
         for edge in 0..vertices.len() {
@@ -176,26 +181,26 @@ fn meetings(rings: &[Ring], faults: &mut Faults) {
         let ring = &rings[id.ring];
         [ring[id.edge], ring[(id.edge + 1) % ring.len()]]
     };
-    let neighbours = |a: EdgeId, b: EdgeId| {
-        let n = rings[a.ring].len();
-        a.ring == b.ring && ((a.edge + 1) % n == b.edge || (b.edge + 1) % n == a.edge)
-    };
+    let mut found = vec![(first.0, first.1, meet(segment(first.0), segment(first.1)).unwrap_or(Touch::Touch))];
     let tree = RTree::bulk_load(boxes);
-    let mut found = Vec::new();
-    for item in tree.iter() {
-        let a = item.data;
-        let [p, q] = segment(a);
-        for other in tree.locate_in_envelope_intersecting(AABB::from_corners(p, q)) {
-            let b = other.data;
-            if b <= a || neighbours(a, b) {
-                continue;
+    let mut tested = 0;
+    'all: for (ring, vertices) in rings.iter().enumerate() {
+        for edge in 0..vertices.len() {
+            let a = EdgeId { ring, edge };
+            let [p, q] = segment(a);
+            for other in tree.locate_in_envelope_intersecting(AABB::from_corners(p, q)) {
+                let b = other.data;
+                if b <= a || sweep::neighbours(rings, a, b) || (a, b) == first {
+                    continue;
+                }
+                if let Some(how) = meet(segment(a), segment(b)) {
+                    found.push((a, b, how));
+                }
+                tested += 1;
+                if tested > MOST_PAIRS || found.len() > 4 * MOST_FAULTS {
+                    break 'all;
+                }
             }
-            if let Some(how) = meet(segment(a), segment(b)) {
-                found.push((a, b, how));
-            }
-        }
-        if found.len() > 4 * MOST_FAULTS {
-            break;
         }
     }
     found.sort_by_key(|&(a, b, _)| (a, b));
@@ -250,4 +255,62 @@ pub(super) fn areas(rings: &[Vec<Point2<f64>>]) -> Result<(), PartFaults> {
         }
     }
     faults.settle()
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use proptest::prelude::*;
+
+    /// Every pair tested: the definition, quadratic.
+    fn any_pair_meets(rings: &[Ring]) -> bool {
+        let edges: Vec<EdgeId> = rings
+            .iter()
+            .enumerate()
+            .flat_map(|(ring, vertices)| (0..vertices.len()).map(move |edge| EdgeId { ring, edge }))
+            .collect();
+        let segment = |id: EdgeId| {
+            let ring = &rings[id.ring];
+            [ring[id.edge], ring[(id.edge + 1) % ring.len()]]
+        };
+        edges.iter().enumerate().any(|(i, &a)| {
+            edges[i + 1..].iter().any(|&b| !sweep::neighbours(rings, a, b) && meet(segment(a), segment(b)).is_some())
+        })
+    }
+
+    fn sound(rings: &[Ring]) -> bool {
+        let mut faults = Faults::default();
+        vertices(rings, &mut faults);
+        faults.0.is_empty()
+    }
+
+    proptest! {
+        #![proptest_config(ProptestConfig::with_cases(2000))]
+        /// On a coarse grid touching, collinear and shared points are the normal case.
+        #[test]
+        fn the_sweep_finds_a_meeting_iff_there_is_one(
+            a in prop::collection::vec((0u8..7, 0u8..7), 3..9),
+            b in prop::collection::vec((0u8..7, 0u8..7), 3..6),
+        ) {
+            let ring = |points: &[(u8, u8)]| points.iter().map(|&(x, y)| [f64::from(x), f64::from(y)]).collect::<Ring>();
+            for rings in [vec![ring(&a)], vec![ring(&a), ring(&b)]] {
+                if sound(&rings) {
+                    let pair = sweep::first_meeting(&rings);
+                    prop_assert_eq!(pair.is_some(), any_pair_meets(&rings), "{:?}", rings);
+                }
+            }
+        }
+
+        /// Star shapes never meet themselves, in whatever order their radii come.
+        #[test]
+        fn a_star_shape_passes(radii in prop::collection::vec(1.0f64..9.0, 3..60), turn in 0.0f64..7.0) {
+            let n = radii.len() as f64;
+            let at = |(i, r): (usize, &f64)| {
+                let angle = turn + i as f64 / n * std::f64::consts::TAU;
+                [r * angle.cos(), r * angle.sin()]
+            };
+            let rings = vec![radii.iter().enumerate().map(at).collect::<Ring>()];
+            prop_assert_eq!(sweep::first_meeting(&rings), None);
+        }
+    }
 }

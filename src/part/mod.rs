@@ -8,6 +8,7 @@ mod fault;
 mod mass;
 pub mod material;
 mod outline;
+mod sweep;
 
 pub use fault::{PartFault, PartFaults, Touch};
 pub use mass::{Mass, RegionMoments};

@@ -40,6 +40,11 @@ impl Family {
         &self.stretches[..usize::from(self.fingers)]
     }
 
+    /// What tells this family from others of as many fingers.
+    pub(super) fn group(&self) -> SiteSet {
+        self.stretches
+    }
+
     /// Runs of equal stretches: stretch and how many fingers stand on it.
     fn runs(&self) -> impl Iterator<Item = (usize, usize)> {
         self.stretches().chunk_by(|a, b| a == b).map(|run| (run[0] as usize, run.len()))

@@ -6,7 +6,6 @@
 
 use crate::hand::FingerCount;
 use std::cmp::Ordering;
-use std::collections::BinaryHeap;
 
 /// What grasps are sorted by.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, Hash)]
@@ -91,49 +90,58 @@ impl PartialOrd for Candidate {
     }
 }
 
-/// The best candidates so far, at most a fixed number.
+/// The best candidates so far, at most a fixed number, and at most one for each group.
+///
+/// A group is what a list shows once: a family, or a single candidate set. A newcomer behind the bar is turned away at
+/// the cost of one comparison; only the few that pass pay for keeping the list in order.
 #[derive(Debug, Clone)]
 pub(super) struct Top {
     most: usize,
-    heap: BinaryHeap<Candidate>,
+    /// Best first, with each one's group.
+    list: Vec<(Candidate, SiteSet)>,
     /// Nothing behind this is wanted, however short the list.
     bar: Option<Candidate>,
 }
 
 impl Top {
     pub(super) fn new(most: usize) -> Self {
-        Self { most, heap: BinaryHeap::new(), bar: None }
+        Self { most, list: Vec::new(), bar: None }
     }
 
     /// An empty list that takes only what this one would still take.
     pub(super) fn above(&self) -> Self {
-        Self { most: self.most, heap: BinaryHeap::new(), bar: self.worst().copied() }
+        Self { most: self.most, list: Vec::new(), bar: self.worst().copied() }
     }
 
     /// The candidate a newcomer has to beat.
     pub(super) fn worst(&self) -> Option<&Candidate> {
-        if self.heap.len() < self.most { self.bar.as_ref() } else { self.heap.peek() }
+        if self.list.len() < self.most { self.bar.as_ref() } else { self.list.last().map(|(worst, _)| worst) }
     }
 
-    pub(super) fn offer(&mut self, candidate: Candidate) {
+    pub(super) fn offer(&mut self, candidate: Candidate, group: SiteSet) {
         if self.most == 0 || self.worst().is_some_and(|worst| candidate >= *worst) {
             return;
         }
-        self.heap.push(candidate);
-        if self.heap.len() > self.most {
-            self.heap.pop();
+        if let Some(same) = self.list.iter().position(|(_, other)| *other == group) {
+            if self.list[same].0 <= candidate {
+                return;
+            }
+            self.list.remove(same);
         }
+        let at = self.list.partition_point(|(other, _)| *other < candidate);
+        self.list.insert(at, (candidate, group));
+        self.list.truncate(self.most);
     }
 
     pub(super) fn merge(mut self, other: Self) -> Self {
-        for candidate in other.heap {
-            self.offer(candidate);
+        for (candidate, group) in other.list {
+            self.offer(candidate, group);
         }
         self
     }
 
     /// Best first.
-    pub(super) fn sorted(&self) -> Vec<Candidate> {
-        self.heap.clone().into_sorted_vec()
+    pub(super) fn candidates(&self) -> impl Iterator<Item = &Candidate> {
+        self.list.iter().map(|(candidate, _)| candidate)
     }
 }

@@ -37,8 +37,8 @@ enum Work {
     Every { begin: [u32; 2], first: Range<usize> },
     /// Sets of one family, one from each of these strata of `of` equal ones.
     Strata { family: Family, strata: Range<u64>, of: u64 },
-    /// So many sets drawn one by one from all.
-    Draws(u64),
+    /// Sets drawn one by one from all, the first finger of each from one of these strata of `of` equal ones of all sites.
+    Draws { strata: Range<u64>, of: u64 },
 }
 
 impl Plan {
@@ -55,7 +55,13 @@ impl Plan {
         let parcels = if families <= u128::from(budget.min(MOST_FAMILIES)) {
             strata(screen, fingers, budget)?
         } else {
-            (0..budget.div_ceil(PARCEL)).map(|i| PARCEL.min(budget - i * PARCEL)).map(Parcel::draws).collect()
+            let parcels = budget.div_ceil(PARCEL);
+            let cut = |i: u64| i * budget / parcels;
+            let parcel = |strata: Range<u64>| Parcel {
+                sets: strata.end - strata.start,
+                work: Work::Draws { strata, of: budget },
+            };
+            (0..parcels).map(|i| parcel(cut(i)..cut(i + 1))).collect()
         };
         let total = parcels.iter().map(|parcel| parcel.sets).sum();
         Ok(Self { parcels, total, complete: false })
@@ -99,10 +105,6 @@ impl Plan {
 }
 
 impl Parcel {
-    fn draws(sets: u64) -> Self {
-        Self { sets, work: Work::Draws(sets) }
-    }
-
     fn run(&self, index: u64, screen: &Screen, tally: &mut Tally) -> Result<(), Cancelled> {
         match &self.work {
             Work::Every { begin, first } => {
@@ -118,7 +120,7 @@ impl Parcel {
                 let mut random = random(screen, index);
                 screen.sample(family, strata.clone(), *of, &mut || unit(&mut random), tally)
             }
-            Work::Draws(draws) => draw(*draws, &mut random(screen, index), screen, tally),
+            Work::Draws { strata, of } => draw(strata.clone(), *of, &mut random(screen, index), screen, tally),
         }
     }
 }
@@ -195,13 +197,21 @@ fn strata(screen: &Screen, fingers: usize, budget: u64) -> Result<Vec<Parcel>, C
     Ok(parcels)
 }
 
-/// Draws single sets, all sites alike. A set drawn twice counts twice and is listed once.
-fn draw(draws: u64, random: &mut ChaCha8Rng, screen: &Screen, tally: &mut Tally) -> Result<(), Cancelled> {
+/// Draws single sets, all sites alike; one finger of each goes evenly round the outline. A set drawn twice counts twice
+/// and is listed once.
+fn draw(
+    strata: Range<u64>,
+    of: u64,
+    random: &mut ChaCha8Rng,
+    screen: &Screen,
+    tally: &mut Tally,
+) -> Result<(), Cancelled> {
     let fingers = screen.scene.setup().hand.fingers.get();
     let sites = screen.sites.len() as f64;
-    for _ in 0..draws {
+    for stratum in strata {
         let mut set = SiteSet::default();
-        let mut have = 0;
+        set[0] = ((stratum as f64 + unit(random)) / of as f64 * sites).min(sites - 1.0) as u32;
+        let mut have = 1;
         while have < fingers {
             let site = (unit(random) * sites) as u32;
             if !set[..have].contains(&site) {

@@ -18,7 +18,8 @@ use crate::mechanics::{Lever, MARGINAL, friction, quality};
 use crate::part::MU_LARGEST;
 use nalgebra::Vector3;
 use std::cmp::Ordering;
-use std::collections::HashMap;
+use std::collections::HashSet;
+use std::hash::{DefaultHasher, Hash, Hasher};
 use std::ops::Range;
 
 /// What a ranking is asked for; the same for all families.
@@ -38,56 +39,46 @@ pub(super) struct Screen<'a> {
 pub(super) struct Tally {
     pub examined: u64,
     pub closed: u64,
-    /// Families with a grasp to list, other than those in `best`.
+    /// Families with a grasp to list, other than those in `spread`.
     families: usize,
+    /// Families with a grasp to list whose sets are spread over several parcels, by their hash: a million families
+    /// fit in a few megabytes, and two of them collide once in ten million rankings.
+    spread: HashSet<u64>,
     top: Top,
-    /// The best so far of families whose sets are spread over several parcels.
-    best: HashMap<Family, Candidate>,
 }
 
 impl Tally {
     pub(super) fn new(most: usize) -> Self {
-        Self { examined: 0, closed: 0, families: 0, top: Top::new(most), best: HashMap::new() }
+        Self { examined: 0, closed: 0, families: 0, spread: HashSet::new(), top: Top::new(most) }
     }
 
     /// An empty tally for a thread to fill, that need not keep what this one would not.
     pub(super) fn fresh(&self) -> Self {
-        Self { examined: 0, closed: 0, families: 0, top: self.top.above(), best: HashMap::new() }
+        Self { top: self.top.above(), ..Self::new(0) }
     }
 
     pub(super) fn merge(mut self, mut other: Self) -> Self {
-        if self.best.len() < other.best.len() {
-            std::mem::swap(&mut self.best, &mut other.best);
+        if self.spread.len() < other.spread.len() {
+            std::mem::swap(&mut self.spread, &mut other.spread);
         }
-        for (family, candidate) in other.best {
-            self.keep(family, candidate);
-        }
+        self.spread.extend(other.spread);
         Self {
             examined: self.examined + other.examined,
             closed: self.closed + other.closed,
             families: self.families + other.families,
+            spread: self.spread,
             top: self.top.merge(other.top),
-            best: self.best,
         }
-    }
-
-    fn keep(&mut self, family: Family, candidate: Candidate) {
-        let kept = self.best.entry(family).or_insert(candidate);
-        *kept = candidate.min(*kept);
     }
 
     /// Families with a grasp to list.
     pub(super) fn families(&self) -> usize {
-        self.families + self.best.len()
+        self.families + self.spread.len()
     }
 
     /// The list, best first.
     pub(super) fn sorted(&self) -> Vec<Candidate> {
-        let mut top = self.top.clone();
-        self.best.values().for_each(|candidate| top.offer(*candidate));
-        let mut sorted = top.sorted();
-        sorted.dedup();
-        sorted
+        self.top.candidates().copied().collect()
     }
 }
 
@@ -263,19 +254,23 @@ impl<'a, 'b> Run<'a, 'b> {
     /// Hands in the family's best grasp; `whole` when no other parcel has sets of this family.
     fn finish(mut self, whole: bool) {
         let Some(mut best) = self.best else { return };
-        if !self.lead_friction_known {
-            let wanted = self.tally.top.worst().is_none_or(|worst| worst.key <= best.key);
-            if wanted || !whole {
-                best.friction = self.friction_quanta(&best.sites);
-            }
-        }
         if whole {
-            self.tally.top.offer(best);
             self.tally.families += 1;
         } else {
-            self.tally.keep(*self.family, best);
+            let mut hasher = DefaultHasher::new();
+            self.family.hash(&mut hasher);
+            self.tally.spread.insert(hasher.finish());
         }
-        self.best = None;
+        if !self.lead_friction_known {
+            self.set = best.sites;
+            if let Some(worst) = self.tally.top.worst().copied()
+                && !self.comes_before(&mut best, &worst)
+            {
+                return;
+            }
+            best.friction = self.friction_quanta(&best.sites);
+        }
+        self.tally.top.offer(best, self.family.group());
     }
 
     fn site(&self, finger: usize) -> &'a Site {
@@ -338,7 +333,7 @@ impl<'a, 'b> Run<'a, 'b> {
                 let worst = self.tally.top.worst().copied();
                 if worst.is_none_or(|worst| self.comes_before(&mut candidate, &worst)) {
                     candidate.friction = self.friction_quanta(&candidate.sites);
-                    self.tally.top.offer(candidate);
+                    self.tally.top.offer(candidate, candidate.sites);
                 }
             }
         }

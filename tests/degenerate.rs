@@ -1,0 +1,65 @@
+//! Nearly degenerate grasps against exact rational arithmetic.
+//!
+//! Source: tests/reference/degenerate.py, the plain definition of the hull's facets in Python's `fractions`, without
+//! rounding. Edges parallel to within 1e-15 to 1e-4, several fingers at nearly one point, mu from 0 to 0.5.
+
+use holdwright::mechanics::{Contact, Frame, MARGINAL, Verdict, Wrenches, quality};
+use nalgebra::{Point2, Vector2};
+
+const TABLE: &str = include_str!("reference/degenerate.csv");
+
+fn rows() -> impl Iterator<Item = (Wrenches, f64, &'static str)> {
+    TABLE.lines().map(|line| {
+        let (left, right) = line.split_once('=').unwrap();
+        let numbers: Vec<f64> = left.split(',').map(|x| x.parse().unwrap()).collect();
+        let contacts: Vec<Contact> = numbers[1..]
+            .chunks_exact(4)
+            .map(|c| Contact { point: Point2::new(c[0], c[1]), normal: Vector2::new(c[2], c[3]), mu: numbers[0] })
+            .collect();
+        let frame = Frame { about: Point2::origin(), scale_mm: 1.0 };
+        (Wrenches::new(&contacts, &frame), right.parse().unwrap(), line)
+    })
+}
+
+/// The generators themselves carry rounding of about 1e-16 each, and the quality moves by no more than they do; 1e-12
+/// leaves room for the kernel's merging of directions closer than 1e-11.
+const TOLERANCE: f64 = 1e-11;
+
+#[test]
+fn quality_and_verdict() {
+    let mut counts = [0; 3];
+    for (wrenches, exact, line) in rows() {
+        let score = quality::planar(&wrenches);
+        let verdict = Verdict::of(&wrenches, &score);
+        let by_definition = quality::by_definition(wrenches.generators());
+        if exact > MARGINAL {
+            counts[0] += 1;
+            assert_eq!(verdict, Verdict::Closed, "{line}");
+            assert!((score.signed_quality - exact).abs() <= TOLERANCE, "{} {exact}\n{line}", score.signed_quality);
+            let plain = by_definition.signed_quality;
+            assert!((plain - exact).abs() <= TOLERANCE, "{plain} {exact}\n{line}");
+        } else if exact < -MARGINAL {
+            counts[1] += 1;
+            assert_eq!(verdict, Verdict::Open, "{line}");
+        } else {
+            counts[2] += 1;
+            assert_ne!(verdict, Verdict::Closed, "{exact}\n{line}");
+        }
+    }
+    assert_eq!(counts.iter().sum::<usize>(), 400);
+    assert!(counts.iter().all(|&count| count >= 30), "{counts:?}");
+}
+
+/// How often the kernel has to hand over to the plain definition: seldom even here.
+#[test]
+fn the_kernel_is_mostly_certain() {
+    use holdwright::mechanics::force_polygon::ForcePolygon;
+    let uncertain = rows()
+        .filter(|(wrenches, ..)| {
+            let mu = wrenches.common_mu().unwrap();
+            let polygon = ForcePolygon::of_levers(wrenches.levers(), mu);
+            !polygon.score(&polygon.heights_of_levers(wrenches.levers(), mu)).certain
+        })
+        .count();
+    assert!(uncertain < 40, "{uncertain} of 400");
+}

@@ -1,0 +1,265 @@
+//! Saved grasps: read back number for number, appended without harm, never over someone else's change.
+#![allow(clippy::unwrap_used, clippy::expect_used, reason = "a test that cannot go on has failed")]
+#![allow(clippy::float_cmp, reason = "what was written in decimal must be read back digit for digit")]
+
+mod sound;
+
+use holdwright::file::{
+    CAUTION, GraspFile, Keep, SaveFault, Scores, default_grasp_path, grasps_from_text, part_digest, part_from_text,
+    read_grasps, read_part, save, setup_from_text, stamp,
+};
+use holdwright::hand::{Closing, Tip};
+use holdwright::part::{EdgeId, Part};
+use holdwright::search::{Scene, Setup, Spot};
+use sound::{CELL, HINGE, broken, line_of};
+use std::path::{Path, PathBuf};
+use std::sync::Arc;
+
+fn hinge() -> Arc<Part> {
+    Arc::new(part_from_text(Path::new("leaf.toml"), HINGE).unwrap().0)
+}
+
+fn keep(name: &str, setup: &Setup, spots: &[(usize, usize, f64)]) -> Keep {
+    let scene = Scene::new(hinge(), setup.clone()).unwrap();
+    let spot = |&(ring, edge, along_mm)| Spot { edge: EdgeId { ring, edge }, along_mm };
+    let grasp = scene.grasp(&spots.iter().map(spot).collect::<Vec<_>>()).unwrap();
+    let (assessment, _) = scene.assess(&grasp);
+    Keep { name: name.to_owned(), note: String::new(), grasp, assessment, setup: setup.clone() }
+}
+
+/// Two fingers that close and two that do not.
+const FACING: [(usize, usize, f64); 2] = [(0, 0, 40.1), (0, 2, 40.0)];
+const STAGGERED: [(usize, usize, f64); 2] = [(0, 0, 10.0), (0, 2, 30.0)];
+
+/// A folder with the hinge's part file in it, and the place of its grasps.
+fn bench() -> (tempfile::TempDir, PathBuf, PathBuf) {
+    let folder = tempfile::tempdir().unwrap();
+    let part = folder.path().join("leaf.toml");
+    std::fs::write(&part, HINGE).unwrap();
+    let grasps = default_grasp_path(&part);
+    (folder, part, grasps)
+}
+
+/// Names of everything in a folder.
+fn names_in(folder: &Path) -> Vec<String> {
+    let mut names: Vec<_> =
+        std::fs::read_dir(folder).unwrap().map(|e| e.unwrap().file_name().into_string().unwrap()).collect();
+    names.sort();
+    names
+}
+
+/// Lines of a grasp file from the nth `[[grasp]]` to the next, without time and name.
+fn lines_of_grasp(text: &str, n: usize) -> Vec<&str> {
+    let piece = text.split("[[grasp]]").nth(n + 1).unwrap();
+    piece.lines().filter(|l| !l.starts_with("time") && !l.starts_with("name") && !l.trim().is_empty()).collect()
+}
+
+#[test]
+fn a_saved_grasp_is_read_back_number_for_number() {
+    let (folder, part_path, path) = bench();
+    assert_eq!(path, folder.path().join("leaf.grasps.toml"));
+    let mut setup = setup_from_text(Path::new("c"), CELL).unwrap();
+    (setup.hand.tip, setup.hand.closing) = (Tip::Pin, Closing::Free);
+    let setup = Setup { loads: setup.loads.clone(), ..setup };
+    let mut closed = keep("by the pin", &setup, &FACING);
+    closed.note = "clear of the seal\nsecond line, \"quoted\" \\ \u{fc}".to_owned();
+    let open = keep("staggered", &setup, &STAGGERED);
+    assert_eq!(stamp(&path), None);
+    let before = jiff::Timestamp::now();
+    let saved = save(&path, &part_path, &hinge(), &[closed.clone(), open.clone()], None).unwrap();
+    assert_eq!(stamp(&path), Some(saved.clone()));
+    let text = std::fs::read_to_string(&path).unwrap();
+    assert!(text.contains(CAUTION) && text.contains("first-order statics"), "{text}");
+
+    let GraspFile { program, part_path: named, part_name, part_digest: digest, setup: back, grasps, stamp } =
+        read_grasps(&path).unwrap();
+    assert_eq!(program, format!("holdwright {}", env!("CARGO_PKG_VERSION")));
+    assert_eq!((named, part_name.as_str(), stamp), (part_path, "hinge leaf", saved));
+    assert_eq!(digest, part_digest(&hinge()));
+    assert_eq!(back, setup);
+    assert_eq!(grasps.len(), 2);
+    for (kept, read) in [closed, open].iter().zip(&grasps) {
+        assert_eq!((&read.name, &read.note), (&kept.name, &kept.note));
+        assert_eq!(read.spots, kept.grasp.spots);
+        assert_eq!(read.scores, Scores::of(&kept.assessment, 40.0));
+        assert_eq!((&read.setup, read.own_setup), (&setup, false));
+        let age = read.time.unwrap().duration_since(before).as_secs();
+        assert!((-1..60).contains(&age), "{age}");
+    }
+    assert_eq!(grasps[0].scores.scores[0], Some(keep("", &setup, &FACING).assessment.quality));
+    assert_eq!(names_in(folder.path()), ["leaf.grasps.toml", "leaf.toml"]);
+}
+
+#[test]
+fn the_same_grasp_twice_gives_the_same_lines() {
+    let (_folder, part_path, path) = bench();
+    let kept = keep("a", &Setup::default(), &FACING);
+    let first = save(&path, &part_path, &hinge(), std::slice::from_ref(&kept), None).unwrap();
+    save(&path, &part_path, &hinge(), &[kept.clone(), kept], Some(&first)).unwrap();
+    let text = std::fs::read_to_string(&path).unwrap();
+    assert!(lines_of_grasp(&text, 0).len() > 12);
+    assert_eq!(lines_of_grasp(&text, 0), lines_of_grasp(&text, 1));
+    let names: Vec<_> = read_grasps(&path).unwrap().grasps.into_iter().map(|grasp| grasp.name).collect();
+    assert_eq!(names, ["a", "a (2)", "a (3)"]);
+}
+
+#[test]
+fn saving_keeps_every_byte_that_is_there_and_a_setup_of_its_own_beside_its_grasp() {
+    let (_folder, part_path, path) = bench();
+    save(&path, &part_path, &hinge(), &[keep("a", &Setup::default(), &FACING)], None).unwrap();
+    // Someone writes a comment, and no line end after it.
+    let mut text = std::fs::read_to_string(&path).unwrap().replace("\n[[grasp]]", "\n# tried on Monday\n[[grasp]]");
+    text.push_str("# last words");
+    std::fs::write(&path, &text).unwrap();
+    let mut slippery = Setup::default();
+    slippery.friction.mu = 0.12;
+    slippery.hand.force_limit_n = Some(45.5);
+    let known = stamp(&path);
+    save(&path, &part_path, &hinge(), &[keep("b", &slippery, &FACING)], known.as_ref()).unwrap();
+    let after = std::fs::read_to_string(&path).unwrap();
+    assert!(after.starts_with(&text));
+    let file = read_grasps(&path).unwrap();
+    assert_eq!((&file.grasps[0].setup, file.grasps[0].own_setup), (&Setup::default(), false));
+    assert_eq!((&file.grasps[1].setup, file.grasps[1].own_setup), (&slippery, true));
+    assert_eq!(file.setup, Setup::default());
+}
+
+#[test]
+fn a_change_by_someone_else_is_not_written_over() {
+    let (folder, part_path, path) = bench();
+    let kept = [keep("a", &Setup::default(), &FACING)];
+    let mine = save(&path, &part_path, &hinge(), &kept, None).unwrap();
+    let is_changed = |known| {
+        let before = std::fs::read(&path).ok();
+        let fault = save(&path, &part_path, &hinge(), &kept, known).unwrap_err();
+        assert!(matches!(fault, SaveFault::ChangedMeanwhile(_)), "{fault}");
+        assert!(fault.to_string().ends_with("leaf.grasps.toml: changed by someone else meanwhile"));
+        assert_eq!(std::fs::read(&path).ok(), before);
+    };
+    // There is a file where none was known.
+    is_changed(None);
+    let text = std::fs::read_to_string(&path).unwrap();
+    std::fs::write(&path, format!("{text}\n")).unwrap();
+    is_changed(Some(&mine));
+    std::fs::remove_file(&path).unwrap();
+    is_changed(Some(&mine));
+    assert_eq!(names_in(folder.path()), ["leaf.toml"]);
+}
+
+#[test]
+fn a_file_someone_is_saving_to_is_left_alone() {
+    let (_folder, part_path, path) = bench();
+    let kept = [keep("a", &Setup::default(), &FACING)];
+    let known = save(&path, &part_path, &hinge(), &kept, None).unwrap();
+    let other = std::fs::File::open(&path).unwrap();
+    other.lock().unwrap();
+    let fault = save(&path, &part_path, &hinge(), &kept, Some(&known)).unwrap_err();
+    assert!(matches!(fault, SaveFault::ChangedMeanwhile(_)), "{fault}");
+    drop(other);
+    save(&path, &part_path, &hinge(), &kept, Some(&known)).unwrap();
+}
+
+#[test]
+fn a_file_of_another_part_or_of_something_else_is_left_alone() {
+    let (_folder, part_path, path) = bench();
+    let kept = [keep("a", &Setup::default(), &FACING)];
+    save(&path, &part_path, &hinge(), &kept, None).unwrap();
+    let (longer, _) = part_from_text(&part_path, &HINGE.replacen("[80.0, 40.0]", "[80.5, 40.0]", 1)).unwrap();
+    let fault = save(&path, &part_path, &longer, &kept, stamp(&path).as_ref()).unwrap_err();
+    assert!(matches!(fault, SaveFault::OtherPart(_)), "{fault}");
+    for text in ["schema = 1\n", "not a grasp file", "\u{0}"] {
+        std::fs::write(&path, text).unwrap();
+        let fault = save(&path, &part_path, &hinge(), &kept, stamp(&path).as_ref()).unwrap_err();
+        assert!(matches!(fault, SaveFault::Unreadable(_)), "{fault}");
+        assert_eq!(std::fs::read_to_string(&path).unwrap(), text);
+    }
+}
+
+#[cfg(unix)]
+#[test]
+fn permissions_and_links_are_kept() {
+    use std::os::unix::fs::PermissionsExt;
+    let (folder, part_path, path) = bench();
+    let kept = [keep("a", &Setup::default(), &FACING)];
+    let known = save(&path, &part_path, &hinge(), &kept, None).unwrap();
+    let mode = |path: &Path| std::fs::metadata(path).unwrap().permissions().mode() & 0o777;
+    // A new file gets what any program's new file gets here.
+    assert_eq!(mode(&path), mode(&part_path));
+    std::fs::set_permissions(&path, std::fs::Permissions::from_mode(0o640)).unwrap();
+    let link = folder.path().join("link.toml");
+    std::os::unix::fs::symlink("leaf.grasps.toml", &link).unwrap();
+    save(&link, &part_path, &hinge(), &kept, Some(&known)).unwrap();
+    assert!(std::fs::symlink_metadata(&link).unwrap().is_symlink());
+    assert_eq!(read_grasps(&path).unwrap().grasps.len(), 2);
+    assert_eq!(mode(&path), 0o640);
+    // A file made read-only stays as it is, whoever asks.
+    std::fs::set_permissions(&path, std::fs::Permissions::from_mode(0o440)).unwrap();
+    let fault = save(&path, &part_path, &hinge(), &kept, stamp(&path).as_ref()).unwrap_err();
+    assert!(fault.to_string().ends_with("permission denied"), "{fault}");
+    assert_eq!(read_grasps(&path).unwrap().grasps.len(), 2);
+    // A link to a file that is not there yet makes that file.
+    let early = folder.path().join("early.toml");
+    std::os::unix::fs::symlink("later.toml", &early).unwrap();
+    save(&early, &part_path, &hinge(), &kept, None).unwrap();
+    assert!(folder.path().join("later.toml").is_file());
+}
+
+#[test]
+fn the_part_is_named_from_where_the_grasps_are() {
+    let (folder, part_path, _) = bench();
+    let elsewhere = folder.path().join("kept/by me");
+    std::fs::create_dir_all(&elsewhere).unwrap();
+    let path = elsewhere.join("g.toml");
+    save(&path, &part_path, &hinge(), &[keep("a", &Setup::default(), &FACING)], None).unwrap();
+    assert!(std::fs::read_to_string(&path).unwrap().contains("part = \"../../leaf.toml\"\n"));
+    let part = read_part(&read_grasps(&path).unwrap().part_path).unwrap();
+    assert_eq!(part_digest(&part), part_digest(&hinge()));
+}
+
+/// FIPS 180-4 gives SHA-256 64 hexadecimal digits; what must change it and what must not is this program's promise.
+#[test]
+fn the_digest_sees_what_alters_scores_and_nothing_else() {
+    let digest = |text: &str| part_digest(&part_from_text(Path::new("leaf.toml"), text).unwrap().0);
+    let sound = digest(HINGE);
+    assert_eq!(sound.len(), 64);
+    assert!(sound.chars().all(|c| c.is_ascii_hexdigit()));
+    for (from, to) in [("hinge leaf", "leaf"), ("sealing face", "seal"), ("80.0, 0.0", "80, 0")] {
+        assert_eq!(digest(&broken(HINGE, from, to)), sound, "{from}");
+    }
+    for (from, to) in [
+        ("[80.0, 40.0]", "[80.0, 40.001]"),
+        ("[14.0, 10.0]", "[14.0, 10.5]"),
+        ("thickness = 6.0", "thickness = 6.5"),
+        ("aluminium 5083", "steel"),
+        ("[31.0, 18.5]", "[31.0, 18.6]"),
+        ("to = 12.0", "to = 13.0"),
+        ("edge = 2", "edge = 0"),
+        ("mu = 0.6", "mu = 0.5"),
+    ] {
+        assert_ne!(digest(&broken(HINGE, from, to)), sound, "{from}");
+    }
+}
+
+#[test]
+fn grasp_files_broken_in_one_place() {
+    let (_folder, part_path, path) = bench();
+    save(&path, &part_path, &hinge(), &[keep("a", &Setup::default(), &FACING)], None).unwrap();
+    let sound = std::fs::read_to_string(&path).unwrap();
+    let one = |from: &str, to: &str, at: &str, says: &str| {
+        let text = broken(&sound, from, to);
+        let faults = grasps_from_text(Path::new("g.toml"), &text).unwrap_err().faults;
+        assert_eq!(faults.len(), 1, "{faults:?}");
+        let line = if at.is_empty() { None } else { Some(line_of(&text, at)) };
+        assert_eq!(faults[0].line, line, "{faults:?}");
+        assert!(faults[0].text.contains(says), "{faults:?}");
+    };
+    one("part = \"leaf.toml\"\n", "", "", "`part` is missing");
+    one("part_digest = \"", "part_digest = \"0", "part_digest", "has 65 digits, not 64");
+    one("quality_per_finger", "quality_per_fingers", "quality_per_fingers", "did you mean `quality_per_finger`");
+    one("verdict = \"closed\"", "verdict = \"shut\"", "verdict", "give \"closed\" or \"open\" or \"marginal\"");
+    one("along_mm = 40.1", "along_mm = \"a\"", "{ ring = 0, edge = 0", "`grasp.0.contacts.0.along_mm`");
+    one("edge = 2, ", "", "{ ring = 0, along", "`grasp.0.contacts.1.edge` is missing");
+    one("time = ", "time = \"today\" # ", "time = \"today\"", "`grasp.0.time`");
+    one("fingers = 3", "fingers = 9", "fingers = 9", "`setup.hand.fingers` is 9");
+    one("name = \"a\"\n", "", "[[grasp]]", "`grasp.0.name` is missing");
+}
