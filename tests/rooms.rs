@@ -41,7 +41,10 @@ fn sources(folder: &Path) -> Vec<PathBuf> {
 /// Code lines without comments and without the unit tests at the end of a file.
 fn code(path: &Path) -> Vec<String> {
     let text = fs::read_to_string(path).unwrap();
-    text.lines().take_while(|line| *line != "#[cfg(test)]").map(|line| line.split("//").next().unwrap_or("").to_owned()).collect()
+    text.lines()
+        .take_while(|line| *line != "#[cfg(test)]")
+        .map(|line| line.split("//").next().unwrap_or("").to_owned())
+        .collect()
 }
 
 /// True when a line names a room of this crate.

@@ -60,16 +60,10 @@ pub fn run(mut options: Options) -> io::Result<()> {
         is_utf8(variable("LC_ALL").as_deref(), variable("LC_CTYPE").as_deref(), variable("LANG").as_deref());
     let recovery = Recovery::beside(&options.grasp_path, &options.part_path, &options.part);
     if recovery.path().exists() {
-        // Said before the terminal is taken when it cannot be read; offered when it can.
         match recovery.load() {
-            Ok(keeps) if !keeps.is_empty() => {
-                update(&mut state, Input::RecoveryFound(keeps.len()));
-            }
-            Ok(_) => {}
-            Err(lines) => {
-                update(&mut state, Input::SaveFailed { lines, changed: false });
-            }
-        }
+            Ok(keeps) => update(&mut state, Input::RecoveryFound(keeps.len())),
+            Err(lines) => update(&mut state, not_taken_back(lines)),
+        };
     }
     let raft = Raft::default();
     let (sender, receiver) = mpsc::channel();
@@ -89,12 +83,15 @@ pub fn run(mut options: Options) -> io::Result<()> {
         Ok(Ok(Ending::Quit { recover: true })) => Ok(Some(0)),
         Ok(Ok(Ending::Signal(signal))) => Ok(Some(signal)),
         Ok(Ok(Ending::Lost(fault)) | Err(fault)) => Err(fault),
-        Err(_) => Err(io::Error::other("the workbench broke; this is a fault of the program")),
+        Err(fault) => {
+            leave_word(&recovery, &raft.take());
+            raft.done();
+            panic::resume_unwind(fault)
+        }
     };
-    if !matches!(outcome, Ok(None)) {
-        let mut raft = raft.lock();
-        let keeps = std::mem::take(&mut *raft);
-        leave_word(&recovery, &keeps);
+    match outcome {
+        Ok(None) => recovery.settle(),
+        _ => leave_word(&recovery, &raft.take()),
     }
     raft.done();
     match outcome {
@@ -112,11 +109,14 @@ fn leave_word(recovery: &Recovery, keeps: &[Keep]) {
     if keeps.is_empty() {
         return;
     }
-    let path = recovery.path().display();
     let word = match recovery.write(keeps) {
-        Ok(()) => format!("{} unsaved marks are in {path}; the next start offers them", keeps.len()),
-        Err(fault) => format!("{} unsaved marks are lost: {fault}", keeps.len()),
+        Ok(path) if path == recovery.path() => {
+            format!("{} not saved: kept in {}, the next start offers them", keeps.len(), path.display())
+        }
+        Ok(path) => format!("{} not saved: kept in {}", keeps.len(), path.display()),
+        Err(fault) => format!("{} not saved, and lost: {fault}", keeps.len()),
     };
+    let word = file::shown(&format!("marks: {word}"));
     let _ = writeln!(io::stderr(), "{word}");
 }
 
@@ -142,6 +142,10 @@ impl Raft {
         self.0.lock().unwrap_or_else(PoisonError::into_inner)
     }
 
+    fn take(&self) -> Vec<Keep> {
+        std::mem::take(&mut *self.lock())
+    }
+
     fn done(&self) {
         self.1.store(true, std::sync::atomic::Ordering::SeqCst);
     }
@@ -165,9 +169,11 @@ fn watch_signals(sender: &Sender<Message>, raft: &Raft, recovery: &Recovery) -> 
             }
             if !raft.is_done() {
                 terminal::abandon();
-                let keeps = std::mem::take(&mut *raft.lock());
-                // Nobody may be there to read a fault.
-                let _ = recovery.write(&keeps);
+                let keeps = raft.take();
+                if !keeps.is_empty() {
+                    // Nobody may be there to read a fault.
+                    let _ = recovery.write(&keeps);
+                }
             }
             let _ = signal_hook::low_level::emulate_default_handler(signal);
         }
@@ -379,8 +385,7 @@ impl<'a> Bench<'a> {
         };
         self.due = self.due.max(due);
         effects.extend(update(state, input));
-        let unsaved = state.marks.iter().filter(|mark| !mark.saved).map(|mark| mark.keep.clone()).collect();
-        *self.raft.lock() = unsaved;
+        self.refresh_raft(state);
         None
     }
 
@@ -398,14 +403,20 @@ impl<'a> Bench<'a> {
                     let input = self.save(ids, &keeps, reread);
                     let after = update(state, input);
                     self.refresh_raft(state);
+                    if state.unsaved() == 0 {
+                        self.recovery.settle();
+                    }
                     if let Some(ending) = self.carry_out(state, after) {
                         return Some(ending);
                     }
                 }
                 Effect::LoadRecovery => {
                     let input = match self.recovery.load() {
-                        Ok(keeps) => Input::Recovered(keeps),
-                        Err(lines) => Input::SaveFailed { lines, changed: false },
+                        Ok(keeps) => {
+                            self.recovery.take();
+                            Input::Recovered(keeps)
+                        }
+                        Err(lines) => not_taken_back(lines),
                     };
                     update(state, input);
                     self.refresh_raft(state);
@@ -413,7 +424,7 @@ impl<'a> Bench<'a> {
                 Effect::DropRecovery => {
                     if let Err(fault) = self.recovery.remove() {
                         let lines = vec![format!("{}: {fault}", self.recovery.path().display())];
-                        update(state, Input::SaveFailed { lines, changed: false });
+                        update(state, Input::Told { title: "not deleted", lines });
                     }
                 }
                 Effect::Repaint => self.screen.repaint(),
@@ -461,16 +472,20 @@ impl<'a> Bench<'a> {
     }
 }
 
+/// Marks of an earlier run that cannot be taken back; their file stays.
+fn not_taken_back(mut lines: Vec<String>) -> Input {
+    lines.push(String::new());
+    lines.push("Marks of an earlier run cannot be taken back. The file stays where it is.".to_owned());
+    Input::Told { title: "marks of an earlier run", lines }
+}
+
 /// A fault with its mend.
 fn told(fault: &SaveFault) -> Vec<String> {
     let mut lines = vec![fault.to_string()];
     let mend = match fault {
         SaveFault::ChangedMeanwhile(_) => "Read it again, then save.",
         SaveFault::Unreadable(faults) => {
-            lines.extend(faults.faults.iter().map(|fault| match fault.line {
-                Some(line) => format!("line {line}: {}", fault.text),
-                None => fault.text.clone(),
-            }));
+            lines = faults.lines();
             "Mend that file or move it away, then press s again."
         }
         SaveFault::OtherPart(_) => "Move that file away, then press s again: a new one is made.",

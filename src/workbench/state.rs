@@ -161,6 +161,8 @@ pub enum Layer {
     Fault {
         /// First line shown.
         top: usize,
+        /// What did not work.
+        title: &'static str,
         /// The lines.
         lines: Vec<String>,
     },

@@ -34,6 +34,13 @@ pub enum Input {
         /// The file is not the one that was read.
         changed: bool,
     },
+    /// Something else did not work.
+    Told {
+        /// What.
+        title: &'static str,
+        /// Why, and the mend, line by line.
+        lines: Vec<String>,
+    },
     /// A broken run left so many marks behind.
     RecoveryFound(usize),
     /// The marks a broken run left behind.
@@ -95,7 +102,12 @@ pub fn update(state: &mut State, input: Input) -> Vec<Effect> {
         Input::Saved(ids) => saved(state, &ids),
         Input::SaveFailed { lines, changed } => {
             state.quit_when_saved = false;
-            state.layers.push(if changed { Layer::Ask(Question::Reload) } else { Layer::Fault { top: 0, lines } });
+            let fault = Layer::Fault { top: 0, title: "not saved", lines };
+            state.layers.push(if changed { Layer::Ask(Question::Reload) } else { fault });
+            Vec::new()
+        }
+        Input::Told { title, lines } => {
+            state.layers.push(Layer::Fault { top: 0, title, lines });
             Vec::new()
         }
         Input::RecoveryFound(count) => {
@@ -107,7 +119,8 @@ pub fn update(state: &mut State, input: Input) -> Vec<Effect> {
             for keep in keeps {
                 add_mark(state, keep);
             }
-            state.message = Some(format!("{count} marks taken back, not saved yet: s saves"));
+            let marks = if count == 1 { "mark" } else { "marks" };
+            state.message = Some(format!("{count} {marks} taken back, not saved yet: s saves, M lists them"));
             Vec::new()
         }
     }

@@ -54,8 +54,8 @@ pub fn render(state: &State, area: Rect, buf: &mut Buffer) -> Option<Position> {
         Some(Layer::Reading { top }) => {
             page(state, area, "reading", &reading::lines(state, area.width, true), *top, buf);
         }
-        Some(Layer::Fault { top, lines }) => {
-            page(state, area, "not saved", &dialog::fault_lines(lines, area.width), *top, buf);
+        Some(Layer::Fault { top, title, lines }) => {
+            page(state, area, title, &dialog::fault_lines(lines, area.width), *top, buf);
         }
         Some(Layer::Marks { at }) => dialog::marks(state, area, *at, buf),
         top @ (None | Some(Layer::Entry(_) | Layer::Ask(_))) => {
