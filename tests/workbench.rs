@@ -1,4 +1,5 @@
 //! The workbench by key script on a test terminal: what is seen, what the keys do, and that no size breaks it.
+#![allow(clippy::unwrap_used, clippy::expect_used, reason = "a test that cannot go on has failed")]
 
 use holdwright::file::Keep;
 use holdwright::part::{KeepOutDescription, Part, PartDescription};

@@ -1,6 +1,7 @@
 //! The workbench on a real pseudo-terminal: start, keys, save, quit, signals, hang-up, stop and return, resize, and
 //! how many bytes it sends. Every wait has a limit.
 #![cfg(unix)]
+#![allow(clippy::unwrap_used, clippy::expect_used, reason = "a test that cannot go on has failed")]
 
 use holdwright::file::read_grasps;
 use portable_pty::{Child, CommandBuilder, MasterPty, PtySize, native_pty_system};
@@ -369,6 +370,72 @@ fn ctrl_z_gives_the_shell_back_and_returning_paints_everything_without_a_questio
     }
 }
 
+/// A line that takes no bytes any more holds the loop in a write; the signal must still end it.
+#[test]
+fn a_stalled_line_does_not_keep_a_signal_from_ending_it() {
+    let folder = folder();
+    let mut pty = Pty::start(folder.path(), 120, 40, &[]);
+    pty.wait_ranked();
+    pty.send("m");
+    pty.wait_for("marked; n names it");
+    pty.wait_quiet();
+    {
+        // While this is held the reader takes nothing more than what it has in hand.
+        let heard = Arc::clone(&pty.heard);
+        let _held = heard.lock().unwrap();
+        for _ in 0..60 {
+            pty.writer.as_mut().unwrap().write_all(b"\x0c").unwrap();
+            thread::sleep(Duration::from_millis(20));
+        }
+        pty.signal("TERM");
+        let start = Instant::now();
+        while pty.child.try_wait().unwrap().is_none() {
+            assert!(start.elapsed() < PATIENCE, "a stalled line holds it");
+            thread::sleep(Duration::from_millis(20));
+        }
+    }
+    assert!(!pty.ended());
+    assert_eq!(read_grasps(&recovery(&folder)).unwrap().grasps.len(), 1);
+}
+
+#[test]
+fn a_flood_of_keys_is_drained_before_anything_is_drawn() {
+    let folder = folder();
+    let mut pty = Pty::start(folder.path(), 80, 24, &[]);
+    pty.wait_ranked();
+    pty.wait_quiet();
+    let before = pty.bytes();
+    // Up and down again and again, then 37 steps of friction; an arrow torn apart in between does nothing.
+    pty.send(&"jk".repeat(300));
+    pty.send("\x1b");
+    thread::sleep(Duration::from_millis(50));
+    pty.send("[A");
+    pty.send(&"l".repeat(37));
+    pty.wait_for("mu 0.57");
+    pty.wait_ranked();
+    pty.wait_quiet();
+    let sent = pty.bytes() - before;
+    println!("{sent} bytes for 640 keys");
+    assert!(sent < 640 * 400, "{sent} bytes");
+    pty.send("q");
+    assert!(pty.ended());
+}
+
+#[test]
+fn pasted_text_is_typed_into_a_line_and_nowhere_else() {
+    let folder = folder();
+    let mut pty = Pty::start(folder.path(), 80, 24, &[]);
+    pty.wait_ranked();
+    pty.send("\x1b[200~mqs\x1b[201~");
+    pty.send("n\x15\x1b[200~bow\tend\x1b[201~\r");
+    pty.wait_for("1 mark, 1 not saved");
+    pty.send("s");
+    pty.wait_for("1 grasp saved to");
+    assert_eq!(read_grasps(&saved(&folder)).unwrap().grasps[0].name, "bowend");
+    pty.send("q");
+    assert!(pty.ended());
+}
+
 #[test]
 fn any_size_of_the_window_is_lived_through() {
     let folder = folder();
@@ -406,7 +473,7 @@ fn ctrl_c_leaves_and_a_second_one_leaves_at_once() {
     pty.send("\x03");
     pty.wait_for("leave?");
     pty.send("\x03");
-    pty.ended();
+    assert!(!pty.ended());
     pty.assert_restored();
     assert_eq!(read_grasps(&recovery(&folder)).unwrap().grasps.len(), 1);
 }

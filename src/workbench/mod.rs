@@ -5,6 +5,7 @@
 
 pub mod action;
 mod entry;
+mod guard;
 mod look;
 mod recovery;
 mod run;

@@ -1,6 +1,7 @@
 //! The loop: threads for keys, signals and ranking feed one channel; effects are carried out here.
 
 use super::action::Key;
+use super::guard::{Ending, Raft, conclude, guarded, watch_signals};
 use super::look::is_utf8;
 use super::recovery::Recovery;
 use super::state::State;
@@ -10,36 +11,21 @@ use super::{ColorChoice, Options};
 use crate::file::{self, Keep, SaveFault, Stamp};
 use crate::search::job::{News, Ranker, What};
 use crossterm::event::{self, Event, KeyCode, KeyEvent, KeyEventKind, KeyModifiers};
-use signal_hook::consts::{SIGCONT, SIGHUP, SIGINT, SIGSTOP, SIGTERM, SIGTSTP};
+use signal_hook::consts::{SIGCONT, SIGSTOP, SIGTSTP};
 use std::fs::File;
-use std::io::{self, Write};
-use std::panic::{self, AssertUnwindSafe};
+use std::io;
 use std::sync::mpsc::{self, Receiver, RecvTimeoutError, Sender};
-use std::sync::{Arc, Mutex, MutexGuard, PoisonError};
 use std::thread;
 use std::time::{Duration, Instant};
 
 /// Least time between two frames drawn for progress alone: at most four a second.
 const PROGRESS_PAUSE: Duration = Duration::from_millis(250);
-/// How long a signal waits for the loop before it acts alone: the loop may hang in a write to a stalled line.
-const SIGNAL_PATIENCE: Duration = Duration::from_secs(3);
-
 /// What reaches the loop.
 enum Message {
     Event(Event),
     InputEnded,
     Signal(i32),
     News(News),
-}
-
-/// How the loop ended.
-enum Ending {
-    /// By the user; unsaved marks go to the recovery file when so asked.
-    Quit { recover: bool },
-    /// By a signal.
-    Signal(i32),
-    /// The terminal is gone.
-    Lost(io::Error),
 }
 
 /// Opens the workbench on the terminal and returns when the user leaves.
@@ -67,118 +53,10 @@ pub fn run(mut options: Options) -> io::Result<()> {
     }
     let raft = Raft::default();
     let (sender, receiver) = mpsc::channel();
-    watch_signals(&sender, &raft, &recovery)?;
-    let previous = Arc::new(panic::take_hook());
-    hook_panics(&previous);
-    let ended = panic::catch_unwind(AssertUnwindSafe(|| {
-        terminal::enter()?;
-        let mut bench = Bench::new(&options, &recovery, &raft, sender, receiver)?;
-        Ok(bench.work(&mut state))
-    }));
-    terminal::leave();
-    let _ = panic::take_hook();
-    panic::set_hook(Box::new(move |info| previous(info)));
-    let outcome = match ended {
-        Ok(Ok(Ending::Quit { recover: false })) => Ok(None),
-        Ok(Ok(Ending::Quit { recover: true })) => Ok(Some(0)),
-        Ok(Ok(Ending::Signal(signal))) => Ok(Some(signal)),
-        Ok(Ok(Ending::Lost(fault)) | Err(fault)) => Err(fault),
-        Err(fault) => {
-            leave_word(&recovery, &raft.take());
-            raft.done();
-            panic::resume_unwind(fault)
-        }
-    };
-    match outcome {
-        Ok(None) => recovery.settle(),
-        _ => leave_word(&recovery, &raft.take()),
-    }
-    raft.done();
-    match outcome {
-        Ok(Some(signal)) if signal != 0 => {
-            // Ends the process as the signal would have; what is left of the input thread ends with it.
-            signal_hook::low_level::emulate_default_handler(signal)
-        }
-        Ok(_) => Ok(()),
-        Err(fault) => Err(fault),
-    }
-}
-
-/// Writes the recovery file and says so on standard error, where someone may still read it.
-fn leave_word(recovery: &Recovery, keeps: &[Keep]) {
-    if keeps.is_empty() {
-        return;
-    }
-    let word = match recovery.write(keeps) {
-        Ok(path) if path == recovery.path() => {
-            format!("{} not saved: kept in {}, the next start offers them", keeps.len(), path.display())
-        }
-        Ok(path) => format!("{} not saved: kept in {}", keeps.len(), path.display()),
-        Err(fault) => format!("{} not saved, and lost: {fault}", keeps.len()),
-    };
-    let word = file::shown(&format!("marks: {word}"));
-    let _ = writeln!(io::stderr(), "{word}");
-}
-
-/// A panic of the loop's own thread restores the terminal before its message is printed. Panics of other threads are
-/// caught where they happen and become a line on the screen; printing them would spoil it.
-fn hook_panics(previous: &Arc<Box<dyn Fn(&panic::PanicHookInfo<'_>) + Sync + Send + 'static>>) {
-    let own = thread::current().id();
-    let previous = Arc::clone(previous);
-    panic::set_hook(Box::new(move |info| {
-        if thread::current().id() == own {
-            terminal::leave();
-            previous(info);
-        }
-    }));
-}
-
-/// Unsaved marks where every way out finds them.
-#[derive(Clone, Default)]
-struct Raft(Arc<Mutex<Vec<Keep>>>, Arc<std::sync::atomic::AtomicBool>);
-
-impl Raft {
-    fn lock(&self) -> MutexGuard<'_, Vec<Keep>> {
-        self.0.lock().unwrap_or_else(PoisonError::into_inner)
-    }
-
-    fn take(&self) -> Vec<Keep> {
-        std::mem::take(&mut *self.lock())
-    }
-
-    fn done(&self) {
-        self.1.store(true, std::sync::atomic::Ordering::SeqCst);
-    }
-
-    fn is_done(&self) -> bool {
-        self.1.load(std::sync::atomic::Ordering::SeqCst)
-    }
-}
-
-fn watch_signals(sender: &Sender<Message>, raft: &Raft, recovery: &Recovery) -> io::Result<()> {
-    let mut signals = signal_hook::iterator::Signals::new([SIGTERM, SIGHUP, SIGINT, SIGTSTP, SIGCONT])?;
-    let (sender, raft, recovery) = (sender.clone(), raft.clone(), recovery.clone());
-    thread::Builder::new().name("signals".to_owned()).spawn(move || {
-        for signal in signals.forever() {
-            let told = sender.send(Message::Signal(signal)).is_ok();
-            if !matches!(signal, SIGTERM | SIGHUP | SIGINT) {
-                continue;
-            }
-            if told {
-                thread::sleep(SIGNAL_PATIENCE);
-            }
-            if !raft.is_done() {
-                terminal::abandon();
-                let keeps = raft.take();
-                if !keeps.is_empty() {
-                    // Nobody may be there to read a fault.
-                    let _ = recovery.write(&keeps);
-                }
-            }
-            let _ = signal_hook::low_level::emulate_default_handler(signal);
-        }
-    })?;
-    Ok(())
+    let tell = sender.clone();
+    watch_signals(move |signal| tell.send(Message::Signal(signal)).is_ok(), &raft, &recovery)?;
+    let ended = guarded(|| Bench::new(&options, &recovery, &raft, sender, receiver)?.work(&mut state));
+    conclude(ended, &recovery, &raft)
 }
 
 /// Tells the loop when the input thread ends, however it ends.
@@ -284,17 +162,17 @@ impl<'a> Bench<'a> {
         })
     }
 
-    fn work(&mut self, state: &mut State) -> Ending {
+    fn work(&mut self, state: &mut State) -> io::Result<Ending> {
         if let Ok((columns, rows)) = crossterm::terminal::size() {
             update(state, Input::Resize(columns, rows));
         }
         let effects = update(state, Input::Start);
         if let Some(ending) = self.carry_out(state, effects) {
-            return ending;
+            return Ok(ending);
         }
         loop {
             if let Some(ending) = self.draw_when_due(state) {
-                return ending;
+                return Ok(ending);
             }
             let first = match self.wait() {
                 Ok(first) => first,
@@ -303,10 +181,10 @@ impl<'a> Bench<'a> {
                     continue;
                 }
                 // Every sender is gone: no key can come any more.
-                Err(RecvTimeoutError::Disconnected) => return Ending::Lost(io::ErrorKind::BrokenPipe.into()),
+                Err(RecvTimeoutError::Disconnected) => return Err(io::ErrorKind::BrokenPipe.into()),
             };
             if let Some(ending) = self.drain(state, first) {
-                return ending;
+                return Ok(ending);
             }
         }
     }
@@ -441,7 +319,7 @@ impl<'a> Bench<'a> {
     }
 
     fn refresh_raft(&self, state: &State) {
-        *self.raft.lock() = state.marks.iter().filter(|mark| !mark.saved).map(|mark| mark.keep.clone()).collect();
+        self.raft.load(state.marks.iter().filter(|mark| !mark.saved).map(|mark| mark.keep.clone()).collect());
     }
 
     fn suspend(&mut self) -> io::Result<()> {
