@@ -6,11 +6,13 @@ mod sound;
 
 use holdwright::file::{
     CAUTION, GraspFile, Keep, SaveFault, Scores, default_grasp_path, grasps_from_text, part_digest, part_from_text,
-    read_grasps, read_part, save, setup_from_text, stamp,
+    read_grasps, read_part, save, setup_from_text, shown, stamp,
 };
-use holdwright::hand::{Closing, Tip};
+use holdwright::hand::{Closing, Drive, Tip};
+use holdwright::mechanics::{Condition, LoadCase};
 use holdwright::part::{EdgeId, Part};
-use holdwright::search::{Scene, Setup, Spot};
+use holdwright::search::{Scene, Setup, Spot, TorqueScale};
+use proptest::prelude::*;
 use sound::{CELL, HINGE, broken, line_of};
 use std::path::{Path, PathBuf};
 use std::sync::Arc;
@@ -262,4 +264,107 @@ fn grasp_files_broken_in_one_place() {
     one("time = ", "time = \"today\" # ", "time = \"today\"", "`grasp.0.time`");
     one("fingers = 3", "fingers = 9", "fingers = 9", "`setup.hand.fingers` is 9");
     one("name = \"a\"\n", "", "[[grasp]]", "`grasp.0.name` is missing");
+}
+
+/// However many save at once, whoever is refused may try again, and in the end everything is there once.
+#[test]
+fn many_save_at_once() {
+    let (folder, part_path, path) = bench();
+    let part = hinge();
+    let kept = keep("start", &Setup::default(), &FACING);
+    save(&path, &part_path, &part, std::slice::from_ref(&kept), None).unwrap();
+    let one = |who: usize| {
+        for turn in 0..5 {
+            let mine = [Keep { name: format!("{who}/{turn}"), ..kept.clone() }];
+            loop {
+                match save(&path, &part_path, &part, &mine, stamp(&path).as_ref()) {
+                    Ok(_) => break,
+                    Err(SaveFault::ChangedMeanwhile(_)) => std::thread::yield_now(),
+                    Err(fault) => panic!("{fault}"),
+                }
+            }
+        }
+    };
+    std::thread::scope(|scope| {
+        for who in 0..4 {
+            scope.spawn(move || one(who));
+        }
+    });
+    let mut there: Vec<_> = read_grasps(&path).unwrap().grasps.into_iter().map(|grasp| grasp.name).collect();
+    there.sort();
+    let mut want: Vec<_> = (0..4).flat_map(|who| (0..5).map(move |turn| format!("{who}/{turn}"))).collect();
+    want.push("start".to_owned());
+    assert_eq!(there, want);
+    assert_eq!(names_in(folder.path()), ["leaf.grasps.toml", "leaf.toml"]);
+}
+
+/// The same with no file to begin with: one of all makes it.
+#[test]
+fn many_begin_a_file_at_once() {
+    for _ in 0..10 {
+        let (_folder, part_path, path) = bench();
+        let part = hinge();
+        let kept = keep("a", &Setup::default(), &FACING);
+        let one = || save(&path, &part_path, &part, std::slice::from_ref(&kept), None).is_ok();
+        let made = std::thread::scope(|scope| {
+            let threads: Vec<_> = (0..4).map(|_| scope.spawn(one)).collect();
+            threads.into_iter().filter_map(|thread| thread.join().ok()).filter(|made| *made).count()
+        });
+        assert_eq!((made, read_grasps(&path).unwrap().grasps.len()), (1, 1));
+    }
+}
+
+prop_compose! {
+    fn any_setup()(
+        mu in 0.0..1.0_f64,
+        high in prop::option::of(1.0..2.0_f64),
+        source in prop::option::of(any::<String>()),
+        (radius, bite, gap) in (0.0..1e3_f64, 1e-9..1e3_f64, 0.0..1e-3_f64),
+        limit in prop::option::of(1e-3..1e6_f64),
+        drive in prop::sample::select(&[Drive::Adjustable, Drive::Equal][..]),
+        condition in prop::option::of(prop::sample::select(&[Condition::Dry, Condition::Oily, Condition::Wet][..])),
+        scale in prop_oneof![Just(TorqueScale::Reach), Just(TorqueScale::Gyration), (1e-6..1e6_f64).prop_map(TorqueScale::Mm)],
+        (seed, budget, spacing) in (any::<u64>(), 1..u64::MAX, prop::option::of(1e-3..1e3_f64)),
+        loads in prop::collection::vec((any::<String>(), prop::array::uniform3(-1e3..1e3_f64), 1e-3..1e3_f64), 0..3),
+    ) -> Setup {
+        let mut setup = Setup::default();
+        setup.friction.mu = mu;
+        (setup.friction.high, setup.friction.source, setup.friction.condition) = (high, source, condition);
+        (setup.hand.pin_radius_mm, setup.hand.bite_mm, setup.hand.gap_mm) = (radius, bite, gap);
+        (setup.hand.force_limit_n, setup.hand.drive) = (limit, drive);
+        (setup.search.seed, setup.search.budget, setup.search.spacing_mm) = (seed, budget, spacing);
+        setup.search.torque_scale = scale;
+        setup.loads = loads
+            .into_iter()
+            .map(|(name, force_n, safety)| LoadCase { name, force_n, safety, ..LoadCase::default() })
+            .collect();
+        setup
+    }
+}
+
+proptest! {
+    #![proptest_config(ProptestConfig { cases: 200, failure_persistence: None, ..ProptestConfig::default() })]
+
+    #[test]
+    fn any_setup_name_and_note_are_read_back(
+        first in any_setup(),
+        second in any_setup(),
+        name in any::<String>(),
+        note in "\\PC{0,9}[\"\\\\'\n]{0,6}\\PC{0,9}",
+        along in 0.1..79.9_f64,
+    ) {
+        let (_folder, part_path, path) = bench();
+        let named = Keep { name: name.clone(), note: note.clone(), ..keep("", &first, &[(0, 0, along), (0, 2, 40.0)]) };
+        let plain = keep("plain", &second, &FACING);
+        save(&path, &part_path, &hinge(), &[named.clone(), plain], None).unwrap();
+        let file = read_grasps(&path).unwrap();
+        prop_assert_eq!(&file.setup, &first);
+        prop_assert_eq!(&file.grasps[1].setup, &second);
+        prop_assert_eq!(&file.grasps[0].spots, &named.grasp.spots);
+        // Control characters are gone; an empty name became one.
+        prop_assert!(!file.grasps[0].name.is_empty());
+        prop_assert!(shown(name.trim()).contains(&file.grasps[0].name) || shown(&name).trim().is_empty());
+        let lines = note.lines().map(shown).collect::<Vec<_>>().join("\n");
+        prop_assert_eq!(&file.grasps[0].note, &lines);
+    }
 }

@@ -199,18 +199,27 @@ fn saw(teeth: usize) -> String {
 }
 
 #[test]
-fn a_million_vertices() {
-    let text = saw(500_000);
+fn the_largest_outline() {
+    let text = saw(124_999);
     let start = Instant::now();
     let (part, _) = part_from_text(Path::new("saw.toml"), &text).unwrap();
     let took = start.elapsed();
-    assert_eq!(part.outline().edges().len(), 1_000_002);
-    // Teeth of half a square millimetre on a body 5 mm high.
-    let area = 500_000.0 * 5.0 + 499_999.0 * 0.5;
+    assert_eq!(part.outline().edges().len(), 250_000);
+    // Teeth of half a square millimetre on a body 5 mm high; the last tooth leans on the side.
+    let area = 124_999.0 * 5.5;
     assert!((part.outline().region().area_mm2 / area - 1.0).abs() < 1e-3);
-    // A few seconds on a slow machine; reading that grows with the square of the size would take hours.
-    assert!(took < Duration::from_secs(60), "{took:?}");
-    println!("a million vertices: {took:?}");
+    // A second or so on a slow machine; reading that grows with the square of the size would take an hour.
+    assert!(took < Duration::from_secs(30), "{took:?}");
+    println!("250000 vertices: {took:?}");
+}
+
+#[test]
+fn a_million_vertices_are_refused_in_words() {
+    let start = Instant::now();
+    let faults = part_from_text(Path::new("saw.toml"), &saw(500_000)).unwrap_err();
+    assert_eq!(faults.faults.len(), 1);
+    assert!(faults.faults[0].text.contains("has 1000002 vertices"), "{faults}");
+    assert!(start.elapsed() < Duration::from_secs(30), "{:?}", start.elapsed());
 }
 
 /// Read as values these would take some gigabytes.

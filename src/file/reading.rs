@@ -8,9 +8,9 @@ use std::path::Path;
 /// Largest file read, bytes.
 const MOST_BYTES: u64 = 256 << 20;
 
-/// Most values a file may hold, told by the marks between them: twice what the largest outline needs. Reading more
-/// would fill the memory of a small machine before anyone could say that they are too many.
-const MOST_VALUES: usize = 12_000_000;
+/// Most values a file may hold, told by the marks between them: some times what the largest outline needs. Reading
+/// more would fill the memory of a small machine before anyone could say that they are too many.
+const MOST_VALUES: usize = 6_000_000;
 
 /// The text of a file.
 ///

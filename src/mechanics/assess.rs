@@ -94,7 +94,7 @@ impl Assessment {
         let score = quality::planar(wrenches);
         let verdict = Verdict::of(wrenches, &score);
         let closed = verdict == Verdict::Closed;
-        let friction = FrictionReading::of(wrenches, setup_mu);
+        let friction = FrictionReading::of(wrenches, setup_mu, closed);
         Self {
             verdict,
             quality: if closed { score.signed_quality } else { 0.0 },
@@ -168,7 +168,7 @@ struct FrictionReading {
 }
 
 impl FrictionReading {
-    fn of(wrenches: &Wrenches, setup_mu: f64) -> Self {
+    fn of(wrenches: &Wrenches, setup_mu: f64, closed: bool) -> Self {
         let frictionless = wrenches.mus().iter().all(|&mu| mu <= 0.0);
         let ones = vec![1.0; wrenches.finger_count()];
         // Without any friction to scale, ask what common mu would do.
@@ -177,7 +177,12 @@ impl FrictionReading {
             None => Self { needed: None, margin: Some(0.0), margin_deg: None },
             Some(factor) => {
                 let needed = factor * unit;
-                let margin = if factor > 0.0 { Some(if frictionless { 0.0 } else { 1.0 / factor }) } else { None };
+                let margin = if frictionless && !closed {
+                    // However little would do, there is none.
+                    Some(0.0)
+                } else {
+                    (factor > 0.0).then(|| 1.0 / factor)
+                };
                 let margin_deg =
                     if frictionless { -needed.atan().to_degrees() } else { friction::margin_deg(mus, factor) };
                 Self { needed: Some(needed), margin, margin_deg: Some(margin_deg) }
@@ -235,10 +240,19 @@ fn confirm_placement(a: &Assessment, wrenches: &Wrenches, frame: &Frame, doubts:
 fn confirm_friction(a: &Assessment, wrenches: &Wrenches, setup_mu: f64, doubts: &mut Vec<Doubt>) {
     let (Some(needed), true) = (a.friction_needed_closure, setup_mu > 0.0) else { return };
     let factor = needed / setup_mu;
+    // Cones of next to no friction are pairs of nearly equal columns, on which the solver may give up; the plain
+    // definition stands in for it there.
     let closes = |factor: f64| {
         let scaled = wrenches.with_friction_times(factor);
-        matches!(program::closure(&scaled), Solved::Answer(_)) && closure::rank(&scaled) == 3
+        match program::closure(&scaled) {
+            Solved::Answer(_) => closure::rank(&scaled) == 3,
+            Solved::Infeasible => false,
+            Solved::Inconclusive(_) => quality::by_definition(scaled.generators()).signed_quality > MARGINAL,
+        }
     };
+    if factor <= 0.0 && closes(0.0) {
+        return;
+    }
     let step = FRICTION_STEP * factor.max(1.0);
     if !closes(factor + step) || (factor > step && closes(factor - step)) {
         doubts.push(Doubt::Friction { kernel: needed });

@@ -84,13 +84,14 @@ pub fn factor_needed(levers: &[Lever], mus: &[f64]) -> Option<f64> {
     if largest <= 0.0 {
         return None;
     }
+    let most = LARGEST_MU / largest;
     let (mut high, mut at_high) = (1.0, at(1.0));
     while at_high <= 0.0 {
         (low, at_low) = (high, at_high);
-        if high * largest >= LARGEST_MU {
+        if high >= most {
             return None;
         }
-        high = (high * 2.0).min(LARGEST_MU / largest);
+        high = (high * 2.0).min(most);
         at_high = at(high);
     }
     let width = WIDTH * (1.0 + high * largest) / largest;

@@ -171,6 +171,12 @@ pub fn least_reach(generators: &[Vector3<f64>]) -> (f64, Vector3<f64>) {
             attempt(-normal, a.norm() * b.norm());
         }
     }
+    // All generators on one line through 0: every direction across it, of which two suffice.
+    if let Some(a) = generators.first() {
+        for axis in [Vector3::x(), Vector3::y(), Vector3::z()] {
+            attempt(a.cross(&axis), a.norm());
+        }
+    }
     best
 }
 

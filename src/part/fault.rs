@@ -111,13 +111,15 @@ pub enum PartFault {
         /// Ring of the hole around it.
         outer: usize,
     },
-    /// A quantity that must be above zero is not.
-    #[error("`{key}` is {value}; it must be a number above 0")]
+    /// A quantity that must be above zero, and within what the sums can carry, is not.
+    #[error("`{key}` is {value}; it must be a number above 0 (at most {most:e})")]
     NotPositive {
         /// The key.
         key: &'static str,
         /// Its value.
         value: f64,
+        /// The limit.
+        most: f64,
     },
     /// The centre of mass is no place.
     #[error("`com` is [{x}, {y}]; give two finite numbers")]

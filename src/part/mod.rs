@@ -118,11 +118,15 @@ impl Part {
     pub fn new(description: PartDescription) -> Result<Self, PartFaults> {
         let d = description;
         let mut faults = Vec::new();
-        for (key, value) in [("thickness", d.thickness), ("density_kg_m3", d.density_kg_m3), ("mass_kg", d.mass_kg)] {
+        for (key, value, most) in [
+            ("thickness", d.thickness, check::FARTHEST_MM / d.unit_mm),
+            ("density_kg_m3", d.density_kg_m3, DENSEST_KG_M3),
+            ("mass_kg", d.mass_kg, HEAVIEST_KG),
+        ] {
             if let Some(value) = value
-                && !(value.is_finite() && value > 0.0)
+                && !(value > 0.0 && value <= most)
             {
-                faults.push(PartFault::NotPositive { key, value });
+                faults.push(PartFault::NotPositive { key, value, most });
             }
         }
         if let Some(com) = d.com
@@ -216,6 +220,11 @@ impl Part {
         self.outline.region().gyration_about(self.com)
     }
 }
+
+/// Larger numbers are slips of the keyboard: the densest element has 22 600 kg/m3 (common practice, no source).
+const DENSEST_KG_M3: f64 = 1e5;
+/// Larger numbers are slips of the keyboard, and would overflow on the way to a force.
+const HEAVIEST_KG: f64 = 1e12;
 
 fn checked_keep_outs(d: &PartDescription, outline: &Outline, faults: &mut Vec<PartFault>) -> Vec<KeepOut> {
     let mut kept = Vec::with_capacity(d.keep_outs.len());

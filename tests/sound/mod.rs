@@ -2,7 +2,7 @@
 #![allow(dead_code, reason = "each test program uses some of this")]
 
 /// A part file with every key a part can have but those that override another.
-pub const HINGE: &str = r#"schema = 1
+pub(crate) const HINGE: &str = r#"schema = 1
 name = "hinge leaf"
 units = "mm"
 thickness = 6.0
@@ -32,7 +32,7 @@ mu = 0.6
 "#;
 
 /// A setup file with every kind of key.
-pub const CELL: &str = r#"schema = 1
+pub(crate) const CELL: &str = r#"schema = 1
 [friction]
 mu = 0.20
 low = 0.15
@@ -83,12 +83,12 @@ at_mm = [40.0, 0, 0.0]
 "#;
 
 /// The sound text with one thing put in the place of another.
-pub fn broken(sound: &str, from: &str, to: &str) -> String {
+pub(crate) fn broken(sound: &str, from: &str, to: &str) -> String {
     assert_eq!(sound.matches(from).count(), 1, "{from:?} must stand once in the sound file");
     sound.replacen(from, to, 1)
 }
 
 /// Line, from 1, on which a piece of text stands.
-pub fn line_of(text: &str, piece: &str) -> usize {
+pub(crate) fn line_of(text: &str, piece: &str) -> usize {
     text[..text.find(piece).expect("piece")].matches('\n').count() + 1
 }

@@ -1,0 +1,104 @@
+//! What several test files share: one way to compare numbers, contacts and shapes to try, seeded dice.
+#![allow(dead_code, reason = "every test file takes what it needs")]
+
+use holdwright::mechanics::{Assessment, Contact, Frame, Wrenches};
+use holdwright::part::{Part, PartDescription};
+use nalgebra::{Point2, Rotation2, Vector2};
+use rand_chacha::ChaCha8Rng;
+use rand_chacha::rand_core::{Rng, SeedableRng};
+
+/// Fails unless `|a - b| <= abs + rel * max(|a|, |b|)`; NaN always fails.
+#[track_caller]
+pub(crate) fn assert_close(a: f64, b: f64, rel: f64, abs: f64) {
+    let allowed = abs + rel * a.abs().max(b.abs());
+    let off = (a - b).abs();
+    assert!(off <= allowed, "{a} is not {b}: off by {off:e}, allowed {allowed:e}");
+}
+
+/// A contact at a point with the inward normal at `normal_deg` from +x.
+pub(crate) fn touch(x: f64, y: f64, normal_deg: f64, mu: f64) -> Contact {
+    let angle = normal_deg.to_radians();
+    Contact { point: Point2::new(x, y), normal: Vector2::new(angle.cos(), angle.sin()), mu }
+}
+
+/// A contact with its unit normal given outright, for right angles that are to be exact.
+pub(crate) fn touch_along(x: f64, y: f64, normal: [f64; 2], mu: f64) -> Contact {
+    Contact { point: Point2::new(x, y), normal: Vector2::new(normal[0], normal[1]), mu }
+}
+
+/// A contact on a circle about the origin, pressing toward the centre.
+pub(crate) fn on_disc(radius: f64, at_rad: f64, mu: f64) -> Contact {
+    let out = Vector2::new(at_rad.cos(), at_rad.sin());
+    Contact { point: Point2::from(out * radius), normal: -out, mu }
+}
+
+/// A frame about a point with a torque scale.
+pub(crate) fn frame(x: f64, y: f64, scale_mm: f64) -> Frame {
+    Frame { about: Point2::new(x, y), scale_mm }
+}
+
+/// Reads a grasp with room to spare on every stretch.
+pub(crate) fn read(contacts: &[Contact], frame: &Frame) -> Assessment {
+    let mu = contacts.iter().map(|c| c.mu).fold(0.0, f64::max);
+    Assessment::of(&Wrenches::new(contacts, frame), frame, mu, &vec![f64::MAX; contacts.len()])
+}
+
+/// The contacts turned about the origin, then moved.
+pub(crate) fn moved(contacts: &[Contact], turn_rad: f64, by: Vector2<f64>) -> Vec<Contact> {
+    let turn = Rotation2::new(turn_rad);
+    contacts.iter().map(|c| Contact { point: turn * c.point + by, normal: turn * c.normal, mu: c.mu }).collect()
+}
+
+/// Seeded dice; the same numbers on every machine.
+pub(crate) struct Dice(ChaCha8Rng);
+
+impl Dice {
+    pub(crate) fn seeded(seed: u64) -> Self {
+        Self(ChaCha8Rng::seed_from_u64(seed))
+    }
+
+    /// Even in `[low, high)`.
+    pub(crate) fn even(&mut self, low: f64, high: f64) -> f64 {
+        let unit = (self.0.next_u64() >> 11) as f64 / (1u64 << 53) as f64;
+        low + (high - low) * unit
+    }
+
+    /// One of `0..count`.
+    pub(crate) fn pick(&mut self, count: usize) -> usize {
+        (self.0.next_u64() % count as u64) as usize
+    }
+}
+
+/// A part from rings in mm.
+pub(crate) fn part(rings: Vec<Vec<[f64; 2]>>) -> Part {
+    Part::new(PartDescription::bare("test part", rings)).unwrap()
+}
+
+/// Chords for each rounded corner: their sagitta is below 1e-4 of the radius.
+const CHORDS: usize = 64;
+
+/// A polygon with rounded corners: vertices with a radius each (0 leaves the corner sharp), arcs as chords.
+pub(crate) fn rounded(corners: &[([f64; 2], f64)]) -> Vec<[f64; 2]> {
+    let n = corners.len();
+    let mut ring = Vec::new();
+    for (i, &([x, y], radius)) in corners.iter().enumerate() {
+        let here = Point2::new(x, y);
+        let toward = |j: usize| (Point2::from(corners[j % n].0) - here).normalize();
+        let (back, on) = (toward(i + n - 1), toward(i + 1));
+        if radius <= 0.0 {
+            ring.push([x, y]);
+            continue;
+        }
+        // Tangent points lie r / tan(half the corner's angle) from the vertex, the centre r / sin(half) along the bisector.
+        let half = back.dot(&on).acos() / 2.0;
+        let centre = here + (back + on).normalize() * (radius / half.sin());
+        let from = here + back * (radius / half.tan()) - centre;
+        let sweep =
+            from.perp(&(here + on * (radius / half.tan()) - centre)).signum() * (std::f64::consts::PI - 2.0 * half);
+        for step in 0..=CHORDS {
+            let p = centre + Rotation2::new(sweep * step as f64 / CHORDS as f64) * from;
+            ring.push([p.x, p.y]);
+        }
+    }
+    ring
+}
