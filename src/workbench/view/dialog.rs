@@ -97,7 +97,7 @@ pub(super) fn marks(state: &State, area: Rect, at: usize, buf: &mut Buffer) {
             if i == at { '>' } else { ' ' },
             if mark.saved { "saved" } else { "NEW  " },
             shown(&keep.name),
-            table::edges(&state.order.scene, &keep.grasp.spots),
+            table::edges(&keep.grasp.spots),
             number::quality(keep.assessment.quality),
             number::margin(keep.assessment.friction_margin),
             number::mu(keep.setup.friction.mu),

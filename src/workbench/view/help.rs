@@ -14,12 +14,15 @@ const NUMBERS: [(&str, &str); 9] = [
         "quality",
         "the largest load held in every direction by 1 N of total squeeze; a torque counts as tau over the reach",
     ),
-    ("per finger", "the same with 1 N allowed to each finger"),
+    ("per finger", "the same with 1 N allowed to each finger; /finger in the list when sorted by it"),
     ("margin", "mu over the friction needed; below 1 the grasp is not closed, \"any\" needs no friction"),
     ("place", "mm every finger may be off along its edge, all at once, before closure or the stretch is lost"),
     ("weakest", "the push and turn against which this grasp gives least"),
     ("^", "no row of the list is better on one of quality, margin and place and as good on the others"),
-    ("edges", "ring:edge as in the part file; 0 is the outer ring, @ is mm from the edge's first vertex"),
+    (
+        "edges",
+        "numbers of the outer ring's edges in the part file, a hole's as ring:edge; @ is mm from the edge's first vertex",
+    ),
 ];
 
 /// The lines of the page for a width.

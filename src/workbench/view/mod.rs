@@ -144,7 +144,7 @@ impl Layout {
 
     fn beside(&mut self, area: Rect, left: Panel) {
         // The table needs about forty columns for three fingers; what is more goes to the picture first.
-        let table_width = (area.width * 9 / 20).clamp(38, 62).min(area.width / 2 + 8);
+        let table_width = (area.width * 9 / 20).clamp(40, 62).min(area.width / 2 + 8);
         let left_area = Rect { width: area.width - table_width - 1, ..area };
         self.divider = Some(Rect { x: left_area.right(), width: 1, ..area });
         self.table = Some(Rect { x: left_area.right() + 1, width: table_width, ..area });

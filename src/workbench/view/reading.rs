@@ -13,7 +13,7 @@ use ratatui::text::{Line, Span};
 /// Width of the names on the left.
 const NAMES: usize = 11;
 /// Width of the values beside them.
-const VALUES: usize = 11;
+const VALUES: usize = 13;
 
 /// The lines of the reading for a width; `full` tells everything, one finger to a line.
 pub(super) fn lines(state: &State, width: u16, full: bool) -> Vec<Line<'static>> {
@@ -22,7 +22,7 @@ pub(super) fn lines(state: &State, width: u16, full: bool) -> Vec<Line<'static>>
     };
     let mut page = Page { width: usize::from(width), full, state, lines: Vec::new() };
     if full {
-        let edges = table::edges(&state.order.scene, &reading.grasp.spots);
+        let edges = table::edges(&reading.grasp.spots);
         let rank = state.row().map_or_else(|| "not listed".to_owned(), |_| format!("number {}", state.selected + 1));
         page.heading(&format!("grasp on edges {edges}, {rank}"), reading);
     } else if state.row().is_none() {
@@ -178,12 +178,21 @@ impl Page<'_> {
             }
         }
         if !reading.band.is_empty() {
-            let told: Vec<String> =
-                reading.band.iter().map(|(name, mu, v)| format!("{name} {}: {}", number::mu(*mu), v.word())).collect();
+            let mut meaning = String::new();
+            let mut last = None;
+            for (name, mu, verdict) in &reading.band {
+                if last == Some(*verdict) {
+                    meaning.push_str(", ");
+                } else {
+                    let gap = if last.is_some() { "; " } else { "" };
+                    meaning.push_str(&format!("{gap}{} at ", verdict.word()));
+                }
+                meaning.push_str(&format!("{name} {}", number::mu(*mu)));
+                last = Some(*verdict);
+            }
             let friction = &self.state.setup().friction;
-            let mut meaning = told.join("   ");
             if let Some(condition) = friction.condition {
-                meaning.push_str(&format!("   ({})", condition_word(condition)));
+                meaning.push_str(&format!(" ({})", condition_word(condition)));
             }
             self.tell("band", "", look.plain(), &meaning);
             if let (true, Some(source)) = (self.full, &friction.source) {
@@ -210,7 +219,7 @@ impl Page<'_> {
     fn placement(&mut self, a: &Assessment) {
         let placement = &a.placement;
         let governs = match placement.governor {
-            Governor::Closure => "every finger may be off this far before closure is lost".to_owned(),
+            Governor::Closure => "each finger may be off this far before closure is lost".to_owned(),
             Governor::Stretch { finger } => format!(
                 "then finger {} leaves its stretch; closure to {} mm",
                 finger + 1,
@@ -223,15 +232,18 @@ impl Page<'_> {
     fn weakest(&mut self, weakest: &Weakest) {
         let mut told = Vec::new();
         if let Some(degrees) = weakest.force_deg() {
-            told.push(format!("toward {} deg (share {:.2})", number::degrees(degrees), weakest.force()));
+            told.push(format!("toward {} deg ({:.2})", number::degrees(degrees), weakest.force()));
         }
         // A share that would be shown as nothing is left out.
         if weakest.torque().abs() >= 0.005 {
             let turn = if weakest.torque() > 0.0 { "counter-clockwise" } else { "clockwise" };
-            told.push(format!("turning {turn} (share {:.2})", weakest.torque().abs()));
+            told.push(format!("turning {turn} ({:.2})", weakest.torque().abs()));
         }
         let meaning = format!("fingers give least {}", told.join(", "));
         self.tell("weakest", "", self.state.look.plain(), &meaning);
+        if self.full && told.len() > 1 {
+            self.tell("", "", self.state.look.plain(), "in brackets the shares of force and of torque over the reach");
+        }
     }
 
     fn contacts(&mut self, reading: &Reading) {

@@ -2,7 +2,7 @@
 
 use super::super::state::{Job, Shown, State};
 use super::{number, put, titled, wrapped};
-use crate::search::{Floors, Listed, Scene, Spot};
+use crate::search::{Floors, Key, Listed, Spot};
 use ratatui::buffer::Buffer;
 use ratatui::layout::Rect;
 
@@ -60,7 +60,7 @@ fn rows(state: &State, shown: &Shown, area: Rect, buf: &mut Buffer) {
     // Two signs, the Pareto sign, the rank, a space.
     let lead = 7;
     // Number columns leave from the right before the edges are cut, unless there are very many fingers.
-    let longest = |row: &Listed| edges(&shown.order.scene, &row.grasp.spots).chars().count();
+    let longest = |row: &Listed| edges(&row.grasp.spots).chars().count();
     let least_edges = shown.ranking.grasps.iter().map(longest).max().unwrap_or(0).clamp(6, 24);
     let mut columns = COLUMNS.len();
     let numbers = |columns: usize| COLUMNS[..columns].iter().map(|(_, width)| width).sum::<usize>();
@@ -68,8 +68,11 @@ fn rows(state: &State, shown: &Shown, area: Rect, buf: &mut Buffer) {
         columns -= 1;
     }
     let edges_width = width.saturating_sub(lead + numbers(columns));
+    let per_finger = shown.order.key == Key::QualityPerFinger;
     let mut head = format!("   {:>3} {:<edges_width$}", "#", "edges");
     for (name, width) in &COLUMNS[..columns] {
+        // The quality shown is the one the list is sorted by.
+        let name = if per_finger && *name == "quality" { "/finger" } else { name };
         head.push_str(&format!("{name:>width$}"));
     }
     put(buf, area, &head, state.look.dim());
@@ -85,9 +88,10 @@ fn rows(state: &State, shown: &Shown, area: Rect, buf: &mut Buffer) {
             if state.mark_on(&row.grasp.spots).is_some() { '*' } else { ' ' },
             if shown.unbeaten.get(i) == Some(&true) { '^' } else { ' ' },
             i + 1,
-            padded(&edges(&shown.order.scene, &row.grasp.spots), edges_width),
+            padded(&edges(&row.grasp.spots), edges_width),
         );
-        let values = [number::quality(a.quality), number::margin(a.friction_margin), number::mm(a.placement.mm)];
+        let quality = if per_finger { a.quality_per_finger } else { a.quality };
+        let values = [number::quality(quality), number::margin(a.friction_margin), number::mm(a.placement.mm)];
         for (value, (_, width)) in values.iter().zip(&COLUMNS[..columns]) {
             text.push_str(&format!("{value:>width$}"));
         }
@@ -112,11 +116,11 @@ fn first_row(selected: usize, height: usize, rows: usize) -> usize {
     top.min(rows.saturating_sub(height))
 }
 
-/// The fingers' edges; the ring is left out where there is but one.
-pub(super) fn edges(scene: &Scene, spots: &[Spot]) -> String {
-    let one_ring = scene.part().outline().ring_sizes().len() == 1;
-    let name = |spot: &Spot| {
-        if one_ring { spot.edge.edge.to_string() } else { format!("{}:{}", spot.edge.ring, spot.edge.edge) }
+/// The fingers' edges: those of the outer ring by their number, those of a hole as ring:edge.
+pub(super) fn edges(spots: &[Spot]) -> String {
+    let name = |spot: &Spot| match spot.edge.ring {
+        0 => spot.edge.edge.to_string(),
+        ring => format!("{ring}:{}", spot.edge.edge),
     };
     spots.iter().map(name).collect::<Vec<_>>().join(" ")
 }
