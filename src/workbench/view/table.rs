@@ -47,8 +47,13 @@ fn title(state: &State) -> (String, String) {
         0 => String::new(),
         n => format!("{n} in doubt "),
     };
-    let floors = if floors(&state.setup().floors).is_empty() { "" } else { "above floors " };
-    let right = format!("{floors}{doubtful}{sample}").trim().to_owned();
+    let hidden = match ranking.below_floors {
+        0 => String::new(),
+        _ if floors(&state.setup().floors).is_empty() => String::new(),
+        _ if ranking.closed == ranking.below_floors => "floors hide all ".to_owned(),
+        n => format!("floors hide {} % ", (n as u128 * 100).div_ceil(u128::from(ranking.closed)).min(99)),
+    };
+    let right = format!("{hidden}{doubtful}{sample}").trim().to_owned();
     (number::count(ranking.families as u64, "family", "families"), right)
 }
 
