@@ -39,6 +39,8 @@ pub struct Ranking {
     pub examined: u64,
     /// Those closed among them.
     pub closed: u64,
+    /// Closed sets hidden because they fall below a floor.
+    pub below_floors: u64,
     /// Grasps whose two ways of scoring disagree; they are left out of the list.
     pub inconclusive: u64,
     /// False when the budget made it a sample, or the ranking is not done yet.
@@ -144,6 +146,7 @@ fn listed(screen: &Screen, tally: &Tally, most: usize, complete: bool) -> Rankin
         sites: screen.sites.len(),
         examined: tally.examined,
         closed: tally.closed,
+        below_floors: tally.below_floors,
         inconclusive: 0,
         complete,
         families: tally.families(),

@@ -39,6 +39,8 @@ pub(super) struct Screen<'a> {
 pub(super) struct Tally {
     pub examined: u64,
     pub closed: u64,
+    /// Those among them that fall below a floor.
+    pub below_floors: u64,
     /// Families with a grasp to list, other than those in `spread`.
     families: usize,
     /// Families with a grasp to list whose sets are spread over several parcels, by their hash: a million families
@@ -49,7 +51,7 @@ pub(super) struct Tally {
 
 impl Tally {
     pub(super) fn new(most: usize) -> Self {
-        Self { examined: 0, closed: 0, families: 0, spread: HashSet::new(), top: Top::new(most) }
+        Self { examined: 0, closed: 0, below_floors: 0, families: 0, spread: HashSet::new(), top: Top::new(most) }
     }
 
     /// An empty tally for a thread to fill, that need not keep what this one would not.
@@ -65,6 +67,7 @@ impl Tally {
         Self {
             examined: self.examined + other.examined,
             closed: self.closed + other.closed,
+            below_floors: self.below_floors + other.below_floors,
             families: self.families + other.families,
             spread: self.spread,
             top: self.top.merge(other.top),
@@ -317,6 +320,7 @@ impl<'a, 'b> Run<'a, 'b> {
         let room_mm = (0..self.k).map(|finger| self.site(finger).room_mm).fold(f64::INFINITY, f64::min);
         let placement_mm = (score.torque_up.min(score.torque_down) * self.screen.scale_mm).min(room_mm);
         if score.signed_quality < floors.quality || placement_mm < floors.placement_mm || !self.keeps_margin_floor() {
+            self.tally.below_floors += 1;
             return Ok(());
         }
         let placement = order::quanta(placement_mm / self.screen.scale_mm);

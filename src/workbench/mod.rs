@@ -1,56 +1,45 @@
-//! What is seen and touched: state, update, view, terminal.
+//! What is seen: the terminal workbench.
+//!
+//! [`update()`] carries inputs into the [`State`] and returns effects, without any I/O; [`view`] draws from the state
+//! alone; `run` owns the threads, the terminal and the files. All keys stand in one table ([`action::TABLE`]).
+
+pub mod action;
+mod entry;
+mod guard;
+mod look;
+mod recovery;
+mod run;
+pub mod state;
+mod terminal;
+pub mod update;
+pub mod view;
+
+pub use action::Key;
+pub use look::{ColorChoice, Look, Marker, is_utf8};
+pub use run::run;
+pub use state::State;
+pub use update::{Effect, Input, update};
 
 use crate::part::Part;
-use crate::search::Setup;
+use crate::search;
 use std::path::PathBuf;
 use std::sync::Arc;
 
-/// When colours are used.
-#[derive(Debug, Clone, Copy, PartialEq, Eq)]
-pub enum ColorChoice {
-    /// When the terminal has them and NO_COLOR is not set.
-    Auto,
-    /// Always.
-    Always,
-    /// Never.
-    Never,
-}
-
-/// What the outline is drawn with.
-#[derive(Debug, Clone, Copy, PartialEq, Eq)]
-pub enum Marker {
-    /// Plain ASCII.
-    Ascii,
-    /// Line-drawing characters.
-    Line,
-    /// Braille dots.
-    Braille,
-}
-
-/// What the workbench opens with.
+/// What the workbench is opened with.
 #[derive(Debug, Clone)]
 pub struct Options {
     /// The part file.
     pub part_path: PathBuf,
-    /// The setup file, when one was given.
+    /// The setup file, if one was given.
     pub setup_path: Option<PathBuf>,
     /// The part.
     pub part: Arc<Part>,
-    /// The setup in force, command-line values included.
-    pub setup: Setup,
-    /// Where grasps are kept.
+    /// The setup in force: file and command line together.
+    pub setup: search::Setup,
+    /// Where marks are saved.
     pub grasp_path: PathBuf,
-    /// Colours.
+    /// Colour.
     pub color: ColorChoice,
-    /// Marker, when one was given.
+    /// Marker of the outline; ASCII unless told.
     pub marker: Option<Marker>,
-}
-
-/// Runs the workbench until it is left.
-///
-/// # Errors
-/// The terminal failed.
-pub fn run(options: Options) -> std::io::Result<()> {
-    let _ = options;
-    Err(std::io::Error::other("the workbench is not part of this build"))
 }

@@ -1,0 +1,337 @@
+//! The one table of actions: keys, footer labels, help lines and when each is allowed.
+//!
+//! Dispatch, the footer, the help page and the README's table of keys are all read from [`TABLE`], so they cannot
+//! drift apart. `[`, `O` and `A` to `D` are bound to nothing: an arrow key torn apart by a slow line looks like them.
+
+use super::state::{Layer, Question, State};
+use std::fmt;
+
+/// A key as the workbench knows it.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Hash)]
+pub enum Key {
+    /// A printable character.
+    Char(char),
+    /// A letter with Ctrl.
+    Ctrl(char),
+    /// Arrow up.
+    Up,
+    /// Arrow down.
+    Down,
+    /// Arrow left.
+    Left,
+    /// Arrow right.
+    Right,
+    /// Enter.
+    Enter,
+    /// Escape.
+    Esc,
+    /// Tab.
+    Tab,
+    /// Backspace.
+    Backspace,
+    /// Delete.
+    Delete,
+    /// Home.
+    Home,
+    /// End.
+    End,
+    /// Page up.
+    PageUp,
+    /// Page down.
+    PageDown,
+}
+
+impl fmt::Display for Key {
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        match self {
+            Self::Char(' ') => f.write_str("Space"),
+            Self::Char(c) => write!(f, "{c}"),
+            Self::Ctrl(c) => write!(f, "Ctrl-{}", c.to_ascii_uppercase()),
+            Self::Up => f.write_str("Up"),
+            Self::Down => f.write_str("Down"),
+            Self::Left => f.write_str("Left"),
+            Self::Right => f.write_str("Right"),
+            Self::Enter => f.write_str("Enter"),
+            Self::Esc => f.write_str("Esc"),
+            Self::Tab => f.write_str("Tab"),
+            Self::Backspace => f.write_str("Backspace"),
+            Self::Delete => f.write_str("Delete"),
+            Self::Home => f.write_str("Home"),
+            Self::End => f.write_str("End"),
+            Self::PageUp => f.write_str("PgUp"),
+            Self::PageDown => f.write_str("PgDn"),
+        }
+    }
+}
+
+/// Where a row of the table holds.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Hash)]
+pub enum Scope {
+    /// The bench itself, no layer open.
+    Bench,
+    /// A page that is read and scrolled: help, the full reading, a fault.
+    Page,
+    /// The list of marks.
+    Marks,
+    /// A line of text being typed.
+    Entry,
+    /// Unsaved marks at the end.
+    AskQuit,
+    /// The grasp file changed meanwhile.
+    AskReload,
+    /// Marks left behind by a broken run.
+    AskRecover,
+    /// Everywhere, looked up last.
+    Any,
+}
+
+impl Scope {
+    /// The scope of what lies on top.
+    pub fn of(state: &State) -> Self {
+        match state.layers.last() {
+            None => Self::Bench,
+            Some(Layer::Help { .. } | Layer::Reading { .. } | Layer::Fault { .. }) => Self::Page,
+            Some(Layer::Marks { .. }) => Self::Marks,
+            Some(Layer::Entry(_)) => Self::Entry,
+            Some(Layer::Ask(Question::Quit)) => Self::AskQuit,
+            Some(Layer::Ask(Question::Reload)) => Self::AskReload,
+            Some(Layer::Ask(Question::Recover { .. })) => Self::AskRecover,
+        }
+    }
+}
+
+/// What can be done.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Hash)]
+pub enum Action {
+    /// One row up.
+    Up,
+    /// One row down.
+    Down,
+    /// A page up.
+    PageUp,
+    /// A page down.
+    PageDown,
+    /// First row.
+    First,
+    /// Last row.
+    Last,
+    /// Friction up a fine step.
+    MuUp,
+    /// Friction down a fine step.
+    MuDown,
+    /// Friction up a coarse step.
+    MuUpCoarse,
+    /// Friction down a coarse step.
+    MuDownCoarse,
+    /// Type the friction.
+    MuEnter,
+    /// One finger more.
+    FingersMore,
+    /// One finger fewer.
+    FingersFewer,
+    /// Next sort key.
+    SortNext,
+    /// Sites closer together.
+    SpacingFiner,
+    /// Sites farther apart.
+    SpacingWider,
+    /// Families or single grasps.
+    Listing,
+    /// Friction cones on the outline.
+    Cones,
+    /// Next marker.
+    Marker,
+    /// Bring in the next panel where not all fit.
+    NextPanel,
+    /// The reading on the whole screen.
+    OpenReading,
+    /// Mark or unmark.
+    Mark,
+    /// Name the grasp.
+    Name,
+    /// Note why.
+    Note,
+    /// The list of marks.
+    OpenMarks,
+    /// Save unsaved marks.
+    Save,
+    /// The help page.
+    Help,
+    /// Leave.
+    Quit,
+    /// Close the top layer.
+    Close,
+    /// Take what was typed or chosen.
+    Accept,
+    /// Answer that keeps or loads.
+    Yes,
+    /// Answer that drops.
+    No,
+    /// Delete to the left.
+    Backspace,
+    /// Delete to the right.
+    Delete,
+    /// Delete all that was typed.
+    Empty,
+    /// Cursor left.
+    CursorLeft,
+    /// Cursor right.
+    CursorRight,
+    /// Paint the whole screen again.
+    Repaint,
+    /// Stop and give the shell back.
+    Suspend,
+    /// Ctrl-C.
+    Interrupt,
+}
+
+/// One row of the table.
+pub struct Row {
+    /// What it does.
+    pub action: Action,
+    /// Where it holds.
+    pub scope: Scope,
+    /// Keys, the one shown in the footer first.
+    pub keys: &'static [Key],
+    /// Word in the footer; empty keeps it out.
+    pub label: &'static str,
+    /// Line of the help page; empty keeps it out.
+    pub help: &'static str,
+    /// Whether it makes sense now.
+    pub allowed: fn(&State) -> bool,
+}
+
+const fn row(
+    action: Action,
+    scope: Scope,
+    keys: &'static [Key],
+    label: &'static str,
+    help: &'static str,
+    allowed: fn(&State) -> bool,
+) -> Row {
+    Row { action, scope, keys, label, help, allowed }
+}
+
+fn always(_: &State) -> bool {
+    true
+}
+
+fn any_row(state: &State) -> bool {
+    state.rows() > 0
+}
+
+fn any_mark(state: &State) -> bool {
+    !state.marks.is_empty()
+}
+
+fn any_unsaved(state: &State) -> bool {
+    state.unsaved() > 0
+}
+
+use Action as A;
+use Key::{Char as C, Ctrl};
+use Scope as S;
+
+/// Every key of the workbench.
+pub static TABLE: &[Row] = &[
+    row(A::Help, S::Bench, &[C('?')], "help", "this page", always),
+    row(A::Quit, S::Bench, &[C('q')], "quit", "leave; asks when marks are unsaved", always),
+    row(A::Down, S::Bench, &[C('j'), Key::Down], "down", "next grasp", any_row),
+    row(A::Up, S::Bench, &[C('k'), Key::Up], "up", "grasp before", any_row),
+    row(A::OpenReading, S::Bench, &[Key::Enter], "read", "the whole reading of the grasp", any_row),
+    row(A::Mark, S::Bench, &[C('m'), C(' ')], "mark", "mark the grasp, or take its mark away", any_row),
+    row(A::Save, S::Bench, &[C('s')], "save", "save unsaved marks to the grasp file", any_unsaved),
+    row(A::MuUp, S::Bench, &[C('l'), Key::Right, C('+')], "mu+", "mu up by 0.01", always),
+    row(A::MuDown, S::Bench, &[C('h'), Key::Left, C('-')], "mu-", "mu down by 0.01", always),
+    row(A::FingersMore, S::Bench, &[C('f')], "finger+", "one finger more", always),
+    row(A::FingersFewer, S::Bench, &[C('F')], "finger-", "one finger fewer", always),
+    row(A::SortNext, S::Bench, &[C('o')], "order", "sort by the next key", always),
+    row(A::Listing, S::Bench, &[C('v')], "members", "list families' best grasps, or every grasp", always),
+    row(A::Cones, S::Bench, &[C('c')], "cones", "friction cones on the outline", always),
+    row(A::Name, S::Bench, &[C('n')], "name", "mark the grasp and name it", any_row),
+    row(A::Note, S::Bench, &[C('w')], "why", "mark the grasp and note why", any_row),
+    row(A::OpenMarks, S::Bench, &[C('M')], "marks", "list the marks, also those no longer ranked", any_mark),
+    row(A::MuEnter, S::Bench, &[C('=')], "set mu", "type mu", always),
+    row(A::MuUpCoarse, S::Bench, &[C('>')], "", "mu up by 0.05", always),
+    row(A::MuDownCoarse, S::Bench, &[C('<')], "", "mu down by 0.05", always),
+    row(A::SpacingFiner, S::Bench, &[C('.')], "finer", "sites closer together (spacing x 0.8)", always),
+    row(A::SpacingWider, S::Bench, &[C(',')], "wider", "sites farther apart (spacing x 1.25)", always),
+    row(A::Marker, S::Bench, &[C('p')], "pen", "draw with ASCII, lines or braille dots", always),
+    row(A::NextPanel, S::Bench, &[Key::Tab], "panel", "on a small screen: bring in the next panel", always),
+    row(A::PageDown, S::Bench, &[C('J'), Key::PageDown], "", "a page down", any_row),
+    row(A::PageUp, S::Bench, &[C('K'), Key::PageUp], "", "a page up", any_row),
+    row(A::First, S::Bench, &[C('g'), Key::Home], "", "first grasp", any_row),
+    row(A::Last, S::Bench, &[C('G'), Key::End], "", "last grasp", any_row),
+    row(A::Close, S::Bench, &[Key::Esc], "", "close what lies on top; never quits", always),
+    row(A::Close, S::Page, &[Key::Esc, C('q'), Key::Enter, C('?')], "close", "", always),
+    row(A::Down, S::Page, &[C('j'), Key::Down], "down", "", always),
+    row(A::Up, S::Page, &[C('k'), Key::Up], "up", "", always),
+    row(A::PageDown, S::Page, &[C(' '), C('J'), Key::PageDown], "page", "", always),
+    row(A::PageUp, S::Page, &[C('K'), Key::PageUp], "", "", always),
+    row(A::First, S::Page, &[C('g'), Key::Home], "", "", always),
+    row(A::Last, S::Page, &[C('G'), Key::End], "", "", always),
+    row(A::Close, S::Marks, &[Key::Esc, C('q')], "close", "", always),
+    row(A::Down, S::Marks, &[C('j'), Key::Down], "down", "", always),
+    row(A::Up, S::Marks, &[C('k'), Key::Up], "up", "", always),
+    row(A::Accept, S::Marks, &[Key::Enter], "find in the list", "", any_mark),
+    row(A::Mark, S::Marks, &[C('m'), C(' ')], "unmark", "", any_mark),
+    row(A::Save, S::Marks, &[C('s')], "save", "", any_unsaved),
+    row(A::Accept, S::Entry, &[Key::Enter], "take", "", always),
+    row(A::Close, S::Entry, &[Key::Esc], "leave", "", always),
+    row(A::Backspace, S::Entry, &[Key::Backspace, Ctrl('h')], "", "", always),
+    row(A::Delete, S::Entry, &[Key::Delete], "", "", always),
+    row(A::Empty, S::Entry, &[Ctrl('u')], "empty", "", always),
+    row(A::CursorLeft, S::Entry, &[Key::Left, Ctrl('b')], "", "", always),
+    row(A::CursorRight, S::Entry, &[Key::Right, Ctrl('f')], "", "", always),
+    row(A::First, S::Entry, &[Key::Home, Ctrl('a')], "", "", always),
+    row(A::Last, S::Entry, &[Key::End, Ctrl('e')], "", "", always),
+    row(A::Yes, S::AskQuit, &[C('s')], "save and quit", "", always),
+    row(A::No, S::AskQuit, &[C('x')], "quit without saving", "", always),
+    row(A::Close, S::AskQuit, &[Key::Esc], "stay", "", always),
+    row(A::Yes, S::AskReload, &[C('y')], "read it again and append", "", always),
+    row(A::Close, S::AskReload, &[Key::Esc, C('n')], "not now", "", always),
+    row(A::Yes, S::AskRecover, &[C('y')], "take them back", "", always),
+    row(A::No, S::AskRecover, &[C('x')], "delete them", "", always),
+    row(A::Close, S::AskRecover, &[Key::Esc, C('n')], "ask again next time", "", always),
+    row(A::Repaint, S::Any, &[Ctrl('l')], "", "paint the whole screen again", always),
+    row(A::Suspend, S::Any, &[Ctrl('z')], "", "stop and give the shell back; `fg` returns", always),
+    row(A::Interrupt, S::Any, &[Ctrl('c')], "", "leave; twice leaves at once, marks go to a recovery file", always),
+];
+
+/// What a key does now, if anything.
+pub fn action_of(state: &State, key: Key) -> Option<Action> {
+    let scope = Scope::of(state);
+    let holds = |row: &&Row| row.keys.contains(&key) && (row.allowed)(state);
+    TABLE
+        .iter()
+        .filter(|row| row.scope == scope)
+        .find(holds)
+        .or_else(|| TABLE.iter().filter(|row| row.scope == Scope::Any).find(holds))
+        .map(|row| row.action)
+}
+
+/// The rows the footer may show now, most useful first.
+pub fn footer(state: &State) -> impl Iterator<Item = &'static Row> {
+    let scope = Scope::of(state);
+    TABLE.iter().filter(move |row| row.scope == scope && !row.label.is_empty() && (row.allowed)(state))
+}
+
+/// The keys of a row, joined for reading.
+pub fn keys_of(row: &Row) -> String {
+    row.keys.iter().map(Key::to_string).collect::<Vec<_>>().join(" ")
+}
+
+/// The rows of the help page: the bench's keys, then those that hold everywhere.
+pub fn help() -> impl Iterator<Item = &'static Row> {
+    TABLE.iter().filter(|row| !row.help.is_empty())
+}
+
+/// The table of keys in Markdown, for the README.
+pub fn markdown() -> String {
+    let mut text = String::from("| keys | what they do |\n|---|---|\n");
+    for row in help() {
+        let keys: Vec<String> = row.keys.iter().map(|key| format!("`{key}`")).collect();
+        text.push_str(&format!("| {} | {} |\n", keys.join(" "), row.help));
+    }
+    text
+}

@@ -1,0 +1,355 @@
+//! What the workbench knows: the scene, the ranking shown, the selection, the marks and the open layers. No I/O.
+
+use super::look::{ColorChoice, Look, Marker};
+use crate::file::Keep;
+use crate::hand::Stretch;
+use crate::mechanics::assess::Doubt;
+use crate::mechanics::{Assessment, Verdict};
+use crate::search::job::Request;
+use crate::search::{Grasp, Key, Listed, Listing, Ranking, Scene, Setup, Spot};
+use std::path::PathBuf;
+use std::sync::Arc;
+
+/// Rows asked of a ranking. More than anyone reads, few enough that the job stays quick.
+pub const MOST_ROWS: usize = 200;
+
+/// What a ranking is made from: a knob turned makes another one.
+#[derive(Debug, Clone)]
+pub struct Order {
+    /// Part and setup.
+    pub scene: Arc<Scene>,
+    /// Sort key.
+    pub key: Key,
+    /// Families or members.
+    pub listing: Listing,
+}
+
+impl Order {
+    pub(super) fn request(&self) -> Request {
+        Request { scene: Arc::clone(&self.scene), key: self.key, listing: self.listing, most: MOST_ROWS }
+    }
+}
+
+/// A ranking on the screen, with what it was made from.
+#[derive(Debug, Clone)]
+pub struct Shown {
+    /// The ranking.
+    pub ranking: Arc<Ranking>,
+    /// What it was made from.
+    pub order: Order,
+    /// Its number.
+    pub generation: u64,
+    /// For each row: no other row is better on one of quality, friction margin and placement and as good on the rest.
+    pub unbeaten: Vec<bool>,
+}
+
+/// How the running job does.
+#[derive(Debug, Clone, PartialEq)]
+pub enum Job {
+    /// Nothing runs.
+    Idle,
+    /// Asked, or running with so many of so many sets looked at.
+    Running(Option<(u64, u64)>),
+    /// It broke; the reason.
+    Failed(String),
+}
+
+/// The grasp the user chose, kept while rankings come and go.
+#[derive(Debug, Clone, PartialEq)]
+pub(super) struct Anchor {
+    pub(super) spots: Vec<Spot>,
+}
+
+/// Everything told of the selected grasp, under the knobs as they stand now.
+#[derive(Debug, Clone)]
+pub struct Reading {
+    /// Where the fingers stand.
+    pub grasp: Grasp,
+    /// Its scores.
+    pub assessment: Assessment,
+    /// Why a number is not to be trusted.
+    pub doubts: Vec<Doubt>,
+    /// Name, mu and verdict for each value of the friction band the setup states.
+    pub band: Vec<(&'static str, f64, Verdict)>,
+}
+
+impl Reading {
+    /// Reads spots under a scene; nothing when the scene has no such place.
+    pub(super) fn of(scene: &Scene, spots: &[Spot]) -> Option<Self> {
+        let grasp = scene.grasp(spots).ok()?;
+        let (assessment, doubts) = scene.assess(&grasp);
+        let friction = &scene.setup().friction;
+        let wrenches = scene.wrenches(&grasp);
+        let band = [
+            ("low", friction.low),
+            ("nominal", friction.nominal),
+            ("high", friction.high),
+            ("sliding", friction.sliding),
+        ]
+        .into_iter()
+        .filter_map(|(name, mu)| Some((name, mu?, Assessment::verdict_at(&wrenches, friction.mu, mu?))))
+        .collect();
+        Some(Self { grasp, assessment, doubts, band })
+    }
+}
+
+/// A grasp the user wants to keep.
+#[derive(Debug, Clone)]
+pub struct Mark {
+    /// Number within this run.
+    pub id: u64,
+    /// The grasp as it goes to the file.
+    pub keep: Keep,
+    /// Already in the file as it stands here.
+    pub saved: bool,
+}
+
+/// What a line of text is typed for.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum EntryKind {
+    /// The friction coefficient.
+    Mu,
+    /// The name of a grasp.
+    Name,
+    /// Why a grasp is kept.
+    Note,
+}
+
+/// A line of text being typed.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Entry {
+    /// What for.
+    pub kind: EntryKind,
+    /// The text.
+    pub text: String,
+    /// Cursor, in characters.
+    pub at: usize,
+    /// Why it was not taken.
+    pub fault: Option<String>,
+    /// The grasp it is about.
+    pub spots: Vec<Spot>,
+}
+
+/// A question.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Question {
+    /// Unsaved marks at the end.
+    Quit,
+    /// The grasp file changed meanwhile.
+    Reload,
+    /// So many marks were left behind by a broken run.
+    Recover {
+        /// How many.
+        count: usize,
+    },
+}
+
+/// Something that lies on top of the bench and takes the keys.
+#[derive(Debug, Clone, PartialEq)]
+pub enum Layer {
+    /// Help page, scrolled.
+    Help {
+        /// First line shown.
+        top: usize,
+    },
+    /// The full reading, scrolled.
+    Reading {
+        /// First line shown.
+        top: usize,
+    },
+    /// A fault with its mend, scrolled.
+    Fault {
+        /// First line shown.
+        top: usize,
+        /// What did not work.
+        title: &'static str,
+        /// The lines.
+        lines: Vec<String>,
+    },
+    /// The list of marks.
+    Marks {
+        /// Selected mark.
+        at: usize,
+    },
+    /// A line of text being typed.
+    Entry(Entry),
+    /// A question.
+    Ask(Question),
+}
+
+/// A panel of the bench.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Panel {
+    /// The ranked table.
+    Table,
+    /// The outline.
+    Outline,
+    /// The reading.
+    Reading,
+}
+
+/// All of it.
+#[derive(Debug, Clone)]
+pub struct State {
+    /// The knobs as they stand, whether or not a ranking for them is there yet.
+    pub order: Order,
+    /// The ranking on the screen.
+    pub shown: Option<Shown>,
+    /// Number of the ranking last asked for; nothing until the job told it.
+    pub asked: Option<u64>,
+    /// How that job does.
+    pub job: Job,
+    /// Selected row.
+    pub selected: usize,
+    pub(super) anchor: Option<Anchor>,
+    /// The selected grasp under the present knobs.
+    pub reading: Option<Reading>,
+    /// Marks, in the order they were made.
+    pub marks: Vec<Mark>,
+    pub(super) next_mark: u64,
+    /// What lies on top, the last uppermost.
+    pub layers: Vec<Layer>,
+    /// A line for the user; gone with the next key.
+    pub message: Option<String>,
+    /// Cones drawn.
+    pub cones: bool,
+    /// Panel that is shown when not all fit.
+    pub panel: Panel,
+    /// Colours, marker and cell shape.
+    pub look: Look,
+    /// Where marks are saved.
+    pub grasp_path: PathBuf,
+    pub(super) quit_when_saved: bool,
+    pub(super) draft: Option<Entry>,
+    /// Size of the screen, columns and rows, for page steps.
+    pub size: (u16, u16),
+}
+
+impl State {
+    /// A workbench with nothing ranked yet.
+    ///
+    /// # Errors
+    /// A setup that asks for something not built yet.
+    pub fn new(options: &super::Options) -> Result<Self, &'static str> {
+        let scene = Arc::new(Scene::new(Arc::clone(&options.part), options.setup.clone())?);
+        Ok(Self {
+            order: Order { scene, key: Key::Quality, listing: Listing::Families },
+            shown: None,
+            asked: None,
+            job: Job::Idle,
+            selected: 0,
+            anchor: None,
+            reading: None,
+            marks: Vec::new(),
+            next_mark: 1,
+            layers: Vec::new(),
+            message: None,
+            cones: false,
+            panel: Panel::Table,
+            look: Look {
+                color: options.color == ColorChoice::Always,
+                marker: options.marker.unwrap_or(Marker::Ascii),
+                aspect: 2.0,
+                utf8: true,
+            },
+            grasp_path: options.grasp_path.clone(),
+            quit_when_saved: false,
+            draft: None,
+            size: (80, 24),
+        })
+    }
+
+    /// The setup as the knobs stand.
+    pub fn setup(&self) -> &Setup {
+        self.order.scene.setup()
+    }
+
+    /// Rows of the list.
+    pub fn rows(&self) -> usize {
+        self.shown.as_ref().map_or(0, |shown| shown.ranking.grasps.len())
+    }
+
+    /// The selected row.
+    pub fn row(&self) -> Option<&Listed> {
+        self.shown.as_ref()?.ranking.grasps.get(self.selected)
+    }
+
+    /// True when the list on the screen belongs to other knobs than those that stand now.
+    pub fn is_old(&self) -> bool {
+        self.shown.as_ref().is_some_and(|shown| Some(shown.generation) != self.asked)
+    }
+
+    /// Marks not in the file.
+    pub fn unsaved(&self) -> usize {
+        self.marks.iter().filter(|mark| !mark.saved).count()
+    }
+
+    /// The mark on a grasp.
+    pub fn mark_on(&self, spots: &[Spot]) -> Option<&Mark> {
+        self.marks.iter().find(|mark| mark.keep.grasp.spots == spots)
+    }
+
+    /// Reads the selected grasp again; while nothing is listed, the one last selected, so that it can be seen how it
+    /// comes open.
+    pub(super) fn read(&mut self) {
+        let last = || self.reading.as_ref().map(|reading| reading.grasp.spots.clone());
+        let spots = self.row().map(|row| row.grasp.spots.clone()).or_else(last);
+        self.reading = spots.and_then(|spots| Reading::of(&self.order.scene, &spots));
+    }
+
+    /// Puts a ranking on the screen and keeps the selection on the user's grasp: the same spots, else the same family,
+    /// else the nearest rank.
+    pub(super) fn show(&mut self, ranking: Arc<Ranking>, generation: u64) {
+        let unbeaten = unbeaten(&ranking.grasps);
+        let shown = Shown { ranking, order: self.order.clone(), generation, unbeaten };
+        let rows = &shown.ranking.grasps;
+        self.selected = match &self.anchor {
+            None => 0,
+            Some(anchor) => {
+                let same = rows.iter().position(|row| row.grasp.spots == anchor.spots);
+                let family = || {
+                    let family = family_of(&anchor.spots, self.order.scene.stretches())?;
+                    rows.iter().position(|row| row.family == family)
+                };
+                same.or_else(family).unwrap_or(self.selected.min(rows.len().saturating_sub(1)))
+            }
+        };
+        self.shown = Some(shown);
+        self.read();
+    }
+
+    /// Selects a row for the user, who expects to stay on that grasp.
+    pub(super) fn select(&mut self, row: usize) {
+        self.selected = row.min(self.rows().saturating_sub(1));
+        self.anchor = self.row().map(|row| Anchor { spots: row.grasp.spots.clone() });
+        self.read();
+    }
+}
+
+/// The family spots belong to among the stretches of a scene, ascending.
+fn family_of(spots: &[Spot], stretches: &[Stretch]) -> Option<Vec<usize>> {
+    let on = |spot: &Spot| {
+        let near = |s: &Stretch| s.edge == spot.edge && s.room_mm(spot.along_mm) >= -1e-6 * (1.0 + s.to_mm);
+        stretches.iter().position(near)
+    };
+    let mut family = spots.iter().map(on).collect::<Option<Vec<usize>>>()?;
+    family.sort_unstable();
+    Some(family)
+}
+
+/// For each grasp: true when no other is better on one of quality, friction margin and placement and no worse on the
+/// others. Differences within rounding count for nothing.
+pub(super) fn unbeaten(rows: &[Listed]) -> Vec<bool> {
+    let keys: Vec<[f64; 3]> = rows
+        .iter()
+        .map(|row| {
+            let a = &row.assessment;
+            [a.quality, a.friction_margin.unwrap_or(f64::INFINITY), a.placement.mm]
+        })
+        .collect();
+    let above = |a: f64, b: f64| a > b && (a.is_infinite() || a - b > 1e-9 * (1.0 + a.abs()));
+    let beats = |a: &[f64; 3], b: &[f64; 3]| {
+        a.iter().zip(b).any(|(a, b)| above(*a, *b)) && !a.iter().zip(b).any(|(a, b)| above(*b, *a))
+    };
+    keys.iter().map(|own| !keys.iter().any(|other| beats(other, own))).collect()
+}

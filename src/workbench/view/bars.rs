@@ -1,0 +1,95 @@
+//! Header, message line and footer.
+
+use super::super::action;
+use super::super::state::{Job, State};
+use super::{number, put, shifted};
+use crate::file::shown;
+use crate::search::Listing;
+use ratatui::buffer::Buffer;
+use ratatui::layout::Rect;
+
+/// Part and knobs on the left, the job on the right.
+pub(super) fn header(state: &State, area: Rect, buf: &mut Buffer) {
+    let setup = state.setup();
+    let part = state.order.scene.part();
+    let job = job(state);
+    let job_width = job.chars().count() as u16;
+    let left = Rect { width: area.width.saturating_sub(job_width + u16::from(job_width > 0)), ..area };
+    let listing = match state.order.listing {
+        Listing::Families => "families",
+        Listing::Members => "every grasp",
+    };
+    // Knobs that do not fit leave from the right, none is cut.
+    let mut knobs = String::new();
+    for knob in [
+        format!("mu {}", number::mu(setup.friction.mu)),
+        format!("{} fingers", setup.hand.fingers.get()),
+        format!("by {}", state.order.key.word().replace('_', " ")),
+        listing.to_owned(),
+        format!("sites {} mm", number::mm(setup.search.spacing_for(part))),
+    ] {
+        let gap = if knobs.is_empty() { "" } else { "  " };
+        if knobs.len() + gap.len() + knob.len() > usize::from(left.width) {
+            break;
+        }
+        knobs.push_str(gap);
+        knobs.push_str(&knob);
+    }
+    let name = shown(part.name());
+    // The knobs matter more than the name: a long name is cut so that they stay.
+    let room = usize::from(left.width).saturating_sub(knobs.chars().count() + 2);
+    let name: String = if name.chars().count() <= room {
+        name
+    } else if room > 6 {
+        name.chars().take(room - 2).chain("..".chars()).collect()
+    } else {
+        String::new()
+    };
+    let used = if name.is_empty() { 0 } else { name.chars().count() as u16 + 2 };
+    put(buf, left, &name, state.look.title());
+    put(buf, shifted(left, used), &knobs, state.look.plain());
+    put(buf, shifted(area, area.width.saturating_sub(job_width)), &job, state.look.title());
+}
+
+fn job(state: &State) -> String {
+    match &state.job {
+        Job::Idle => String::new(),
+        Job::Running(Some((done, total))) if *total > 0 => {
+            format!("ranking {} %", (*done).min(*total) as u128 * 100 / u128::from(*total))
+        }
+        Job::Running(_) => "ranking".to_owned(),
+        Job::Failed(_) => "FAILED".to_owned(),
+    }
+}
+
+/// What just happened, else how things stand with the marks.
+pub(super) fn message(state: &State, area: Rect, buf: &mut Buffer) {
+    let text = match (&state.message, &state.job) {
+        (Some(message), _) => shown(message),
+        (None, Job::Failed(why)) => format!("the ranking broke: {}; turn a knob to try again", shown(why)),
+        (None, _) if state.marks.is_empty() => String::new(),
+        (None, _) => {
+            let unsaved = state.unsaved();
+            let state_of = if unsaved == 0 { "all saved".to_owned() } else { format!("{unsaved} not saved") };
+            format!("{}, {state_of}", number::count(state.marks.len() as u64, "mark", "marks"))
+        }
+    };
+    let style = if state.message.is_some() { state.look.title() } else { state.look.plain() };
+    put(buf, area, &text, style);
+}
+
+/// As many keys as fit, most useful first; none is cut in half.
+pub(super) fn footer(state: &State, area: Rect, buf: &mut Buffer) {
+    let mut at = area;
+    for row in action::footer(state) {
+        let Some(key) = row.keys.first() else { continue };
+        let key = key.to_string();
+        let (key_width, label_width) = (key.chars().count() as u16, row.label.chars().count() as u16);
+        if key_width + 1 + label_width > at.width {
+            break;
+        }
+        put(buf, at, &key, state.look.title());
+        put(buf, shifted(at, key_width + 1), row.label, state.look.plain());
+        at = shifted(at, key_width + label_width + 3);
+    }
+}

@@ -1,0 +1,53 @@
+//! The help page: keys from the table of actions, a line for each number, the caution.
+
+use super::super::action;
+use super::super::state::State;
+use super::wrapped;
+use crate::file::CAUTION;
+use ratatui::text::{Line, Span};
+
+/// What each number means.
+const NUMBERS: [(&str, &str); 9] = [
+    ("mu", "friction coefficient of the finger tips on the part, as entered; every score uses it"),
+    ("closed", "every push and turn in the part plane can be balanced by pressing hard enough; open: one cannot"),
+    (
+        "quality",
+        "the largest load held in every direction by 1 N of total squeeze; a torque counts as tau over the reach",
+    ),
+    ("per finger", "the same with 1 N allowed to each finger; /finger in the list when sorted by it"),
+    ("margin", "mu over the friction needed; below 1 the grasp is not closed, \"any\" needs no friction"),
+    ("place", "mm every finger may be off along its edge, all at once, before closure or the stretch is lost"),
+    ("weakest", "the push and turn against which this grasp gives least"),
+    ("^", "no row of the list is better on one of quality, margin and place and as good on the others"),
+    (
+        "edges",
+        "numbers of the outer ring's edges in the part file, a hole's as ring:edge; @ is mm from the edge's first vertex",
+    ),
+];
+
+/// The lines of the page for a width.
+pub(super) fn lines(state: &State, width: u16) -> Vec<Line<'static>> {
+    let width = usize::from(width);
+    let mut lines = vec![Line::styled("keys", state.look.title())];
+    for row in action::help() {
+        two_columns(state, &action::keys_of(row), row.help, width, &mut lines);
+    }
+    lines.push(Line::raw(""));
+    lines.push(Line::styled("signs and numbers", state.look.title()));
+    two_columns(state, "> *", "the selected row; a marked grasp", width, &mut lines);
+    for (name, meaning) in NUMBERS {
+        two_columns(state, name, meaning, width, &mut lines);
+    }
+    lines.push(Line::raw(""));
+    lines.push(Line::styled("caution", state.look.title()));
+    lines.extend(wrapped(CAUTION, width).into_iter().map(Line::raw));
+    lines
+}
+
+fn two_columns(state: &State, left: &str, right: &str, width: usize, lines: &mut Vec<Line<'static>>) {
+    const LEFT: usize = 12;
+    for (i, part) in wrapped(right, width.saturating_sub(LEFT)).into_iter().enumerate() {
+        let left = if i == 0 { format!("{left:<LEFT$}") } else { " ".repeat(LEFT) };
+        lines.push(Line::from(vec![Span::styled(left, state.look.title()), Span::raw(part)]));
+    }
+}

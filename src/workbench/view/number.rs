@@ -1,0 +1,57 @@
+//! Numbers as they are shown.
+
+/// Quality: four decimals, or two digits of a power of ten where they would show nothing.
+pub(super) fn quality(value: f64) -> String {
+    if value > 0.0 && value < 5e-5 { format!("{value:.0e}") } else { format!("{value:.4}") }
+}
+
+/// Margin: mu over friction needed. Nothing means that none is needed.
+pub(super) fn margin(value: Option<f64>) -> String {
+    match value {
+        None => "any".to_owned(),
+        Some(value) if value >= 99.5 => ">99".to_owned(),
+        // A margin that is shown as 1.00 although it is below would mislead: it is rounded down.
+        Some(value) => format!("{:.2}", (value * 100.0).floor() / 100.0),
+    }
+}
+
+/// Friction coefficient: at least two decimals, at most four.
+pub(super) fn mu(value: f64) -> String {
+    let text = format!("{value:.4}");
+    let text = text.trim_end_matches('0');
+    let decimals = text.len() - text.find('.').map_or(text.len(), |dot| dot + 1);
+    if decimals < 2 { format!("{value:.2}") } else { text.to_owned() }
+}
+
+/// Length in mm: about three figures.
+pub(super) fn mm(value: f64) -> String {
+    let size = value.abs();
+    if size >= 1e6 {
+        format!("{value:.2e}")
+    } else if size >= 99.95 {
+        format!("{value:.0}")
+    } else if size >= 9.995 {
+        format!("{value:.1}")
+    } else if size > 0.0 && size < 0.005 {
+        format!("{value:.0e}")
+    } else {
+        format!("{value:.2}")
+    }
+}
+
+/// Position in mm: two decimals, without a minus before zero.
+pub(super) fn at(value: f64) -> String {
+    let text = format!("{value:.2}");
+    if text == "-0.00" { "0.00".to_owned() } else { text }
+}
+
+/// Angle in whole degrees, -179 to 180.
+pub(super) fn degrees(value: f64) -> String {
+    let whole = (value.round() as i64).rem_euclid(360);
+    (if whole > 180 { whole - 360 } else { whole }).to_string()
+}
+
+/// Plain count with its noun.
+pub(super) fn count(number: u64, one: &str, many: &str) -> String {
+    format!("{number} {}", if number == 1 { one } else { many })
+}

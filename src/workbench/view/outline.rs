@@ -1,0 +1,249 @@
+//! The outline pane: the part at true proportion, where fingers fit, keep-outs, the centre of mass, the fingers.
+
+use super::super::look::{Look, Marker};
+use super::super::state::State;
+use super::sheet::{Depth, Fit, Sheet, slope};
+use crate::hand::Stretch;
+use crate::part::{Edge, KeepOut};
+use crate::search::{Grasp, Scene};
+use nalgebra::Vector2;
+use ratatui::buffer::Buffer;
+use ratatui::layout::Rect;
+
+/// Columns and rows left free around the part, for the fingers that stand outside.
+const FREE: (u16, u16) = (4, 2);
+/// Cosine above which a corner is a bend of a flattened curve and gets no mark of its own (20 degrees).
+const BEND: f64 = 0.94;
+/// Rows from which the pane carries a line that explains its signs.
+const KEY_FROM: u16 = 8;
+
+/// Draws the pane.
+pub(super) fn render(state: &State, area: Rect, buf: &mut Buffer) {
+    let area = area.intersection(buf.area);
+    if area.is_empty() {
+        return;
+    }
+    let keyed = area.height >= KEY_FROM;
+    let picture = Rect { height: area.height - u16::from(keyed), ..area };
+    let scene = &state.order.scene;
+    let (low, high) = scene.part().outline().bounds();
+    let free = (FREE.0.min(picture.width / 6), FREE.1.min(picture.height / 5));
+    let fit = Fit::new(low, high, (picture.width, picture.height), free, state.look.aspect);
+    let mut pen = Pen { sheet: Sheet::new(picture.width, picture.height), fit, look: state.look };
+    let signs = pen.part(scene);
+    if let Some(reading) = &state.reading {
+        if state.cones {
+            pen.cones(&reading.grasp, scene);
+        }
+        pen.fingers(&reading.grasp);
+    }
+    pen.sheet.render(picture, buf);
+    if keyed {
+        let row = Rect { y: area.bottom() - 1, height: 1, ..area };
+        super::put(buf, row, &signs.text(state, usize::from(row.width)), state.look.dim());
+    }
+}
+
+/// Which signs the picture uses, so that only those are explained.
+#[derive(Default)]
+struct Signs {
+    keep_out: bool,
+    unreachable: bool,
+}
+
+impl Signs {
+    /// As many explanations as fit, none cut.
+    fn text(&self, state: &State, width: usize) -> String {
+        let mut parts = vec!["@ centre of mass"];
+        if self.keep_out {
+            parts.push("x keep-out");
+        }
+        if self.unreachable {
+            parts.push(if state.look.marker == Marker::Braille {
+                "sparse: no finger fits"
+            } else {
+                ". no finger fits"
+            });
+        }
+        if state.cones {
+            parts.push(": cone");
+        }
+        let mut text = String::new();
+        for part in parts {
+            let gap = if text.is_empty() { "" } else { "  " };
+            if text.len() + gap.len() + part.len() <= width {
+                text.push_str(gap);
+                text.push_str(part);
+            }
+        }
+        text
+    }
+}
+
+struct Pen {
+    sheet: Sheet,
+    fit: Fit,
+    look: Look,
+}
+
+impl Pen {
+    fn part(&mut self, scene: &Scene) -> Signs {
+        let part = scene.part();
+        let outline = part.outline();
+        let mut signs = Signs::default();
+        for edge in outline.edges() {
+            let first = scene.stretches().partition_point(|stretch| stretch.edge < edge.id());
+            let last = scene.stretches().partition_point(|stretch| stretch.edge <= edge.id());
+            let kept_out: Vec<&KeepOut> = part.keep_outs().iter().filter(|keep| keep.edge == edge.id()).collect();
+            self.edge(edge, &scene.stretches()[first..last], &kept_out, &mut signs);
+        }
+        if self.look.marker != Marker::Braille {
+            for ring in 0..outline.ring_sizes().len() {
+                let edges = outline.ring(ring);
+                for (i, edge) in edges.iter().enumerate() {
+                    self.corner(&edges[(i + edges.len() - 1) % edges.len()], edge);
+                }
+            }
+        }
+        let (column, row) = self.fit.rounded(part.com());
+        self.sheet.put(column, row, '@', Depth::Centre, self.look.title());
+        signs
+    }
+
+    fn edge(&mut self, edge: &Edge, stretches: &[Stretch], kept_out: &[&KeepOut], signs: &mut Signs) {
+        let braille = self.look.marker == Marker::Braille;
+        let (a, b) = (self.fit.cell(edge.start()), self.fit.cell(edge.end()));
+        let (fine_x, fine_y) = if braille { (2.0, 4.0) } else { (1.0, 1.0) };
+        let steps = ((b.0 - a.0).abs() * fine_x).max((b.1 - a.1).abs() * fine_y).ceil().clamp(1.0, 65_536.0);
+        let half = edge.length_mm() / steps / 2.0;
+        let line = self.look.marker == Marker::Line;
+        let ink = slope(edge.direction_at(0.0), line);
+        for k in 0..=steps as u32 {
+            let t = f64::from(k) / steps;
+            let along = t * edge.length_mm();
+            let (column, row) = (a.0 + t * (b.0 - a.0), a.1 + t * (b.1 - a.1));
+            let within = |from: f64, to: f64| along >= from - half && along <= to + half;
+            let cell = (column.round() as i32, row.round() as i32);
+            if kept_out.iter().any(|keep| within(keep.from_mm, keep.to_mm)) {
+                signs.keep_out = true;
+                self.sheet.put(cell.0, cell.1, 'x', Depth::Edge, self.look.keep_out());
+                continue;
+            }
+            let free = stretches.iter().any(|stretch| within(stretch.from_mm, stretch.to_mm));
+            signs.unreachable |= !free;
+            let style = if free { self.look.plain() } else { self.look.dim() };
+            if braille {
+                if free || k % 4 == 0 {
+                    let dot = (((column + 0.5) * 2.0).floor() as i32, ((row + 0.5) * 4.0).floor() as i32);
+                    self.sheet.dot(dot.0, dot.1, Depth::Edge, style);
+                }
+            } else {
+                let ink = match (free, line) {
+                    (true, _) => ink,
+                    (false, false) => '.',
+                    (false, true) => '\u{b7}',
+                };
+                self.sheet.put(cell.0, cell.1, ink, Depth::Edge, style);
+            }
+        }
+    }
+
+    fn corner(&mut self, before: &Edge, after: &Edge) {
+        if before.direction_at(0.0).dot(&after.direction_at(0.0)) > BEND {
+            return;
+        }
+        let (column, row) = self.fit.rounded(after.start());
+        let ink = if self.look.marker == Marker::Line {
+            joint(-before.direction_at(0.0), after.direction_at(0.0))
+        } else {
+            '+'
+        };
+        self.sheet.put(column, row, ink, Depth::Edge, self.look.plain());
+    }
+
+    /// A number outside the part, and a stroke from it toward the contact along the inward normal.
+    fn fingers(&mut self, grasp: &Grasp) {
+        let style = self.look.finger();
+        for (finger, contact) in grasp.contacts.iter().enumerate() {
+            let number = char::from_digit(finger as u32 + 1, 10).unwrap_or('#');
+            let (column, row) = self.fit.cell(contact.point);
+            let (dx, dy) = self.fit.step(-contact.normal);
+            let at = |k: i32| {
+                let k = f64::from(k);
+                ((column + k * dx).round() as i32, (row + k * dy).round() as i32)
+            };
+            let level = dx.abs() >= dy.abs();
+            let own = at(0);
+            self.sheet.put(own.0, own.1, 'o', Depth::Finger, style);
+            let free = |sheet: &Sheet, k: i32| {
+                let (x, y) = at(k);
+                sheet.depth(x, y) < Depth::Edge
+            };
+            // A slanted edge may still lie in the first cell outside.
+            let first = if free(&self.sheet, 1) { 1 } else { 2 };
+            let wanted = if level { first + 2 } else { first + 1 };
+            let run = (first..first + 6).take_while(|&k| free(&self.sheet, k)).last();
+            let stand = match run {
+                Some(last) => wanted.min(last),
+                None => 0,
+            };
+            let (x, y) = at(stand);
+            self.sheet.put(x, y, number, Depth::Finger, style);
+            for k in first..stand {
+                let (x, y) = at(k);
+                let ink = if k == first { head(contact.normal) } else { slope(contact.normal, false) };
+                self.sheet.put(x, y, ink, Depth::Finger, style);
+            }
+        }
+    }
+
+    /// The two sides of each cone, as far as the part's box reaches.
+    fn cones(&mut self, grasp: &Grasp, scene: &Scene) {
+        let style = self.look.cone();
+        let (low, high) = scene.part().outline().bounds();
+        let ((left, bottom), (right, top)) = (self.fit.rounded(low), self.fit.rounded(high));
+        for contact in &grasp.contacts {
+            let tangent = Vector2::new(-contact.normal.y, contact.normal.x);
+            let (column, row) = self.fit.cell(contact.point);
+            for side in [1.0, -1.0] {
+                let (dx, dy) = self.fit.step(contact.normal + tangent * (side * contact.mu));
+                for k in 1..=(right - left).max(bottom - top) {
+                    let k = f64::from(k);
+                    let (x, y) = ((column + k * dx).round() as i32, (row + k * dy).round() as i32);
+                    if !(left..=right).contains(&x) || !(top..=bottom).contains(&y) {
+                        break;
+                    }
+                    self.sheet.put(x, y, ':', Depth::Cone, style);
+                }
+            }
+        }
+    }
+}
+
+/// Head of a stroke that points along a direction.
+fn head(direction: Vector2<f64>) -> char {
+    if direction.x.abs() >= direction.y.abs() {
+        if direction.x > 0.0 { '>' } else { '<' }
+    } else if direction.y > 0.0 {
+        '^'
+    } else {
+        'v'
+    }
+}
+
+/// Line-drawing corner between two directions that leave it; `+` unless both run along the axes.
+fn joint(a: Vector2<f64>, b: Vector2<f64>) -> char {
+    let level = |v: Vector2<f64>| v.y.abs() < 0.1 * v.x.abs();
+    let upright = |v: Vector2<f64>| v.x.abs() < 0.1 * v.y.abs();
+    let (across, up) = match (level(a) && upright(b), upright(a) && level(b)) {
+        (true, _) => (a.x > 0.0, b.y > 0.0),
+        (_, true) => (b.x > 0.0, a.y > 0.0),
+        _ => return '+',
+    };
+    match (across, up) {
+        (true, false) => '\u{250c}',
+        (false, false) => '\u{2510}',
+        (true, true) => '\u{2514}',
+        (false, true) => '\u{2518}',
+    }
+}

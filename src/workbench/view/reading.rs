@@ -1,0 +1,307 @@
+//! The reading of the selected grasp: every score with its meaning in one line.
+
+use super::super::state::{Job, Reading, State};
+use super::{number, table, wrapped};
+use crate::mechanics::assess::Assessment;
+use crate::mechanics::escape::{Escape, Sense};
+use crate::mechanics::placement::Governor;
+use crate::mechanics::{Verdict, Weakest};
+use crate::search::Spot;
+use ratatui::style::Style;
+use ratatui::text::{Line, Span};
+
+/// Width of the names on the left.
+const NAMES: usize = 11;
+/// Width of the values beside them.
+const VALUES: usize = 13;
+
+/// The lines of the reading for a width; `full` tells everything, one finger to a line.
+pub(super) fn lines(state: &State, width: u16, full: bool) -> Vec<Line<'static>> {
+    let Some(reading) = &state.reading else {
+        return vec![Line::raw("No grasp is selected.")];
+    };
+    let mut page = Page { width: usize::from(width), full, state, lines: Vec::new() };
+    if full {
+        let edges = table::edges(&reading.grasp.spots);
+        let rank = state.row().map_or_else(|| "not listed".to_owned(), |_| format!("number {}", state.selected + 1));
+        page.heading(&format!("grasp on edges {edges}, {rank}"), reading);
+    } else if state.row().is_none() {
+        page.tell("not listed", "", state.look.bad(), "the grasp last selected, under the present knobs");
+    }
+    page.doubts(reading);
+    page.verdict(reading);
+    page.friction(reading);
+    let closed = reading.assessment.verdict == Verdict::Closed;
+    if closed {
+        page.quality(&reading.assessment);
+        page.placement(&reading.assessment);
+    }
+    page.contacts(reading);
+    if closed {
+        if let Some(weakest) = &reading.assessment.weakest {
+            page.weakest(weakest);
+        }
+        page.per_finger(&reading.assessment);
+    }
+    if full {
+        page.assumed(state);
+    }
+    page.lines
+}
+
+struct Page<'a> {
+    width: usize,
+    full: bool,
+    state: &'a State,
+    lines: Vec<Line<'static>>,
+}
+
+impl Page<'_> {
+    /// A name, a value and what it means; on the full page what does not fit goes to further lines.
+    fn tell(&mut self, name: &str, value: &str, style: Style, meaning: &str) {
+        let look = self.state.look;
+        // Values line up where there is room for it.
+        let value = if value.is_empty() || self.width < 60 { value.to_owned() } else { format!("{value:<VALUES$}") };
+        let gap = if value.is_empty() { "" } else { "  " };
+        let room = self.width.saturating_sub(NAMES + value.chars().count() + gap.len());
+        let mut rest = Vec::new();
+        let first = if self.full && meaning.chars().count() > room {
+            let mut parts = wrapped(meaning, self.width.saturating_sub(NAMES)).into_iter();
+            // The value keeps its line when the first part would not fit beside it.
+            let mut head = String::new();
+            let first = parts.next().unwrap_or_default();
+            if first.chars().count() <= room {
+                head = first;
+            } else {
+                rest.push(first);
+            }
+            rest.extend(parts);
+            head
+        } else {
+            meaning.to_owned()
+        };
+        self.lines.push(Line::from(vec![
+            Span::styled(format!("{name:<NAMES$}"), look.dim()),
+            Span::styled(value, style),
+            Span::raw(format!("{gap}{first}")),
+        ]));
+        for line in rest {
+            self.lines.push(Line::raw(format!("{:NAMES$}{line}", "")));
+        }
+    }
+
+    fn heading(&mut self, text: &str, reading: &Reading) {
+        let state = self.state;
+        self.lines.push(Line::styled(text.to_owned(), state.look.title()));
+        if let Some(mark) = state.mark_on(&reading.grasp.spots) {
+            let saved = if mark.saved { "saved" } else { "not saved" };
+            let name = crate::file::shown(&mark.keep.name);
+            let note = crate::file::shown(&mark.keep.note);
+            self.tell("marked", &name, state.look.plain(), &format!("({saved})"));
+            if !note.is_empty() {
+                self.tell("why", "", state.look.plain(), &note);
+            }
+        }
+    }
+
+    fn doubts(&mut self, reading: &Reading) {
+        let bad = self.state.look.bad();
+        for (finger, room) in reading.grasp.rooms_mm.iter().enumerate() {
+            if *room < 0.0 {
+                self.tell("fit", &format!("finger {} stands where none fits", finger + 1), bad, "");
+            }
+        }
+        for (a, b) in &reading.grasp.too_near {
+            self.tell("fit", &format!("fingers {} and {} are too near", a + 1, b + 1), bad, "");
+        }
+        for doubt in &reading.doubts {
+            self.tell("in doubt", "two ways disagree:", bad, &doubt.to_string());
+        }
+    }
+
+    fn verdict(&mut self, reading: &Reading) {
+        let look = self.state.look;
+        let a = &reading.assessment;
+        let (style, meaning) = match a.verdict {
+            Verdict::Closed => (look.good(), "every push and turn can be balanced by pressing enough".to_owned()),
+            Verdict::Marginal => (look.bad(), "on the very edge of closing: not to be relied on".to_owned()),
+            Verdict::Open => (
+                look.bad(),
+                match &a.escape {
+                    Some(escape) => self.escape(escape),
+                    None => "some push cannot be balanced, however hard the fingers press".to_owned(),
+                },
+            ),
+        };
+        self.tell("verdict", a.verdict.word(), style, &meaning);
+    }
+
+    fn escape(&self, escape: &Escape) -> String {
+        match escape {
+            Escape::Slide { toward_deg } => {
+                format!("nothing stops it sliding toward {} deg", number::degrees(*toward_deg))
+            }
+            Escape::Turn { about, sense } => {
+                let at = self.state.order.scene.part().file_point(*about);
+                let sense = match sense {
+                    Sense::Clockwise => "clockwise",
+                    Sense::CounterClockwise => "counter-clockwise",
+                };
+                format!("nothing stops it turning {sense} about ({}, {})", number::at(at.x), number::at(at.y))
+            }
+        }
+    }
+
+    fn friction(&mut self, reading: &Reading) {
+        let look = self.state.look;
+        let a = &reading.assessment;
+        let mu = number::mu(self.state.setup().friction.mu);
+        match a.friction_needed {
+            None => self.tell("friction", "no mu", look.bad(), "closes this grasp"),
+            Some(needed) => {
+                let none = needed < 5e-5;
+                let value = match (a.verdict, none) {
+                    (Verdict::Closed, true) if self.state.setup().friction.mu <= 0.0 => "none needed".to_owned(),
+                    // The least friction is a limit that is not reached: at exactly 0 such a grasp is open.
+                    (_, true) => "0+ needed".to_owned(),
+                    _ => format!("{} needed", number::mu(needed)),
+                };
+                let meaning = match (a.verdict, a.friction_margin_deg) {
+                    (Verdict::Closed, Some(degrees)) => format!(
+                        "of mu {mu}: margin {}, normals may be off {degrees:.1} deg",
+                        number::margin(a.friction_margin)
+                    ),
+                    _ if none => format!("any mu above 0 closes it; mu is {mu}"),
+                    _ => format!("mu is {mu}"),
+                };
+                self.tell("friction", &value, look.title(), &meaning);
+            }
+        }
+        if !reading.band.is_empty() {
+            let mut meaning = String::new();
+            let mut last = None;
+            for (name, mu, verdict) in &reading.band {
+                if last == Some(*verdict) {
+                    meaning.push_str(", ");
+                } else {
+                    let gap = if last.is_some() { "; " } else { "" };
+                    meaning.push_str(&format!("{gap}{} at ", verdict.word()));
+                }
+                meaning.push_str(&format!("{name} {}", number::mu(*mu)));
+                last = Some(*verdict);
+            }
+            let friction = &self.state.setup().friction;
+            if let Some(condition) = friction.condition {
+                meaning.push_str(&format!(" ({})", condition_word(condition)));
+            }
+            self.tell("band", "", look.plain(), &meaning);
+            if let (true, Some(source)) = (self.full, &friction.source) {
+                self.tell("", "", look.plain(), &format!("source: {}", crate::file::shown(source)));
+            }
+        }
+    }
+
+    fn quality(&mut self, a: &Assessment) {
+        let look = self.state.look;
+        let meaning = format!("any 1 N of load is held with {} N of total squeeze", number::mm(1.0 / a.quality));
+        self.tell("quality", &number::quality(a.quality), look.title(), &meaning);
+        if self.full {
+            let scale = number::mm(self.state.order.scene.frame().scale_mm);
+            self.tell("", "", look.plain(), &format!("a torque counts as the force that makes it at {scale} mm"));
+        }
+    }
+
+    fn per_finger(&mut self, a: &Assessment) {
+        let meaning = format!("any 1 N of load is held with {} N per finger", number::mm(1.0 / a.quality_per_finger));
+        self.tell("per finger", &number::quality(a.quality_per_finger), self.state.look.plain(), &meaning);
+    }
+
+    fn placement(&mut self, a: &Assessment) {
+        let placement = &a.placement;
+        let governs = match placement.governor {
+            Governor::Closure => "each finger may be off this far before closure is lost".to_owned(),
+            Governor::Stretch { finger } => format!(
+                "then finger {} leaves its stretch; closure to {} mm",
+                finger + 1,
+                number::mm(placement.torque_mm)
+            ),
+        };
+        self.tell("placement", &format!("{} mm", number::mm(placement.mm)), self.state.look.title(), &governs);
+    }
+
+    fn weakest(&mut self, weakest: &Weakest) {
+        let mut told = Vec::new();
+        if let Some(degrees) = weakest.force_deg() {
+            told.push(format!("toward {} deg ({:.2})", number::degrees(degrees), weakest.force()));
+        }
+        // A share that would be shown as nothing is left out.
+        if weakest.torque().abs() >= 0.005 {
+            let turn = if weakest.torque() > 0.0 { "counter-clockwise" } else { "clockwise" };
+            told.push(format!("turning {turn} ({:.2})", weakest.torque().abs()));
+        }
+        let meaning = format!("fingers give least {}", told.join(", "));
+        self.tell("weakest", "", self.state.look.plain(), &meaning);
+        if self.full && told.len() > 1 {
+            self.tell("", "", self.state.look.plain(), "in brackets the shares of force and of torque over the reach");
+        }
+    }
+
+    fn contacts(&mut self, reading: &Reading) {
+        let part = self.state.order.scene.part();
+        let told: Vec<String> = reading
+            .grasp
+            .spots
+            .iter()
+            .zip(&reading.grasp.contacts)
+            .enumerate()
+            .map(|(finger, (spot, contact))| {
+                let p = part.file_point(contact.point);
+                format!("{} {} ({}, {})", finger + 1, spot_word(spot), number::at(p.x), number::at(p.y))
+            })
+            .collect();
+        if self.full {
+            for (finger, text) in told.iter().enumerate() {
+                let contact = &reading.grasp.contacts[finger];
+                let room = reading.grasp.rooms_mm.get(finger).copied().unwrap_or(0.0);
+                let meaning = format!(
+                    "normal {} deg  mu {}  {} mm to the end of its stretch",
+                    number::degrees(contact.normal.y.atan2(contact.normal.x).to_degrees()),
+                    number::mu(contact.mu),
+                    number::mm(room.max(0.0)),
+                );
+                self.tell(if finger == 0 { "fingers" } else { "" }, text, self.state.look.plain(), &meaning);
+            }
+            return;
+        }
+        // As many side by side as fit.
+        let widest = told.iter().map(|text| text.chars().count()).max().unwrap_or(0) + 3;
+        let beside = (self.width.saturating_sub(NAMES) / widest.max(1)).max(1);
+        for (i, group) in told.chunks(beside).enumerate() {
+            let text: String = group.iter().map(|text| format!("{text:<widest$}")).collect();
+            self.tell(if i == 0 { "fingers" } else { "" }, "", self.state.look.plain(), text.trim_end());
+        }
+    }
+
+    fn assumed(&mut self, state: &State) {
+        self.lines.push(Line::raw(""));
+        let mut assumed =
+            String::from("rigid bodies, first-order statics, dry friction; positions in mm as in the part file");
+        if matches!(state.job, Job::Running(_)) || state.is_old() {
+            assumed.push_str("; read under the present knobs, the list is being ranked");
+        }
+        self.tell("assumed", "", state.look.plain(), &assumed);
+    }
+}
+
+fn spot_word(spot: &Spot) -> String {
+    format!("{}:{} @ {}", spot.edge.ring, spot.edge.edge, number::at(spot.along_mm))
+}
+
+fn condition_word(condition: crate::mechanics::Condition) -> &'static str {
+    use crate::mechanics::Condition;
+    match condition {
+        Condition::Dry => "dry",
+        Condition::Oily => "oily",
+        Condition::Wet => "wet",
+    }
+}

@@ -1,0 +1,203 @@
+//! The ranked table, and what is said when it is empty.
+
+use super::super::state::{Job, Shown, State};
+use super::{number, put, titled, wrapped};
+use crate::search::{Floors, Key, Listed, Spot};
+use ratatui::buffer::Buffer;
+use ratatui::layout::Rect;
+
+/// Draws the panel.
+pub(super) fn render(state: &State, area: Rect, buf: &mut Buffer) {
+    let (title, right) = title(state);
+    let inside = titled(state, area, &title, &right, buf);
+    if inside.is_empty() {
+        return;
+    }
+    match &state.shown {
+        Some(shown) if !shown.ranking.grasps.is_empty() => rows(state, shown, inside, buf),
+        _ => {
+            let mut at = inside;
+            for paragraph in nothing(state) {
+                for line in wrapped(&paragraph, usize::from(inside.width)) {
+                    put(buf, at, &line, state.look.plain());
+                    at = Rect { y: at.y.saturating_add(1), height: at.height.saturating_sub(1), ..at };
+                    if at.height == 0 {
+                        return;
+                    }
+                }
+            }
+        }
+    }
+}
+
+fn title(state: &State) -> (String, String) {
+    let Some(shown) = &state.shown else { return ("grasps".to_owned(), String::new()) };
+    if state.is_old() {
+        let mu = number::mu(shown.order.scene.setup().friction.mu);
+        let fingers = shown.order.scene.setup().hand.fingers.get();
+        return (format!("OLD: mu {mu}, {fingers} fingers"), shown.order.key.word().replace('_', " "));
+    }
+    let ranking = &shown.ranking;
+    let sample = match (&state.job, ranking.complete) {
+        (Job::Running(_), _) => "so far",
+        (_, false) => "sample",
+        _ => "",
+    };
+    let doubtful = match ranking.inconclusive {
+        0 => String::new(),
+        n => format!("{n} in doubt "),
+    };
+    let hidden = match ranking.below_floors {
+        0 => String::new(),
+        _ if floors(&state.setup().floors).is_empty() => String::new(),
+        _ if ranking.closed == ranking.below_floors => "floors hide all ".to_owned(),
+        n => format!("floors hide {} % ", (n as u128 * 100).div_ceil(u128::from(ranking.closed)).min(99)),
+    };
+    let right = format!("{hidden}{doubtful}{sample}").trim().to_owned();
+    (number::count(ranking.families as u64, "family", "families"), right)
+}
+
+/// Columns of numbers: heading and width.
+const COLUMNS: [(&str, usize); 3] = [("quality", 7), ("margin", 7), ("place", 6)];
+
+fn rows(state: &State, shown: &Shown, area: Rect, buf: &mut Buffer) {
+    let width = usize::from(area.width);
+    // Two signs, the Pareto sign, the rank, a space.
+    let lead = 7;
+    // Number columns leave from the right before the edges are cut, unless there are very many fingers.
+    let longest = |row: &Listed| edges(&row.grasp.spots).chars().count();
+    let least_edges = shown.ranking.grasps.iter().map(longest).max().unwrap_or(0).clamp(6, 24);
+    let mut columns = COLUMNS.len();
+    let numbers = |columns: usize| COLUMNS[..columns].iter().map(|(_, width)| width).sum::<usize>();
+    while columns > 1 && lead + least_edges + numbers(columns) > width {
+        columns -= 1;
+    }
+    let edges_width = width.saturating_sub(lead + numbers(columns));
+    let per_finger = shown.order.key == Key::QualityPerFinger;
+    let mut head = format!("   {:>3} {:<edges_width$}", "#", "edges");
+    for (name, width) in &COLUMNS[..columns] {
+        // The quality shown is the one the list is sorted by.
+        let name = if per_finger && *name == "quality" { "/finger" } else { name };
+        head.push_str(&format!("{name:>width$}"));
+    }
+    put(buf, area, &head, state.look.dim());
+    let height = usize::from(area.height.saturating_sub(1));
+    let grasps = &shown.ranking.grasps;
+    let top = first_row(state.selected, height, grasps.len());
+    for (i, row) in grasps.iter().enumerate().skip(top).take(height) {
+        let selected = i == state.selected;
+        let a = &row.assessment;
+        let mut text = format!(
+            "{}{}{}{:>3} {}",
+            if selected { '>' } else { ' ' },
+            if state.mark_on(&row.grasp.spots).is_some() { '*' } else { ' ' },
+            if shown.unbeaten.get(i) == Some(&true) { '^' } else { ' ' },
+            i + 1,
+            padded(&edges(&row.grasp.spots), edges_width),
+        );
+        let quality = if per_finger { a.quality_per_finger } else { a.quality };
+        let values = [number::quality(quality), number::margin(a.friction_margin), number::mm(a.placement.mm)];
+        for (value, (_, width)) in values.iter().zip(&COLUMNS[..columns]) {
+            text.push_str(&format!("{value:>width$}"));
+        }
+        let line = Rect { y: area.y + 1 + (i - top) as u16, height: 1, ..area };
+        let style = match (selected, state.is_old()) {
+            (true, _) => state.look.selected(),
+            (false, true) => state.look.dim(),
+            _ => state.look.plain(),
+        };
+        put(buf, line, &format!("{text:<width$}"), style);
+    }
+}
+
+/// The list stands still while the selection moves inside it, a page at a time.
+fn first_row(selected: usize, height: usize, rows: usize) -> usize {
+    if height == 0 {
+        return 0;
+    }
+    // Half a screen of overlap: the top is a multiple of half the height.
+    let half = (height / 2).max(1);
+    let top = if selected < height { 0 } else { (selected - height) / half * half + half };
+    top.min(rows.saturating_sub(height))
+}
+
+/// The fingers' edges: those of the outer ring by their number, those of a hole as ring:edge.
+pub(super) fn edges(spots: &[Spot]) -> String {
+    let name = |spot: &Spot| match spot.edge.ring {
+        0 => spot.edge.edge.to_string(),
+        ring => format!("{ring}:{}", spot.edge.edge),
+    };
+    spots.iter().map(name).collect::<Vec<_>>().join(" ")
+}
+
+fn padded(text: &str, width: usize) -> String {
+    if text.chars().count() <= width {
+        format!("{text:<width$}")
+    } else {
+        let cut: String = text.chars().take(width.saturating_sub(3)).collect();
+        format!("{:<width$}", format!("{cut}.."))
+    }
+}
+
+/// Why nothing is listed, and what to try.
+fn nothing(state: &State) -> Vec<String> {
+    let setup = state.setup();
+    let scene = &state.order.scene;
+    let fingers = setup.hand.fingers.get();
+    if let Job::Failed(why) = &state.job {
+        return vec![format!("The ranking broke: {}", crate::file::shown(why)), "Turn a knob to try again.".to_owned()];
+    }
+    if scene.stretches().is_empty() {
+        return vec![
+            "No finger fits anywhere on this part.".to_owned(),
+            format!(
+                "Pins of radius {} mm stay {} mm off corners and off every keep-out. Smaller ones, less clearance or \
+                 fewer keep-outs make room.",
+                number::mm(setup.hand.pin_radius_mm),
+                number::mm(setup.hand.corner_clearance_mm),
+            ),
+        ];
+    }
+    let Some(shown) = state.shown.as_ref().filter(|_| !state.is_old()) else {
+        return vec!["Ranking ...".to_owned()];
+    };
+    let ranking = &shown.ranking;
+    if matches!(state.job, Job::Running(_)) {
+        return vec!["Nothing closed so far.".to_owned()];
+    }
+    if ranking.closed == 0 {
+        let looked = number::count(ranking.examined, "candidate set", "candidate sets");
+        return vec![
+            format!("No closed grasp among {looked} of {fingers} fingers at mu {}.", number::mu(setup.friction.mu)),
+            "Try more friction (l), one finger more (f), or finer sites (.).".to_owned(),
+        ];
+    }
+    let mut lines = vec![format!(
+        "{} closed, none listed.",
+        number::count(ranking.closed, "candidate set is", "candidate sets are")
+    )];
+    let floors = floors(&setup.floors);
+    if !floors.is_empty() {
+        lines.push(format!("The floors ask for {}.", floors.join(", ")));
+        lines.push("Try a lower floor in the setup, more friction (l) or one finger more (f).".to_owned());
+    }
+    if ranking.inconclusive > 0 {
+        lines.push(format!("{} left out: the two ways to the score disagree.", ranking.inconclusive));
+    }
+    lines
+}
+
+/// The floors that ask for something, in words.
+pub(super) fn floors(floors: &Floors) -> Vec<String> {
+    let mut asked = Vec::new();
+    if floors.quality > 0.0 {
+        asked.push(format!("quality {}", number::quality(floors.quality)));
+    }
+    if floors.friction_margin > 1.0 {
+        asked.push(format!("friction margin {}", number::margin(Some(floors.friction_margin))));
+    }
+    if floors.placement_mm > 0.0 {
+        asked.push(format!("placement {} mm", number::mm(floors.placement_mm)));
+    }
+    asked
+}
