@@ -53,7 +53,7 @@ pub(super) fn short(value: f64) -> String {
 
 /// A ratio or coefficient in few characters.
 pub(super) fn ratio(value: f64) -> String {
-    if value >= 1000.0 { format!("{value:.0}") } else { format!("{value:.3}") }
+    if value >= 100.0 { format!("{value:.0}") } else { format!("{value:.3}") }
 }
 
 /// A length in few characters, mm.

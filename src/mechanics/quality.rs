@@ -23,7 +23,8 @@ pub struct Weakest {
 impl Weakest {
     /// Angle of the force part in degrees from +x, counter-clockwise; nothing when the direction is pure torque.
     pub fn force_deg(&self) -> Option<f64> {
-        (self.force() > 1e-9).then(|| self.direction.y.atan2(self.direction.x).to_degrees())
+        // Adding 0 turns -0 into 0.
+        (self.force() > 1e-9).then(|| self.direction.y.atan2(self.direction.x).to_degrees() + 0.0)
     }
 
     /// Share of force, 0 to 1.

@@ -21,7 +21,8 @@ struct Segment<'a> {
 }
 
 fn before(a: [f64; 2], b: [f64; 2]) -> Ordering {
-    a[0].total_cmp(&b[0]).then(a[1].total_cmp(&b[1]))
+    // Adding 0 turns -0 into 0, which is the same place.
+    (a[0] + 0.0).total_cmp(&(b[0] + 0.0)).then((a[1] + 0.0).total_cmp(&(b[1] + 0.0)))
 }
 
 impl Segment<'_> {
@@ -97,6 +98,7 @@ pub(super) fn first_meeting(rings: &[Ring]) -> Option<(EdgeId, EdgeId)> {
     let clash = |a: &Segment, b: &Segment| {
         !neighbours(rings, a.id, b.id) && meet([a.left, a.right], [b.left, b.right]).is_some()
     };
+    #[expect(clippy::mutable_key_type, reason = "the cell is a note to this function and takes no part in the order")]
     let mut line: BTreeSet<Segment> = BTreeSet::new();
     for (begins, i) in events {
         let segment = segments[i];
@@ -127,5 +129,5 @@ fn shared_vertex(rings: &[Ring]) -> Option<(EdgeId, EdgeId)> {
         .flat_map(|(ring, all)| all.iter().enumerate().map(move |(edge, &p)| (p, EdgeId { ring, edge })))
         .collect();
     vertices.sort_by(|a, b| before(a.0, b.0).then(a.1.cmp(&b.1)));
-    vertices.windows(2).find(|pair| pair[0].0 == pair[1].0).map(|pair| (pair[0].1, pair[1].1))
+    vertices.windows(2).find(|pair| before(pair[0].0, pair[1].0) == Ordering::Equal).map(|pair| (pair[0].1, pair[1].1))
 }

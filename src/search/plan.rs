@@ -83,7 +83,7 @@ impl Plan {
         let (mut from, mut sets) = (0, 0);
         for (index, parcel) in self.parcels.iter().enumerate() {
             sets += parcel.sets;
-            if sets >= self.total / BATCHES + 1 || index + 1 == self.parcels.len() {
+            if sets > self.total / BATCHES || index + 1 == self.parcels.len() {
                 batches.push(from..index + 1);
                 (from, sets) = (index + 1, 0);
             }

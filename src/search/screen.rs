@@ -492,7 +492,11 @@ impl<'a, 'b> Run<'a, 'b> {
                 *torque = (lever.normal_torque + m * lever.tangent_torque) / length;
             }
         }
-        polygon.score(&polygon.heights(&torques[..2 * self.k])).signed_quality > friction::CLOSED
+        let score = polygon.score(&polygon.heights(&torques[..2 * self.k]));
+        if score.certain {
+            return score.signed_quality > friction::CLOSED;
+        }
+        friction::signed_quality_at(&self.levers()[..self.k], &self.forces.mus[..self.k], factor) > friction::CLOSED
     }
 
     fn keeps_margin_floor(&mut self) -> bool {
