@@ -1,5 +1,6 @@
 //! The ranking against plain enumeration: every subset of the same positions, scored by the linear programs and by the
 //! plain definition of the hull (Trinkle 1992; Ferrari & Canny 1992), with none of the kernel's or the plan's shortcuts.
+#![allow(clippy::unwrap_used, clippy::expect_used, reason = "a test that cannot go on has failed")]
 
 use holdwright::hand::FingerCount;
 use holdwright::mechanics::program::{self, Solved};
