@@ -400,6 +400,21 @@ fn no_key_stands_twice_in_a_scope_and_pieces_of_an_arrow_do_nothing() {
 }
 
 #[test]
+fn the_readme_has_the_table_of_keys() {
+    let readme = include_str!("../README.md");
+    let table = action::markdown();
+    assert!(readme.contains(&table), "put this table into README.md:\n\n{table}");
+}
+
+/// The picture is what the first command of the README shows.
+#[test]
+fn the_readme_has_the_picture() {
+    let part = holdwright::file::read_part(std::path::Path::new("parts/hinge_leaf.toml")).unwrap();
+    let screen = Desk::new(part, Setup::default()).screen(80, 24);
+    assert!(include_str!("../README.md").contains(&screen), "put this picture into README.md:\n\n{screen}");
+}
+
+#[test]
 fn the_readme_table_has_every_line_of_the_help_page() {
     let markdown = action::markdown();
     assert!(action::help().count() > 20);
@@ -572,6 +587,30 @@ fn rows_marked_unbeaten_are_those_no_row_beats() {
         }
     }
     assert_eq!(both.len(), 2, "the list has both kinds");
+}
+
+/// Against plain enumeration: every closed set is listed without floors, and those below the floor are counted.
+#[test]
+fn the_list_says_how_much_the_floors_hide() {
+    let mut open = setup();
+    open.search.spacing_mm = Some(20.0);
+    let scene = |setup: &Setup| Arc::new(holdwright::search::Scene::new(Arc::new(hinge()), setup.clone()).unwrap());
+    let all = |setup: &Setup| {
+        let request =
+            Request { scene: scene(setup), key: SortKey::Quality, listing: Listing::Members, most: 1_000_000 };
+        ranked(&request)
+    };
+    let every = all(&open);
+    assert_eq!(every.grasps.len() as u64 + every.inconclusive, every.closed);
+    assert_eq!(every.below_floors, 0);
+    let mut floored = open.clone();
+    floored.floors.quality = 0.1;
+    let below = every.grasps.iter().filter(|row| row.assessment.quality < 0.1).count() as u64;
+    assert!(below > 0 && below < every.closed);
+    let hidden = all(&floored);
+    assert_eq!((hidden.closed, hidden.below_floors), (every.closed, below));
+    let screen = Desk::new(hinge(), floored).screen(80, 24);
+    assert!(screen.contains("floors hide"), "{screen}");
 }
 
 #[test]

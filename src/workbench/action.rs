@@ -234,7 +234,7 @@ use Scope as S;
 
 /// Every key of the workbench.
 pub static TABLE: &[Row] = &[
-    row(A::Help, S::Bench, &[C('?')], "help", "this page", always),
+    row(A::Help, S::Bench, &[C('?')], "help", "help: every key and every number", always),
     row(A::Quit, S::Bench, &[C('q')], "quit", "leave; asks when marks are unsaved", always),
     row(A::Down, S::Bench, &[C('j'), Key::Down], "down", "next grasp", any_row),
     row(A::Up, S::Bench, &[C('k'), Key::Up], "up", "grasp before", any_row),

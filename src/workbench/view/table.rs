@@ -127,7 +127,7 @@ pub(super) fn edges(spots: &[Spot]) -> String {
         0 => spot.edge.edge.to_string(),
         ring => format!("{ring}:{}", spot.edge.edge),
     };
-    spots.iter().map(name).collect::<Vec<_>>().join(" ")
+    spots.iter().map(name).collect::<Vec<_>>().join(",")
 }
 
 fn padded(text: &str, width: usize) -> String {
