@@ -201,6 +201,14 @@ fn the_outline_with_each_marker_and_with_cones() {
 }
 
 #[test]
+fn every_grasp_is_listed_with_its_positions() {
+    let mut desk = Desk::hinge();
+    desk.keys("v");
+    insta::assert_snapshot!("members_80x24", desk.screen(80, 24));
+    insta::assert_snapshot!("members_120x40", desk.screen(120, 40));
+}
+
+#[test]
 fn pages_and_dialogs() {
     let mut desk = Desk::hinge();
     desk.keys("jmn<c-u>bow end<cr>wclear of the seal<cr>");
@@ -635,6 +643,35 @@ fn marks_are_named_noted_saved_and_asked_after() {
     desk.keys("qs");
     assert_eq!(desk.saved.len(), 3);
     assert!(matches!(desk.other.last(), Some(Effect::Quit { recover: false })));
+}
+
+#[test]
+fn a_mark_taken_away_by_mistake_comes_back_with_its_note() {
+    let mut desk = Desk::hinge();
+    desk.keys("wclear of the seal<cr>m");
+    assert!(desk.state.marks.is_empty());
+    desk.keys("jk");
+    desk.keys("m");
+    assert_eq!(desk.state.marks[0].keep.note, "clear of the seal");
+    desk.keys("Mm");
+    assert!(desk.state.marks.is_empty());
+    desk.keys("m");
+    assert_eq!(desk.state.marks[0].keep.note, "clear of the seal");
+}
+
+#[test]
+fn names_of_wide_characters_keep_the_header_in_line() {
+    let outer = vec![vec![[0.0, 0.0], [80.0, 0.0], [80.0, 40.0], [0.0, 40.0]]];
+    for name in [
+        "\u{8236}\u{5177}\u{8236}\u{5177}",
+        "\u{8236}\u{5177}\u{8236}\u{5177}\u{8236}\u{5177}\u{8236}\u{5177}\u{8236}\u{5177}\u{8236}\u{5177}",
+    ] {
+        let desk = Desk::new(Part::new(PartDescription::bare(name, outer.clone())).unwrap(), setup());
+        for width in 24..100 {
+            let screen = desk.screen(width, 24);
+            assert!(screen.lines().next().unwrap().contains("mu 0.20"), "{width}: {screen}");
+        }
+    }
 }
 
 #[test]

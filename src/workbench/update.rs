@@ -6,6 +6,7 @@ use super::look::Marker;
 use super::state::{Entry, EntryKind, Job, Layer, Mark, Panel, Question, Reading, State};
 use crate::file::Keep;
 use crate::hand::FingerCount;
+use crate::mechanics::Verdict;
 use crate::search::job::{News, Request, What};
 use crate::search::{Listing, Scene, Setup};
 use std::sync::Arc;
@@ -351,8 +352,7 @@ fn marks(state: &mut State, action: Action) -> Vec<Effect> {
         Action::Mark => {
             let at = (*at).min(last);
             if at < state.marks.len() {
-                let gone = state.marks.remove(at);
-                state.message = Some(unmarked(&gone));
+                lift(state, at);
             }
             match state.layers.last_mut() {
                 Some(Layer::Marks { .. }) if state.marks.is_empty() => {
@@ -458,16 +458,28 @@ fn open_entry(state: &mut State, kind: EntryKind) {
 fn toggle_mark(state: &mut State) {
     let Some(spots) = state.row().map(|row| row.grasp.spots.clone()) else { return };
     if let Some(at) = state.marks.iter().position(|mark| mark.keep.grasp.spots == spots) {
-        let gone = state.marks.remove(at);
-        state.message = Some(unmarked(&gone));
+        lift(state, at);
+    } else if let Some(back) = state.lifted.take_if(|lifted| lifted.keep.grasp.spots == spots) {
+        state.message = Some(format!("marked again as {}", back.keep.name));
+        state.marks.push(back);
     } else if let Some(reading) = state.reading.clone() {
+        let verdict = reading.assessment.verdict;
         mark(state, reading);
-        state.message = Some("marked; n names it, w notes why, s saves".to_owned());
+        state.message = Some(match verdict {
+            Verdict::Closed => "marked; n names it, w notes why, s saves".to_owned(),
+            Verdict::Open | Verdict::Marginal => {
+                format!("marked, although it is {} under the present knobs", verdict.word())
+            }
+        });
     }
 }
 
-fn unmarked(gone: &Mark) -> String {
-    if gone.saved { "unmarked; it stays in the file".to_owned() } else { "unmarked".to_owned() }
+/// Takes a mark away, and keeps it for a change of mind.
+fn lift(state: &mut State, at: usize) {
+    let gone = state.marks.remove(at);
+    let file = if gone.saved { "; it stays in the file" } else { "" };
+    state.message = Some(format!("unmarked{file}; m on the same grasp brings it back"));
+    state.lifted = Some(gone);
 }
 
 /// Marks a grasp as it reads under the present knobs.
