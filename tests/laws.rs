@@ -205,6 +205,23 @@ proptest! {
         }
     }
 
+    /// A torque scale far from the part's size: a slip, or a setup meant for another part. The two ways still agree, and
+    /// the verdict does not depend on the scale.
+    #[test]
+    fn any_torque_scale_will_do(grasp in grasp(), at in somewhere(), power in -5.0..5.0) {
+        let there = Frame { scale_mm: at.scale_mm * 10.0_f64.powf(power), ..at };
+        let wrenches = Wrenches::new(&grasp, &there);
+        let kernel = quality::planar(&wrenches);
+        let plain = quality::by_definition(wrenches.generators());
+        assert_close(kernel.signed_quality.max(0.0), plain.signed_quality.max(0.0), 1e-9, TWO_WAYS);
+        let (near, far) = (read(&grasp, &at), read(&grasp, &there));
+        if near.quality > 1e-3 {
+            assert_eq!(far.verdict, Verdict::Closed);
+            assert_close(near.placement.torque_mm, far.placement.torque_mm, 1e-6, 1e-7 * at.scale_mm);
+        }
+        assert!(near.verdict != Verdict::Open || far.verdict != Verdict::Closed);
+    }
+
     /// The placement tolerance is one: every pattern of offsets below it keeps closure, and the worst pattern just above
     /// it loses closure, in the sense that governs; the other sense has its own.
     #[test]

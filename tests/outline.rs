@@ -1,4 +1,5 @@
 //! The rules of an outline one by one: each fault is provoked, and its message names the place and the mend.
+#![allow(clippy::unwrap_used, clippy::expect_used, reason = "a test stops at the first surprise")]
 
 mod common;
 

@@ -1,5 +1,6 @@
 //! Every demo part reads without a note, is of a size one can hold, and can be gripped with three fingers: by points
 //! without size, and by the pins of the deck cell.
+#![allow(clippy::unwrap_used, clippy::expect_used, reason = "a test stops at the first surprise")]
 
 mod common;
 

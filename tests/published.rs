@@ -1,6 +1,7 @@
 //! Results from published theorems and closed forms: what every grasp reading must reproduce.
 //!
 //! Values marked "derived" follow from the definition of the named paper by elementary geometry, given beside them.
+#![allow(clippy::unwrap_used, clippy::expect_used, reason = "a test stops at the first surprise")]
 
 mod common;
 

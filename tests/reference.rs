@@ -2,6 +2,7 @@
 //!
 //! Source: tests/reference/grasps.py (numpy, scipy, highspy; versions, seed and columns stated there), which builds its
 //! own generators from the definition and knows nothing of this program.
+#![allow(clippy::unwrap_used, clippy::expect_used, reason = "a test stops at the first surprise")]
 
 mod common;
 

@@ -5,7 +5,9 @@
 //! changes no verdict, and puts contacts of different mu on one circle.
 
 use super::force_polygon::ForcePolygon;
+use super::quality;
 use super::wrench::{Lever, MOST_GENERATORS};
+use nalgebra::Vector3;
 
 /// State of the surfaces in contact.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -69,7 +71,16 @@ pub fn signed_quality_at(levers: &[Lever], mus: &[f64], factor: f64) -> f64 {
     }
     let n = 2 * levers.len();
     let polygon = ForcePolygon::new(&forces[..n]);
-    polygon.score(&polygon.heights(&torques[..n])).signed_quality
+    let score = polygon.score(&polygon.heights(&torques[..n]));
+    if score.certain {
+        return score.signed_quality;
+    }
+    // Edges parallel but for a hair: the kernel's facets may lie anywhere inside the hull, and "open" be wrong.
+    let mut generators = [Vector3::zeros(); MOST_GENERATORS];
+    for ((generator, [x, y]), torque) in generators.iter_mut().zip(forces).zip(torques) {
+        *generator = Vector3::new(x, y, torque);
+    }
+    quality::by_definition(&generators[..n]).signed_quality
 }
 
 /// Least factor on all friction coefficients at which the contacts close, to about 1e-10 of mu; nothing when even

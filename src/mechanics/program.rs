@@ -65,7 +65,8 @@ fn solve<const ROWS: usize>(columns: &[[f64; ROWS]], cost: &[f64], target: [f64;
 /// Quantitative closure (Trinkle 1992): maximise d with `W lambda = 0`, `sum lambda = 1`, `lambda_i >= d`.
 ///
 /// Solved in its three-row form: with `lambda = t + s` it is `min sum s` subject to `W s = -W 1`, `s >= 0`, and
-/// `d = 1 / (n + sum s)`. Infeasible means open; an answer with rank 3 means closed.
+/// `d = 1 / (n + sum s)`. Infeasible means open, and is believed only with a [`separating_direction`] to prove it; an
+/// answer with rank 3 means closed.
 pub fn closure(wrenches: &Wrenches) -> Solved<Balance> {
     let generators = wrenches.generators();
     let sum: Vector3<f64> = generators.iter().sum();
@@ -77,6 +78,10 @@ pub fn closure(wrenches: &Wrenches) -> Solved<Balance> {
             let lambda: Vec<f64> = s.iter().map(|s| (1.0 + s) / total).collect();
             let left: Vector3<f64> = generators.iter().zip(&lambda).map(|(w, l)| w * *l).sum();
             Solved::Answer(Balance { lambda, least: 1.0 / total, residual: left.norm() })
+        }
+        // Edges parallel but for 1e-10 to 1e-7 make pivots so small that the simplex method loses its way.
+        Solved::Infeasible if separating_direction(wrenches).is_none() => {
+            Solved::Inconclusive("no proof of infeasibility")
         }
         Solved::Infeasible => Solved::Infeasible,
         Solved::Inconclusive(why) => Solved::Inconclusive(why),

@@ -1,5 +1,6 @@
 //! What several test files share: one way to compare numbers, contacts and shapes to try, seeded dice.
 #![allow(dead_code, reason = "every test file takes what it needs")]
+#![allow(clippy::unwrap_used, reason = "a test stops at the first surprise")]
 
 use holdwright::mechanics::{Assessment, Contact, Frame, Wrenches};
 use holdwright::part::{Part, PartDescription};
