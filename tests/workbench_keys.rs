@@ -113,6 +113,16 @@ fn a_setting_that_cannot_be_is_refused_with_its_reason() {
 }
 
 #[test]
+fn the_cell_shape_goes_round_and_changes_the_picture() {
+    let mut desk = Desk::hinge();
+    let first = desk.screen(80, 24);
+    desk.keys("a<esc>");
+    assert_ne!(desk.screen(80, 24), first);
+    desk.keys("aaaa<esc>");
+    assert_eq!(desk.screen(80, 24), first);
+}
+
+#[test]
 fn the_selection_stays_on_its_grasp_when_a_knob_is_turned() {
     let mut desk = Desk::hinge();
     desk.keys("jjj");

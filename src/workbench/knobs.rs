@@ -86,6 +86,16 @@ pub(super) fn next_marker(state: &mut State) {
     });
 }
 
+/// Heights of a character cell over its width that terminals have, the commonest first (common practice, no source).
+const CELL_SHAPES: [f64; 5] = [2.0, 2.2, 2.5, 1.6, 1.8];
+
+/// Takes the next shape of the character cells.
+pub(super) fn next_cell_shape(state: &mut State) {
+    let now = CELL_SHAPES.iter().position(|shape| (shape - state.look.aspect).abs() < 1e-9).unwrap_or(0);
+    state.look.aspect = CELL_SHAPES[(now + 1) % CELL_SHAPES.len()];
+    state.message = Some(format!("cells taken as {} times as high as wide", state.look.aspect));
+}
+
 /// Sorts by the key that follows.
 pub(super) fn next_key(state: &mut State) -> Vec<Effect> {
     let at = Key::ALL.iter().position(|key| *key == state.order.key).unwrap_or(0);

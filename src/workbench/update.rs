@@ -201,6 +201,7 @@ fn bench(state: &mut State, action: Action) -> Vec<Effect> {
         Action::Listing => return knobs::other_listing(state),
         Action::Cones => state.cones = !state.cones,
         Action::Marker => knobs::next_marker(state),
+        Action::CellShape => knobs::next_cell_shape(state),
         Action::NextPanel => {
             state.panel = match state.panel {
                 Panel::Table => Panel::Outline,

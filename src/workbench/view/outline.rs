@@ -3,6 +3,7 @@
 use super::super::look::{Look, Marker};
 use super::super::state::State;
 use super::sheet::{Depth, Fit, Sheet, slope};
+use crate::file::shown;
 use crate::hand::Stretch;
 use crate::part::{Edge, KeepOut};
 use crate::search::{Grasp, Scene};
@@ -57,8 +58,10 @@ impl Signs {
     /// As many explanations as fit, none cut.
     fn text(&self, state: &State, width: usize) -> String {
         let mut parts = vec!["@ centre of mass"];
+        let reasons = reasons(state);
+        let keep_out = format!("x keep-out: {reasons}");
         if self.keep_out {
-            parts.push("x keep-out");
+            parts.push(if reasons.is_empty() || keep_out.len() > width / 2 { "x keep-out" } else { &keep_out });
         }
         if self.unreachable {
             parts.push(if state.look.marker == Marker::Braille {
@@ -80,6 +83,18 @@ impl Signs {
         }
         text
     }
+}
+
+/// Why fingers are kept out, each reason once.
+fn reasons(state: &State) -> String {
+    let mut reasons: Vec<String> = Vec::new();
+    for keep in state.order.scene.part().keep_outs() {
+        let reason = shown(keep.reason.trim());
+        if !reason.is_empty() && !reasons.contains(&reason) {
+            reasons.push(reason);
+        }
+    }
+    reasons.join(", ")
 }
 
 struct Pen {
