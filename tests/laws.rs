@@ -71,19 +71,22 @@ fn assert_same_scores(a: &Assessment, b: &Assessment, length_ratio: f64) {
         assert_close(a.placement.torque_mm * length_ratio, b.placement.torque_mm, 1e-8, 1e-7 * length_ratio);
     }
     match (a.friction_needed, b.friction_needed) {
-        (Some(a), Some(b)) if a < 10.0 => assert_close(a, b, 1e-8, 1e-8),
+        // Promised to 1e-6; where edges are parallel but for 1e-11 rounding alone decides the last of these digits.
+        (Some(a), Some(b)) if a < 10.0 => assert_close(a, b, 1e-6, 1e-6),
         _ => {}
     }
 }
 
 proptest! {
-    #![proptest_config(ProptestConfig { cases: 4000, max_global_rejects: 200_000, failure_persistence: None, ..ProptestConfig::default() })]
+    #![proptest_config(ProptestConfig { cases: 4000, max_global_rejects: 400_000, failure_persistence: None, ..ProptestConfig::default() })]
 
     #[test]
     fn rigid_motion_changes_no_score(
         grasp in grasp(), at in somewhere(), turn in -4.0..4.0, dx in -300.0..300.0, dy in -300.0..300.0,
     ) {
         let by = Vector2::new(dx, dy);
+        // Moving rounds each point by 1e-13 mm, which turns the line through two points that lie a hair apart.
+        prop_assume!(!points_a_hair_apart(&grasp));
         let there = Frame { about: Rotation2::new(turn) * at.about + by, ..at };
         assert_same_scores(&read(&grasp, &at), &read(&moved(&grasp, turn, by), &there), 1.0);
     }
@@ -115,6 +118,7 @@ proptest! {
     /// Lengths and l scaled together leave quality unchanged and scale the placement tolerance.
     #[test]
     fn scale_moves_only_lengths(grasp in grasp(), at in somewhere(), by in 0.01..300.0) {
+        prop_assume!(!points_a_hair_apart(&grasp));
         let scaled: Vec<_> = grasp.iter().map(|c| Contact { point: c.point * by, ..*c }).collect();
         let there = Frame { about: at.about * by, scale_mm: at.scale_mm * by };
         assert_same_scores(&read(&grasp, &at), &read(&scaled, &there), by);
@@ -163,8 +167,11 @@ proptest! {
         let wrenches = Wrenches::new(&grasp, &at);
         let reach = quality::least_reach(wrenches.generators()).0;
         prop_assume!(reach.abs() > 1e-7);
-        // Cones of next to no friction are pairs of nearly equal columns; there the solver may decline, no more.
-        let thin = grasp.iter().any(|c| c.mu > 0.0 && c.mu < 1e-3);
+        // Cones of next to no friction, and edges parallel but for a hair, are columns the simplex method cannot tell
+        // apart; there the solver may decline, no more.
+        let hair = |x: f64| (1e-14..1e-3).contains(&x.abs());
+        let thin = grasp.iter().any(|c| hair(c.mu) || hair(c.normal.x) || hair(c.normal.y))
+            || grasp.iter().any(|a| grasp.iter().any(|b| hair(a.normal.perp(&b.normal))));
         let a = read(&grasp, &at);
         assert_eq!(a.verdict == Verdict::Closed, reach > 0.0);
         match program::closure(&wrenches) {
@@ -269,7 +276,7 @@ proptest! {
     fn closed_just_above_friction_needed_and_not_below(grasp in grasp(), at in somewhere()) {
         let wrenches = Wrenches::new(&grasp, &at);
         let largest = grasp.iter().map(|c| c.mu).fold(0.0, f64::max);
-        prop_assume!(largest > 0.0 || closes(&wrenches));
+        prop_assume!((largest > 0.0 || closes(&wrenches)) && !points_a_hair_apart(&grasp));
         let Some(factor) = friction::factor_needed(wrenches.levers(), wrenches.mus()) else {
             assert!(!closes(&wrenches.with_friction_times(MU_LARGEST / largest)));
             return Ok(());
@@ -314,6 +321,72 @@ proptest! {
     }
 }
 
+/// On grasps as parts have them, right angles and exactly parallel edges included, the two ways agree on every one, and
+/// the solver never declines.
+#[test]
+fn ordinary_grasps_leave_no_doubt() {
+    let mut dice = common::Dice::seeded(7);
+    let mut closed = 0;
+    for case in 0..12_000 {
+        let contact = |dice: &mut common::Dice| {
+            let (x, y) = (dice.even(-40.0, 65.0), dice.even(-40.0, 65.0));
+            let inward = (-y - 3.0).atan2(-x + 5.0).to_degrees() + dice.even(-50.0, 50.0);
+            common::touch(x, y, if dice.pick(3) == 0 { 90.0 * dice.pick(4) as f64 } else { inward }, 0.2)
+        };
+        let grasp: Vec<_> = (0..2 + case % 5).map(|_| contact(&mut dice)).collect();
+        let at = frame(3.0, 2.0, 60.0);
+        let wrenches = Wrenches::new(&grasp, &at);
+        let a = read(&grasp, &at);
+        closed += usize::from(a.verdict == Verdict::Closed);
+        // Within 1e-7 of the edge the solver's own tolerance decides.
+        if quality::least_reach(wrenches.generators()).0.abs() > 1e-7 {
+            let doubts = a.doubts(&wrenches, &at, 0.2);
+            assert!(doubts.is_empty(), "{grasp:?}: {doubts:?}");
+        }
+    }
+    assert!(closed > 3000, "{closed}");
+}
+
+/// Edges parallel but for the noise a drawing carries. The kernel hands over to the plain definition often here; what it
+/// keeps must be right, and friction needed must not contradict the verdict. The solver may decline on a few.
+#[test]
+fn edges_parallel_but_for_a_hair() {
+    let mut dice = common::Dice::seeded(11);
+    for noise in [1e-14, 1e-12, 1e-11, 1e-10, 1e-9, 1e-8, 1e-7, 1e-6] {
+        let (mut closed, mut declined) = (0, 0);
+        for case in 0..6000 {
+            let contact = |dice: &mut common::Dice| {
+                let (x, y) = (dice.even(-40.0, 65.0), dice.even(-40.0, 65.0));
+                let hair = (dice.even(-1.0, 1.0) * noise).to_degrees();
+                common::touch(x, y, 90.0 * dice.pick(4) as f64 + hair, 0.2)
+            };
+            let grasp: Vec<_> = (0..3 + case % 4).map(|_| contact(&mut dice)).collect();
+            let at = frame(3.0, 2.0, 60.0);
+            let wrenches = Wrenches::new(&grasp, &at);
+            let a = read(&grasp, &at);
+            let plain = quality::by_definition(wrenches.generators());
+            assert_close(a.quality, plain.signed_quality.max(0.0), 0.0, TWO_WAYS + MARGINAL);
+            if plain.signed_quality < 1e-6 {
+                continue;
+            }
+            closed += 1;
+            let tolerance = plain.torque_up.min(plain.torque_down) * at.scale_mm;
+            assert_close(a.placement.torque_mm, tolerance, 1e-9, 1e-9);
+            let needed = a.friction_needed.expect("closed as it is");
+            assert!(needed < 0.2 && a.friction_margin.is_none_or(|margin| margin > 1.0), "{needed} {grasp:?}");
+            declined += usize::from(!a.doubts(&wrenches, &at, 0.2).is_empty());
+        }
+        assert!(closed > 2000, "{closed}");
+        // Seen: at most 1.5 %, at 1e-9.
+        assert!(declined * 33 < closed, "noise {noise:e}: {declined} of {closed}");
+    }
+}
+
+/// Points so near, but not the same, that rounding turns the line through them.
+fn points_a_hair_apart(grasp: &[Contact]) -> bool {
+    grasp.iter().any(|a| grasp.iter().any(|b| (1e-300..1e-4).contains(&(a.point - b.point).norm())))
+}
+
 /// Every contact moved along its edge, tangent with the material on the left.
 fn slid(grasp: &[Contact], by: impl Fn(usize) -> f64) -> Vec<Contact> {
     let slide = |(i, c): (usize, &Contact)| {
@@ -326,7 +399,7 @@ fn slid(grasp: &[Contact], by: impl Fn(usize) -> f64) -> Vec<Contact> {
 /// Closure by the plain definition on generators of unit force: scaling a generator changes no verdict.
 fn closes(wrenches: &Wrenches) -> bool {
     let unit: Vec<Vector3<f64>> = wrenches.generators().iter().map(|w| w / w.x.hypot(w.y)).collect();
-    quality::by_definition(&unit).signed_quality > 0.0
+    quality::by_definition(&unit).signed_quality > friction::CLOSED
 }
 
 /// Velocity of each contact point under the motion, from the words of the escape alone: the part may not press on any

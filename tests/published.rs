@@ -300,6 +300,18 @@ fn two_contacts_that_do_not_face_stay_open() {
     }
 }
 
+/// Nguyen 1988: two contacts pressing the same way see each other at no coefficient; the search for one ends, whatever
+/// the coefficients it starts from.
+#[test]
+fn no_friction_closes_two_contacts_that_press_the_same_way() {
+    for step in 1..=700 {
+        let mu = f64::from(step) / 357.0;
+        let grasp = [touch(-1.0, 0.0, 90.0, mu), touch(1.0, 0.0, 90.0, mu * 0.7)];
+        let reading = read(&grasp, &frame(0.0, 0.0, 1.0));
+        assert_eq!((reading.friction_needed, reading.friction_margin), (None, Some(0.0)));
+    }
+}
+
 /// Derived from Nguyen 1988 for two contacts: tapered faces tan gamma; opposed pins staggered by s across D: s/D; a chord
 /// at beta off a diameter: tan beta.
 #[test]

@@ -193,6 +193,8 @@ impl FrictionReading {
 
 /// Qualities below this are within the solver's own tolerance; the plain definition alone confirms them.
 const LP_BLUR: f64 = 1e-6;
+/// A least weight d at or below this is not above 0: on the edge the solver may balance with weights of 1e17 to 1.
+const LEAST_WEIGHT: f64 = 1e-12;
 /// Agreement asked of the two ways to the quality.
 const AGREE_QUALITY: f64 = 1e-9;
 /// Agreement asked of the kernel and the placement programs, relative.
@@ -202,7 +204,7 @@ const FRICTION_STEP: f64 = 1e-4;
 
 fn confirm_closure(a: &Assessment, wrenches: &Wrenches, doubts: &mut Vec<Doubt>) {
     let program_says = match program::closure(wrenches) {
-        Solved::Answer(_) if closure::rank(wrenches) == 3 => Verdict::Closed,
+        Solved::Answer(balance) if balance.least > LEAST_WEIGHT && closure::rank(wrenches) == 3 => Verdict::Closed,
         Solved::Answer(_) | Solved::Infeasible => Verdict::Open,
         Solved::Inconclusive(why) => {
             doubts.push(Doubt::Solver(why));
@@ -245,7 +247,7 @@ fn confirm_friction(a: &Assessment, wrenches: &Wrenches, setup_mu: f64, doubts: 
     let closes = |factor: f64| {
         let scaled = wrenches.with_friction_times(factor);
         match program::closure(&scaled) {
-            Solved::Answer(_) => closure::rank(&scaled) == 3,
+            Solved::Answer(balance) => balance.least > LEAST_WEIGHT && closure::rank(&scaled) == 3,
             Solved::Infeasible => false,
             Solved::Inconclusive(_) => quality::by_definition(scaled.generators()).signed_quality > MARGINAL,
         }
