@@ -343,9 +343,9 @@ fn ctrl_z_gives_the_shell_back_and_returning_paints_everything_without_a_questio
         pty.wait_quiet();
         let full = pty.screen();
         if stop == "\x1a" {
-            pty.send(stop)
+            pty.send(stop);
         } else {
-            pty.signal(stop)
+            pty.signal(stop);
         }
         pty.wait("the stop", |pty| pty.state() == 'T');
         pty.wait("the shell's screen", |pty| !pty.heard.lock().unwrap().parser.screen().alternate_screen());

@@ -141,6 +141,8 @@ pub enum Action {
     Cones,
     /// Next marker.
     Marker,
+    /// Next shape of the character cells.
+    CellShape,
     /// Bring in the next panel where not all fit.
     NextPanel,
     /// The reading on the whole screen.
@@ -234,7 +236,7 @@ use Scope as S;
 
 /// Every key of the workbench.
 pub static TABLE: &[Row] = &[
-    row(A::Help, S::Bench, &[C('?')], "help", "this page", always),
+    row(A::Help, S::Bench, &[C('?')], "help", "help: every key and every number", always),
     row(A::Quit, S::Bench, &[C('q')], "quit", "leave; asks when marks are unsaved", always),
     row(A::Down, S::Bench, &[C('j'), Key::Down], "down", "next grasp", any_row),
     row(A::Up, S::Bench, &[C('k'), Key::Up], "up", "grasp before", any_row),
@@ -257,6 +259,7 @@ pub static TABLE: &[Row] = &[
     row(A::SpacingFiner, S::Bench, &[C('.')], "finer", "sites closer together (spacing x 0.8)", always),
     row(A::SpacingWider, S::Bench, &[C(',')], "wider", "sites farther apart (spacing x 1.25)", always),
     row(A::Marker, S::Bench, &[C('p')], "pen", "draw with ASCII, lines or braille dots", always),
+    row(A::CellShape, S::Bench, &[C('a')], "", "another cell shape, until right angles look right", always),
     row(A::NextPanel, S::Bench, &[Key::Tab], "panel", "on a small screen: bring in the next panel", always),
     row(A::PageDown, S::Bench, &[C('J'), Key::PageDown], "", "a page down", any_row),
     row(A::PageUp, S::Bench, &[C('K'), Key::PageUp], "", "a page up", any_row),

@@ -86,7 +86,8 @@ fn leave_word(recovery: &Recovery, keeps: &[Keep]) {
         Ok(path) => format!("kept in {}", path.display()),
         Err(fault) => format!("lost: {fault}"),
     };
-    let word = file::shown(&format!("{count} unsaved marks are {word}"));
+    let marks = if count == 1 { "1 unsaved mark is".to_owned() } else { format!("{count} unsaved marks are") };
+    let word = file::shown(&format!("{marks} {word}"));
     let _ = writeln!(io::stderr(), "{word}");
 }
 

@@ -6,7 +6,9 @@
 pub mod action;
 mod entry;
 mod guard;
+mod knobs;
 mod look;
+mod marks;
 mod recovery;
 mod run;
 pub mod state;

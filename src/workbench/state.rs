@@ -221,6 +221,8 @@ pub struct State {
     pub grasp_path: PathBuf,
     pub(super) quit_when_saved: bool,
     pub(super) draft: Option<Entry>,
+    /// The mark taken away last; marking its grasp again brings it back with its name and note.
+    pub(super) lifted: Option<Mark>,
     /// Size of the screen, columns and rows, for page steps.
     pub size: (u16, u16),
 }
@@ -255,6 +257,7 @@ impl State {
             grasp_path: options.grasp_path.clone(),
             quit_when_saved: false,
             draft: None,
+            lifted: None,
             size: (80, 24),
         })
     }

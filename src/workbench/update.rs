@@ -2,13 +2,11 @@
 
 use super::action::{self, Action, Key};
 use super::entry;
-use super::look::Marker;
-use super::state::{Entry, EntryKind, Job, Layer, Mark, Panel, Question, Reading, State};
+use super::knobs;
+use super::marks;
+use super::state::{Entry, EntryKind, Job, Layer, Panel, Question, Reading, State};
 use crate::file::Keep;
-use crate::hand::FingerCount;
 use crate::search::job::{News, Request, What};
-use crate::search::{Listing, Scene, Setup};
-use std::sync::Arc;
 
 /// Something that reaches the workbench.
 #[derive(Debug, Clone)]
@@ -79,7 +77,7 @@ pub enum Effect {
 /// Carries an input into the state.
 pub fn update(state: &mut State, input: Input) -> Vec<Effect> {
     match input {
-        Input::Start => rank(state),
+        Input::Start => knobs::rank(state),
         Input::Key(key) => press(state, key),
         Input::Paste(text) => {
             if let Some(Layer::Entry(entry)) = state.layers.last_mut() {
@@ -117,7 +115,7 @@ pub fn update(state: &mut State, input: Input) -> Vec<Effect> {
         Input::Recovered(keeps) => {
             let count = keeps.len();
             for keep in keeps {
-                add_mark(state, keep);
+                marks::add(state, keep);
             }
             let marks = if count == 1 { "mark" } else { "marks" };
             state.message = Some(format!("{count} {marks} taken back, not saved yet: s saves, M lists them"));
@@ -175,7 +173,7 @@ fn act(state: &mut State, action: Action) -> Vec<Effect> {
             page(state, action);
             Vec::new()
         }
-        Some(Layer::Marks { .. }) => marks(state, action),
+        Some(Layer::Marks { .. }) => marks::act(state, action),
         Some(Layer::Entry(_)) => typing(state, action),
         Some(&Layer::Ask(question)) => answer(state, question, action),
     }
@@ -191,29 +189,19 @@ fn bench(state: &mut State, action: Action) -> Vec<Effect> {
         Action::PageUp => state.select(state.selected.saturating_sub(page)),
         Action::First => state.select(0),
         Action::Last => state.select(last),
-        Action::MuUp => return step_mu(state, 100.0, 1.0),
-        Action::MuDown => return step_mu(state, 100.0, -1.0),
-        Action::MuUpCoarse => return step_mu(state, 20.0, 1.0),
-        Action::MuDownCoarse => return step_mu(state, 20.0, -1.0),
-        Action::FingersMore => return step_fingers(state, 1),
-        Action::FingersFewer => return step_fingers(state, -1),
-        Action::SpacingFiner => return step_spacing(state, 0.8),
-        Action::SpacingWider => return step_spacing(state, 1.25),
-        Action::SortNext => {
-            let all = crate::search::Key::ALL;
-            let at = all.iter().position(|key| *key == state.order.key).unwrap_or(0);
-            state.order.key = all[(at + 1) % all.len()];
-            return rank(state);
-        }
-        Action::Listing => {
-            state.order.listing = match state.order.listing {
-                Listing::Families => Listing::Members,
-                Listing::Members => Listing::Families,
-            };
-            return rank(state);
-        }
+        Action::MuUp => return knobs::step_mu(state, 100.0, 1.0),
+        Action::MuDown => return knobs::step_mu(state, 100.0, -1.0),
+        Action::MuUpCoarse => return knobs::step_mu(state, 20.0, 1.0),
+        Action::MuDownCoarse => return knobs::step_mu(state, 20.0, -1.0),
+        Action::FingersMore => return knobs::step_fingers(state, 1),
+        Action::FingersFewer => return knobs::step_fingers(state, -1),
+        Action::SpacingFiner => return knobs::step_spacing(state, 0.8),
+        Action::SpacingWider => return knobs::step_spacing(state, 1.25),
+        Action::SortNext => return knobs::next_key(state),
+        Action::Listing => return knobs::other_listing(state),
         Action::Cones => state.cones = !state.cones,
-        Action::Marker => next_marker(state),
+        Action::Marker => knobs::next_marker(state),
+        Action::CellShape => knobs::next_cell_shape(state),
         Action::NextPanel => {
             state.panel = match state.panel {
                 Panel::Table => Panel::Outline,
@@ -224,94 +212,15 @@ fn bench(state: &mut State, action: Action) -> Vec<Effect> {
         Action::OpenReading => state.layers.push(Layer::Reading { top: 0 }),
         Action::Help => state.layers.push(Layer::Help { top: 0 }),
         Action::OpenMarks => state.layers.push(Layer::Marks { at: 0 }),
-        Action::Mark => toggle_mark(state),
+        Action::Mark => marks::toggle(state),
         Action::Name => open_entry(state, EntryKind::Name),
         Action::Note => open_entry(state, EntryKind::Note),
         Action::MuEnter => open_entry(state, EntryKind::Mu),
-        Action::Save => return save(state, false),
+        Action::Save => return marks::save(state, false),
         Action::Quit => return quit(state),
         _ => {}
     }
     Vec::new()
-}
-
-/// Asks for a ranking by the knobs as they stand.
-fn rank(state: &mut State) -> Vec<Effect> {
-    state.job = Job::Running(None);
-    // Until the new number is known no ranking on the screen counts as that of the new knobs.
-    state.asked = None;
-    vec![Effect::Rank(state.order.request())]
-}
-
-/// Takes a changed setup, reads the selected grasp under it at once, and ranks again.
-///
-/// # Errors
-/// What is wrong with the setup; the knobs stay as they were.
-pub(super) fn turn(state: &mut State, change: impl FnOnce(&mut Setup)) -> Result<Vec<Effect>, String> {
-    let mut setup = state.setup().clone();
-    change(&mut setup);
-    if setup == *state.setup() {
-        return Ok(Vec::new());
-    }
-    if let Some(fault) = setup.faults().first() {
-        return Err(fault.to_string());
-    }
-    let scene = Scene::new(Arc::clone(state.order.scene.part()), setup)?;
-    state.order.scene = Arc::new(scene);
-    state.read();
-    Ok(rank(state))
-}
-
-fn turn_or_say(state: &mut State, change: impl FnOnce(&mut Setup)) -> Vec<Effect> {
-    turn(state, change).unwrap_or_else(|fault| {
-        state.message = Some(fault);
-        Vec::new()
-    })
-}
-
-/// Moves mu to the next multiple of `1 / per_unit` above or below.
-fn step_mu(state: &mut State, per_unit: f64, way: f64) -> Vec<Effect> {
-    let mu = state.setup().friction.mu * per_unit;
-    // A hair is taken off so that 0.29999999999999999 counts as 0.3.
-    let next = if way > 0.0 { (mu + 1e-6).floor() + 1.0 } else { (mu - 1e-6).ceil() - 1.0 };
-    let next = (next / per_unit).clamp(0.0, crate::part::MU_LARGEST);
-    turn_or_say(state, |setup| setup.friction.mu = next)
-}
-
-fn step_fingers(state: &mut State, way: isize) -> Vec<Effect> {
-    let now = state.setup().hand.fingers.get();
-    match now.checked_add_signed(way).and_then(FingerCount::new) {
-        Some(count) => turn_or_say(state, |setup| setup.hand.fingers = count),
-        None => {
-            state.message = Some(format!("a grasp has {} to {} fingers", FingerCount::LEAST, FingerCount::MOST));
-            Vec::new()
-        }
-    }
-}
-
-/// Sites are never set closer than this part of the perimeter, nor wider than the other.
-const SPACING_LIMITS: (f64, f64) = (1.0 / 5000.0, 1.0 / 8.0);
-
-fn step_spacing(state: &mut State, factor: f64) -> Vec<Effect> {
-    let part = state.order.scene.part();
-    let perimeter = part.outline().perimeter_mm();
-    let now = state.setup().search.spacing_for(part);
-    let next = now * factor;
-    if next < perimeter * SPACING_LIMITS.0 || next > perimeter * SPACING_LIMITS.1 {
-        state.message = Some(format!("spacing stays at {now:.3} mm: the next step says no more of this part"));
-        return Vec::new();
-    }
-    turn_or_say(state, |setup| setup.search.spacing_mm = Some(next))
-}
-
-fn next_marker(state: &mut State) {
-    state.look.marker = state.look.marker.next();
-    let word = state.look.marker.word();
-    state.message = Some(if state.look.marker == Marker::Ascii || state.look.utf8 {
-        format!("drawn with {word}")
-    } else {
-        format!("drawn with {word}, but the locale is not UTF-8: if the outline is rubbish, press p again")
-    });
 }
 
 fn page(state: &mut State, action: Action) {
@@ -338,46 +247,6 @@ fn page(state: &mut State, action: Action) {
     }
 }
 
-fn marks(state: &mut State, action: Action) -> Vec<Effect> {
-    let last = state.marks.len().saturating_sub(1);
-    let Some(Layer::Marks { at }) = state.layers.last_mut() else { return Vec::new() };
-    match action {
-        Action::Down => *at = (*at + 1).min(last),
-        Action::Up => *at = at.saturating_sub(1),
-        Action::Close => {
-            state.layers.pop();
-        }
-        Action::Save => return save(state, false),
-        Action::Mark => {
-            let at = (*at).min(last);
-            if at < state.marks.len() {
-                let gone = state.marks.remove(at);
-                state.message = Some(unmarked(&gone));
-            }
-            match state.layers.last_mut() {
-                Some(Layer::Marks { .. }) if state.marks.is_empty() => {
-                    state.layers.pop();
-                }
-                Some(Layer::Marks { at }) => *at = (*at).min(state.marks.len() - 1),
-                _ => {}
-            }
-        }
-        Action::Accept => {
-            let spots = state.marks.get(*at).map(|mark| mark.keep.grasp.spots.clone());
-            let rows = state.shown.as_ref().map_or(&[][..], |shown| &shown.ranking.grasps);
-            match spots.and_then(|spots| rows.iter().position(|row| row.grasp.spots == spots)) {
-                Some(row) => {
-                    state.layers.pop();
-                    state.select(row);
-                }
-                None => state.message = Some("not in the list under the present knobs".to_owned()),
-            }
-        }
-        _ => {}
-    }
-    Vec::new()
-}
-
 fn typing(state: &mut State, action: Action) -> Vec<Effect> {
     let Some(Layer::Entry(entry)) = state.layers.last_mut() else { return Vec::new() };
     match action {
@@ -398,7 +267,7 @@ fn accept(state: &mut State) -> Vec<Effect> {
     match entry.kind {
         EntryKind::Mu => {
             let taken = match entry.text.trim().replace(',', ".").parse::<f64>() {
-                Ok(mu) => turn(state, |setup| setup.friction.mu = mu),
+                Ok(mu) => knobs::turn(state, |setup| setup.friction.mu = mu),
                 Err(_) => Err("give a number, for example 0.15".to_owned()),
             };
             match taken {
@@ -419,7 +288,7 @@ fn accept(state: &mut State) -> Vec<Effect> {
             if state.mark_on(&entry.spots).is_none()
                 && let Some(reading) = Reading::of(&state.order.scene, &entry.spots)
             {
-                mark(state, reading);
+                marks::mark(state, reading);
             }
             let text = entry.text.trim().to_owned();
             if let Some(mark) = state.marks.iter_mut().find(|mark| mark.keep.grasp.spots == entry.spots) {
@@ -455,43 +324,6 @@ fn open_entry(state: &mut State, kind: EntryKind) {
     state.layers.push(Layer::Entry(entry));
 }
 
-fn toggle_mark(state: &mut State) {
-    let Some(spots) = state.row().map(|row| row.grasp.spots.clone()) else { return };
-    if let Some(at) = state.marks.iter().position(|mark| mark.keep.grasp.spots == spots) {
-        let gone = state.marks.remove(at);
-        state.message = Some(unmarked(&gone));
-    } else if let Some(reading) = state.reading.clone() {
-        mark(state, reading);
-        state.message = Some("marked; n names it, w notes why, s saves".to_owned());
-    }
-}
-
-fn unmarked(gone: &Mark) -> String {
-    if gone.saved { "unmarked; it stays in the file".to_owned() } else { "unmarked".to_owned() }
-}
-
-/// Marks a grasp as it reads under the present knobs.
-fn mark(state: &mut State, reading: Reading) {
-    let at = |spot: &crate::search::Spot| format!("{}:{}", spot.edge.ring, spot.edge.edge);
-    let name = reading.grasp.spots.iter().map(at).collect::<Vec<_>>().join(" ");
-    let setup = state.setup().clone();
-    let keep = Keep { name, note: String::new(), grasp: reading.grasp, assessment: reading.assessment, setup };
-    add_mark(state, keep);
-}
-
-fn add_mark(state: &mut State, keep: Keep) {
-    let id = state.next_mark;
-    state.next_mark += 1;
-    state.marks.push(Mark { id, keep, saved: false });
-}
-
-fn save(state: &mut State, reread: bool) -> Vec<Effect> {
-    let unsaved = || state.marks.iter().filter(|mark| !mark.saved);
-    let ids: Vec<u64> = unsaved().map(|mark| mark.id).collect();
-    let keeps: Vec<Keep> = unsaved().map(|mark| mark.keep.clone()).collect();
-    if ids.is_empty() { Vec::new() } else { vec![Effect::Save { ids, keeps, reread }] }
-}
-
 fn quit(state: &mut State) -> Vec<Effect> {
     if state.unsaved() == 0 {
         return vec![Effect::Quit { recover: false }];
@@ -517,10 +349,10 @@ fn answer(state: &mut State, question: Question, action: Action) -> Vec<Effect> 
     match (question, action) {
         (Question::Quit, Action::Yes) => {
             state.quit_when_saved = true;
-            save(state, false)
+            marks::save(state, false)
         }
         (Question::Quit, Action::No) => vec![Effect::Quit { recover: false }],
-        (Question::Reload, Action::Yes) => save(state, true),
+        (Question::Reload, Action::Yes) => marks::save(state, true),
         (Question::Reload, _) => {
             state.message = Some("not saved; the marks are still here".to_owned());
             Vec::new()

@@ -7,6 +7,7 @@ use crate::file::shown;
 use crate::search::Listing;
 use ratatui::buffer::Buffer;
 use ratatui::layout::Rect;
+use ratatui::text::Line;
 
 /// Part and knobs on the left, the job on the right.
 pub(super) fn header(state: &State, area: Rect, buf: &mut Buffer) {
@@ -38,17 +39,27 @@ pub(super) fn header(state: &State, area: Rect, buf: &mut Buffer) {
     let name = shown(part.name());
     // The knobs matter more than the name: a long name is cut so that they stay.
     let room = usize::from(left.width).saturating_sub(knobs.chars().count() + 2);
-    let name: String = if name.chars().count() <= room {
-        name
-    } else if room > 6 {
-        name.chars().take(room - 2).chain("..".chars()).collect()
-    } else {
-        String::new()
-    };
-    let used = if name.is_empty() { 0 } else { name.chars().count() as u16 + 2 };
+    let name = if room > 6 { cut(&name, room) } else { String::new() };
+    let used = if name.is_empty() { 0 } else { columns(&name) as u16 + 2 };
     put(buf, left, &name, state.look.title());
     put(buf, shifted(left, used), &knobs, state.look.plain());
     put(buf, shifted(area, area.width.saturating_sub(job_width)), &job, state.look.title());
+}
+
+/// Columns a text takes on the screen.
+fn columns(text: &str) -> usize {
+    Line::raw(text).width()
+}
+
+/// A text cut to a number of columns, with two dots where something is missing.
+fn cut(text: &str, most: usize) -> String {
+    if columns(text) <= most {
+        return text.to_owned();
+    }
+    let mut cut = text.to_owned();
+    while columns(&cut) + 2 > most && cut.pop().is_some() {}
+    cut.push_str("..");
+    cut
 }
 
 fn job(state: &State) -> String {

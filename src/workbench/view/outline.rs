@@ -3,6 +3,7 @@
 use super::super::look::{Look, Marker};
 use super::super::state::State;
 use super::sheet::{Depth, Fit, Sheet, slope};
+use crate::file::shown;
 use crate::hand::Stretch;
 use crate::part::{Edge, KeepOut};
 use crate::search::{Grasp, Scene};
@@ -14,6 +15,8 @@ use ratatui::layout::Rect;
 const FREE: (u16, u16) = (4, 2);
 /// Cosine above which a corner is a bend of a flattened curve and gets no mark of its own (20 degrees).
 const BEND: f64 = 0.94;
+/// Edges shorter than this many cells, both of a corner, leave it without its mark.
+const SHORT: f64 = 1.5;
 /// Rows from which the pane carries a line that explains its signs.
 const KEY_FROM: u16 = 8;
 
@@ -55,8 +58,10 @@ impl Signs {
     /// As many explanations as fit, none cut.
     fn text(&self, state: &State, width: usize) -> String {
         let mut parts = vec!["@ centre of mass"];
+        let reasons = reasons(state);
+        let keep_out = format!("x keep-out: {reasons}");
         if self.keep_out {
-            parts.push("x keep-out");
+            parts.push(if reasons.is_empty() || keep_out.len() > width / 2 { "x keep-out" } else { &keep_out });
         }
         if self.unreachable {
             parts.push(if state.look.marker == Marker::Braille {
@@ -80,6 +85,18 @@ impl Signs {
     }
 }
 
+/// Why fingers are kept out, each reason once.
+fn reasons(state: &State) -> String {
+    let mut reasons: Vec<String> = Vec::new();
+    for keep in state.order.scene.part().keep_outs() {
+        let reason = shown(keep.reason.trim());
+        if !reason.is_empty() && !reasons.contains(&reason) {
+            reasons.push(reason);
+        }
+    }
+    reasons.join(", ")
+}
+
 struct Pen {
     sheet: Sheet,
     fit: Fit,
@@ -91,15 +108,26 @@ impl Pen {
         let part = scene.part();
         let outline = part.outline();
         let mut signs = Signs::default();
+        let braille = self.look.marker == Marker::Braille;
+        let small: Vec<bool> = (0..outline.ring_sizes().len())
+            .map(|ring| ring > 0 && !braille && self.is_small(outline.ring(ring)))
+            .collect();
         for edge in outline.edges() {
+            if small[edge.id().ring] {
+                continue;
+            }
             let first = scene.stretches().partition_point(|stretch| stretch.edge < edge.id());
             let last = scene.stretches().partition_point(|stretch| stretch.edge <= edge.id());
             let kept_out: Vec<&KeepOut> = part.keep_outs().iter().filter(|keep| keep.edge == edge.id()).collect();
             self.edge(edge, &scene.stretches()[first..last], &kept_out, &mut signs);
         }
-        if self.look.marker != Marker::Braille {
-            for ring in 0..outline.ring_sizes().len() {
-                let edges = outline.ring(ring);
+        for (ring, small) in small.into_iter().enumerate() {
+            let edges = outline.ring(ring);
+            if small {
+                let fits = scene.stretches().iter().any(|stretch| stretch.edge.ring == ring);
+                let kept_out = part.keep_outs().iter().any(|keep| keep.edge.ring == ring);
+                self.small_ring(edges, fits, kept_out, &mut signs);
+            } else if !braille {
                 for (i, edge) in edges.iter().enumerate() {
                     self.corner(&edges[(i + edges.len() - 1) % edges.len()], edge);
                 }
@@ -108,6 +136,38 @@ impl Pen {
         let (column, row) = self.fit.rounded(part.com());
         self.sheet.put(column, row, '@', Depth::Centre, self.look.title());
         signs
+    }
+
+    /// Left, top, right and bottom cell of a ring.
+    fn box_of(&self, edges: &[Edge]) -> (i32, i32, i32, i32) {
+        edges
+            .iter()
+            .map(|edge| self.fit.rounded(edge.start()))
+            .fold((i32::MAX, i32::MAX, i32::MIN, i32::MIN), |(left, top, right, bottom), (x, y)| {
+                (left.min(x), top.min(y), right.max(x), bottom.max(y))
+            })
+    }
+
+    /// True for a hole of so few cells that its edges would only be a blot.
+    fn is_small(&self, edges: &[Edge]) -> bool {
+        let (left, top, right, bottom) = self.box_of(edges);
+        right.saturating_sub(left) < 5 && bottom.saturating_sub(top) < 3
+    }
+
+    /// A hole of a few cells: its two sides.
+    fn small_ring(&mut self, edges: &[Edge], fits: bool, kept_out: bool, signs: &mut Signs) {
+        let (left, top, right, bottom) = self.box_of(edges);
+        signs.keep_out |= kept_out;
+        signs.unreachable |= !fits && !kept_out;
+        let (sides, style) = match (kept_out, fits) {
+            (true, _) => (['x', 'x'], self.look.keep_out()),
+            (false, true) => (['(', ')'], self.look.plain()),
+            (false, false) => (['.', '.'], self.look.dim()),
+        };
+        for row in top..=bottom {
+            self.sheet.put(left, row, sides[0], Depth::Edge, style);
+            self.sheet.put(right.max(left.saturating_add(1)), row, sides[1], Depth::Edge, style);
+        }
     }
 
     fn edge(&mut self, edge: &Edge, stretches: &[Stretch], kept_out: &[&KeepOut], signs: &mut Signs) {
@@ -148,8 +208,18 @@ impl Pen {
         }
     }
 
+    /// Length of an edge in cells.
+    fn cells(&self, edge: &Edge) -> f64 {
+        let (a, b) = (self.fit.cell(edge.start()), self.fit.cell(edge.end()));
+        (b.0 - a.0).abs().max((b.1 - a.1).abs())
+    }
+
     fn corner(&mut self, before: &Edge, after: &Edge) {
         if before.direction_at(0.0).dot(&after.direction_at(0.0)) > BEND {
+            return;
+        }
+        // Corners of something smaller than a few cells would hide its shape.
+        if self.cells(before) < SHORT && self.cells(after) < SHORT {
             return;
         }
         let (column, row) = self.fit.rounded(after.start());

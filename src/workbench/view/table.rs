@@ -2,7 +2,7 @@
 
 use super::super::state::{Job, Shown, State};
 use super::{number, put, titled, wrapped};
-use crate::search::{Floors, Key, Listed, Spot};
+use crate::search::{Floors, Key, Listed, Listing, Spot};
 use ratatui::buffer::Buffer;
 use ratatui::layout::Rect;
 
@@ -54,7 +54,13 @@ fn title(state: &State) -> (String, String) {
         n => format!("floors hide {} % ", (n as u128 * 100).div_ceil(u128::from(ranking.closed)).min(99)),
     };
     let right = format!("{hidden}{doubtful}{sample}").trim().to_owned();
-    (number::count(ranking.families as u64, "family", "families"), right)
+    let title = match shown.order.listing {
+        Listing::Families => number::count(ranking.families as u64, "family", "families"),
+        Listing::Members => {
+            number::count(ranking.closed.saturating_sub(ranking.below_floors), "closed grasp", "closed grasps")
+        }
+    };
+    (title, right)
 }
 
 /// Columns of numbers: heading and width.
@@ -65,7 +71,12 @@ fn rows(state: &State, shown: &Shown, area: Rect, buf: &mut Buffer) {
     // Two signs, the Pareto sign, the rank, a space.
     let lead = 7;
     // Number columns leave from the right before the edges are cut, unless there are very many fingers.
-    let longest = |row: &Listed| edges(&row.grasp.spots).chars().count();
+    // Grasps of one family differ in their positions alone.
+    let places = |row: &Listed| match shown.order.listing {
+        Listing::Families => edges(&row.grasp.spots),
+        Listing::Members => edges_at(&row.grasp.spots),
+    };
+    let longest = |row: &Listed| places(row).chars().count();
     let least_edges = shown.ranking.grasps.iter().map(longest).max().unwrap_or(0).clamp(6, 24);
     let mut columns = COLUMNS.len();
     let numbers = |columns: usize| COLUMNS[..columns].iter().map(|(_, width)| width).sum::<usize>();
@@ -93,7 +104,7 @@ fn rows(state: &State, shown: &Shown, area: Rect, buf: &mut Buffer) {
             if state.mark_on(&row.grasp.spots).is_some() { '*' } else { ' ' },
             if shown.unbeaten.get(i) == Some(&true) { '^' } else { ' ' },
             i + 1,
-            padded(&edges(&row.grasp.spots), edges_width),
+            padded(&places(row), edges_width),
         );
         let quality = if per_finger { a.quality_per_finger } else { a.quality };
         let values = [number::quality(quality), number::margin(a.friction_margin), number::mm(a.placement.mm)];
@@ -123,11 +134,20 @@ fn first_row(selected: usize, height: usize, rows: usize) -> usize {
 
 /// The fingers' edges: those of the outer ring by their number, those of a hole as ring:edge.
 pub(super) fn edges(spots: &[Spot]) -> String {
-    let name = |spot: &Spot| match spot.edge.ring {
+    spots.iter().map(edge).collect::<Vec<_>>().join(",")
+}
+
+/// The same with the place on each edge in whole mm.
+fn edges_at(spots: &[Spot]) -> String {
+    let name = |spot: &Spot| format!("{}@{:.0}", edge(spot), spot.along_mm);
+    spots.iter().map(name).collect::<Vec<_>>().join(",")
+}
+
+fn edge(spot: &Spot) -> String {
+    match spot.edge.ring {
         0 => spot.edge.edge.to_string(),
         ring => format!("{ring}:{}", spot.edge.edge),
-    };
-    spots.iter().map(name).collect::<Vec<_>>().join(" ")
+    }
 }
 
 fn padded(text: &str, width: usize) -> String {

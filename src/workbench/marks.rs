@@ -1,0 +1,100 @@
+//! Marks: made, taken away, brought back, listed and handed over to be saved.
+
+use super::action::Action;
+use super::state::{Layer, Mark, Reading, State};
+use super::update::Effect;
+use crate::file::Keep;
+use crate::mechanics::Verdict;
+use crate::search::Spot;
+
+/// Marks the selected grasp, or takes its mark away.
+pub(super) fn toggle(state: &mut State) {
+    let Some(spots) = state.row().map(|row| row.grasp.spots.clone()) else { return };
+    if let Some(at) = state.marks.iter().position(|mark| mark.keep.grasp.spots == spots) {
+        lift(state, at);
+    } else if let Some(back) = state.lifted.take_if(|lifted| lifted.keep.grasp.spots == spots) {
+        state.message = Some(format!("marked again as {}", back.keep.name));
+        state.marks.push(back);
+    } else if let Some(reading) = state.reading.clone() {
+        let verdict = reading.assessment.verdict;
+        mark(state, reading);
+        state.message = Some(match verdict {
+            Verdict::Closed => "marked; n names it, w notes why, s saves".to_owned(),
+            Verdict::Open | Verdict::Marginal => {
+                format!("marked, although it is {} under the present knobs", verdict.word())
+            }
+        });
+    }
+}
+
+/// Takes a mark away, and keeps it for a change of mind.
+fn lift(state: &mut State, at: usize) {
+    let gone = state.marks.remove(at);
+    let file = if gone.saved { "; it stays in the file" } else { "" };
+    state.message = Some(format!("unmarked{file}; m on the same grasp brings it back"));
+    state.lifted = Some(gone);
+}
+
+/// Marks a grasp as it reads under the present knobs.
+pub(super) fn mark(state: &mut State, reading: Reading) {
+    let at = |spot: &Spot| format!("{}:{}", spot.edge.ring, spot.edge.edge);
+    let name = reading.grasp.spots.iter().map(at).collect::<Vec<_>>().join(" ");
+    let setup = state.setup().clone();
+    let keep = Keep { name, note: String::new(), grasp: reading.grasp, assessment: reading.assessment, setup };
+    add(state, keep);
+}
+
+/// Adds a mark that is not saved yet.
+pub(super) fn add(state: &mut State, keep: Keep) {
+    let id = state.next_mark;
+    state.next_mark += 1;
+    state.marks.push(Mark { id, keep, saved: false });
+}
+
+/// The effect that saves what is unsaved; `reread` takes the file as it stands now for known.
+pub(super) fn save(state: &mut State, reread: bool) -> Vec<Effect> {
+    let unsaved = || state.marks.iter().filter(|mark| !mark.saved);
+    let ids: Vec<u64> = unsaved().map(|mark| mark.id).collect();
+    let keeps: Vec<Keep> = unsaved().map(|mark| mark.keep.clone()).collect();
+    if ids.is_empty() { Vec::new() } else { vec![Effect::Save { ids, keeps, reread }] }
+}
+
+/// Carries out an action in the list of marks.
+pub(super) fn act(state: &mut State, action: Action) -> Vec<Effect> {
+    let last = state.marks.len().saturating_sub(1);
+    let Some(Layer::Marks { at }) = state.layers.last_mut() else { return Vec::new() };
+    match action {
+        Action::Down => *at = (*at + 1).min(last),
+        Action::Up => *at = at.saturating_sub(1),
+        Action::Close => {
+            state.layers.pop();
+        }
+        Action::Save => return save(state, false),
+        Action::Mark => {
+            let at = (*at).min(last);
+            if at < state.marks.len() {
+                lift(state, at);
+            }
+            match state.layers.last_mut() {
+                Some(Layer::Marks { .. }) if state.marks.is_empty() => {
+                    state.layers.pop();
+                }
+                Some(Layer::Marks { at }) => *at = (*at).min(state.marks.len() - 1),
+                _ => {}
+            }
+        }
+        Action::Accept => {
+            let spots = state.marks.get(*at).map(|mark| mark.keep.grasp.spots.clone());
+            let rows = state.shown.as_ref().map_or(&[][..], |shown| &shown.ranking.grasps);
+            match spots.and_then(|spots| rows.iter().position(|row| row.grasp.spots == spots)) {
+                Some(row) => {
+                    state.layers.pop();
+                    state.select(row);
+                }
+                None => state.message = Some("not in the list under the present knobs".to_owned()),
+            }
+        }
+        _ => {}
+    }
+    Vec::new()
+}
