@@ -30,7 +30,7 @@
 //! | [`hand`] | what holds it: fingers, and the stretches where they fit |
 //! | [`mechanics`] | what is true of a grasp: closure, quality, friction, placement, escape |
 //! | [`search`] | which grasps are good: sites, candidate sets, order, the background job |
-//! | [`file`] | what is kept: part, setup and grasp files |
+//! | [`mod@file`] | what is kept: part, setup and grasp files |
 //! | [`workbench`] | what is seen: the terminal |
 //! | [`command`] | what is asked: the command line |
 //!

@@ -96,7 +96,7 @@ impl PartDescription {
     }
 }
 
-/// A checked part. Positions are in mm in the *local frame*: file coordinates less [`Part::origin`], so that a part
+/// A checked part. Positions are in mm in the *local frame*: file coordinates less [`Outline::origin`], so that a part
 /// drawn a kilometre from the origin loses no digits in its torques. Only what is shown or saved adds the origin back.
 #[derive(Debug, Clone)]
 pub struct Part {
