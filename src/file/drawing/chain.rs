@@ -86,9 +86,9 @@ impl Grid {
     /// Numbers of points in the cell of `p` and the eight around it: all those within a cell's width, and some more.
     fn near(&self, p: Point) -> impl Iterator<Item = usize> + '_ {
         let (x, y) = self.key(p);
-        (-1..=1).flat_map(move |dx| (-1..=1).map(move |dy| (x.saturating_add(dx), y.saturating_add(dy)))).flat_map(
-            move |key| self.cells.get(&key).into_iter().flatten().copied(),
-        )
+        (-1..=1)
+            .flat_map(move |dx| (-1..=1).map(move |dy| (x.saturating_add(dx), y.saturating_add(dy))))
+            .flat_map(move |key| self.cells.get(&key).into_iter().flatten().copied())
     }
 }
 
@@ -487,7 +487,6 @@ fn same_loops_once(chained: &mut Chained, near: f64) {
         keep[number - 1]
     });
 }
-
 
 impl Strand {
     /// Runs an open strand the other way.

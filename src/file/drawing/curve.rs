@@ -49,6 +49,18 @@ fn unit(t: f64) -> (f64, f64) {
     }
 }
 
+/// Unit vector at an angle in rad, exact at quarter turns.
+pub(super) fn direction(angle: f64) -> Vec2 {
+    let (cos, sin) = unit(angle);
+    Vec2::new(cos, sin)
+}
+
+/// A turn about the origin in degrees, exact at quarter turns.
+pub(super) fn rotation(degrees: f64) -> Affine {
+    let (cos, sin) = unit(degrees.to_radians());
+    Affine::new([cos, sin, -sin, cos, 0.0, 0.0])
+}
+
 impl Ellipse {
     /// A whole circle.
     pub(super) fn circle(centre: Point, radius: f64) -> Self {

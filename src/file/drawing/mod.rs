@@ -34,9 +34,7 @@ mod svg;
 mod tidy;
 mod units;
 
-pub use report::{
-    CleanedReport, LayerReport, OpenReport, PartReport, Report, RingReport, SkippedReport, UnitsReport,
-};
+pub use report::{CleanedReport, LayerReport, OpenReport, PartReport, Report, RingReport, SkippedReport, UnitsReport};
 pub use units::{UNIT_NAMES, Unit, unit_named};
 
 use super::{FileFaults, writing};
@@ -272,7 +270,9 @@ fn bytes_of(path: &Path) -> Result<Vec<u8>, FileFaults> {
     let mut bytes = Vec::new();
     match File::open(path).and_then(|file| file.take(MOST_BYTES + 1).read_to_end(&mut bytes)) {
         Err(error) if error.kind() == ErrorKind::NotFound => fault("there is no such file"),
-        Err(error) if error.kind() == ErrorKind::IsADirectory || path.is_dir() => fault("is a folder; name a file in it"),
+        Err(error) if error.kind() == ErrorKind::IsADirectory || path.is_dir() => {
+            fault("is a folder; name a file in it")
+        }
         Err(error) => fault(&error.to_string()),
         Ok(read) if read as u64 > MOST_BYTES => {
             fault(&format!("is larger than {} MiB; leave out what is not the part", MOST_BYTES >> 20))

@@ -45,7 +45,12 @@ pub(super) fn regions(loops: &[Loop], measures: &[Measure], tell: &mut dyn FnMut
     let mut region_of = vec![None; loops.len()];
     let larger_first = |a: usize, b: usize| {
         let (p, q) = (measures[a].bounds, measures[b].bounds);
-        measures[b].area.abs().total_cmp(&measures[a].area.abs()).then(p.x0.total_cmp(&q.x0)).then(p.y0.total_cmp(&q.y0))
+        measures[b]
+            .area
+            .abs()
+            .total_cmp(&measures[a].area.abs())
+            .then(p.x0.total_cmp(&q.x0))
+            .then(p.y0.total_cmp(&q.y0))
     };
     let mut outers: Vec<usize> = (0..loops.len()).filter(|&number| around[number].len().is_multiple_of(2)).collect();
     outers.sort_by(|&a, &b| larger_first(a, b));

@@ -48,8 +48,7 @@ pub(super) fn finish(path: &Path, survey: Survey, options: &Options) -> Result<I
     let after: Vec<Measure> = rings.iter().map(Measure::of).collect();
     let square_mm = unit.mm * unit.mm;
     if cleaning {
-        let area: f64 =
-            after[0].area.abs() - after[1..].iter().map(|measure| measure.area.abs()).sum::<f64>();
+        let area: f64 = after[0].area.abs() - after[1..].iter().map(|measure| measure.area.abs()).sum::<f64>();
         cleaned.area_gained_mm2 = area * square_mm - area_before;
         report.cleaned = Some(cleaned);
     }
@@ -138,7 +137,9 @@ fn worded(placed: &PlacedFault, place: &dyn Fn(usize, usize) -> String) -> Fault
             at(placed.second)
         ),
         PartFault::NoArea { .. } => format!("the loop at {first} encloses almost no area; remove it"),
-        PartFault::TooFar { .. } => format!("at {first}: farther than 1e9 mm from the origin; check the unit, or move it"),
+        PartFault::TooFar { .. } => {
+            format!("at {first}: farther than 1e9 mm from the origin; check the unit, or move it")
+        }
         PartFault::HoleOutside { .. } | PartFault::HoleInHole { .. } => {
             format!("the loop at {first} is not quite inside; move it")
         }

@@ -197,7 +197,10 @@ impl Report {
         lines.push(read);
         for skipped in &self.skipped {
             let first = if skipped.count == 1 { String::new() } else { "first ".to_owned() };
-            lines.push(format!("skipped: {} {} ({first}{}): {}", skipped.count, skipped.kind, skipped.first, skipped.why));
+            lines.push(format!(
+                "skipped: {} {} ({first}{}): {}",
+                skipped.count, skipped.kind, skipped.first, skipped.why
+            ));
         }
         lines.push(format!(
             "joined: ends within {} mm; {} gaps closed, the largest {} mm",
@@ -277,7 +280,8 @@ impl Report {
             .map(|open| {
                 let [x, y] = open.from.map(brief);
                 let [u, v] = open.to.map(brief);
-                let near = open.nearest_mm.map_or(String::new(), |gap| format!(", the next end is {} mm away", brief(gap)));
+                let near =
+                    open.nearest_mm.map_or(String::new(), |gap| format!(", the next end is {} mm away", brief(gap)));
                 format!("open: from ({x}, {y}) to ({u}, {v}){near}, {}", open.first)
             })
             .collect();

@@ -53,4 +53,3 @@ impl Strand {
         (self.vertices[edge], self.vertices[next], self.bulges[edge])
     }
 }
-

@@ -247,7 +247,9 @@ fn open_mend(report: &Report) -> String {
     let raise = nearest.filter(|&gap| gap > report.join_mm).map_or(String::new(), |gap| {
         format!("raise --join above {} (it is {} mm), ", brief(gap), brief(report.join_mm))
     });
-    format!("these lines do not close: close them, {raise}leave their layers out with --layer, or do without them with --skip open")
+    format!(
+        "these lines do not close: close them, {raise}leave their layers out with --layer, or do without them with --skip open"
+    )
 }
 
 fn nothing_closed(report: &Report) -> String {
@@ -263,7 +265,8 @@ fn nothing_closed(report: &Report) -> String {
         said += &format!("; {} {} skipped: {}", skipped.count, skipped.kind, skipped.why);
     }
     if let Some(layer) = unread.first() {
-        said += &format!("; layer \"{}\" is not read: {}", short(&layer.name), layer.why.as_deref().unwrap_or_default());
+        said +=
+            &format!("; layer \"{}\" is not read: {}", short(&layer.name), layer.why.as_deref().unwrap_or_default());
     }
     said
 }

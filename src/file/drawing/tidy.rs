@@ -19,7 +19,8 @@ impl Loop {
             straight.then(|| (q - p).cross(r - q).atan2((q - p).dot(r - q)))
         };
         // The vertex to begin with stays, so the first run does not reach back over it.
-        let Some(first) = (0..n).find(|&at| turn_at((at + n - 1) % n, at).is_none_or(|turn| turn.abs() >= angle)) else {
+        let Some(first) = (0..n).find(|&at| turn_at((at + n - 1) % n, at).is_none_or(|turn| turn.abs() >= angle))
+        else {
             return 0;
         };
         let mut out = vec![false; n];

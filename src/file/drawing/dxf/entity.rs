@@ -1,6 +1,6 @@
 //! One entity of a DXF file: what its group codes say about lines, arcs and curves (DXF reference, ENTITIES section).
 
-use super::super::curve::{Ellipse, Spline};
+use super::super::curve::{Ellipse, Spline, rotation};
 use super::super::fault::Fault;
 use super::super::sheet::{Id, Path, Segment, Weight};
 use super::pairs::{Pair, Place};
@@ -328,7 +328,7 @@ impl<'a> Record<'a> {
             let count = self.find(code).map_or(Ok(1), Pair::whole)?;
             Ok(usize::try_from(count).unwrap_or(0).max(1))
         };
-        let turn = Affine::new(rotation(self.real(50, 0.0)?));
+        let turn = rotation(self.real(50, 0.0)?);
         Ok(What::Insert(Insert {
             block: String::new(),
             origin: plane * Affine::translate(at.to_vec2()) * turn,
@@ -339,20 +339,55 @@ impl<'a> Record<'a> {
     }
 }
 
-/// Coefficients of a turn in degrees, exact at quarter turns.
-fn rotation(degrees: f64) -> [f64; 6] {
-    let at = Ellipse::circle(Point::ORIGIN, 1.0).point(degrees.to_radians());
-    [at.x, at.y, -at.y, at.x, 0.0, 0.0]
-}
-
 /// The kinds of entities this reader knows by name, so that a kind needs no text of its own; `unread` says why those
 /// without lines are not read.
 const KINDS: [&str; 46] = [
-    "LINE", "ARC", "CIRCLE", "ELLIPSE", "LWPOLYLINE", "POLYLINE", "VERTEX", "SEQEND", "SPLINE", "INSERT", "TEXT", "MTEXT",
-    "ATTRIB", "ATTDEF", "DIMENSION", "ARC_DIMENSION", "LARGE_RADIAL_DIMENSION", "LEADER", "MLEADER", "MULTILEADER",
-    "TOLERANCE", "POINT", "HATCH", "IMAGE", "WIPEOUT", "VIEWPORT", "OLEFRAME", "OLE2FRAME", "ACAD_TABLE", "SHAPE",
-    "RTEXT", "UNDERLAY", "PDFUNDERLAY", "DWFUNDERLAY", "DGNUNDERLAY", "XLINE", "RAY", "SOLID", "TRACE", "3DFACE",
-    "3DSOLID", "BODY", "REGION", "MLINE", "HELIX", "MESH",
+    "LINE",
+    "ARC",
+    "CIRCLE",
+    "ELLIPSE",
+    "LWPOLYLINE",
+    "POLYLINE",
+    "VERTEX",
+    "SEQEND",
+    "SPLINE",
+    "INSERT",
+    "TEXT",
+    "MTEXT",
+    "ATTRIB",
+    "ATTDEF",
+    "DIMENSION",
+    "ARC_DIMENSION",
+    "LARGE_RADIAL_DIMENSION",
+    "LEADER",
+    "MLEADER",
+    "MULTILEADER",
+    "TOLERANCE",
+    "POINT",
+    "HATCH",
+    "IMAGE",
+    "WIPEOUT",
+    "VIEWPORT",
+    "OLEFRAME",
+    "OLE2FRAME",
+    "ACAD_TABLE",
+    "SHAPE",
+    "RTEXT",
+    "UNDERLAY",
+    "PDFUNDERLAY",
+    "DWFUNDERLAY",
+    "DGNUNDERLAY",
+    "XLINE",
+    "RAY",
+    "SOLID",
+    "TRACE",
+    "3DFACE",
+    "3DSOLID",
+    "BODY",
+    "REGION",
+    "MLINE",
+    "HELIX",
+    "MESH",
 ];
 
 /// The name of a kind of entity; nothing for one this reader has never heard of.
@@ -364,9 +399,13 @@ pub(super) fn kind(bytes: &[u8]) -> Option<&'static str> {
 fn unread(kind: &str) -> (&'static str, Weight) {
     match kind {
         "TEXT" | "MTEXT" | "ATTRIB" | "ATTDEF" | "RTEXT" | "SHAPE" | "ACAD_TABLE" => ("lettering", Weight::Harmless),
-        "DIMENSION" | "ARC_DIMENSION" | "LARGE_RADIAL_DIMENSION" | "LEADER" | "MLEADER" | "MULTILEADER" | "TOLERANCE" => {
-            ("a dimension or a remark", Weight::Harmless)
-        }
+        "DIMENSION"
+        | "ARC_DIMENSION"
+        | "LARGE_RADIAL_DIMENSION"
+        | "LEADER"
+        | "MLEADER"
+        | "MULTILEADER"
+        | "TOLERANCE" => ("a dimension or a remark", Weight::Harmless),
         "POINT" => ("a point has no length", Weight::Harmless),
         "HATCH" | "WIPEOUT" => ("a filled area; its outline is drawn by other entities", Weight::Harmless),
         "IMAGE" | "OLEFRAME" | "OLE2FRAME" | "UNDERLAY" | "PDFUNDERLAY" | "DWFUNDERLAY" | "DGNUNDERLAY" => {

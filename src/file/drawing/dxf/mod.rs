@@ -160,7 +160,11 @@ impl<'a> Reader<'a> {
                 return Ok(());
             };
             if pair.begins("EOF") {
-                return if sections == 0 { Err(fault("there is no section in it; is this a DXF file?")) } else { Ok(()) };
+                return if sections == 0 {
+                    Err(fault("there is no section in it; is this a DXF file?"))
+                } else {
+                    Ok(())
+                };
             }
             if !pair.begins("SECTION") {
                 return Err(pair.at.fault(format!(
@@ -347,7 +351,9 @@ impl<'a> Reader<'a> {
             }
             self.met += 1;
             if self.met > MOST_ENTITIES {
-                return Err(fault(format!("it has more than {MOST_ENTITIES} entities; leave out what is not the part")));
+                return Err(fault(format!(
+                    "it has more than {MOST_ENTITIES} entities; leave out what is not the part"
+                )));
             }
             if self.met.is_multiple_of(1024) {
                 let left = self.pairs.left();
@@ -431,7 +437,9 @@ fn code_page(name: &[u8]) -> Option<&'static Encoding> {
         "866" => "ibm866".to_owned(),
         "utf8" | "utf-8" | "65001" => "utf-8".to_owned(),
         number if number.starts_with("125") => format!("windows-{number}"),
-        number => name.strip_prefix("iso").map_or(String::new(), |_| format!("iso-8859-{}", number.trim_start_matches("8859-"))),
+        number => name
+            .strip_prefix("iso")
+            .map_or(String::new(), |_| format!("iso-8859-{}", number.trim_start_matches("8859-"))),
     };
     Encoding::for_label(label.as_bytes())
 }

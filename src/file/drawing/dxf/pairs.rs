@@ -49,7 +49,6 @@ impl Place {
             Self::Byte(byte) => Fault { line: None, text: format!("at byte {byte}: {text}") },
         }
     }
-
 }
 
 impl<'a> Pair<'a> {
@@ -238,7 +237,15 @@ impl<'a> Binary<'a> {
             }
         };
         let value = match code {
-            0..=9 | 100..=109 | 300..=309 | 320..=369 | 390..=399 | 410..=419 | 430..=439 | 470..=481 | 999..=1003
+            0..=9
+            | 100..=109
+            | 300..=309
+            | 320..=369
+            | 390..=399
+            | 410..=419
+            | 430..=439
+            | 470..=481
+            | 999..=1003
             | 1005..=1009 => {
                 let rest = &self.bytes[self.at..];
                 let Some(end) = rest.iter().position(|&byte| byte == 0) else {
