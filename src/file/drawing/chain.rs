@@ -110,11 +110,15 @@ pub(super) fn chain(strands: Vec<Strand>, join: f64, prune: bool, tell: &mut dyn
     let size = size(strands.iter().flat_map(|strand| &strand.vertices));
     let same = SAME * size;
     let mut open = Vec::new();
+    let mut closed_gaps = Vec::new();
     for mut strand in strands {
         drop_short_edges(&mut strand, same);
         if strand.bulges.is_empty() {
             chained.without_length += 1;
         } else if strand.closed {
+            if let Some(gap) = close_gap(&mut strand, join) {
+                closed_gaps.push(gap);
+            }
             chained.loops.push(Loop::of(strand));
         } else {
             open.push(strand);
@@ -142,6 +146,8 @@ pub(super) fn chain(strands: Vec<Strand>, join: f64, prune: bool, tell: &mut dyn
             !out[number - 1]
         });
     }
+    chained.joints += closed_gaps.len();
+    chained.largest_gap = closed_gaps.into_iter().fold(chained.largest_gap, f64::max);
     chained.open.append(&mut dangling);
     nearest_ends(&mut chained.open);
     same_loops_once(&mut chained, join.max(same));
@@ -166,6 +172,20 @@ fn drop_short_edges(strand: &mut Strand, same: f64) {
     }
     strand.bulges = kept.iter().map(|&edge| strand.bulges[edge]).collect();
     strand.vertices = vertices;
+}
+
+/// Takes out a straight closing edge within the tolerance, which a drawing has only because its numbers are rounded.
+/// Returns its length.
+fn close_gap(strand: &mut Strand, join: f64) -> Option<f64> {
+    let last = strand.bulges.len() - 1;
+    let (from, to, bulge) = strand.edge(last);
+    let gap = (to - from).hypot();
+    if bulge != 0.0 || gap > join || last < 2 {
+        return None;
+    }
+    strand.vertices.pop();
+    strand.bulges.pop();
+    Some(gap)
 }
 
 /// Middle of an edge, on the arc.

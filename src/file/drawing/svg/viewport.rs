@@ -2,7 +2,7 @@
 
 use super::super::fault::{Fault, fault, short};
 use super::super::sheet::Sheet;
-use super::super::units::Unit;
+use super::super::units::{Unit, unit_named as named};
 use kurbo::Affine;
 use roxmltree::Node;
 use std::str::FromStr;
@@ -103,7 +103,10 @@ pub(super) fn units(root: &Node<'_, '_>, sheet: &mut Sheet) -> Result<(), Fault>
     let (left, bottom) = bottom.filter(|(x, y)| x.is_finite() && y.is_finite()).unwrap_or((0.0, 0.0));
     let up = Affine::new([1.0, 0.0, 0.0, -1.0, 0.0 - left, bottom]);
     sheet.root = up;
-    let mut state = |mm: f64, by| sheet.stated = Some((Unit { name: "user unit", mm }, by));
+    let mut state = |mm: f64, by| {
+        let name = ["mm", "cm", "m", "in"].into_iter().find(|name| named(name).is_some_and(|unit| unit.mm == mm));
+        sheet.stated = Some((Unit { name: name.unwrap_or("user unit"), mm }, by));
+    };
     match (view, width_mm, height_mm) {
         (None, None, None) | (Some(_), None, None) => {
             let width = width.map_or("is not given".to_owned(), |(text, _)| format!("is \"{}\"", short(text)));
