@@ -16,6 +16,8 @@ use std::ops::Range;
 const BATCHES: u64 = 16;
 /// Candidate sets in one parcel, about: a few milliseconds of work.
 const PARCEL: u64 = 16_384;
+/// Parcels in which single draws are handed out, at most.
+const MOST_PARCELS: u64 = 10_000;
 /// Families beyond this are not written down.
 const MOST_FAMILIES: u64 = 1_000_000;
 
@@ -55,7 +57,8 @@ impl Plan {
         let parcels = if families <= u128::from(budget.min(MOST_FAMILIES)) {
             strata(screen, fingers, budget)?
         } else {
-            let parcels = budget.div_ceil(PARCEL);
+            let parcels = budget.div_ceil(PARCEL).min(MOST_PARCELS);
+            // The budget is at most 1e10, so the product fits.
             let cut = |i: u64| i * budget / parcels;
             let parcel = |strata: Range<u64>| Parcel {
                 sets: strata.end - strata.start,
@@ -188,7 +191,7 @@ fn strata(screen: &Screen, fingers: usize, budget: u64) -> Result<Vec<Parcel>, C
     for (family, size) in all.into_iter().zip(sizes) {
         let share = 1 + (spare * size as f64 / whole) as u64;
         let of = u64::try_from(size).map_or(share, |size| share.min(size));
-        let pieces = of.div_ceil(PARCEL);
+        let pieces = of.div_ceil(PARCEL).min(MOST_PARCELS);
         for piece in 0..pieces {
             let strata = piece * of / pieces..(piece + 1) * of / pieces;
             parcels.push(Parcel { sets: strata.end - strata.start, work: Work::Strata { family, strata, of } });
@@ -196,6 +199,9 @@ fn strata(screen: &Screen, fingers: usize, budget: u64) -> Result<Vec<Parcel>, C
     }
     Ok(parcels)
 }
+
+/// Times a draw is repeated while fingers stand too near to one another.
+pub(super) const TRIES: usize = 16;
 
 /// Draws single sets, all sites alike; one finger of each goes evenly round the outline. A set drawn twice counts twice
 /// and is listed once.
@@ -210,13 +216,20 @@ fn draw(
     let sites = screen.sites.len() as f64;
     for stratum in strata {
         let mut set = SiteSet::default();
-        set[0] = ((stratum as f64 + unit(random)) / of as f64 * sites).min(sites - 1.0) as u32;
-        let mut have = 1;
-        while have < fingers {
-            let site = (unit(random) * sites) as u32;
-            if !set[..have].contains(&site) {
-                set[have] = site;
-                have += 1;
+        // Fingers that stand too near to one another are drawn again, a few times: the budget is for sets that can be.
+        for _ in 0..TRIES {
+            set = SiteSet::default();
+            set[0] = ((stratum as f64 + unit(random)) / of as f64 * sites).min(sites - 1.0) as u32;
+            let mut have = 1;
+            while have < fingers {
+                let site = (unit(random) * sites) as u32;
+                if !set[..have].contains(&site) {
+                    set[have] = site;
+                    have += 1;
+                }
+            }
+            if screen.keeps_gaps(&set[..fingers]) {
+                break;
             }
         }
         set[..fingers].sort_unstable();

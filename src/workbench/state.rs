@@ -232,8 +232,9 @@ impl State {
     ///
     /// # Errors
     /// A setup that asks for something not built yet.
-    pub fn new(options: &super::Options) -> Result<Self, &'static str> {
-        let scene = Arc::new(Scene::new(Arc::clone(&options.part), options.setup.clone())?);
+    pub fn new(options: &super::Options) -> Result<Self, String> {
+        let scene =
+            Arc::new(Scene::new(Arc::clone(&options.part), options.setup.clone()).map_err(|fault| fault.to_string())?);
         Ok(Self {
             order: Order { scene, key: Key::Quality, listing: Listing::Families },
             shown: None,
