@@ -12,10 +12,13 @@ use rand_chacha::rand_core::{Rng, SeedableRng};
 use rayon::prelude::*;
 use std::ops::Range;
 
-/// Parts the work is cut into, each followed by a word to the observer.
-const BATCHES: u64 = 16;
-/// Candidate sets in one parcel, about: a few milliseconds of work.
-const PARCEL: u64 = 16_384;
+/// Parts the work is cut into at least, each followed by a word to the observer. Threads wait for one another at the end
+/// of each, so few are better; one is a second's work at most.
+const BATCHES: u64 = 8;
+/// Candidate sets in one batch, at most, about.
+const BATCH: u64 = 2_000_000;
+/// Candidate sets in one parcel, about: a small part of a batch, so that threads end it together.
+const PARCEL: u64 = 4096;
 /// Parcels in which single draws are handed out, at most.
 const MOST_PARCELS: u64 = 10_000;
 /// Families beyond this are not written down.
@@ -82,11 +85,12 @@ impl Plan {
 
     /// Ranges of parcels of about equal work.
     pub(super) fn batches(&self) -> Vec<Range<usize>> {
+        let most = (self.total / BATCHES).min(BATCH);
         let mut batches = Vec::new();
         let (mut from, mut sets) = (0, 0);
         for (index, parcel) in self.parcels.iter().enumerate() {
             sets += parcel.sets;
-            if sets > self.total / BATCHES || index + 1 == self.parcels.len() {
+            if sets > most || index + 1 == self.parcels.len() {
                 batches.push(from..index + 1);
                 (from, sets) = (index + 1, 0);
             }
