@@ -124,6 +124,8 @@ pub struct Entry {
     pub text: String,
     /// Cursor, in characters.
     pub at: usize,
+    /// The text is a suggestion that the first character typed replaces.
+    pub suggested: bool,
     /// Why it was not taken.
     pub fault: Option<String>,
     /// The grasp it is about.
