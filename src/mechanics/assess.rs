@@ -69,11 +69,12 @@ pub struct Assessment {
     pub quality: f64,
     /// The same with each finger limited.
     pub quality_per_finger: f64,
-    /// Least mu at which the grasp closes, on the setup's scale; nothing when no mu does.
+    /// Least mu at which the grasp closes, on the setup's scale: it closes at every mu above. Nothing when no mu does, or
+    /// when the setup's mu is 0 and only edges have friction.
     pub friction_needed_closure: Option<f64>,
     /// Least mu at which the grasp closes and holds every load.
     pub friction_needed: Option<f64>,
-    /// mu over friction needed; nothing when none is needed.
+    /// mu over friction needed; nothing when any friction at all will do.
     pub friction_margin: Option<f64>,
     /// The same in degrees; nothing when no mu closes the grasp.
     pub friction_margin_deg: Option<f64>,
@@ -176,7 +177,8 @@ impl FrictionReading {
         match friction::factor_needed(wrenches.levers(), mus) {
             None => Self { needed: None, margin: Some(0.0), margin_deg: None },
             Some(factor) => {
-                let needed = factor * unit;
+                // With a setup mu of 0 and edges of their own, the factor scales nothing the setup names.
+                let needed = (unit > 0.0).then_some(factor * unit);
                 let margin = if frictionless && !closed {
                     // However little would do, there is none.
                     Some(0.0)
@@ -184,8 +186,8 @@ impl FrictionReading {
                     (factor > 0.0).then(|| 1.0 / factor)
                 };
                 let margin_deg =
-                    if frictionless { -needed.atan().to_degrees() } else { friction::margin_deg(mus, factor) };
-                Self { needed: Some(needed), margin, margin_deg: Some(margin_deg) }
+                    if frictionless { -factor.atan().to_degrees() } else { friction::margin_deg(mus, factor) };
+                Self { needed, margin, margin_deg: Some(margin_deg) }
             }
         }
     }

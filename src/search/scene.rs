@@ -1,6 +1,7 @@
 //! A scene: one part under one setup, with everything that stays fixed while grasps are looked at.
 
-use super::setup::Setup;
+use super::setup::{Setup, SetupFault};
+use super::sites;
 use crate::hand::{self, Stretch, Tip};
 use crate::mechanics::assess::Doubt;
 use crate::mechanics::{Assessment, Contact, Frame, Wrenches};
@@ -57,6 +58,9 @@ impl Grasp {
     }
 }
 
+/// Sites a ranking takes: with more, memory would run out before patience.
+const MOST_SITES: f64 = 2e6;
+
 /// One part under one setup.
 #[derive(Debug, Clone)]
 pub struct Scene {
@@ -70,15 +74,31 @@ impl Scene {
     /// Works out the frame and the stretches. The setup must have no [`Setup::faults`].
     ///
     /// # Errors
-    /// A setup that asks for something not built yet.
-    pub fn new(part: Arc<Part>, setup: Setup) -> Result<Self, &'static str> {
-        if setup.hand.tip == Tip::Pad || setup.hand.closing == hand::Closing::Parallel {
-            return Err(
-                "pads and parallel closing are not built yet; set hand.tip = \"pin\" and hand.closing = \"free\"",
-            );
+    /// A setup that asks for something not built yet, or for more sites than a ranking takes.
+    pub fn new(part: Arc<Part>, setup: Setup) -> Result<Self, SetupFault> {
+        let not_yet = |key: &str, value: &str, mend: &str| SetupFault {
+            key: key.to_owned(),
+            value: value.to_owned(),
+            mend: mend.to_owned(),
+        };
+        if setup.hand.tip == Tip::Pad {
+            return Err(not_yet("hand.tip", "pad", "pads are not built yet; set it to \"pin\""));
+        }
+        if setup.hand.closing == hand::Closing::Parallel {
+            return Err(not_yet("hand.closing", "parallel", "parallel closing is not built yet; set it to \"free\""));
         }
         let frame = Frame { about: part.com(), scale_mm: setup.search.torque_scale.mm(&part) };
         let stretches = hand::stretches(&part, &setup.hand);
+        let spacing_mm = setup.search.spacing_for(&part);
+        let sites: f64 = stretches.iter().map(|stretch| sites::count_on(stretch, spacing_mm)).sum();
+        if sites > MOST_SITES {
+            let least = stretches.iter().map(Stretch::length_mm).sum::<f64>() / MOST_SITES;
+            return Err(SetupFault {
+                key: "search.spacing_mm".to_owned(),
+                value: spacing_mm.to_string(),
+                mend: format!("that makes {sites:.1e} sites, more than {MOST_SITES:.0e}; give at least {least:.1e} mm"),
+            });
+        }
         Ok(Self { part, setup, frame, stretches })
     }
 

@@ -8,6 +8,7 @@
 
 use super::families::Family;
 use super::order::{self, Candidate, FRICTION_QUANTUM, Key, SiteSet, Top};
+use super::plan::TRIES;
 use super::rank::{Cancel, Cancelled, Listing};
 use super::scene::Scene;
 use super::sites::{Site, Sites};
@@ -101,6 +102,11 @@ impl<'a> Screen<'a> {
         (a - b).norm_squared() >= self.least_apart_square
     }
 
+    /// True when all fingers of a set keep the hand's gap.
+    pub(super) fn keeps_gaps(&self, set: &[u32]) -> bool {
+        set.iter().enumerate().all(|(i, &a)| set[i + 1..].iter().all(|&b| self.apart(a, b)))
+    }
+
     /// True when the family's forces positively span the plane, so that members may close.
     pub(super) fn may_close(&self, family: &Family) -> bool {
         FamilyForces::new(self, family).may_close()
@@ -133,14 +139,17 @@ impl<'a> Screen<'a> {
         let mut run = Run::new(self, family, tally);
         let stride = count as f64 / of as f64;
         for stratum in strata {
-            let number = if u128::from(of) == count {
-                u128::from(stratum)
-            } else {
-                ((stratum as f64 + uniform()) * stride) as u128
-            };
-            run.set = family.nth(self.sites, number.min(count - 1));
-            if run.keeps_gaps() {
-                run.look()?;
+            for _ in 0..TRIES {
+                let number = if u128::from(of) == count {
+                    u128::from(stratum)
+                } else {
+                    ((stratum as f64 + uniform()) * stride) as u128
+                };
+                run.set = family.nth(self.sites, number.min(count - 1));
+                if self.keeps_gaps(&run.set[..run.k]) {
+                    run.look()?;
+                    break;
+                }
             }
         }
         run.finish(whole);
@@ -151,7 +160,7 @@ impl<'a> Screen<'a> {
     pub(super) fn one(&self, family: &Family, set: SiteSet, tally: &mut Tally) -> Result<(), Cancelled> {
         let mut run = Run::new(self, family, tally);
         run.set = set;
-        if run.keeps_gaps() {
+        if self.keeps_gaps(&set[..run.k]) {
             run.look()?;
         }
         run.finish(false);
@@ -278,10 +287,6 @@ impl<'a, 'b> Run<'a, 'b> {
 
     fn site(&self, finger: usize) -> &'a Site {
         self.screen.sites.get(self.set[finger])
-    }
-
-    fn keeps_gaps(&self) -> bool {
-        (0..self.k).all(|i| (i + 1..self.k).all(|j| self.screen.apart(self.set[i], self.set[j])))
     }
 
     /// Walks all sets with finger `finger` on these sites of its stretch and the later fingers anywhere after it.
