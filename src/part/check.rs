@@ -116,6 +116,15 @@ impl Traced {
     }
 }
 
+/// Vertices of a ring, a closing one that repeats the first not counted.
+#[expect(clippy::float_cmp, reason = "a closing vertex repeats the first digit for digit")]
+pub(super) fn vertex_count(ring: &Ring) -> usize {
+    match ring.as_slice() {
+        [first, .., last] if first == last => ring.len() - 1,
+        _ => ring.len(),
+    }
+}
+
 /// Finite numbers within range, enough of them, and the closing vertex dropped.
 fn numbers(rings: &[Ring], bulges: &BTreeMap<EdgeId, f64>, unit_mm: f64) -> Result<Vec<Ring>, PartFaults> {
     let mut faults = Faults::default();
@@ -137,10 +146,7 @@ fn numbers(rings: &[Ring], bulges: &BTreeMap<EdgeId, f64>, unit_mm: f64) -> Resu
     }
     let mut cleaned: Vec<Ring> = rings.to_vec();
     for (number, ring) in cleaned.iter_mut().enumerate() {
-        #[expect(clippy::float_cmp, reason = "a closing vertex repeats the first digit for digit")]
-        if ring.len() > 1 && ring[0] == ring[ring.len() - 1] {
-            ring.pop();
-        }
+        ring.truncate(vertex_count(ring));
         // Two vertices make a ring when an arc leads from one to the other.
         let curved = bulges.range(EdgeId { ring: number, edge: 0 }..EdgeId { ring: number + 1, edge: 0 }).next();
         if ring.len() < if curved.is_some() { 2 } else { 3 } {

@@ -247,12 +247,7 @@ const HEAVIEST_KG: f64 = 1e12;
 
 /// Bulges by edge; those that are none, or of no edge, are noted.
 fn checked_arcs(d: &PartDescription, faults: &mut Vec<PartFault>) -> BTreeMap<EdgeId, f64> {
-    // Edges by the file's own count, with a closing vertex that repeats the first left out.
-    let edges = |ring: &Vec<[f64; 2]>| match ring.as_slice() {
-        [first, .., last] if first == last => ring.len() - 1,
-        _ => ring.len(),
-    };
-    let have: Vec<usize> = d.rings.iter().map(edges).collect();
+    let have: Vec<usize> = d.rings.iter().map(check::vertex_count).collect();
     let mut bulges = BTreeMap::new();
     for (entry, arc) in d.arcs.iter().enumerate() {
         let id = EdgeId { ring: arc.ring, edge: arc.edge };
@@ -260,12 +255,11 @@ fn checked_arcs(d: &PartDescription, faults: &mut Vec<PartFault>) -> BTreeMap<Ed
             faults.push(PartFault::NoSuchEdge { table: "arc", entry, edge: id, have: have.clone() });
         } else if !(arc.bulge.abs() <= BULGE_LARGEST) {
             faults.push(PartFault::BadBulge { entry, bulge: arc.bulge });
-        } else if bulges.contains_key(&id) {
+        } else if bulges.insert(id, arc.bulge).is_some() {
             faults.push(PartFault::ArcTwice { entry, edge: id });
-        } else if arc.bulge.abs() >= edge::STRAIGHT {
-            bulges.insert(id, arc.bulge);
         }
     }
+    bulges.retain(|_, bulge| bulge.abs() >= edge::STRAIGHT);
     bulges
 }
 
