@@ -173,6 +173,7 @@ impl Pen {
 
     fn edge(&mut self, edge: &Edge, stretches: &[Stretch], kept_out: &[&KeepOut], signs: &mut Signs) {
         let braille = self.look.marker == Marker::Braille;
+        let (a, b) = (self.fit.cell(edge.start()), self.fit.cell(edge.end()));
         let fine = if braille { (2.0, 4.0) } else { (1.0, 1.0) };
         let steps = self.steps(edge, fine);
         let half = edge.length_mm() / steps / 2.0;
@@ -180,7 +181,11 @@ impl Pen {
         for k in 0..=steps as u32 {
             let t = f64::from(k) / steps;
             let along = t * edge.length_mm();
-            let (column, row) = self.fit.cell(edge.point_at(along));
+            // A straight edge is walked in cells, so that rounding never leaves one out.
+            let (column, row) = match edge.arc() {
+                None => (a.0 + t * (b.0 - a.0), a.1 + t * (b.1 - a.1)),
+                Some(_) => self.fit.cell(edge.point_at(along)),
+            };
             let ink = slope(edge.direction_at(along), line);
             let within = |from: f64, to: f64| along >= from - half && along <= to + half;
             let cell = (column.round() as i32, row.round() as i32);
