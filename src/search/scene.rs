@@ -45,6 +45,8 @@ pub struct Grasp {
     pub spots: Vec<Spot>,
     /// Its contacts, finger after finger.
     pub contacts: Vec<Contact>,
+    /// Curvature of each finger's edge, 1/mm; 0 where it is straight, positive where the material is inside the bend.
+    pub curvatures: Vec<f64>,
     /// Distance of each finger to the end of its stretch, mm; below 0 when it stands where it may not.
     pub rooms_mm: Vec<f64>,
     /// Pairs of fingers that stand nearer to each other than the hand's gap allows.
@@ -132,6 +134,7 @@ impl Scene {
             return Err(PlaceFault::FingerCount(spots.len()));
         }
         let mut contacts = Vec::with_capacity(spots.len());
+        let mut curvatures = Vec::with_capacity(spots.len());
         let mut rooms_mm = Vec::with_capacity(spots.len());
         for spot in spots {
             let edge = self.part.outline().edge(spot.edge).ok_or(PlaceFault::NoSuchEdge(spot.edge))?;
@@ -145,6 +148,7 @@ impl Scene {
                 normal: edge.normal_at(spot.along_mm),
                 mu: self.part.mu_on(spot.edge, self.setup.friction.mu),
             });
+            curvatures.push(edge.curvature());
             let room = hand::stretch_around(&self.stretches, spot.edge, spot.along_mm)
                 .map_or(-1.0, |stretch| stretch.room_mm(spot.along_mm).max(0.0));
             rooms_mm.push(room);
@@ -157,12 +161,12 @@ impl Scene {
                 }
             }
         }
-        Ok(Grasp { spots: spots.to_vec(), contacts, rooms_mm, too_near })
+        Ok(Grasp { spots: spots.to_vec(), contacts, curvatures, rooms_mm, too_near })
     }
 
     /// Wrenches of a grasp in the scene's frame.
     pub fn wrenches(&self, grasp: &Grasp) -> Wrenches {
-        Wrenches::new(&grasp.contacts, &self.frame)
+        Wrenches::new(&grasp.contacts, &self.frame).on_curves(&grasp.curvatures)
     }
 
     /// Reads a grasp and confirms the reading by the second way.

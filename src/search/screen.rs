@@ -1,12 +1,14 @@
 //! Screening: the kernel run over the candidate sets of a family, keeping what may be listed.
 //!
-//! All members of a family press in the same directions, so the force polygon is built once for the family and only the
-//! torques change from member to member. What prunes what:
+//! On straight edges all members of a family press in the same directions, so the force polygon is built once for the
+//! family and only the torques change from member to member; with a finger on an arc it is built for each. What prunes
+//! what:
 //! - forces that do not positively span the plane: no member closes, and no torque is looked at;
 //! - ties on the key (plateaus are common) are settled by closure tests at the incumbent's friction needed, one kernel
 //!   call each; the root finder runs only for a candidate that takes the lead.
 
 use super::families::Family;
+use super::family_forces::{FamilyForces, NO_LEVER, polygon_of, unit_polygon};
 use super::order::{self, Candidate, FRICTION_QUANTUM, Key, SiteSet, Top};
 use super::plan::TRIES;
 use super::rank::{Cancel, Cancelled, Listing};
@@ -14,9 +16,9 @@ use super::scene::Scene;
 use super::sites::{Site, Sites};
 use crate::hand::FingerCount;
 use crate::mechanics::force_polygon::{ForcePolygon, PlanarScore};
+use crate::mechanics::placement::OnArcs;
 use crate::mechanics::wrench::MOST_GENERATORS;
 use crate::mechanics::{Lever, MARGINAL, friction, quality};
-use crate::part::MU_LARGEST;
 use nalgebra::Vector3;
 use std::cmp::Ordering;
 use std::collections::HashSet;
@@ -109,7 +111,7 @@ impl<'a> Screen<'a> {
 
     /// True when the family's forces positively span the plane, so that members may close.
     pub(super) fn may_close(&self, family: &Family) -> bool {
-        FamilyForces::new(self, family).may_close()
+        FamilyForces::new(self.sites, family).may_close()
     }
 
     /// Screens every candidate set of a family whose first finger stands on one of these sites.
@@ -168,63 +170,6 @@ impl<'a> Screen<'a> {
     }
 }
 
-/// What all members of a family have in common.
-struct FamilyForces {
-    mus: [f64; FingerCount::MOST],
-    /// The contacts' one mu, when they share it.
-    mu: Option<f64>,
-    /// Of the generators at the setup's friction when all contacts share one mu, else of the generators scaled to unit
-    /// force, which tells closure but not quality.
-    polygon: ForcePolygon,
-}
-
-/// Force polygon of generators scaled to unit force.
-fn unit_polygon(levers: &[Lever], mus: &[f64], factor: f64) -> ForcePolygon {
-    let mut forces = [[0.0; 2]; MOST_GENERATORS];
-    for ((pair, lever), mu) in forces.chunks_exact_mut(2).zip(levers).zip(mus) {
-        let mu = mu * factor;
-        let length = (1.0 + mu * mu).sqrt();
-        for (force, m) in pair.iter_mut().zip([mu, -mu]) {
-            let f = (lever.normal + lever.tangent * m) / length;
-            *force = [f.x, f.y];
-        }
-    }
-    ForcePolygon::new(&forces[..2 * levers.len()])
-}
-
-impl FamilyForces {
-    #[expect(clippy::float_cmp, reason = "equal means copied from the same setting, digit for digit")]
-    fn new(screen: &Screen, family: &Family) -> Self {
-        let k = family.stretches().len();
-        let mut levers = [NO_LEVER; FingerCount::MOST];
-        let mut mus = [0.0; FingerCount::MOST];
-        for (finger, &stretch) in family.stretches().iter().enumerate() {
-            let site = screen.sites.get(screen.sites.on(stretch as usize).start as u32);
-            (levers[finger], mus[finger]) = (site.lever, site.mu);
-        }
-        let mu = mus[..k].iter().all(|&mu| mu == mus[0]).then_some(mus[0]);
-        let polygon = match mu {
-            Some(mu) => ForcePolygon::of_levers(&levers[..k], mu),
-            None => unit_polygon(&levers[..k], &mus[..k], 1.0),
-        };
-        Self { mus, mu, polygon }
-    }
-
-    /// The quality is at most the distance to the wall; unit forces are shorter than the true ones by at most
-    /// `sqrt(1 + MU_LARGEST^2)`.
-    fn may_close(&self) -> bool {
-        let shorter = if self.mu.is_some() { 1.0 } else { MU_LARGEST.hypot(1.0) };
-        self.polygon.wall() * shorter > MARGINAL
-    }
-}
-
-const NO_LEVER: Lever = Lever {
-    normal: nalgebra::Vector2::new(0.0, 0.0),
-    tangent: nalgebra::Vector2::new(0.0, 0.0),
-    normal_torque: 0.0,
-    tangent_torque: 0.0,
-};
-
 /// The screening of one family.
 struct Run<'a, 'b> {
     screen: &'a Screen<'a>,
@@ -251,7 +196,7 @@ impl<'a, 'b> Run<'a, 'b> {
             screen,
             family,
             k: family.stretches().len(),
-            forces: FamilyForces::new(screen, family),
+            forces: FamilyForces::new(screen.sites, family),
             margin_floor: None,
             at_factor: None,
             set: SiteSet::default(),
@@ -323,14 +268,36 @@ impl<'a, 'b> Run<'a, 'b> {
         self.tally.closed += 1;
         let floors = &self.screen.scene.setup().floors;
         let room_mm = (0..self.k).map(|finger| self.site(finger).room_mm).fold(f64::INFINITY, f64::min);
-        let placement_mm = (score.torque_up.min(score.torque_down) * self.screen.scale_mm).min(room_mm);
-        if score.signed_quality < floors.quality || placement_mm < floors.placement_mm || !self.keeps_margin_floor() {
+        let straight_mm = score.torque_up.min(score.torque_down) * self.screen.scale_mm;
+        let mut placement_mm = straight_mm.min(room_mm);
+        if score.signed_quality < floors.quality
+            || placement_mm < floors.placement_mm
+            || (floors.placement_mm > 0.0 && !self.keeps_placement(floors.placement_mm))
+            || !self.keeps_margin_floor()
+        {
             self.tally.below_floors += 1;
             return Ok(());
         }
-        let placement = order::quanta(placement_mm / self.screen.scale_mm);
         let room = order::quanta(room_mm / self.screen.scale_mm);
-        let Some(key) = self.key(&score, placement) else { return Ok(()) };
+        let Some(mut key) = self.key(&score, order::quanta(placement_mm / self.screen.scale_mm)) else {
+            return Ok(());
+        };
+        if self.forces.curved {
+            // So far the placement is that on straight edges, an upper bound; the guarantee on arcs costs more, and is
+            // worked out only for who may come before the one in front.
+            let front = match self.screen.listing {
+                Listing::Families => self.best,
+                Listing::Members => self.tally.top.worst().copied(),
+            };
+            if front.is_some_and(|front| key < front.key) {
+                return Ok(());
+            }
+            placement_mm = self.on_arcs(|on_arcs| on_arcs.tolerance_mm(straight_mm)).min(room_mm);
+            if self.screen.key == Key::Placement {
+                key = order::quanta(placement_mm / self.screen.scale_mm);
+            }
+        }
+        let placement = order::quanta(placement_mm / self.screen.scale_mm);
         let mut candidate = Candidate { key, friction: 0, placement, room, sites: self.set };
         match self.screen.listing {
             Listing::Families => {
@@ -347,6 +314,21 @@ impl<'a, 'b> Run<'a, 'b> {
             }
         }
         Ok(())
+    }
+
+    /// Calls `ask` with the current contacts as the guarantee on arcs sees them.
+    fn on_arcs<T>(&self, ask: impl FnOnce(OnArcs) -> T) -> T {
+        ask(OnArcs {
+            levers: &self.levers()[..self.k],
+            mus: &self.forces.mus[..self.k],
+            curvatures: &self.forces.curvatures[..self.k],
+            scale_mm: self.screen.scale_mm,
+        })
+    }
+
+    /// Whether a placement below the straight one is kept on arcs too.
+    fn keeps_placement(&self, offset_mm: f64) -> bool {
+        !self.forces.curved || self.on_arcs(|on_arcs| on_arcs.spare_at(offset_mm)) > 0.0
     }
 
     /// Quanta of the key, or nothing when the current set is already known to be no better than the family's best.
@@ -395,7 +377,16 @@ impl<'a, 'b> Run<'a, 'b> {
         for (finger, pair) in torques.chunks_exact_mut(2).take(self.k).enumerate() {
             pair.copy_from_slice(&self.site(finger).torques);
         }
-        let polygon = &self.forces.polygon;
+        let own;
+        let polygon = if self.forces.curved {
+            own = polygon_of(self.forces.mu, &self.levers()[..self.k], &self.forces.mus[..self.k]);
+            if !self.forces.spans(&own) {
+                return None;
+            }
+            &own
+        } else {
+            &self.forces.polygon
+        };
         let score = match self.forces.mu {
             Some(_) => {
                 let score = polygon.score(&polygon.heights(&torques[..2 * self.k]));
@@ -478,7 +469,7 @@ impl<'a, 'b> Run<'a, 'b> {
     fn closes_at(&mut self, factor: f64) -> bool {
         let polygon = match self.at_factor {
             #[expect(clippy::float_cmp, reason = "a cache: only the very same factor will do")]
-            Some((cached, polygon)) if cached == factor => polygon,
+            Some((cached, polygon)) if cached == factor && !self.forces.curved => polygon,
             _ => {
                 let polygon = unit_polygon(&self.levers()[..self.k], &self.forces.mus[..self.k], factor);
                 self.at_factor = Some((factor, polygon));
@@ -510,8 +501,8 @@ impl<'a, 'b> Run<'a, 'b> {
             return true;
         }
         let polygon = match self.margin_floor {
-            Some((_, polygon)) => polygon,
-            None => {
+            Some((_, polygon)) if !self.forces.curved => polygon,
+            _ => {
                 let polygon = unit_polygon(&self.levers()[..self.k], &self.forces.mus[..self.k], 1.0 / floor);
                 self.margin_floor = Some((floor, polygon));
                 polygon

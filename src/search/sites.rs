@@ -17,6 +17,8 @@ pub(super) struct Site {
     pub room_mm: f64,
     /// Friction coefficient of the edge.
     pub mu: f64,
+    /// Curvature of the edge, 1/mm.
+    pub curvature: f64,
     /// Contact in the scene's frame.
     pub lever: Lever,
     /// Torque over l of the two generators at `mu`.
@@ -67,6 +69,7 @@ impl Sites {
                     along_mm,
                     room_mm: stretch.room_mm(along_mm),
                     mu,
+                    curvature: edge.curvature(),
                     lever,
                     torques: [torque(mu), torque(-mu)],
                     centre: point - normal * scene.setup().hand.pin_radius_mm,
