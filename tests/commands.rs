@@ -121,6 +121,7 @@ fn rank_prints_the_promised_object() {
                 "rank",
                 "contacts",
                 "verdict",
+                "fits",
                 "quality",
                 "quality_per_finger",
                 "friction_needed",

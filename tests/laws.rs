@@ -12,6 +12,7 @@ use holdwright::mechanics::{
 use holdwright::part::MU_LARGEST;
 use nalgebra::{Point2, Rotation2, Vector2, Vector3};
 use proptest::prelude::*;
+use proptest::test_runner::RngSeed;
 
 /// The two ways to a quality may differ by this much before the kernel hands over to the plain definition.
 const TWO_WAYS: f64 = 2.0 * CERTAIN;
@@ -40,12 +41,25 @@ fn contact() -> impl Strategy<Value = Contact> {
     prop_oneof![3 => inward, 2 => any]
 }
 
-/// Two to six contacts, of one friction coefficient or of several.
+/// Two to six contacts, of one friction coefficient or of several. Points so near, but not the same, that rounding alone
+/// turns the line through them are left out: no score of such a pair has digits to compare.
 fn grasp() -> impl Strategy<Value = Vec<Contact>> {
-    (prop::collection::vec((contact(), friction_coefficient()), 2..=6), any::<bool>()).prop_map(|(all, mixed)| {
+    let contacts = prop::collection::vec((contact(), friction_coefficient()), 2..=6);
+    let with_friction = |(all, mixed): (Vec<(Contact, f64)>, bool)| -> Vec<Contact> {
         let common_mu = all[0].1;
         all.iter().map(|(c, own)| Contact { mu: if mixed { *own } else { common_mu }, ..*c }).collect()
+    };
+    (contacts, any::<bool>()).prop_map(with_friction).prop_filter("points a hair apart", |grasp| {
+        let hair = |a: &Contact, b: &Contact| (1e-300..1e-4).contains(&(a.point - b.point).norm());
+        !grasp.iter().any(|a| grasp.iter().any(|b| hair(a, b)))
     })
+}
+
+/// The same grasps on every run, so that a failure is one of the code; `PROPTEST_RNG_SEED` tries others.
+fn config() -> ProptestConfig {
+    let default = ProptestConfig::default();
+    let rng_seed = if default.rng_seed == RngSeed::Random { RngSeed::Fixed(20_261_201) } else { default.rng_seed };
+    ProptestConfig { cases: 4000, max_global_rejects: 400_000, failure_persistence: None, rng_seed, ..default }
 }
 
 fn somewhere() -> impl Strategy<Value = Frame> {
@@ -78,15 +92,13 @@ fn assert_same_scores(a: &Assessment, b: &Assessment, length_ratio: f64) {
 }
 
 proptest! {
-    #![proptest_config(ProptestConfig { cases: 4000, max_global_rejects: 400_000, failure_persistence: None, ..ProptestConfig::default() })]
+    #![proptest_config(config())]
 
     #[test]
     fn rigid_motion_changes_no_score(
         grasp in grasp(), at in somewhere(), turn in -4.0..4.0, dx in -300.0..300.0, dy in -300.0..300.0,
     ) {
         let by = Vector2::new(dx, dy);
-        // Moving rounds each point by 1e-13 mm, which turns the line through two points that lie a hair apart.
-        prop_assume!(!points_a_hair_apart(&grasp));
         let there = Frame { about: Rotation2::new(turn) * at.about + by, ..at };
         assert_same_scores(&read(&grasp, &at), &read(&moved(&grasp, turn, by), &there), 1.0);
     }
@@ -118,7 +130,6 @@ proptest! {
     /// Lengths and l scaled together leave quality unchanged and scale the placement tolerance.
     #[test]
     fn scale_moves_only_lengths(grasp in grasp(), at in somewhere(), by in 0.01..300.0) {
-        prop_assume!(!points_a_hair_apart(&grasp));
         let scaled: Vec<_> = grasp.iter().map(|c| Contact { point: c.point * by, ..*c }).collect();
         let there = Frame { about: at.about * by, scale_mm: at.scale_mm * by };
         assert_same_scores(&read(&grasp, &at), &read(&scaled, &there), by);
@@ -183,7 +194,9 @@ proptest! {
             program::Solved::Inconclusive(why) => assert!(thin, "{why}"),
         }
         let doubts = a.doubts(&wrenches, &at, grasp.iter().map(|c| c.mu).fold(0.0, f64::max));
-        assert!(doubts.iter().all(|doubt| thin && matches!(doubt, Doubt::Solver(_))), "{doubts:?}");
+        // At a ten-thousandth of such friction the same holds for the confirmation of friction needed.
+        let may = |doubt: &Doubt| matches!(doubt, Doubt::Solver(_) | Doubt::Friction { .. });
+        assert!(doubts.iter().all(|doubt| thin && may(doubt)), "{doubts:?}");
     }
 
     /// Moving every contact by at most s along its edge changes quality by at most s / l (Pokorny & Kragic 2013 for the
@@ -276,7 +289,7 @@ proptest! {
     fn closed_just_above_friction_needed_and_not_below(grasp in grasp(), at in somewhere()) {
         let wrenches = Wrenches::new(&grasp, &at);
         let largest = grasp.iter().map(|c| c.mu).fold(0.0, f64::max);
-        prop_assume!((largest > 0.0 || closes(&wrenches)) && !points_a_hair_apart(&grasp));
+        prop_assume!(largest > 0.0 || closes(&wrenches));
         let Some(factor) = friction::factor_needed(wrenches.levers(), wrenches.mus()) else {
             assert!(!closes(&wrenches.with_friction_times(MU_LARGEST / largest)));
             return Ok(());
@@ -380,11 +393,6 @@ fn edges_parallel_but_for_a_hair() {
         // Seen: at most 1.5 %, at 1e-9.
         assert!(declined * 33 < closed, "noise {noise:e}: {declined} of {closed}");
     }
-}
-
-/// Points so near, but not the same, that rounding turns the line through them.
-fn points_a_hair_apart(grasp: &[Contact]) -> bool {
-    grasp.iter().any(|a| grasp.iter().any(|b| (1e-300..1e-4).contains(&(a.point - b.point).norm())))
 }
 
 /// Every contact moved along its edge, tangent with the material on the left.

@@ -5,7 +5,7 @@
 use holdwright::hand::FingerCount;
 use holdwright::mechanics::program::{self, Solved};
 use holdwright::mechanics::{Verdict, closure, quality};
-use holdwright::part::{EdgeId, KeepOutDescription, Part, PartDescription};
+use holdwright::part::{ArcDescription, EdgeId, KeepOutDescription, Part, PartDescription};
 use holdwright::search::{Cancel, Cancelled, Key, Listing, Ranking, Scene, Setup, Spot, rank};
 use std::collections::BTreeMap;
 use std::sync::Arc;
@@ -169,6 +169,19 @@ fn edges_with_their_own_friction() {
     let mut described = bracket();
     described.edge_friction = vec![(0, 2, 0.7), (0, 0, 0.05)];
     check_against_plain(&scene(described, 3, |setup| setup.search.spacing_mm = Some(16.0)));
+}
+
+/// Directions differ from member to member where a finger stands on an arc; one of the arcs is a hollow.
+#[test]
+fn edges_that_are_arcs() {
+    let mut described = bracket();
+    described.arcs = [(0, 0, 0.35), (0, 3, -0.2), (1, 1, 0.4)]
+        .into_iter()
+        .map(|(ring, edge, bulge)| ArcDescription { ring, edge, bulge })
+        .collect();
+    check_against_plain(&scene(described.clone(), 3, |setup| setup.search.spacing_mm = Some(16.0)));
+    described.edge_friction = vec![(0, 2, 0.7)];
+    check_against_plain(&scene(described, 2, |setup| setup.search.spacing_mm = Some(6.0)));
 }
 
 /// Fewer than four frictionless contacts never close (Reuleaux 1876; Somov 1897); four can.

@@ -2,7 +2,7 @@
 
 mod common;
 
-use common::{assert_close, part, rounded};
+use common::{Corner, assert_close, part, rounded, rounded_with_arcs};
 use holdwright::part::{Part, PartDescription};
 
 /// Tables print three or four digits and leave the rolling tolerance out: 0.5 % and half a unit of the last digit.
@@ -11,31 +11,39 @@ fn as_printed(value: f64, printed: f64, last_digit: f64) {
     assert_close(value, printed, 0.005, last_digit / 2.0);
 }
 
+/// A section drawn twice: its fillets as chords, and as arcs.
+fn section(rings: &[Vec<Corner>]) -> [Part; 2] {
+    [part(rings.iter().map(|ring| rounded(ring)).collect()), rounded_with_arcs(rings)]
+}
+
+fn sharp(x: f64, y: f64) -> Corner {
+    ([x, y], 0.0)
+}
+
 /// EN 10056-1: L 60 x 40 x 5, root radius 6, toe radius 3. Area 4.79 cm2, centroid 1.96 and 0.97 cm, I 17.2 and 6.11 cm4.
 #[test]
 fn unequal_angle() {
-    let ring = rounded(&[
-        ([0.0, 0.0], 0.0),
-        ([40.0, 0.0], 0.0),
+    for angle in section(&[vec![
+        sharp(0.0, 0.0),
+        sharp(40.0, 0.0),
         ([40.0, 5.0], 3.0),
         ([5.0, 5.0], 6.0),
         ([5.0, 60.0], 3.0),
-        ([0.0, 60.0], 0.0),
-    ]);
-    let angle = part(vec![ring]);
-    let region = angle.outline().region();
-    as_printed(region.area_mm2 / 100.0, 4.79, 0.01);
-    as_printed(region.centroid.y / 10.0, 1.96, 0.01);
-    as_printed(region.centroid.x / 10.0, 0.97, 0.01);
-    as_printed(region.ixx_mm4 / 1e4, 17.2, 0.1);
-    as_printed(region.iyy_mm4 / 1e4, 6.11, 0.01);
+        sharp(0.0, 60.0),
+    ]]) {
+        let region = angle.outline().region();
+        as_printed(region.area_mm2 / 100.0, 4.79, 0.01);
+        as_printed(region.centroid.y / 10.0, 1.96, 0.01);
+        as_printed(region.centroid.x / 10.0, 0.97, 0.01);
+        as_printed(region.ixx_mm4 / 1e4, 17.2, 0.1);
+        as_printed(region.iyy_mm4 / 1e4, 6.11, 0.01);
+    }
 }
 
-fn i_section(h: f64, b: f64, web: f64, flange: f64, root: f64) -> Part {
+fn i_section(h: f64, b: f64, web: f64, flange: f64, root: f64) -> [Part; 2] {
     let (left, right) = ((b - web) / 2.0, (b + web) / 2.0);
-    let sharp = |x: f64, y: f64| ([x, y], 0.0);
     let round = |x: f64, y: f64| ([x, y], root);
-    part(vec![rounded(&[
+    section(&[vec![
         sharp(0.0, 0.0),
         sharp(b, 0.0),
         sharp(b, flange),
@@ -48,63 +56,68 @@ fn i_section(h: f64, b: f64, web: f64, flange: f64, root: f64) -> Part {
         round(left, h - flange),
         round(left, flange),
         sharp(0.0, flange),
-    ])])
+    ]])
 }
 
 /// EN 10365: IPE 100 (100 55 4.1 5.7 r 7) 10.3 cm2, 171 cm4; IPE 200 (200 100 5.6 8.5 r 12) 28.5 cm2, 1943 cm4.
 #[test]
 fn i_beams() {
-    let ipe_100 = i_section(100.0, 55.0, 4.1, 5.7, 7.0);
-    as_printed(ipe_100.outline().region().area_mm2 / 100.0, 10.3, 0.1);
-    as_printed(ipe_100.outline().region().ixx_mm4 / 1e4, 171.0, 1.0);
-    let ipe_200 = i_section(200.0, 100.0, 5.6, 8.5, 12.0);
-    as_printed(ipe_200.outline().region().area_mm2 / 100.0, 28.5, 0.1);
-    as_printed(ipe_200.outline().region().ixx_mm4 / 1e4, 1943.0, 1.0);
+    for ipe_100 in i_section(100.0, 55.0, 4.1, 5.7, 7.0) {
+        as_printed(ipe_100.outline().region().area_mm2 / 100.0, 10.3, 0.1);
+        as_printed(ipe_100.outline().region().ixx_mm4 / 1e4, 171.0, 1.0);
+    }
+    for ipe_200 in i_section(200.0, 100.0, 5.6, 8.5, 12.0) {
+        as_printed(ipe_200.outline().region().area_mm2 / 100.0, 28.5, 0.1);
+        as_printed(ipe_200.outline().region().ixx_mm4 / 1e4, 1943.0, 1.0);
+    }
 }
 
 /// DIN 1026-2: UPE 100 (100 55 4.5 7.5 r 10): 12.5 cm2, 207 and 38.3 cm4, centroid 1.91 cm from the web's back.
 #[test]
 fn parallel_flange_channel() {
-    let channel = part(vec![rounded(&[
-        ([0.0, 0.0], 0.0),
-        ([55.0, 0.0], 0.0),
-        ([55.0, 7.5], 0.0),
+    for channel in section(&[vec![
+        sharp(0.0, 0.0),
+        sharp(55.0, 0.0),
+        sharp(55.0, 7.5),
         ([4.5, 7.5], 10.0),
         ([4.5, 92.5], 10.0),
-        ([55.0, 92.5], 0.0),
-        ([55.0, 100.0], 0.0),
-        ([0.0, 100.0], 0.0),
-    ])]);
-    let region = channel.outline().region();
-    as_printed(region.area_mm2 / 100.0, 12.5, 0.1);
-    as_printed(region.ixx_mm4 / 1e4, 207.0, 1.0);
-    as_printed(region.iyy_mm4 / 1e4, 38.3, 0.1);
-    as_printed(region.centroid.x / 10.0, 1.91, 0.01);
+        sharp(55.0, 92.5),
+        sharp(55.0, 100.0),
+        sharp(0.0, 100.0),
+    ]]) {
+        let region = channel.outline().region();
+        as_printed(region.area_mm2 / 100.0, 12.5, 0.1);
+        as_printed(region.ixx_mm4 / 1e4, 207.0, 1.0);
+        as_printed(region.iyy_mm4 / 1e4, 38.3, 0.1);
+        as_printed(region.centroid.x / 10.0, 1.91, 0.01);
+    }
 }
 
-fn tube(b: f64, h: f64, wall: f64) -> Part {
+fn tube(b: f64, h: f64, wall: f64) -> [Part; 2] {
     let ring = |inset: f64, radius: f64| {
-        rounded(&[
+        vec![
             ([inset, inset], radius),
             ([b - inset, inset], radius),
             ([b - inset, h - inset], radius),
             ([inset, h - inset], radius),
-        ])
+        ]
     };
-    part(vec![ring(0.0, 2.0 * wall), ring(wall, wall)])
+    section(&[ring(0.0, 2.0 * wall), ring(wall, wall)])
 }
 
 /// EN 10219-2, corner radii 2 t outside and t inside: RHS 60 x 40 x 4 6.95 cm2, 30.99 cm4 (about the axis across the
 /// long side); RHS 50 x 30 x 3 4.21 cm2, 12.83 and 5.70 cm4.
 #[test]
 fn rectangular_hollow_sections() {
-    let large = tube(40.0, 60.0, 4.0);
-    as_printed(large.outline().region().area_mm2 / 100.0, 6.95, 0.01);
-    as_printed(large.outline().region().ixx_mm4 / 1e4, 30.99, 0.01);
-    let small = tube(30.0, 50.0, 3.0);
-    as_printed(small.outline().region().area_mm2 / 100.0, 4.21, 0.01);
-    as_printed(small.outline().region().ixx_mm4 / 1e4, 12.83, 0.01);
-    as_printed(small.outline().region().iyy_mm4 / 1e4, 5.70, 0.01);
+    for large in tube(40.0, 60.0, 4.0) {
+        as_printed(large.outline().region().area_mm2 / 100.0, 6.95, 0.01);
+        as_printed(large.outline().region().ixx_mm4 / 1e4, 30.99, 0.01);
+    }
+    for small in tube(30.0, 50.0, 3.0) {
+        as_printed(small.outline().region().area_mm2 / 100.0, 4.21, 0.01);
+        as_printed(small.outline().region().ixx_mm4 / 1e4, 12.83, 0.01);
+        as_printed(small.outline().region().iyy_mm4 / 1e4, 5.70, 0.01);
+    }
 }
 
 /// A rectangle less two rectangular holes, all off centre: areas, first and second moments subtract (parallel-axis

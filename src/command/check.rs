@@ -123,7 +123,7 @@ fn check<'a>(saved: &'a GraspFile, part: &Arc<Part>, knobs: &Knobs) -> Result<Ch
     }
     Ok(CheckReport {
         schema: 1,
-        part_changed: file::part_digest(part) != saved.part_digest,
+        part_changed: !file::part_digest(part).eq_ignore_ascii_case(&saved.part_digest),
         all_hold: grasps.iter().all(|checked| checked.outcome == Outcome::Holds),
         grasps,
     })

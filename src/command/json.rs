@@ -48,6 +48,8 @@ pub(super) struct GraspReport {
     rank: usize,
     contacts: Vec<ContactReport>,
     verdict: &'static str,
+    /// Every finger stands on a stretch and keeps its distance.
+    fits: bool,
     quality: f64,
     quality_per_finger: f64,
     friction_needed: Option<f64>,
@@ -120,6 +122,7 @@ impl<'a> Report<'a> {
             rank: self.grasps.len() + 1,
             contacts: contacts(scene.part(), grasp),
             verdict,
+            fits: grasp.fits(),
             quality: a.quality,
             quality_per_finger: a.quality_per_finger,
             friction_needed: a.friction_needed,

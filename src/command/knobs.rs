@@ -139,5 +139,5 @@ pub(super) fn part(path: &Path) -> Result<Arc<Part>, Stop> {
 
 /// A scene of a part under the setup in force.
 pub(super) fn scene(part: Arc<Part>, setup: Setup) -> Result<Scene, Stop> {
-    Scene::new(part, setup).map_err(Stop::bad)
+    Scene::new(part, setup).map_err(|fault| Stop::bad(fault.to_string()))
 }

@@ -160,7 +160,7 @@ qual/f    quality per finger: a disturbance of size 1 (force, or torque over the
           each finger
 ";
 const LEGEND: &str = "\
-margin    mu over the friction needed; - where no friction is needed
+margin    mu over the friction needed; - where any friction at all will do
 needed    least mu at which the grasp closes; as an angle, its arc tangent
 place mm  how far every finger may be off along its edge, all at once
 ";
@@ -190,9 +190,11 @@ fn why_empty(scene: &Scene, ranking: &Ranking) -> String {
             scene.setup().friction.mu
         );
     }
-    if ranking.inconclusive > 0 && ranking.families == 0 {
-        return "Every closed grasp is inconclusive: its two ways of scoring disagree; try another torque scale."
-            .to_owned();
+    if ranking.inconclusive > 0 {
+        return format!(
+            "{} sets close, but the two ways of scoring disagree on the {} best: try another torque scale.",
+            ranking.closed, ranking.inconclusive
+        );
     }
     format!(
         "{} sets close, but none is above the floors (quality {}, friction margin {}, placement {} mm):\n\

@@ -107,7 +107,7 @@ fn describe(text: &mut String, scene: &Scene, number: usize, reading: &Reading) 
         )?;
         match (a.friction_margin, a.friction_margin_deg) {
             (Some(margin), Some(deg)) => write!(text, ", margin {} ({deg:.1} deg)", ratio(margin))?,
-            _ => write!(text, ", margin - (no friction is needed)")?,
+            _ => write!(text, ", margin - (any friction at all will do)")?,
         }
         writeln!(text, ", placement {} mm", length(a.placement.mm))?;
     } else {
@@ -133,7 +133,17 @@ fn describe(text: &mut String, scene: &Scene, number: usize, reading: &Reading) 
     if a.verdict != Verdict::Closed {
         match a.friction_needed {
             Some(needed) => writeln!(text, "    closes above mu {}; mu is {mu}", ratio(needed))?,
-            None => writeln!(text, "    no friction closes it")?,
+            None => match a.friction_margin {
+                // Only edges of their own have friction, and the setup's mu of 0 names no scale.
+                Some(margin) if margin > 0.0 => {
+                    writeln!(
+                        text,
+                        "    closes when the edges' own friction is more than {} times as large",
+                        ratio(1.0 / margin)
+                    )?;
+                }
+                _ => writeln!(text, "    no friction closes it")?,
+            },
         }
     }
     Ok(())

@@ -11,7 +11,7 @@ pub(super) fn of_bytes(bytes: &[u8]) -> String {
     Sha256::digest(bytes).iter().map(|byte| format!("{byte:02x}")).collect()
 }
 
-/// SHA-256, in hexadecimal, of everything about a part that alters a score or a contact's place: rings in mm, centre of
+/// SHA-256, in hexadecimal, of everything about a part that alters a score or a contact's place: rings and arcs in mm, centre of
 /// mass, mass, thickness, keep-outs, edges with their own friction. Names, reasons and the unit of the file do not
 /// count, as long as the lengths in mm are the same digit for digit.
 pub fn part_digest(part: &Part) -> String {
@@ -25,6 +25,12 @@ pub fn part_digest(part: &Part) -> String {
         for edge in outline.ring(ring) {
             bytes.numbers(&[edge.start().x, edge.start().y]);
         }
+    }
+    // A part without arcs has the digest it had before there were any.
+    for edge in outline.edges().iter().filter(|edge| edge.arc().is_some()) {
+        bytes.count(edge.id().ring);
+        bytes.count(edge.id().edge);
+        bytes.numbers(&[edge.curvature()]);
     }
     bytes.numbers(&[part.com().x, part.com().y]);
     for option in [part.mass().map(|mass| mass.kg), part.thickness_mm()] {

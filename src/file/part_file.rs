@@ -3,7 +3,7 @@
 use super::reading::text_of;
 use super::toml_reader::{self, Table, described, nearest};
 use super::{FileFault, FileFaults};
-use crate::part::{EdgeId, KeepOutDescription, Part, PartDescription, PartFault, material};
+use crate::part::{ArcDescription, EdgeId, KeepOutDescription, Part, PartDescription, PartFault, material};
 use std::path::Path;
 use toml::Spanned;
 use toml::de::DeValue;
@@ -55,12 +55,15 @@ fn part_of(root: &Table<'_>, path: &Path) -> Option<Part> {
     let keep_outs = keep_out_tables.iter().map(keep_out).collect();
     let friction_tables = root.tables("edge_friction");
     let edge_friction = friction_tables.iter().map(edge_friction).collect();
+    let arc_tables = root.tables("arc");
+    let arcs = arc_tables.iter().map(arc).collect();
     note_unknown_material(root, material.as_deref(), density_kg_m3.is_some() || mass_kg.is_some());
     let built = rings.zip(unit_mm).and_then(|(rings, unit_mm)| {
         let description = PartDescription {
             name,
             unit_mm,
             rings,
+            arcs,
             thickness,
             material,
             density_kg_m3,
@@ -73,13 +76,17 @@ fn part_of(root: &Table<'_>, path: &Path) -> Option<Part> {
             Ok(part) => Some(part),
             Err(faults) => {
                 for fault in faults.0 {
-                    place(&fault, root, &places, &keep_out_tables, &friction_tables);
+                    place(&fault, root, &places, &|table| match table {
+                        "keep_out" => &keep_out_tables,
+                        "arc" => &arc_tables,
+                        _ => &friction_tables,
+                    });
                 }
                 None
             }
         }
     });
-    keep_out_tables.into_iter().chain(friction_tables).for_each(Table::finish);
+    keep_out_tables.into_iter().chain(friction_tables).chain(arc_tables).for_each(Table::finish);
     built
 }
 
@@ -178,6 +185,12 @@ fn edge_friction(table: &Table<'_>) -> (usize, usize, f64) {
     (ring, edge, table.number("mu").unwrap_or(0.0))
 }
 
+fn arc(table: &Table<'_>) -> ArcDescription {
+    let (ring, edge) = edge_numbers(table);
+    table.require("bulge", "give the tangent of a quarter of the angle swept, positive counter-clockwise");
+    ArcDescription { ring, edge, bulge: table.number("bulge").unwrap_or(0.0) }
+}
+
 fn edge_numbers(table: &Table<'_>) -> (usize, usize) {
     table.require("ring", "0 is the outer ring, 1 the first hole");
     table.require("edge", "edge i runs from vertex i to vertex i + 1, counted from 0");
@@ -198,10 +211,9 @@ fn note_unknown_material(root: &Table<'_>, material: Option<&str>, mass_is_known
 }
 
 /// Notes a fault of the part at the line of the file that caused it.
-fn place(fault: &PartFault, root: &Table<'_>, rings: &Rings<'_>, keep_outs: &[Table<'_>], frictions: &[Table<'_>]) {
+fn place<'a>(fault: &PartFault, root: &Table<'_>, rings: &Rings<'_>, tables: &dyn Fn(&'static str) -> &'a [Table<'a>]) {
     let entry_place = |table: &'static str, entry: usize, keys: &[&str]| {
-        let tables = if table == "keep_out" { keep_outs } else { frictions };
-        let table = tables.get(entry)?;
+        let table = tables(table).get(entry)?;
         keys.iter().find(|key| table.has(key)).map_or(table.at(), |key| table.place(key))
     };
     let at = match fault {
@@ -223,6 +235,8 @@ fn place(fault: &PartFault, root: &Table<'_>, rings: &Rings<'_>, keep_outs: &[Ta
         PartFault::NoSuchEdge { table, entry, .. } => entry_place(table, *entry, &["edge", "ring"]),
         PartFault::BadInterval { entry, .. } => entry_place("keep_out", *entry, &["from", "to"]),
         PartFault::BadEdgeFriction { entry, .. } => entry_place("edge_friction", *entry, &["mu"]),
+        PartFault::BadBulge { entry, .. } => entry_place("arc", *entry, &["bulge"]),
+        PartFault::ArcTwice { entry, .. } => entry_place("arc", *entry, &["edge"]),
         PartFault::AndMore => {
             root.sheet().and_more();
             return;

@@ -1,15 +1,16 @@
 //! Stretches: the parts of each edge where a pin may stand, in closed form.
 //!
 //! A pin of radius r that touches edge e at p has its centre at p - r n. While p runs along e the centre runs along a
-//! parallel line, and it meets another edge f exactly while it is inside the capsule of radius r around f. A capsule is
-//! convex, so each other edge forbids one interval of e, found here from a strip and two discs. Nothing is sampled,
-//! so nothing thin is missed.
+//! parallel line, or along a concentric circle where e is an arc, and it meets another edge f exactly while it is closer
+//! to f than r. The distance changes from above r to below only where the centre's path crosses the curve at distance r
+//! from f: two lines or two concentric circles beside it, and a circle round each end. All those crossings are in closed
+//! form; between two of them one look decides. Nothing is sampled, so nothing thin is missed.
 
 use super::Hand;
-use crate::part::{Edge, EdgeId, Outline, Part};
+use crate::part::{Arc, Edge, EdgeId, Outline, Part};
 use nalgebra::{Point2, Vector2};
 use rayon::prelude::*;
-use rstar::primitives::{GeomWithData, Line};
+use rstar::primitives::{GeomWithData, Rectangle};
 use rstar::{AABB, RTree};
 
 /// A maximal interval of an edge where a finger may be.
@@ -35,7 +36,7 @@ impl Stretch {
     }
 }
 
-/// A pin that only grazes an edge is not stopped by it: the capsule is shrunk by this fraction of the radius, well
+/// A pin that only grazes an edge is not stopped by it: what stops it is closer by this fraction of the radius, well
 /// above rounding and well below any drawing's precision.
 const GRAZE: f64 = 1e-9;
 
@@ -112,82 +113,147 @@ fn free_intervals(from: f64, to: f64, blocked: &mut [(f64, f64)], mut emit: impl
     }
 }
 
-/// Edges near each edge, by a tree of segments; empty for point fingers, which nothing can stop.
+/// Edges near each edge, by a tree of their boxes; empty for point fingers, which nothing can stop.
 struct Neighbours {
     radius: f64,
-    tree: RTree<GeomWithData<Line<[f64; 2]>, usize>>,
+    tree: RTree<GeomWithData<Rectangle<[f64; 2]>, usize>>,
 }
 
 impl Neighbours {
     fn of(outline: &Outline, radius: f64) -> Self {
-        let xy = |p: Point2<f64>| [p.x, p.y];
-        let lines = if radius > 0.0 {
-            let line = |(i, e): (usize, &Edge)| GeomWithData::new(Line::new(xy(e.start()), xy(e.end())), i);
-            outline.edges().iter().enumerate().map(line).collect()
-        } else {
-            Vec::new()
+        let boxed = |(i, edge): (usize, &Edge)| {
+            let (low, high) = edge.bounds();
+            GeomWithData::new(Rectangle::from_corners([low.x, low.y], [high.x, high.y]), i)
         };
-        Self { radius, tree: RTree::bulk_load(lines) }
+        let boxes = if radius > 0.0 { outline.edges().iter().enumerate().map(boxed).collect() } else { Vec::new() };
+        Self { radius, tree: RTree::bulk_load(boxes) }
     }
 
-    /// Adds the interval of edge `index` that each other edge forbids.
+    /// Adds the intervals of edge `index` that each other edge forbids.
     fn block(&self, outline: &Outline, index: usize, blocked: &mut Vec<(f64, f64)>) {
         if self.radius <= 0.0 {
             return;
         }
-        let edge = &outline.edges()[index];
-        let out = -edge.normal_at(0.0) * self.radius;
-        let (a, b) = (edge.start() + out, edge.end() + out);
-        let r = self.radius;
-        let near = AABB::from_corners([a.x.min(b.x) - r, a.y.min(b.y) - r], [a.x.max(b.x) + r, a.y.max(b.y) + r]);
+        let path = Path::of(&outline.edges()[index], self.radius);
+        if !path.fits() {
+            blocked.push((f64::NEG_INFINITY, f64::INFINITY));
+            return;
+        }
+        let (low, high) = path.edge.bounds();
+        let r = 2.0 * self.radius;
+        let near = AABB::from_corners([low.x - r, low.y - r], [high.x + r, high.y + r]);
         for other in self.tree.locate_in_envelope_intersecting(near) {
-            if other.data != index
-                && let Some(interval) = inside_capsule(a, edge.direction_at(0.0), &outline.edges()[other.data], r)
-            {
-                blocked.push(interval);
+            if other.data != index {
+                path.block(&outline.edges()[other.data], blocked);
             }
         }
     }
 }
 
-/// Positions s for which `start + s * direction` is closer than `radius` to a segment: one open interval or none.
-fn inside_capsule(start: Point2<f64>, direction: Vector2<f64>, segment: &Edge, radius: f64) -> Option<(f64, f64)> {
-    let r = radius * (1.0 - GRAZE);
-    let mut low = f64::INFINITY;
-    let mut high = f64::NEG_INFINITY;
-    let mut cover = |from: f64, to: f64| {
-        if from < to {
-            low = low.min(from);
-            high = high.max(to);
-        }
-    };
-    for end in [segment.start(), segment.end()] {
-        let to_end = end - start;
-        let middle = to_end.dot(&direction);
-        let off = to_end.perp(&direction);
-        let half = r * r - off * off;
-        if half > 0.0 {
-            cover(middle - half.sqrt(), middle + half.sqrt());
-        }
-    }
-    // The strip: distance from the segment's line below r, foot within the segment.
-    let along = segment.direction_at(0.0);
-    let to_start = start - segment.start();
-    let (foot, foot_rate) = (to_start.dot(&along), direction.dot(&along));
-    let (off, off_rate) = (along.perp(&to_start), along.perp(&direction));
-    let strip = meet_band(foot, foot_rate, 0.0, segment.length_mm());
-    let slab = meet_band(off, off_rate, -r, r);
-    cover(strip.0.max(slab.0), strip.1.min(slab.1));
-    (low < high).then_some((low, high))
+/// The way of a pin's centre while the pin runs along an edge.
+struct Path<'a> {
+    edge: &'a Edge,
+    radius: f64,
+    /// The circle the centre runs on, where the edge is an arc: the arc's own, and its radius for the centre.
+    round: Option<(Arc, f64)>,
 }
 
-/// The s with `low < value + rate * s < high`.
-fn meet_band(value: f64, rate: f64, low: f64, high: f64) -> (f64, f64) {
-    if rate.abs() < f64::MIN_POSITIVE * 1e16 {
-        return if low < value && value < high { (f64::NEG_INFINITY, f64::INFINITY) } else { (1.0, 0.0) };
+impl<'a> Path<'a> {
+    fn of(edge: &'a Edge, radius: f64) -> Self {
+        let round = edge.arc().map(|arc| (arc, if arc.convex { arc.radius + radius } else { arc.radius - radius }));
+        Self { edge, radius, round }
     }
-    let (a, b) = ((low - value) / rate, (high - value) / rate);
-    (a.min(b), a.max(b))
+
+    /// False for a pin thicker than the hollow it should touch.
+    fn fits(&self) -> bool {
+        self.round.is_none_or(|(_, radius)| radius > -GRAZE * self.radius)
+    }
+
+    fn centre(&self, along_mm: f64) -> Point2<f64> {
+        self.edge.point_at(along_mm) - self.edge.normal_at(along_mm) * self.radius
+    }
+
+    /// Adds the intervals on which the pin meets another edge.
+    fn block(&self, other: &Edge, blocked: &mut Vec<(f64, f64)>) {
+        let r = self.radius * (1.0 - GRAZE);
+        let length = self.edge.length_mm();
+        let mut cuts = vec![0.0, length];
+        self.cross_circle(other.start(), r, &mut cuts);
+        self.cross_circle(other.end(), r, &mut cuts);
+        match other.arc() {
+            Some(arc) => {
+                self.cross_circle(arc.centre, arc.radius + r, &mut cuts);
+                self.cross_circle(arc.centre, arc.radius - r, &mut cuts);
+            }
+            None => {
+                let along = other.direction_at(0.0);
+                let beside = Vector2::new(-along.y, along.x) * r;
+                self.cross_line(other.start() + beside, along, &mut cuts);
+                self.cross_line(other.start() - beside, along, &mut cuts);
+            }
+        }
+        cuts.retain(|cut| (0.0..=length).contains(cut));
+        cuts.sort_by(f64::total_cmp);
+        for pair in cuts.windows(2) {
+            if pair[0] < pair[1] && other.distance_to(self.centre((pair[0] + pair[1]) / 2.0)) < r {
+                blocked.push((pair[0], pair[1]));
+            }
+        }
+    }
+
+    /// Adds where the path crosses a circle, as distances along the edge.
+    fn cross_circle(&self, centre: Point2<f64>, radius: f64, cuts: &mut Vec<f64>) {
+        if radius < 0.0 {
+            return;
+        }
+        match self.round {
+            None => {
+                let to = centre - self.centre(0.0);
+                let direction = self.edge.direction_at(0.0);
+                let (middle, off) = (to.dot(&direction), to.perp(&direction));
+                let half = (radius - off) * (radius + off);
+                if half >= 0.0 {
+                    cuts.extend([middle - half.sqrt(), middle + half.sqrt()]);
+                }
+            }
+            Some((arc, own)) => {
+                // Two circles: the foot of the common chord lies (d^2 + own^2 - radius^2) / 2 d from the own centre.
+                let to = centre - arc.centre;
+                let apart = to.norm();
+                let foot = (apart + (own - radius) * (own + radius) / apart) / 2.0;
+                let half = (own - foot) * (own + foot);
+                if apart > 0.0 && half >= 0.0 {
+                    let (toward, side) = (to / apart * foot, Vector2::new(-to.y, to.x) / apart * half.sqrt());
+                    self.cut_toward(&arc, [toward + side, toward - side], cuts);
+                }
+            }
+        }
+    }
+
+    /// Adds where the path crosses a line.
+    fn cross_line(&self, start: Point2<f64>, along: Vector2<f64>, cuts: &mut Vec<f64>) {
+        match self.round {
+            None => {
+                let rate = along.perp(&self.edge.direction_at(0.0));
+                let cut = along.perp(&(start - self.centre(0.0))) / rate;
+                if cut.is_finite() {
+                    cuts.push(cut);
+                }
+            }
+            Some((arc, own)) => {
+                let to = start - arc.centre;
+                let foot = to - along * to.dot(&along);
+                let half = own * own - foot.norm_squared();
+                if half >= 0.0 {
+                    self.cut_toward(&arc, [foot + along * half.sqrt(), foot - along * half.sqrt()], cuts);
+                }
+            }
+        }
+    }
+
+    fn cut_toward(&self, arc: &Arc, directions: [Vector2<f64>; 2], cuts: &mut Vec<f64>) {
+        cuts.extend(directions.into_iter().filter_map(|direction| self.edge.along_toward(arc, direction)));
+    }
 }
 
 #[cfg(test)]

@@ -9,6 +9,8 @@ use super::wrench::{Frame, Wrenches};
 use super::{MARGINAL, friction};
 use nalgebra::Vector3;
 
+use super::placement::OnArcs;
+
 pub use super::placement::Placement;
 
 /// Why a number is not to be trusted: the two ways to it disagree.
@@ -69,11 +71,12 @@ pub struct Assessment {
     pub quality: f64,
     /// The same with each finger limited.
     pub quality_per_finger: f64,
-    /// Least mu at which the grasp closes, on the setup's scale; nothing when no mu does.
+    /// Least mu at which the grasp closes, on the setup's scale: it closes at every mu above. Nothing when no mu does, or
+    /// when the setup's mu is 0 and only edges have friction.
     pub friction_needed_closure: Option<f64>,
     /// Least mu at which the grasp closes and holds every load.
     pub friction_needed: Option<f64>,
-    /// mu over friction needed; nothing when none is needed.
+    /// mu over friction needed; nothing when any friction at all will do.
     pub friction_margin: Option<f64>,
     /// The same in degrees; nothing when no mu closes the grasp.
     pub friction_margin_deg: Option<f64>,
@@ -103,7 +106,12 @@ impl Assessment {
             friction_needed: friction.needed,
             friction_margin: friction.margin,
             friction_margin_deg: friction.margin_deg,
-            placement: Placement::new(&if closed { score } else { not_closed(score) }, frame.scale_mm, rooms_mm),
+            placement: Placement::of(
+                wrenches,
+                &if closed { score } else { not_closed(score) },
+                frame.scale_mm,
+                rooms_mm,
+            ),
             weakest: closed.then_some(Weakest { direction: score.direction }),
             escape: match verdict {
                 Verdict::Open => program::separating_direction(wrenches).map(|u| Escape::along(&u, frame)),
@@ -176,7 +184,8 @@ impl FrictionReading {
         match friction::factor_needed(wrenches.levers(), mus) {
             None => Self { needed: None, margin: Some(0.0), margin_deg: None },
             Some(factor) => {
-                let needed = factor * unit;
+                // With a setup mu of 0 and edges of their own, the factor scales nothing the setup names.
+                let needed = (unit > 0.0).then_some(factor * unit);
                 let margin = if frictionless && !closed {
                     // However little would do, there is none.
                     Some(0.0)
@@ -184,8 +193,8 @@ impl FrictionReading {
                     (factor > 0.0).then(|| 1.0 / factor)
                 };
                 let margin_deg =
-                    if frictionless { -needed.atan().to_degrees() } else { friction::margin_deg(mus, factor) };
-                Self { needed: Some(needed), margin, margin_deg: Some(margin_deg) }
+                    if frictionless { -factor.atan().to_degrees() } else { friction::margin_deg(mus, factor) };
+                Self { needed, margin, margin_deg: Some(margin_deg) }
             }
         }
     }
@@ -222,20 +231,37 @@ fn confirm_closure(a: &Assessment, wrenches: &Wrenches, doubts: &mut Vec<Doubt>)
 }
 
 fn confirm_placement(a: &Assessment, wrenches: &Wrenches, frame: &Frame, doubts: &mut Vec<Doubt>) {
-    let mut least = f64::INFINITY;
-    for sense in [1.0, -1.0] {
-        match program::pure_torque(wrenches, sense) {
-            Solved::Answer(torque) => least = least.min(torque * frame.scale_mm),
-            Solved::Infeasible => least = 0.0,
-            Solved::Inconclusive(why) => {
-                doubts.push(Doubt::Solver(why));
-                return;
+    let on_arcs = OnArcs {
+        levers: wrenches.levers(),
+        mus: wrenches.mus(),
+        curvatures: wrenches.curvatures(),
+        scale_mm: frame.scale_mm,
+    };
+    // What is left at an offset: the pure torque of the cones that stay, less what the offset takes, mm. On straight
+    // edges the cones stay whole and the offset takes itself.
+    let mut spare_at = |offset_mm: f64| -> Option<f64> {
+        let Some((mus, change_mm)) = on_arcs.left_at(offset_mm) else { return Some(f64::NEG_INFINITY) };
+        let left = wrenches.with_friction(mus);
+        let mut least = f64::INFINITY;
+        for sense in [1.0, -1.0] {
+            match program::pure_torque(&left, sense) {
+                Solved::Answer(torque) => least = least.min(torque * frame.scale_mm),
+                Solved::Infeasible => least = f64::NEG_INFINITY,
+                Solved::Inconclusive(why) => {
+                    doubts.push(Doubt::Solver(why));
+                    return None;
+                }
             }
         }
-    }
+        Some(least - change_mm)
+    };
     let kernel = a.placement.torque_mm;
-    if !((kernel - least).abs() <= AGREE_PLACEMENT * (frame.scale_mm + kernel)) {
-        doubts.push(Doubt::Placement { kernel, program: least });
+    let blur = AGREE_PLACEMENT * (frame.scale_mm + kernel);
+    let Some(here) = spare_at(kernel) else { return };
+    let beyond = if here > blur { spare_at(kernel + 2.0 * blur) } else { Some(here) };
+    // The spare falls at least as fast as the offset grows, so a step beyond the tolerance nothing is left of it.
+    if here < -blur || beyond.is_some_and(|beyond| beyond > blur) {
+        doubts.push(Doubt::Placement { kernel, program: kernel + here });
     }
 }
 

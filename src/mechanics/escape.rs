@@ -40,7 +40,7 @@ impl Escape {
     pub fn along(u: &Vector3<f64>, frame: &Frame) -> Self {
         let motion = -u;
         if motion.z.abs() <= PURE * u.norm() {
-            return Self::Slide { toward_deg: motion.y.atan2(motion.x).to_degrees() };
+            return Self::Slide { toward_deg: (motion.y + 0.0).atan2(motion.x + 0.0).to_degrees() };
         }
         let rate = motion.z / frame.scale_mm;
         let about = Point2::new(frame.about.x - motion.y / rate, frame.about.y + motion.x / rate);

@@ -6,6 +6,7 @@
 
 use super::force_polygon::ForcePolygon;
 use super::quality;
+use super::root;
 use super::wrench::{Lever, MOST_GENERATORS};
 use nalgebra::Vector3;
 
@@ -106,44 +107,9 @@ pub fn factor_needed(levers: &[Lever], mus: &[f64]) -> Option<f64> {
         at_high = at(high);
     }
     let width = WIDTH * (1.0 + high * largest) / largest;
-    let high = bracketed(at, (low, at_low), (high, at_high), width);
+    let (_, high) = root::bracket(at, (low, at_low), (high, at_high), width);
     Some(if high * largest < NONE { 0.0 } else { high })
 }
-
-/// Narrows a bracket around the place where `f` turns positive to `width` and returns its upper end.
-///
-/// The ITP method (Oliveira & Takahashi 2020): never more steps than bisection plus one, and far fewer where `f` is
-/// smooth; a jump does no harm.
-fn bracketed(f: impl Fn(f64) -> f64, low: (f64, f64), high: (f64, f64), width: f64) -> f64 {
-    let (mut low, mut at_low) = (low.0, low.1.max(STEEPEST));
-    let (mut high, mut at_high) = high;
-    let whole = high - low;
-    let half_width = width / 2.0;
-    let steps = (whole / width).log2().ceil().max(0.0) + 1.0;
-    for step in 0..=steps as i32 {
-        let span = high - low;
-        if span <= width {
-            break;
-        }
-        let middle = low + span / 2.0;
-        let chord = (at_high * low - at_low * high) / (at_high - at_low);
-        let toward = (middle - chord).signum();
-        let shift = 0.2 / whole * span * span;
-        let trial = if shift <= (middle - chord).abs() { chord + toward * shift } else { middle };
-        let leash = half_width * (steps - f64::from(step)).exp2() - span / 2.0;
-        let at = if (trial - middle).abs() <= leash { trial } else { middle - toward * leash };
-        let value = f(at);
-        if value > 0.0 {
-            (high, at_high) = (at, value);
-        } else {
-            (low, at_low) = (at, value.max(STEEPEST));
-        }
-    }
-    high
-}
-
-/// Values below this say no more than that the grasp is open; without a floor they would flatten the chord.
-const STEEPEST: f64 = -1.0;
 
 /// Margin in degrees: the least of `atan mu - atan (factor mu)` over the contacts. Every contact normal may be off by
 /// less than this, all at once, and the grasp still closes: the cone at the factor turned by less stays inside the cone

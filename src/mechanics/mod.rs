@@ -14,6 +14,7 @@ pub mod load;
 pub mod placement;
 pub mod program;
 pub mod quality;
+mod root;
 pub mod wrench;
 
 pub use assess::{Assessment, Doubt, Placement};

@@ -34,7 +34,32 @@ pub struct Balance {
 }
 
 /// Solves `min cost . x` with `sum_j x_j column_j = target`, `x >= 0`.
+///
+/// Columns that are parallel but for a hair can lead the simplex method astray. An answer that fails its checks is asked
+/// for again with the columns and the equations in reverse, which takes another path of pivots; it has to pass the same
+/// checks.
 fn solve<const ROWS: usize>(columns: &[[f64; ROWS]], cost: &[f64], target: [f64; ROWS]) -> Solved<Vec<f64>> {
+    let first = attempt(columns, cost, target);
+    if !matches!(first, Solved::Inconclusive(_)) {
+        return first;
+    }
+    let turn = |mut rows: [f64; ROWS]| {
+        rows.reverse();
+        rows
+    };
+    let columns: Vec<_> = columns.iter().rev().copied().map(turn).collect();
+    let cost: Vec<f64> = cost.iter().rev().copied().collect();
+    match attempt(&columns, &cost, turn(target)) {
+        Solved::Answer(mut x) => {
+            x.reverse();
+            Solved::Answer(x)
+        }
+        other => other,
+    }
+}
+
+/// One run of the solver, its answer checked.
+fn attempt<const ROWS: usize>(columns: &[[f64; ROWS]], cost: &[f64], target: [f64; ROWS]) -> Solved<Vec<f64>> {
     let mut vars = variables!();
     let x: Vec<Variable> = columns.iter().map(|_| vars.add(variable().min(0.0))).collect();
     let objective: Expression = x.iter().zip(cost).map(|(&x, &c)| c * x).sum();

@@ -66,6 +66,8 @@ pub fn cross(a: Vector2<f64>, b: Vector2<f64>) -> f64 {
 pub struct Wrenches {
     levers: Vec<Lever>,
     mus: Vec<f64>,
+    /// Curvature of each contact's edge, 1/mm; 0 where it is straight.
+    curvatures: Vec<f64>,
     /// Generators, finger after finger, two each (one where that contact's mu is 0).
     generators: Vec<Vector3<f64>>,
     /// Finger of each generator.
@@ -89,17 +91,30 @@ impl Wrenches {
             generators.extend_from_slice(&edges[..count]);
             fingers.extend(std::iter::repeat_n(finger, count));
         }
-        Self { levers, mus, generators, fingers }
+        let curvatures = vec![0.0; levers.len()];
+        Self { levers, mus, curvatures, generators, fingers }
+    }
+
+    /// The same contacts on edges of these curvatures, 1/mm, one for each finger. Only the placement tolerance asks.
+    #[must_use]
+    pub fn on_curves(mut self, curvatures: &[f64]) -> Self {
+        self.curvatures.copy_from_slice(curvatures);
+        self
+    }
+
+    /// Curvature of each contact's edge, 1/mm.
+    pub fn curvatures(&self) -> &[f64] {
+        &self.curvatures
     }
 
     /// The same contacts with every friction coefficient multiplied by a factor.
     pub fn with_friction_times(&self, factor: f64) -> Self {
-        Self::from_levers(self.levers.clone(), self.mus.iter().map(|mu| mu * factor).collect())
+        self.with_friction(self.mus.iter().map(|mu| mu * factor).collect())
     }
 
     /// The same contacts with friction coefficients of one's own.
     pub fn with_friction(&self, mus: Vec<f64>) -> Self {
-        Self::from_levers(self.levers.clone(), mus)
+        Self::from_levers(self.levers.clone(), mus).on_curves(&self.curvatures)
     }
 
     /// Number of fingers.

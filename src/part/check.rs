@@ -1,6 +1,6 @@
 //! The rules of an outline. Crossing and touching are decided by exact predicates (Shewchuk 1997, crate `robust`).
 
-use super::EdgeId;
+use super::edge::{Edge, EdgeId};
 use super::fault::{PartFault, PartFaults, Touch};
 use super::mass;
 use super::sweep;
@@ -9,6 +9,7 @@ use robust::{Coord, orient2d};
 use rstar::primitives::{GeomWithData, Rectangle};
 use rstar::{AABB, RTree};
 use std::cmp::Ordering;
+use std::collections::BTreeMap;
 
 /// Coordinates farther from the origin than this are refused: beyond it the predicates could overflow and a
 /// position has fewer than seven digits below a millimetre.
@@ -49,23 +50,83 @@ impl Faults {
 }
 
 /// Checks everything but areas and returns the rings without their repeated closing vertices.
-pub(super) fn cleaned(rings: &[Ring], unit_mm: f64) -> Result<Vec<Ring>, PartFaults> {
-    let rings = numbers(rings, unit_mm)?;
+pub(super) fn cleaned(rings: &[Ring], bulges: &BTreeMap<EdgeId, f64>, unit_mm: f64) -> Result<Vec<Ring>, PartFaults> {
+    let rings = numbers(rings, bulges, unit_mm)?;
     let mut faults = Faults::default();
-    vertices(&rings, &mut faults);
+    vertices(&rings, bulges, &mut faults);
     // A repeated vertex makes its neighbours touch; crossings are looked for once each ring is sound by itself.
     faults.settle()?;
+    let traced = Traced::of(&rings, bulges);
     let mut faults = Faults::default();
-    meetings(&rings, &mut faults);
+    meetings(&traced, &mut faults);
     faults.settle()?;
     let mut faults = Faults::default();
-    nesting(&rings, &mut faults);
+    nesting(&traced.rings, &mut faults);
     faults.settle()?;
     Ok(rings)
 }
 
+/// Rings with arcs drawn as chords, and the edge each chord belongs to.
+struct Traced {
+    rings: Vec<Ring>,
+    /// Edge of each chord; empty where there is no arc, and chords are edges.
+    owners: Vec<Vec<usize>>,
+}
+
+/// Largest rise of an arc above the chords that stand for it, as a part of the drawing's size.
+const TRACE: f64 = 2e-6;
+/// Most chords for one arc.
+const MOST_CHORDS: usize = 1024;
+
+impl Traced {
+    fn of(rings: &[Ring], bulges: &BTreeMap<EdgeId, f64>) -> Self {
+        if bulges.is_empty() {
+            return Self { rings: rings.to_vec(), owners: vec![Vec::new(); rings.len()] };
+        }
+        let sagitta = TRACE * size(&rings[0]);
+        let mut traced = Self { rings: Vec::new(), owners: Vec::new() };
+        for (number, ring) in rings.iter().enumerate() {
+            let (mut chords, mut owners) = (Vec::new(), Vec::new());
+            for (i, &[x, y]) in ring.iter().enumerate() {
+                chords.push([x, y]);
+                owners.push(i);
+                let id = EdgeId { ring: number, edge: i };
+                let Some(&bulge) = bulges.get(&id) else { continue };
+                let [x1, y1] = ring[(i + 1) % ring.len()];
+                // Positions relative to the vertex, as for the part itself, so that far coordinates lose no digits.
+                let arc = Edge::new(id, Point2::origin(), Point2::new(x1 - x, y1 - y), bulge, 1.0);
+                let ends: Vec<f64> = arc.chords(sagitta, MOST_CHORDS).collect();
+                for &along in &ends[..ends.len() - 1] {
+                    let p = arc.point_at(along);
+                    chords.push([x + p.x, y + p.y]);
+                    owners.push(i);
+                }
+            }
+            traced.rings.push(chords);
+            traced.owners.push(owners);
+        }
+        traced
+    }
+
+    fn owner(&self, chord: EdgeId) -> EdgeId {
+        match self.owners[chord.ring].get(chord.edge) {
+            Some(&edge) => EdgeId { ring: chord.ring, edge },
+            None => chord,
+        }
+    }
+}
+
+/// Vertices of a ring, a closing one that repeats the first not counted.
+#[expect(clippy::float_cmp, reason = "a closing vertex repeats the first digit for digit")]
+pub(super) fn vertex_count(ring: &Ring) -> usize {
+    match ring.as_slice() {
+        [first, .., last] if first == last => ring.len() - 1,
+        _ => ring.len(),
+    }
+}
+
 /// Finite numbers within range, enough of them, and the closing vertex dropped.
-fn numbers(rings: &[Ring], unit_mm: f64) -> Result<Vec<Ring>, PartFaults> {
+fn numbers(rings: &[Ring], bulges: &BTreeMap<EdgeId, f64>, unit_mm: f64) -> Result<Vec<Ring>, PartFaults> {
     let mut faults = Faults::default();
     let have = rings.iter().map(Vec::len).sum();
     if have > MOST_VERTICES {
@@ -85,11 +146,10 @@ fn numbers(rings: &[Ring], unit_mm: f64) -> Result<Vec<Ring>, PartFaults> {
     }
     let mut cleaned: Vec<Ring> = rings.to_vec();
     for (number, ring) in cleaned.iter_mut().enumerate() {
-        #[expect(clippy::float_cmp, reason = "a closing vertex repeats the first digit for digit")]
-        if ring.len() > 1 && ring[0] == ring[ring.len() - 1] {
-            ring.pop();
-        }
-        if ring.len() < 3 {
+        ring.truncate(vertex_count(ring));
+        // Two vertices make a ring when an arc leads from one to the other.
+        let curved = bulges.range(EdgeId { ring: number, edge: 0 }..EdgeId { ring: number + 1, edge: 0 }).next();
+        if ring.len() < if curved.is_some() { 2 } else { 3 } {
             faults.note(PartFault::TooFewVertices { ring: number, have: ring.len() });
         }
     }
@@ -113,15 +173,16 @@ fn size(ring: &Ring) -> f64 {
 }
 
 /// No repeated vertex and no spike.
-fn vertices(rings: &[Ring], faults: &mut Faults) {
+fn vertices(rings: &[Ring], bulges: &BTreeMap<EdgeId, f64>, faults: &mut Faults) {
     let same = SAME_VERTEX * size(&rings[0]);
     for (number, ring) in rings.iter().enumerate() {
         let n = ring.len();
+        let curved = |edge: usize| bulges.contains_key(&EdgeId { ring: number, edge });
         for vertex in 0..n {
             let (u, v, w) = (ring[(vertex + n - 1) % n], ring[vertex], ring[(vertex + 1) % n]);
             if (v[0] - u[0]).abs() <= same && (v[1] - u[1]).abs() <= same {
                 faults.note(PartFault::RepeatedVertex { ring: number, vertex, before: (vertex + n - 1) % n });
-            } else if turns_back(u, v, w) {
+            } else if !curved(vertex) && !curved((vertex + n - 1) % n) && turns_back(u, v, w) {
                 faults.note(PartFault::Spike { ring: number, vertex });
             }
         }
@@ -168,7 +229,8 @@ pub(super) fn meet(a: [[f64; 2]; 2], b: [[f64; 2]; 2]) -> Option<Touch> {
 const MOST_PAIRS: usize = 20_000_000;
 
 /// No two edges meet but neighbours at their shared vertex.
-fn meetings(rings: &[Ring], faults: &mut Faults) {
+fn meetings(traced: &Traced, faults: &mut Faults) {
+    let rings = &traced.rings;
     let Some(first) = sweep::first_meeting(rings) else { return };
     let mut boxes = Vec::with_capacity(rings.iter().map(Vec::len).sum());
     for (ring, vertices) in rings.iter().enumerate() {
@@ -181,7 +243,13 @@ fn meetings(rings: &[Ring], faults: &mut Faults) {
         let ring = &rings[id.ring];
         [ring[id.edge], ring[(id.edge + 1) % ring.len()]]
     };
-    let mut found = vec![(first.0, first.1, meet(segment(first.0), segment(first.1)).unwrap_or(Touch::Touch))];
+    let mut found = BTreeMap::new();
+    let mut note = |a: EdgeId, b: EdgeId, how: Touch| {
+        let (a, b) = (traced.owner(a), traced.owner(b));
+        found.entry((a.min(b), a.max(b))).or_insert(how);
+        found.len()
+    };
+    note(first.0, first.1, meet(segment(first.0), segment(first.1)).unwrap_or(Touch::Touch));
     let tree = RTree::bulk_load(boxes);
     let mut tested = 0;
     'all: for (ring, vertices) in rings.iter().enumerate() {
@@ -193,18 +261,15 @@ fn meetings(rings: &[Ring], faults: &mut Faults) {
                 if b <= a || sweep::neighbours(rings, a, b) || (a, b) == first {
                     continue;
                 }
-                if let Some(how) = meet(segment(a), segment(b)) {
-                    found.push((a, b, how));
-                }
                 tested += 1;
-                if tested > MOST_PAIRS || found.len() > 4 * MOST_FAULTS {
+                let listed = meet(segment(a), segment(b)).map_or(0, |how| note(a, b, how));
+                if tested > MOST_PAIRS || listed > 4 * MOST_FAULTS {
                     break 'all;
                 }
             }
         }
     }
-    found.sort_by_key(|&(a, b, _)| (a, b));
-    for (a, b, how) in found {
+    for ((a, b), how) in found {
         if !faults.note(PartFault::Meet { a, b, how }) {
             break;
         }
@@ -245,11 +310,12 @@ fn inside(ring: &Ring, p: [f64; 2]) -> bool {
 }
 
 /// Every ring encloses an area its numbers can carry.
-pub(super) fn areas(rings: &[Vec<Point2<f64>>]) -> Result<(), PartFaults> {
+pub(super) fn areas(rings: &[Vec<Edge>]) -> Result<(), PartFaults> {
     let mut faults = Faults::default();
     for (number, ring) in rings.iter().enumerate() {
         let area_mm2 = mass::signed_area(ring).abs();
-        let span = ring.iter().fold(0.0_f64, |far, p| far.max((p - ring[0]).norm()));
+        let first = ring[0].start();
+        let span = ring.iter().fold(0.0_f64, |far, edge| far.max(edge.farthest_from(first)));
         if !(area_mm2 > LEAST_AREA * span * span) {
             faults.note(PartFault::NoArea { ring: number, area_mm2 });
         }
@@ -280,7 +346,7 @@ mod tests {
 
     fn sound(rings: &[Ring]) -> bool {
         let mut faults = Faults::default();
-        vertices(rings, &mut faults);
+        vertices(rings, &BTreeMap::new(), &mut faults);
         faults.0.is_empty()
     }
 

@@ -141,6 +141,22 @@ pub enum PartFault {
         /// Edge count of each ring.
         have: Vec<usize>,
     },
+    /// A bulge is no bulge.
+    #[error("arc {entry}: bulge is {bulge}; give the tangent of a quarter of the angle swept, from -200 to 200")]
+    BadBulge {
+        /// Entry, from 0.
+        entry: usize,
+        /// The value.
+        bulge: f64,
+    },
+    /// Two arcs for one edge.
+    #[error("arc {entry}: ring {} edge {} has an arc already; remove one", .edge.ring, .edge.edge)]
+    ArcTwice {
+        /// The later entry, from 0.
+        entry: usize,
+        /// The edge.
+        edge: EdgeId,
+    },
     /// A keep-out interval is empty or off the edge.
     #[error("keep_out {entry}: from {from_mm} mm to {to_mm} mm is no interval of ring {} edge {}, which is {length_mm} mm long; give 0 <= from < to", .edge.ring, .edge.edge)]
     BadInterval {
@@ -169,7 +185,8 @@ pub enum PartFault {
 }
 
 fn rings_in_words(have: &[usize]) -> String {
-    let some = have.iter().take(4).enumerate().map(|(ring, n)| format!("ring {ring} has edges 0..{}", n - 1));
+    let some =
+        have.iter().take(4).enumerate().map(|(ring, n)| format!("ring {ring} has edges 0..{}", n.saturating_sub(1)));
     let mut words: Vec<_> = some.collect();
     if have.len() > 4 {
         words.push(format!("{} rings in all", have.len()));

@@ -4,17 +4,20 @@
 //! polygon that crosses itself, a hole outside its part, or a number that is not one.
 
 mod check;
+mod edge;
 mod fault;
 mod mass;
 pub mod material;
 mod outline;
 mod sweep;
 
+pub use edge::{Arc, BULGE_LARGEST, Edge, EdgeId};
 pub use fault::{PartFault, PartFaults, Touch};
 pub use mass::{Mass, RegionMoments};
-pub use outline::{Edge, EdgeId, Outline};
+pub use outline::Outline;
 
 use nalgebra::Point2;
+use std::collections::BTreeMap;
 
 /// An interval of an edge that no finger may touch.
 #[derive(Debug, Clone, PartialEq)]
@@ -53,6 +56,18 @@ pub struct KeepOutDescription {
     pub reason: String,
 }
 
+/// An edge that is an arc instead of a straight line.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct ArcDescription {
+    /// Ring number, 0 for the outer ring.
+    pub ring: usize,
+    /// Edge number in the ring.
+    pub edge: usize,
+    /// tan(sweep / 4), as the DXF reference defines it; positive when the arc runs counter-clockwise from vertex `edge`
+    /// to the next.
+    pub bulge: f64,
+}
+
 /// Everything that may be said about a part before it is checked; see [`Part::new`].
 #[derive(Debug, Clone, PartialEq)]
 pub struct PartDescription {
@@ -62,6 +77,8 @@ pub struct PartDescription {
     pub unit_mm: f64,
     /// Rings of vertices: the outer ring first, then the holes. Either winding; a closing vertex may repeat the first.
     pub rings: Vec<Vec<[f64; 2]>>,
+    /// Edges that are arcs.
+    pub arcs: Vec<ArcDescription>,
     /// Thickness in the description's unit.
     pub thickness: Option<f64>,
     /// Material, a row of [`material::DENSITIES`] where it is to give the density.
@@ -85,6 +102,7 @@ impl PartDescription {
             name: name.to_owned(),
             unit_mm: 1.0,
             rings,
+            arcs: Vec::new(),
             thickness: None,
             material: None,
             density_kg_m3: None,
@@ -134,7 +152,8 @@ impl Part {
         {
             faults.push(PartFault::BadCentreOfMass { x: com[0], y: com[1] });
         }
-        let outline = match Outline::new(&d.rings, d.unit_mm) {
+        let bulges = checked_arcs(&d, &mut faults);
+        let outline = match Outline::new(&d.rings, &bulges, d.unit_mm) {
             Ok(outline) => outline,
             Err(outline_faults) => {
                 let mut all = outline_faults.0;
@@ -225,6 +244,24 @@ impl Part {
 const DENSEST_KG_M3: f64 = 1e5;
 /// Larger numbers are slips of the keyboard, and would overflow on the way to a force.
 const HEAVIEST_KG: f64 = 1e12;
+
+/// Bulges by edge; those that are none, or of no edge, are noted.
+fn checked_arcs(d: &PartDescription, faults: &mut Vec<PartFault>) -> BTreeMap<EdgeId, f64> {
+    let have: Vec<usize> = d.rings.iter().map(check::vertex_count).collect();
+    let mut bulges = BTreeMap::new();
+    for (entry, arc) in d.arcs.iter().enumerate() {
+        let id = EdgeId { ring: arc.ring, edge: arc.edge };
+        if have.get(arc.ring).is_none_or(|&edges| arc.edge >= edges) {
+            faults.push(PartFault::NoSuchEdge { table: "arc", entry, edge: id, have: have.clone() });
+        } else if !(arc.bulge.abs() <= BULGE_LARGEST) {
+            faults.push(PartFault::BadBulge { entry, bulge: arc.bulge });
+        } else if bulges.insert(id, arc.bulge).is_some() {
+            faults.push(PartFault::ArcTwice { entry, edge: id });
+        }
+    }
+    bulges.retain(|_, bulge| bulge.abs() >= edge::STRAIGHT);
+    bulges
+}
 
 fn checked_keep_outs(d: &PartDescription, outline: &Outline, faults: &mut Vec<PartFault>) -> Vec<KeepOut> {
     let mut kept = Vec::with_capacity(d.keep_outs.len());

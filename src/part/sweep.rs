@@ -3,8 +3,8 @@
 //! Time grows as n log n whatever the shape; testing every pair of boxes that overlap is quadratic on a comb of long
 //! slanting teeth. The sweep stops at the first meeting it finds.
 
-use super::EdgeId;
 use super::check::{Ring, meet, turn};
+use super::edge::EdgeId;
 use std::cell::Cell;
 use std::cmp::Ordering;
 use std::collections::BTreeSet;

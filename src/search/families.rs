@@ -72,14 +72,16 @@ impl Family {
                 if left == 0 {
                     from += rest as usize;
                 } else {
-                    loop {
-                        let with = choose((n - from - 1) as u128, left);
-                        if rest < with {
-                            break;
-                        }
-                        rest -= with;
-                        from += 1;
+                    // Sets whose first element lies below `at`.
+                    let whole = choose((n - from) as u128, left + 1);
+                    let below = |at: usize| whole - choose((n - at) as u128, left + 1);
+                    let (mut low, mut high) = (from, n);
+                    while high - low > 1 {
+                        let middle = low + (high - low) / 2;
+                        if below(middle) <= rest { low = middle } else { high = middle }
                     }
+                    rest -= below(low);
+                    from = low;
                 }
                 set[at] = (range.start + from) as u32;
                 at += 1;

@@ -1,6 +1,7 @@
 //! Which grasps are good: sites on the stretches, candidate sets, their scores, families, order, the background job.
 
 mod families;
+mod family_forces;
 pub mod job;
 mod order;
 mod plan;

@@ -6,6 +6,7 @@
 
 use crate::hand::FingerCount;
 use std::cmp::Ordering;
+use std::collections::{BTreeMap, HashMap};
 
 /// What grasps are sorted by.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, Hash)]
@@ -48,6 +49,11 @@ pub(super) const FRICTION_QUANTUM: f64 = 1e-8;
 /// A score in quanta.
 pub(super) fn quanta(score: f64) -> i64 {
     (score / SCORE_QUANTUM).round() as i64
+}
+
+/// The least score that is rounded to so many quanta.
+pub(super) fn below(quanta: i64) -> f64 {
+    (quanta as f64 - 0.5) * SCORE_QUANTUM
 }
 
 /// A friction factor in quanta.
@@ -97,40 +103,45 @@ impl PartialOrd for Candidate {
 #[derive(Debug, Clone)]
 pub(super) struct Top {
     most: usize,
-    /// Best first, with each one's group.
-    list: Vec<(Candidate, SiteSet)>,
+    /// In order, with each one's group.
+    list: BTreeMap<Candidate, SiteSet>,
+    groups: HashMap<SiteSet, Candidate>,
     /// Nothing behind this is wanted, however short the list.
     bar: Option<Candidate>,
 }
 
 impl Top {
     pub(super) fn new(most: usize) -> Self {
-        Self { most, list: Vec::new(), bar: None }
+        Self { most, list: BTreeMap::new(), groups: HashMap::new(), bar: None }
     }
 
     /// An empty list that takes only what this one would still take.
     pub(super) fn above(&self) -> Self {
-        Self { most: self.most, list: Vec::new(), bar: self.worst().copied() }
+        Self { bar: self.worst().copied(), ..Self::new(self.most) }
     }
 
     /// The candidate a newcomer has to beat.
     pub(super) fn worst(&self) -> Option<&Candidate> {
-        if self.list.len() < self.most { self.bar.as_ref() } else { self.list.last().map(|(worst, _)| worst) }
+        if self.list.len() < self.most { self.bar.as_ref() } else { self.list.last_key_value().map(|(worst, _)| worst) }
     }
 
     pub(super) fn offer(&mut self, candidate: Candidate, group: SiteSet) {
         if self.most == 0 || self.worst().is_some_and(|worst| candidate >= *worst) {
             return;
         }
-        if let Some(same) = self.list.iter().position(|(_, other)| *other == group) {
-            if self.list[same].0 <= candidate {
+        if let Some(same) = self.groups.insert(group, candidate) {
+            if same <= candidate {
+                self.groups.insert(group, same);
                 return;
             }
-            self.list.remove(same);
+            self.list.remove(&same);
         }
-        let at = self.list.partition_point(|(other, _)| *other < candidate);
-        self.list.insert(at, (candidate, group));
-        self.list.truncate(self.most);
+        self.list.insert(candidate, group);
+        if self.list.len() > self.most
+            && let Some((_, last)) = self.list.pop_last()
+        {
+            self.groups.remove(&last);
+        }
     }
 
     pub(super) fn merge(mut self, other: Self) -> Self {
@@ -142,6 +153,6 @@ impl Top {
 
     /// Best first.
     pub(super) fn candidates(&self) -> impl Iterator<Item = &Candidate> {
-        self.list.iter().map(|(candidate, _)| candidate)
+        self.list.keys()
     }
 }

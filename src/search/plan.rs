@@ -12,10 +12,15 @@ use rand_chacha::rand_core::{Rng, SeedableRng};
 use rayon::prelude::*;
 use std::ops::Range;
 
-/// Parts the work is cut into, each followed by a word to the observer.
-const BATCHES: u64 = 16;
-/// Candidate sets in one parcel, about: a few milliseconds of work.
-const PARCEL: u64 = 16_384;
+/// Parts the work is cut into at least, each followed by a word to the observer. Threads wait for one another at the end
+/// of each, so few are better; one is a second's work at most.
+const BATCHES: u64 = 8;
+/// Candidate sets in one batch, at most, about.
+const BATCH: u64 = 2_000_000;
+/// Candidate sets in one parcel, about: a small part of a batch, so that threads end it together.
+const PARCEL: u64 = 4096;
+/// Parcels in which single draws are handed out, at most.
+const MOST_PARCELS: u64 = 10_000;
 /// Families beyond this are not written down.
 const MOST_FAMILIES: u64 = 1_000_000;
 
@@ -55,7 +60,8 @@ impl Plan {
         let parcels = if families <= u128::from(budget.min(MOST_FAMILIES)) {
             strata(screen, fingers, budget)?
         } else {
-            let parcels = budget.div_ceil(PARCEL);
+            let parcels = budget.div_ceil(PARCEL).min(MOST_PARCELS);
+            // The budget is at most 1e10, so the product fits.
             let cut = |i: u64| i * budget / parcels;
             let parcel = |strata: Range<u64>| Parcel {
                 sets: strata.end - strata.start,
@@ -79,11 +85,12 @@ impl Plan {
 
     /// Ranges of parcels of about equal work.
     pub(super) fn batches(&self) -> Vec<Range<usize>> {
+        let most = (self.total / BATCHES).min(BATCH);
         let mut batches = Vec::new();
         let (mut from, mut sets) = (0, 0);
         for (index, parcel) in self.parcels.iter().enumerate() {
             sets += parcel.sets;
-            if sets > self.total / BATCHES || index + 1 == self.parcels.len() {
+            if sets > most || index + 1 == self.parcels.len() {
                 batches.push(from..index + 1);
                 (from, sets) = (index + 1, 0);
             }
@@ -188,7 +195,7 @@ fn strata(screen: &Screen, fingers: usize, budget: u64) -> Result<Vec<Parcel>, C
     for (family, size) in all.into_iter().zip(sizes) {
         let share = 1 + (spare * size as f64 / whole) as u64;
         let of = u64::try_from(size).map_or(share, |size| share.min(size));
-        let pieces = of.div_ceil(PARCEL);
+        let pieces = of.div_ceil(PARCEL).min(MOST_PARCELS);
         for piece in 0..pieces {
             let strata = piece * of / pieces..(piece + 1) * of / pieces;
             parcels.push(Parcel { sets: strata.end - strata.start, work: Work::Strata { family, strata, of } });
@@ -196,6 +203,9 @@ fn strata(screen: &Screen, fingers: usize, budget: u64) -> Result<Vec<Parcel>, C
     }
     Ok(parcels)
 }
+
+/// Times a draw is repeated while fingers stand too near to one another.
+pub(super) const TRIES: usize = 16;
 
 /// Draws single sets, all sites alike; one finger of each goes evenly round the outline. A set drawn twice counts twice
 /// and is listed once.
@@ -210,13 +220,20 @@ fn draw(
     let sites = screen.sites.len() as f64;
     for stratum in strata {
         let mut set = SiteSet::default();
-        set[0] = ((stratum as f64 + unit(random)) / of as f64 * sites).min(sites - 1.0) as u32;
-        let mut have = 1;
-        while have < fingers {
-            let site = (unit(random) * sites) as u32;
-            if !set[..have].contains(&site) {
-                set[have] = site;
-                have += 1;
+        // Fingers that stand too near to one another are drawn again, a few times: the budget is for sets that can be.
+        for _ in 0..TRIES {
+            set = SiteSet::default();
+            set[0] = ((stratum as f64 + unit(random)) / of as f64 * sites).min(sites - 1.0) as u32;
+            let mut have = 1;
+            while have < fingers {
+                let site = (unit(random) * sites) as u32;
+                if !set[..have].contains(&site) {
+                    set[have] = site;
+                    have += 1;
+                }
+            }
+            if screen.keeps_gaps(&set[..fingers]) {
+                break;
             }
         }
         set[..fingers].sort_unstable();

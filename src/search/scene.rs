@@ -1,6 +1,7 @@
 //! A scene: one part under one setup, with everything that stays fixed while grasps are looked at.
 
-use super::setup::Setup;
+use super::setup::{Setup, SetupFault};
+use super::sites;
 use crate::hand::{self, Stretch, Tip};
 use crate::mechanics::assess::Doubt;
 use crate::mechanics::{Assessment, Contact, Frame, Wrenches};
@@ -44,6 +45,8 @@ pub struct Grasp {
     pub spots: Vec<Spot>,
     /// Its contacts, finger after finger.
     pub contacts: Vec<Contact>,
+    /// Curvature of each finger's edge, 1/mm; 0 where it is straight, positive where the material is inside the bend.
+    pub curvatures: Vec<f64>,
     /// Distance of each finger to the end of its stretch, mm; below 0 when it stands where it may not.
     pub rooms_mm: Vec<f64>,
     /// Pairs of fingers that stand nearer to each other than the hand's gap allows.
@@ -56,6 +59,9 @@ impl Grasp {
         self.too_near.is_empty() && self.rooms_mm.iter().all(|&room| room >= 0.0)
     }
 }
+
+/// Sites a ranking takes: with more, memory would run out before patience.
+const MOST_SITES: f64 = 2e6;
 
 /// One part under one setup.
 #[derive(Debug, Clone)]
@@ -70,15 +76,31 @@ impl Scene {
     /// Works out the frame and the stretches. The setup must have no [`Setup::faults`].
     ///
     /// # Errors
-    /// A setup that asks for something not built yet.
-    pub fn new(part: Arc<Part>, setup: Setup) -> Result<Self, &'static str> {
-        if setup.hand.tip == Tip::Pad || setup.hand.closing == hand::Closing::Parallel {
-            return Err(
-                "pads and parallel closing are not built yet; set hand.tip = \"pin\" and hand.closing = \"free\"",
-            );
+    /// A setup that asks for something not built yet, or for more sites than a ranking takes.
+    pub fn new(part: Arc<Part>, setup: Setup) -> Result<Self, SetupFault> {
+        let not_yet = |key: &str, value: &str, mend: &str| SetupFault {
+            key: key.to_owned(),
+            value: value.to_owned(),
+            mend: mend.to_owned(),
+        };
+        if setup.hand.tip == Tip::Pad {
+            return Err(not_yet("hand.tip", "pad", "pads are not built yet; set it to \"pin\""));
+        }
+        if setup.hand.closing == hand::Closing::Parallel {
+            return Err(not_yet("hand.closing", "parallel", "parallel closing is not built yet; set it to \"free\""));
         }
         let frame = Frame { about: part.com(), scale_mm: setup.search.torque_scale.mm(&part) };
         let stretches = hand::stretches(&part, &setup.hand);
+        let spacing_mm = setup.search.spacing_for(&part);
+        let sites: f64 = stretches.iter().map(|stretch| sites::count_on(stretch, spacing_mm)).sum();
+        if sites > MOST_SITES {
+            let least = stretches.iter().map(Stretch::length_mm).sum::<f64>() / MOST_SITES;
+            return Err(SetupFault {
+                key: "search.spacing_mm".to_owned(),
+                value: spacing_mm.to_string(),
+                mend: format!("that makes {sites:.1e} sites, more than {MOST_SITES:.0e}; give at least {least:.1e} mm"),
+            });
+        }
         Ok(Self { part, setup, frame, stretches })
     }
 
@@ -112,6 +134,7 @@ impl Scene {
             return Err(PlaceFault::FingerCount(spots.len()));
         }
         let mut contacts = Vec::with_capacity(spots.len());
+        let mut curvatures = Vec::with_capacity(spots.len());
         let mut rooms_mm = Vec::with_capacity(spots.len());
         for spot in spots {
             let edge = self.part.outline().edge(spot.edge).ok_or(PlaceFault::NoSuchEdge(spot.edge))?;
@@ -125,6 +148,7 @@ impl Scene {
                 normal: edge.normal_at(spot.along_mm),
                 mu: self.part.mu_on(spot.edge, self.setup.friction.mu),
             });
+            curvatures.push(edge.curvature());
             let room = hand::stretch_around(&self.stretches, spot.edge, spot.along_mm)
                 .map_or(-1.0, |stretch| stretch.room_mm(spot.along_mm).max(0.0));
             rooms_mm.push(room);
@@ -137,12 +161,12 @@ impl Scene {
                 }
             }
         }
-        Ok(Grasp { spots: spots.to_vec(), contacts, rooms_mm, too_near })
+        Ok(Grasp { spots: spots.to_vec(), contacts, curvatures, rooms_mm, too_near })
     }
 
     /// Wrenches of a grasp in the scene's frame.
     pub fn wrenches(&self, grasp: &Grasp) -> Wrenches {
-        Wrenches::new(&grasp.contacts, &self.frame)
+        Wrenches::new(&grasp.contacts, &self.frame).on_curves(&grasp.curvatures)
     }
 
     /// Reads a grasp and confirms the reading by the second way.

@@ -1,21 +1,24 @@
 //! Screening: the kernel run over the candidate sets of a family, keeping what may be listed.
 //!
-//! All members of a family press in the same directions, so the force polygon is built once for the family and only the
-//! torques change from member to member. What prunes what:
+//! On straight edges all members of a family press in the same directions, so the force polygon is built once for the
+//! family and only the torques change from member to member; with a finger on an arc it is built for each. What prunes
+//! what:
 //! - forces that do not positively span the plane: no member closes, and no torque is looked at;
 //! - ties on the key (plateaus are common) are settled by closure tests at the incumbent's friction needed, one kernel
 //!   call each; the root finder runs only for a candidate that takes the lead.
 
 use super::families::Family;
+use super::family_forces::{FamilyForces, NO_LEVER, polygon_of, unit_polygon};
 use super::order::{self, Candidate, FRICTION_QUANTUM, Key, SiteSet, Top};
+use super::plan::TRIES;
 use super::rank::{Cancel, Cancelled, Listing};
 use super::scene::Scene;
 use super::sites::{Site, Sites};
 use crate::hand::FingerCount;
 use crate::mechanics::force_polygon::{ForcePolygon, PlanarScore};
+use crate::mechanics::placement::OnArcs;
 use crate::mechanics::wrench::MOST_GENERATORS;
 use crate::mechanics::{Lever, MARGINAL, friction, quality};
-use crate::part::MU_LARGEST;
 use nalgebra::Vector3;
 use std::cmp::Ordering;
 use std::collections::HashSet;
@@ -85,6 +88,8 @@ impl Tally {
     }
 }
 
+/// Quanta of a placement on arcs that nobody has asked for yet.
+const UNKNOWN: i64 = i64::MIN;
 /// Sets looked at between two questions whether to stop.
 const BETWEEN_CANCEL: u64 = 4096;
 
@@ -101,9 +106,14 @@ impl<'a> Screen<'a> {
         (a - b).norm_squared() >= self.least_apart_square
     }
 
+    /// True when all fingers of a set keep the hand's gap.
+    pub(super) fn keeps_gaps(&self, set: &[u32]) -> bool {
+        set.iter().enumerate().all(|(i, &a)| set[i + 1..].iter().all(|&b| self.apart(a, b)))
+    }
+
     /// True when the family's forces positively span the plane, so that members may close.
     pub(super) fn may_close(&self, family: &Family) -> bool {
-        FamilyForces::new(self, family).may_close()
+        FamilyForces::new(self.sites, family).may_close()
     }
 
     /// Screens every candidate set of a family whose first finger stands on one of these sites.
@@ -133,14 +143,17 @@ impl<'a> Screen<'a> {
         let mut run = Run::new(self, family, tally);
         let stride = count as f64 / of as f64;
         for stratum in strata {
-            let number = if u128::from(of) == count {
-                u128::from(stratum)
-            } else {
-                ((stratum as f64 + uniform()) * stride) as u128
-            };
-            run.set = family.nth(self.sites, number.min(count - 1));
-            if run.keeps_gaps() {
-                run.look()?;
+            for _ in 0..TRIES {
+                let number = if u128::from(of) == count {
+                    u128::from(stratum)
+                } else {
+                    ((stratum as f64 + uniform()) * stride) as u128
+                };
+                run.set = family.nth(self.sites, number.min(count - 1));
+                if self.keeps_gaps(&run.set[..run.k]) {
+                    run.look()?;
+                    break;
+                }
             }
         }
         run.finish(whole);
@@ -151,70 +164,13 @@ impl<'a> Screen<'a> {
     pub(super) fn one(&self, family: &Family, set: SiteSet, tally: &mut Tally) -> Result<(), Cancelled> {
         let mut run = Run::new(self, family, tally);
         run.set = set;
-        if run.keeps_gaps() {
+        if self.keeps_gaps(&set[..run.k]) {
             run.look()?;
         }
         run.finish(false);
         Ok(())
     }
 }
-
-/// What all members of a family have in common.
-struct FamilyForces {
-    mus: [f64; FingerCount::MOST],
-    /// The contacts' one mu, when they share it.
-    mu: Option<f64>,
-    /// Of the generators at the setup's friction when all contacts share one mu, else of the generators scaled to unit
-    /// force, which tells closure but not quality.
-    polygon: ForcePolygon,
-}
-
-/// Force polygon of generators scaled to unit force.
-fn unit_polygon(levers: &[Lever], mus: &[f64], factor: f64) -> ForcePolygon {
-    let mut forces = [[0.0; 2]; MOST_GENERATORS];
-    for ((pair, lever), mu) in forces.chunks_exact_mut(2).zip(levers).zip(mus) {
-        let mu = mu * factor;
-        let length = (1.0 + mu * mu).sqrt();
-        for (force, m) in pair.iter_mut().zip([mu, -mu]) {
-            let f = (lever.normal + lever.tangent * m) / length;
-            *force = [f.x, f.y];
-        }
-    }
-    ForcePolygon::new(&forces[..2 * levers.len()])
-}
-
-impl FamilyForces {
-    #[expect(clippy::float_cmp, reason = "equal means copied from the same setting, digit for digit")]
-    fn new(screen: &Screen, family: &Family) -> Self {
-        let k = family.stretches().len();
-        let mut levers = [NO_LEVER; FingerCount::MOST];
-        let mut mus = [0.0; FingerCount::MOST];
-        for (finger, &stretch) in family.stretches().iter().enumerate() {
-            let site = screen.sites.get(screen.sites.on(stretch as usize).start as u32);
-            (levers[finger], mus[finger]) = (site.lever, site.mu);
-        }
-        let mu = mus[..k].iter().all(|&mu| mu == mus[0]).then_some(mus[0]);
-        let polygon = match mu {
-            Some(mu) => ForcePolygon::of_levers(&levers[..k], mu),
-            None => unit_polygon(&levers[..k], &mus[..k], 1.0),
-        };
-        Self { mus, mu, polygon }
-    }
-
-    /// The quality is at most the distance to the wall; unit forces are shorter than the true ones by at most
-    /// `sqrt(1 + MU_LARGEST^2)`.
-    fn may_close(&self) -> bool {
-        let shorter = if self.mu.is_some() { 1.0 } else { MU_LARGEST.hypot(1.0) };
-        self.polygon.wall() * shorter > MARGINAL
-    }
-}
-
-const NO_LEVER: Lever = Lever {
-    normal: nalgebra::Vector2::new(0.0, 0.0),
-    tangent: nalgebra::Vector2::new(0.0, 0.0),
-    normal_torque: 0.0,
-    tangent_torque: 0.0,
-};
 
 /// The screening of one family.
 struct Run<'a, 'b> {
@@ -229,7 +185,7 @@ struct Run<'a, 'b> {
     /// The candidate set being looked at.
     set: SiteSet,
     best: Option<Candidate>,
-    lead_friction_known: bool,
+    lead_is_settled: bool,
     /// Direction in which the family's best grasp is weakest under a limit on each finger.
     weak_per_finger: Option<Vector3<f64>>,
     looked: u64,
@@ -242,12 +198,12 @@ impl<'a, 'b> Run<'a, 'b> {
             screen,
             family,
             k: family.stretches().len(),
-            forces: FamilyForces::new(screen, family),
+            forces: FamilyForces::new(screen.sites, family),
             margin_floor: None,
             at_factor: None,
             set: SiteSet::default(),
             best: None,
-            lead_friction_known: false,
+            lead_is_settled: false,
             weak_per_finger: None,
             looked: 0,
             tally,
@@ -264,24 +220,20 @@ impl<'a, 'b> Run<'a, 'b> {
             self.family.hash(&mut hasher);
             self.tally.spread.insert(hasher.finish());
         }
-        if !self.lead_friction_known {
+        if !self.lead_is_settled {
             self.set = best.sites;
             if let Some(worst) = self.tally.top.worst().copied()
                 && !self.comes_before(&mut best, &worst)
             {
                 return;
             }
-            best.friction = self.friction_quanta(&best.sites);
+            self.settle(&mut best);
         }
         self.tally.top.offer(best, self.family.group());
     }
 
     fn site(&self, finger: usize) -> &'a Site {
         self.screen.sites.get(self.set[finger])
-    }
-
-    fn keeps_gaps(&self) -> bool {
-        (0..self.k).all(|i| (i + 1..self.k).all(|j| self.screen.apart(self.set[i], self.set[j])))
     }
 
     /// Walks all sets with finger `finger` on these sites of its stretch and the later fingers anywhere after it.
@@ -317,15 +269,40 @@ impl<'a, 'b> Run<'a, 'b> {
         let Some(score) = self.closed_score() else { return Ok(()) };
         self.tally.closed += 1;
         let floors = &self.screen.scene.setup().floors;
-        let room_mm = (0..self.k).map(|finger| self.site(finger).room_mm).fold(f64::INFINITY, f64::min);
-        let placement_mm = (score.torque_up.min(score.torque_down) * self.screen.scale_mm).min(room_mm);
-        if score.signed_quality < floors.quality || placement_mm < floors.placement_mm || !self.keeps_margin_floor() {
+        let room_mm = self.room_mm();
+        let straight_mm = score.torque_up.min(score.torque_down) * self.screen.scale_mm;
+        let placement_mm = straight_mm.min(room_mm);
+        if score.signed_quality < floors.quality
+            || placement_mm < floors.placement_mm
+            || (floors.placement_mm > 0.0 && !self.keeps_placement(floors.placement_mm))
+            || !self.keeps_margin_floor()
+        {
             self.tally.below_floors += 1;
             return Ok(());
         }
-        let placement = order::quanta(placement_mm / self.screen.scale_mm);
         let room = order::quanta(room_mm / self.screen.scale_mm);
-        let Some(key) = self.key(&score, placement) else { return Ok(()) };
+        let Some(mut key) = self.key(&score, order::quanta(placement_mm / self.screen.scale_mm)) else {
+            return Ok(());
+        };
+        let mut placement = order::quanta(placement_mm / self.screen.scale_mm);
+        if self.forces.curved {
+            // So far the placement is that on straight edges, an upper bound. The guarantee on arcs costs more: it is
+            // worked out for ties, and by placement only for who passes one question at the tolerance in front.
+            placement = UNKNOWN;
+            if self.screen.key == Key::Placement {
+                let front = match self.screen.listing {
+                    Listing::Families => self.best,
+                    Listing::Members => self.tally.top.worst().copied(),
+                };
+                if let Some(front) = front
+                    && (key < front.key || !self.keeps_placement(order::below(front.key) * self.screen.scale_mm))
+                {
+                    return Ok(());
+                }
+                placement = self.placement_on_arcs(straight_mm, room_mm);
+                key = placement;
+            }
+        }
         let mut candidate = Candidate { key, friction: 0, placement, room, sites: self.set };
         match self.screen.listing {
             Listing::Families => {
@@ -336,12 +313,27 @@ impl<'a, 'b> Run<'a, 'b> {
             Listing::Members => {
                 let worst = self.tally.top.worst().copied();
                 if worst.is_none_or(|worst| self.comes_before(&mut candidate, &worst)) {
-                    candidate.friction = self.friction_quanta(&candidate.sites);
+                    self.settle(&mut candidate);
                     self.tally.top.offer(candidate, candidate.sites);
                 }
             }
         }
         Ok(())
+    }
+
+    /// Calls `ask` with the current contacts as the guarantee on arcs sees them.
+    fn on_arcs<T>(&self, ask: impl FnOnce(OnArcs) -> T) -> T {
+        ask(OnArcs {
+            levers: &self.levers()[..self.k],
+            mus: &self.forces.mus[..self.k],
+            curvatures: &self.forces.curvatures[..self.k],
+            scale_mm: self.screen.scale_mm,
+        })
+    }
+
+    /// Whether a placement below the straight one is kept on arcs too.
+    fn keeps_placement(&self, offset_mm: f64) -> bool {
+        !self.forces.curved || self.on_arcs(|on_arcs| on_arcs.spare_at(offset_mm)) > 0.0
     }
 
     /// Quanta of the key, or nothing when the current set is already known to be no better than the family's best.
@@ -355,10 +347,37 @@ impl<'a, 'b> Run<'a, 'b> {
         })
     }
 
-    /// Whether the current set becomes the family's best. A leader's friction needed is found only once someone ties
-    /// with it: while quality rises along an edge the lead changes at every step.
+    /// Quanta of the guarantee on arcs for the current set.
+    fn placement_on_arcs(&self, straight_mm: f64, room_mm: f64) -> i64 {
+        let mm = self.on_arcs(|on_arcs| on_arcs.tolerance_mm(straight_mm)).min(room_mm);
+        order::quanta(mm / self.screen.scale_mm)
+    }
+
+    /// Finds what the tie-breaks ask of a candidate and is not known yet.
+    fn settle(&mut self, candidate: &mut Candidate) {
+        candidate.friction = self.friction_quanta(&candidate.sites);
+        self.settle_placement(candidate);
+    }
+
+    fn settle_placement(&mut self, candidate: &mut Candidate) {
+        if candidate.placement == UNKNOWN {
+            let current = std::mem::replace(&mut self.set, candidate.sites);
+            let score = self.closed_score();
+            let straight_mm = score.map_or(0.0, |s| s.torque_up.min(s.torque_down)) * self.screen.scale_mm;
+            candidate.placement = self.placement_on_arcs(straight_mm, self.room_mm());
+            self.set = current;
+        }
+    }
+
+    /// Distance of the current set's fingers to the ends of their stretches, the least, mm.
+    fn room_mm(&self) -> f64 {
+        (0..self.k).map(|finger| self.site(finger).room_mm).fold(f64::INFINITY, f64::min)
+    }
+
+    /// Whether the current set becomes the family's best. What the tie-breaks ask of a leader is found only once someone
+    /// ties with it: while quality rises along an edge the lead changes at every step.
     fn takes_lead(&mut self, candidate: &mut Candidate) -> bool {
-        self.lead_friction_known &= match self.best {
+        self.lead_is_settled &= match self.best {
             None => false,
             Some(best) => best.key >= candidate.key,
         };
@@ -368,14 +387,14 @@ impl<'a, 'b> Run<'a, 'b> {
             Ordering::Greater => return false,
             Ordering::Equal => {}
         }
-        if !self.lead_friction_known {
-            best.friction = self.friction_quanta(&best.sites);
+        if !self.lead_is_settled {
+            self.settle(&mut best);
             self.best = Some(best);
-            self.lead_friction_known = true;
+            self.lead_is_settled = true;
         }
         let takes = self.comes_before(candidate, &best);
         if takes && candidate.friction != best.friction {
-            candidate.friction = self.friction_quanta(&candidate.sites);
+            self.settle(candidate);
         }
         takes
     }
@@ -390,7 +409,16 @@ impl<'a, 'b> Run<'a, 'b> {
         for (finger, pair) in torques.chunks_exact_mut(2).take(self.k).enumerate() {
             pair.copy_from_slice(&self.site(finger).torques);
         }
-        let polygon = &self.forces.polygon;
+        let own;
+        let polygon = if self.forces.curved {
+            own = polygon_of(self.forces.mu, &self.levers()[..self.k], &self.forces.mus[..self.k]);
+            if !self.forces.spans(&own) {
+                return None;
+            }
+            &own
+        } else {
+            &self.forces.polygon
+        };
         let score = match self.forces.mu {
             Some(_) => {
                 let score = polygon.score(&polygon.heights(&torques[..2 * self.k]));
@@ -435,6 +463,7 @@ impl<'a, 'b> Run<'a, 'b> {
             }
             Ordering::Greater => false,
             Ordering::Equal => {
+                self.settle_placement(candidate);
                 candidate.friction = other.friction;
                 *candidate < *other
             }
@@ -473,7 +502,7 @@ impl<'a, 'b> Run<'a, 'b> {
     fn closes_at(&mut self, factor: f64) -> bool {
         let polygon = match self.at_factor {
             #[expect(clippy::float_cmp, reason = "a cache: only the very same factor will do")]
-            Some((cached, polygon)) if cached == factor => polygon,
+            Some((cached, polygon)) if cached == factor && !self.forces.curved => polygon,
             _ => {
                 let polygon = unit_polygon(&self.levers()[..self.k], &self.forces.mus[..self.k], factor);
                 self.at_factor = Some((factor, polygon));
@@ -505,8 +534,8 @@ impl<'a, 'b> Run<'a, 'b> {
             return true;
         }
         let polygon = match self.margin_floor {
-            Some((_, polygon)) => polygon,
-            None => {
+            Some((_, polygon)) if !self.forces.curved => polygon,
+            _ => {
                 let polygon = unit_polygon(&self.levers()[..self.k], &self.forces.mus[..self.k], 1.0 / floor);
                 self.margin_floor = Some((floor, polygon));
                 polygon

@@ -174,8 +174,8 @@ impl Setup {
         if let Some(spacing) = s.spacing_mm {
             faults.above("search.spacing_mm", spacing, LONGEST_MM);
         }
-        if s.budget == 0 {
-            faults.note("search.budget", s.budget, "give at least 1".into());
+        if !(1..=LARGEST_BUDGET).contains(&s.budget) {
+            faults.note("search.budget", s.budget, format!("give a number from 1 to {LARGEST_BUDGET}"));
         }
         if let TorqueScale::Mm(mm) = s.torque_scale {
             faults.above("search.torque_scale", mm, LONGEST_MM);
@@ -209,6 +209,8 @@ impl Setup {
     }
 }
 
+/// Largest budget: half an hour's work for one core.
+const LARGEST_BUDGET: u64 = 10_000_000_000;
 /// Longest length taken for a setting, mm.
 const LONGEST_MM: f64 = 1e9;
 

@@ -17,6 +17,8 @@ pub(super) struct Site {
     pub room_mm: f64,
     /// Friction coefficient of the edge.
     pub mu: f64,
+    /// Curvature of the edge, 1/mm.
+    pub curvature: f64,
     /// Contact in the scene's frame.
     pub lever: Lever,
     /// Torque over l of the two generators at `mu`.
@@ -32,10 +34,15 @@ pub(super) struct Sites {
     starts: Vec<usize>,
 }
 
+/// Number of [`positions`] on a stretch, as a float: it may be beyond any integer.
+pub(super) fn count_on(stretch: &Stretch, spacing_mm: f64) -> f64 {
+    2.0 * (stretch.length_mm() / (2.0 * spacing_mm)).ceil() + 1.0
+}
+
 /// Positions at most `spacing` apart, both ends and the middle included.
 pub(super) fn positions(stretch: &Stretch, spacing_mm: f64) -> impl Iterator<Item = f64> {
-    let halves = (stretch.length_mm() / (2.0 * spacing_mm)).ceil().clamp(0.0, MOST_HALVES) as usize;
-    let steps = 2 * halves;
+    // A scene has no more sites than memory holds.
+    let steps = count_on(stretch, spacing_mm) as usize - 1;
     let (from, length, to) = (stretch.from_mm, stretch.length_mm(), stretch.to_mm);
     (0..=steps).map(move |i| match i {
         0 => from,
@@ -43,9 +50,6 @@ pub(super) fn positions(stretch: &Stretch, spacing_mm: f64) -> impl Iterator<Ite
         i => from + length * (i as f64 / steps as f64),
     })
 }
-
-/// Half the most steps on one stretch: a guard against a spacing far below the part.
-const MOST_HALVES: f64 = 500_000.0;
 
 impl Sites {
     pub(super) fn of(scene: &Scene) -> Self {
@@ -65,6 +69,7 @@ impl Sites {
                     along_mm,
                     room_mm: stretch.room_mm(along_mm),
                     mu,
+                    curvature: edge.curvature(),
                     lever,
                     torques: [torque(mu), torque(-mu)],
                     centre: point - normal * scene.setup().hand.pin_radius_mm,

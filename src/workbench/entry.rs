@@ -11,6 +11,9 @@ pub(super) fn insert(entry: &mut Entry, c: char) {
     if c.is_control() || entry.text.chars().count() >= LONGEST {
         return;
     }
+    if entry.suggested {
+        edit(entry, Action::Empty);
+    }
     let byte = byte_at(&entry.text, entry.at);
     entry.text.insert(byte, c);
     entry.at += 1;
@@ -40,6 +43,7 @@ pub(super) fn edit(entry: &mut Entry, action: Action) {
         Action::Last => entry.at = length,
         _ => {}
     }
+    entry.suggested = false;
     entry.fault = None;
 }
 

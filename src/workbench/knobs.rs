@@ -28,7 +28,7 @@ pub(super) fn turn(state: &mut State, change: impl FnOnce(&mut Setup)) -> Result
     if let Some(fault) = setup.faults().first() {
         return Err(fault.to_string());
     }
-    let scene = Scene::new(Arc::clone(state.order.scene.part()), setup)?;
+    let scene = Scene::new(Arc::clone(state.order.scene.part()), setup).map_err(|fault| fault.to_string())?;
     state.order.scene = Arc::new(scene);
     state.read();
     Ok(rank(state))

@@ -35,10 +35,15 @@ fn lift(state: &mut State, at: usize) {
     state.lifted = Some(gone);
 }
 
+/// The name a grasp has until it is given one: its edges.
+pub(super) fn suggested_name(spots: &[Spot]) -> String {
+    let at = |spot: &Spot| format!("{}:{}", spot.edge.ring, spot.edge.edge);
+    spots.iter().map(at).collect::<Vec<_>>().join(" ")
+}
+
 /// Marks a grasp as it reads under the present knobs.
 pub(super) fn mark(state: &mut State, reading: Reading) {
-    let at = |spot: &Spot| format!("{}:{}", spot.edge.ring, spot.edge.edge);
-    let name = reading.grasp.spots.iter().map(at).collect::<Vec<_>>().join(" ");
+    let name = suggested_name(&reading.grasp.spots);
     let setup = state.setup().clone();
     let keep = Keep { name, note: String::new(), grasp: reading.grasp, assessment: reading.assessment, setup };
     add(state, keep);

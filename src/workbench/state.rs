@@ -124,6 +124,8 @@ pub struct Entry {
     pub text: String,
     /// Cursor, in characters.
     pub at: usize,
+    /// The text is a suggestion that the first character typed replaces.
+    pub suggested: bool,
     /// Why it was not taken.
     pub fault: Option<String>,
     /// The grasp it is about.
@@ -232,8 +234,9 @@ impl State {
     ///
     /// # Errors
     /// A setup that asks for something not built yet.
-    pub fn new(options: &super::Options) -> Result<Self, &'static str> {
-        let scene = Arc::new(Scene::new(Arc::clone(&options.part), options.setup.clone())?);
+    pub fn new(options: &super::Options) -> Result<Self, String> {
+        let scene =
+            Arc::new(Scene::new(Arc::clone(&options.part), options.setup.clone()).map_err(|fault| fault.to_string())?);
         Ok(Self {
             order: Order { scene, key: Key::Quality, listing: Listing::Families },
             shown: None,

@@ -316,7 +316,8 @@ fn open_entry(state: &mut State, kind: EntryKind) {
         EntryKind::Name => state.mark_on(&spots).map(|mark| mark.keep.name.clone()).unwrap_or_default(),
         EntryKind::Note => state.mark_on(&spots).map(|mark| mark.keep.note.clone()).unwrap_or_default(),
     };
-    let fresh = Entry { kind, at: text.chars().count(), text, fault: None, spots };
+    let suggested = kind == EntryKind::Name && text == marks::suggested_name(&spots);
+    let fresh = Entry { kind, at: text.chars().count(), text, suggested, fault: None, spots };
     let entry = match state.draft.take() {
         Some(draft) if draft.kind == kind && draft.spots == fresh.spots => Entry { fault: None, ..draft },
         _ => fresh,

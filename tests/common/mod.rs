@@ -3,7 +3,7 @@
 #![allow(clippy::unwrap_used, reason = "a test stops at the first surprise")]
 
 use holdwright::mechanics::{Assessment, Contact, Frame, Wrenches};
-use holdwright::part::{Part, PartDescription};
+use holdwright::part::{ArcDescription, Part, PartDescription};
 use nalgebra::{Point2, Rotation2, Vector2};
 use rand_chacha::ChaCha8Rng;
 use rand_chacha::rand_core::{Rng, SeedableRng};
@@ -75,31 +75,68 @@ pub(crate) fn part(rings: Vec<Vec<[f64; 2]>>) -> Part {
     Part::new(PartDescription::bare("test part", rings)).unwrap()
 }
 
+/// A part from rings in mm of which some edges are arcs: ring, edge, bulge.
+pub(crate) fn part_with_arcs(rings: Vec<Vec<[f64; 2]>>, arcs: &[(usize, usize, f64)]) -> Part {
+    let mut described = PartDescription::bare("test part", rings);
+    described.arcs = arcs.iter().map(|&(ring, edge, bulge)| ArcDescription { ring, edge, bulge }).collect();
+    Part::new(described).unwrap()
+}
+
 /// Chords for each rounded corner: their sagitta is below 1e-4 of the radius.
 const CHORDS: usize = 64;
 
-/// A polygon with rounded corners: vertices with a radius each (0 leaves the corner sharp), arcs as chords.
-pub(crate) fn rounded(corners: &[([f64; 2], f64)]) -> Vec<[f64; 2]> {
+/// A corner of a polygon and the radius it is rounded with; 0 leaves it sharp.
+pub(crate) type Corner = ([f64; 2], f64);
+
+/// Where a rounded corner begins, its centre, and the angle it sweeps.
+fn fillet(corners: &[Corner], i: usize) -> (Point2<f64>, Point2<f64>, f64) {
     let n = corners.len();
+    let ([x, y], radius) = corners[i];
+    let here = Point2::new(x, y);
+    let toward = |j: usize| (Point2::from(corners[j % n].0) - here).normalize();
+    let (back, on) = (toward(i + n - 1), toward(i + 1));
+    // Tangent points lie r / tan(half the corner's angle) from the vertex, the centre r / sin(half) along the bisector.
+    let half = back.dot(&on).acos() / 2.0;
+    let centre = here + (back + on).normalize() * (radius / half.sin());
+    let from = here + back * (radius / half.tan());
+    let to = here + on * (radius / half.tan());
+    let sweep = (from - centre).perp(&(to - centre)).signum() * (std::f64::consts::PI - 2.0 * half);
+    (from, centre, sweep)
+}
+
+/// A polygon with rounded corners, the fillets as chords.
+pub(crate) fn rounded(corners: &[Corner]) -> Vec<[f64; 2]> {
     let mut ring = Vec::new();
-    for (i, &([x, y], radius)) in corners.iter().enumerate() {
-        let here = Point2::new(x, y);
-        let toward = |j: usize| (Point2::from(corners[j % n].0) - here).normalize();
-        let (back, on) = (toward(i + n - 1), toward(i + 1));
+    for (i, &(sharp, radius)) in corners.iter().enumerate() {
         if radius <= 0.0 {
-            ring.push([x, y]);
+            ring.push(sharp);
             continue;
         }
-        // Tangent points lie r / tan(half the corner's angle) from the vertex, the centre r / sin(half) along the bisector.
-        let half = back.dot(&on).acos() / 2.0;
-        let centre = here + (back + on).normalize() * (radius / half.sin());
-        let from = here + back * (radius / half.tan()) - centre;
-        let sweep =
-            from.perp(&(here + on * (radius / half.tan()) - centre)).signum() * (std::f64::consts::PI - 2.0 * half);
+        let (from, centre, sweep) = fillet(corners, i);
         for step in 0..=CHORDS {
-            let p = centre + Rotation2::new(sweep * step as f64 / CHORDS as f64) * from;
+            let p = centre + Rotation2::new(sweep * step as f64 / CHORDS as f64) * (from - centre);
             ring.push([p.x, p.y]);
         }
     }
     ring
+}
+
+/// Rings with rounded corners as one part, the fillets as arcs.
+pub(crate) fn rounded_with_arcs(rings: &[Vec<Corner>]) -> Part {
+    let (mut vertices, mut arcs) = (Vec::new(), Vec::new());
+    for (number, corners) in rings.iter().enumerate() {
+        let mut ring = Vec::new();
+        for (i, &(sharp, radius)) in corners.iter().enumerate() {
+            if radius <= 0.0 {
+                ring.push(sharp);
+                continue;
+            }
+            let (from, centre, sweep) = fillet(corners, i);
+            let to = centre + Rotation2::new(sweep) * (from - centre);
+            arcs.push((number, ring.len(), (sweep / 4.0).tan()));
+            ring.extend([[from.x, from.y], [to.x, to.y]]);
+        }
+        vertices.push(ring);
+    }
+    part_with_arcs(vertices, &arcs)
 }

@@ -31,6 +31,9 @@ pub(super) fn entry(state: &State, area: Rect, entry: &Entry, buf: &mut Buffer) 
     let mut inside = titled(state, strip, title, "", buf);
     if let Some(fault) = &entry.fault {
         put(buf, shifted(Rect { y: inside.y + 1, height: 1, ..inside }, 2), &shown(fault), state.look.bad());
+    } else if entry.suggested {
+        let how = "typing replaces it; the arrow keys keep it";
+        put(buf, shifted(Rect { y: inside.y + 1, height: 1, ..inside }, 2), how, state.look.dim());
     } else if entry.kind == EntryKind::Mu {
         let now = format!("now {}", number::mu(state.setup().friction.mu));
         put(buf, shifted(Rect { y: inside.y + 1, height: 1, ..inside }, 2), &now, state.look.dim());
@@ -43,7 +46,7 @@ pub(super) fn entry(state: &State, area: Rect, entry: &Entry, buf: &mut Buffer) 
     let skip = entry.at.saturating_sub(room);
     let visible: String = entry.text.chars().skip(skip).take(room).collect();
     let before: String = entry.text.chars().skip(skip).take(entry.at - skip).collect();
-    put(buf, line, &visible, state.look.plain());
+    put(buf, line, &visible, if entry.suggested { state.look.dim() } else { state.look.plain() });
     bars::footer(state, footer, buf);
     let cursor = Line::raw(before).width().min(usize::from(line.width.saturating_sub(1))) as u16;
     Position { x: line.x.saturating_add(cursor).min(area.right() - 1), y: line.y }

@@ -15,7 +15,7 @@ const NUMBERS: [(&str, &str); 9] = [
         "the largest load held in every direction by 1 N of total squeeze; a torque counts as tau over the reach",
     ),
     ("per finger", "the same with 1 N allowed to each finger; /finger in the list when sorted by it"),
-    ("margin", "mu over the friction needed; below 1 the grasp is not closed, \"any\" needs no friction"),
+    ("margin", "mu over the friction needed; below 1 the grasp is not closed, \"any\": any friction will do"),
     ("place", "mm every finger may be off along its edge, all at once, before closure or the stretch is lost"),
     ("weakest", "the push and turn against which this grasp gives least"),
     ("^", "no row of the list is better on one of quality, margin and place and as good on the others"),

@@ -142,7 +142,8 @@ impl Pen {
     fn box_of(&self, edges: &[Edge]) -> (i32, i32, i32, i32) {
         edges
             .iter()
-            .map(|edge| self.fit.rounded(edge.start()))
+            .flat_map(|edge| <[_; 2]>::from(edge.bounds()))
+            .map(|point| self.fit.rounded(point))
             .fold((i32::MAX, i32::MAX, i32::MIN, i32::MIN), |(left, top, right, bottom), (x, y)| {
                 (left.min(x), top.min(y), right.max(x), bottom.max(y))
             })
@@ -173,15 +174,19 @@ impl Pen {
     fn edge(&mut self, edge: &Edge, stretches: &[Stretch], kept_out: &[&KeepOut], signs: &mut Signs) {
         let braille = self.look.marker == Marker::Braille;
         let (a, b) = (self.fit.cell(edge.start()), self.fit.cell(edge.end()));
-        let (fine_x, fine_y) = if braille { (2.0, 4.0) } else { (1.0, 1.0) };
-        let steps = ((b.0 - a.0).abs() * fine_x).max((b.1 - a.1).abs() * fine_y).ceil().clamp(1.0, 65_536.0);
+        let fine = if braille { (2.0, 4.0) } else { (1.0, 1.0) };
+        let steps = self.steps(edge, fine);
         let half = edge.length_mm() / steps / 2.0;
         let line = self.look.marker == Marker::Line;
-        let ink = slope(edge.direction_at(0.0), line);
         for k in 0..=steps as u32 {
             let t = f64::from(k) / steps;
             let along = t * edge.length_mm();
-            let (column, row) = (a.0 + t * (b.0 - a.0), a.1 + t * (b.1 - a.1));
+            // A straight edge is walked in cells, so that rounding never leaves one out.
+            let (column, row) = match edge.arc() {
+                None => (a.0 + t * (b.0 - a.0), a.1 + t * (b.1 - a.1)),
+                Some(_) => self.fit.cell(edge.point_at(along)),
+            };
+            let ink = slope(edge.direction_at(along), line);
             let within = |from: f64, to: f64| along >= from - half && along <= to + half;
             let cell = (column.round() as i32, row.round() as i32);
             if kept_out.iter().any(|keep| within(keep.from_mm, keep.to_mm)) {
@@ -208,6 +213,20 @@ impl Pen {
         }
     }
 
+    /// Steps that leave no cell (or dot, where cells are finer) of an edge out.
+    fn steps(&self, edge: &Edge, fine: (f64, f64)) -> f64 {
+        // Chords of an eighth of a turn are near enough to the arc to count cells along it.
+        let ends = edge.chords(edge.length_mm() / 50.0, 64).map(|along| self.fit.cell(edge.point_at(along)));
+        let mut from = self.fit.cell(edge.start());
+        let mut steps = 0.0;
+        for to in ends {
+            steps += ((to.0 - from.0).abs() * fine.0).max((to.1 - from.1).abs() * fine.1);
+            from = to;
+        }
+        let bent = if edge.arc().is_some() { 1.3 } else { 1.0 };
+        (steps * bent).ceil().clamp(1.0, 65_536.0)
+    }
+
     /// Length of an edge in cells.
     fn cells(&self, edge: &Edge) -> f64 {
         let (a, b) = (self.fit.cell(edge.start()), self.fit.cell(edge.end()));
@@ -215,7 +234,8 @@ impl Pen {
     }
 
     fn corner(&mut self, before: &Edge, after: &Edge) {
-        if before.direction_at(0.0).dot(&after.direction_at(0.0)) > BEND {
+        let (into, out) = (before.direction_at(before.length_mm()), after.direction_at(0.0));
+        if into.dot(&out) > BEND {
             return;
         }
         // Corners of something smaller than a few cells would hide its shape.
@@ -223,11 +243,7 @@ impl Pen {
             return;
         }
         let (column, row) = self.fit.rounded(after.start());
-        let ink = if self.look.marker == Marker::Line {
-            joint(-before.direction_at(0.0), after.direction_at(0.0))
-        } else {
-            '+'
-        };
+        let ink = if self.look.marker == Marker::Line { joint(-into, out) } else { '+' };
         self.sheet.put(column, row, ink, Depth::Edge, self.look.plain());
     }
 

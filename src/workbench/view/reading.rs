@@ -157,6 +157,10 @@ impl Page<'_> {
         let a = &reading.assessment;
         let mu = number::mu(self.state.setup().friction.mu);
         match a.friction_needed {
+            None if a.friction_margin.is_some_and(|margin| margin > 0.0) => {
+                let margin = number::margin(a.friction_margin);
+                self.tell("friction", &format!("margin {margin}"), look.title(), "by the edges' own friction; mu is 0");
+            }
             None => self.tell("friction", "no mu", look.bad(), "closes this grasp"),
             Some(needed) => {
                 let none = needed < 5e-5;
