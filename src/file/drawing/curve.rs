@@ -95,21 +95,25 @@ impl Ellipse {
         self.centre + self.u * cos + self.v * sin
     }
 
-    /// The arc in pieces of half a turn at most; a whole ellipse in quarters.
+    /// The arc in pieces of half a turn at most, a quarter where it is no circle's.
     pub(super) fn pieces(&self) -> Vec<Self> {
-        let turns = ((self.to - self.from) / PI).abs();
-        let count = if self.is_whole() { 4 } else { (turns.ceil() as usize).clamp(1, 4) };
+        let most = if self.is_circular() { PI } else { FRAC_PI_2 };
+        // A whole turn may be more than its double by a rounding.
+        let count = (((self.to - self.from) / most).abs() * (1.0 - 1e-12)).ceil().clamp(1.0, 8.0) as usize;
         let at = |i: usize| {
             if i == count { self.to } else { self.from + (self.to - self.from) * (i as f64 / count as f64) }
         };
         (0..count).map(|i| Self { from: at(i), to: at(i + 1), ..*self }).collect()
     }
 
+    fn is_circular(&self) -> bool {
+        let (u, v) = (self.u.hypot(), self.v.hypot());
+        (u - v).abs() <= CIRCULAR * u && self.u.dot(self.v).abs() <= CIRCULAR * u * u
+    }
+
     /// Bulge of a circular arc; nothing for a true ellipse.
     pub(super) fn bulge(&self) -> Option<f64> {
-        let (u, v) = (self.u.hypot(), self.v.hypot());
-        let circular = (u - v).abs() <= CIRCULAR * u && self.u.dot(self.v).abs() <= CIRCULAR * u * u;
-        circular.then(|| ((self.to - self.from) * self.u.cross(self.v).signum() / 4.0).tan())
+        self.is_circular().then(|| ((self.to - self.from) * self.u.cross(self.v).signum() / 4.0).tan())
     }
 }
 

@@ -146,11 +146,9 @@ impl Loop {
 const MOST_CHORDS: f64 = 4096.0;
 
 impl Loop {
-    /// The loop with arcs as chords no farther from them than the sagitta. Returns, for each edge that is left, the edge
-    /// it belonged to.
-    pub(super) fn flatten(&mut self, sagitta: f64) -> Vec<usize> {
+    /// The loop with arcs as chords no farther from them than the sagitta.
+    pub(super) fn flatten(&mut self, sagitta: f64) {
         let mut flat = Self::nothing();
-        let mut from = Vec::new();
         for edge in 0..self.vertices.len() {
             let (start, end, bulge) = self.edge(edge);
             let chords = chords((start, end, bulge), sagitta);
@@ -158,25 +156,9 @@ impl Loop {
                 flat.vertices.push(point_on((start, end, bulge), i as f64 / chords as f64));
                 flat.bulges.push(0.0);
                 flat.sources.push(self.sources[edge]);
-                from.push(edge);
             }
         }
         *self = flat;
-        from
-    }
-
-    /// The loop with arcs halved until it has three edges: two vertices with an arc each way are no ring of a part file.
-    pub(super) fn with_three_edges(mut self) -> Self {
-        while self.vertices.len() < 3 {
-            let Some(edge) = (0..self.vertices.len()).find(|&edge| self.bulges[edge] != 0.0) else { return self };
-            let (start, end, bulge) = self.edge(edge);
-            let half = (bulge.atan() / 2.0).tan();
-            self.vertices.insert(edge + 1, point_on((start, end, bulge), 0.5));
-            self.bulges[edge] = half;
-            self.bulges.insert(edge + 1, half);
-            self.sources.insert(edge + 1, self.sources[edge]);
-        }
-        self
     }
 
     /// A loop of nothing.

@@ -3,11 +3,12 @@
 use super::chain::Loop;
 use super::fault::{Fault, fault, short};
 use super::measure::Measure;
+use super::nest::Region;
 use super::report::{CleanedReport, Report, RingReport, brief};
 use super::survey::Survey;
 use super::{Imported, Options, Refusal, refused};
 use crate::file::writing::{number, quoted};
-use crate::part::{Part, PartDescription, PartFault, Touch};
+use crate::part::{ArcDescription, EdgeId, Part, PartDescription, PartFault, PartFaults, Touch};
 use kurbo::Point;
 use std::fmt::Write;
 use std::path::Path;
@@ -25,6 +26,8 @@ pub(super) fn finish(path: &Path, survey: Survey, options: &Options) -> Result<I
     };
     report.picked = Some(number);
     let region = &regions[number - 1];
+    apart_from_others(region, &loops, &measures, unit.mm, &|source| sheet.source_words(source))
+        .map_err(|faults| refused(path, faults))?;
     let area_before: f64 = report.parts[number - 1].area_mm2;
     let mut rings: Vec<Loop> = std::iter::once(&region.outer)
         .chain(&region.holes)
@@ -63,11 +66,10 @@ pub(super) fn finish(path: &Path, survey: Survey, options: &Options) -> Result<I
             first: sheet.source_words(ring.sources[0]),
         })
         .collect();
-    let _ = measures;
     let name = path.file_stem().map_or(String::new(), |stem| short(&stem.to_string_lossy()));
-    let part = checked(&name, unit.mm, &rings, sagitta).map_err(|faults| {
-        let place = |ring: usize, edge: usize| place_words(&rings, ring, edge, &|source| sheet.source_words(source));
-        let mut faults: Vec<Fault> = faults.iter().map(|fault| worded(fault, &place)).collect();
+    let part = checked(&name, unit.mm, &rings).map_err(|faults| {
+        let place = |at: EdgeId| place_words(&rings, at, &|source| sheet.source_words(source));
+        let mut faults: Vec<Fault> = faults.0.iter().map(|fault| worded(fault, &place)).collect();
         if cleaning {
             faults.push(fault("the part was cleaned before it was checked; clean less, or not at all"));
         }
@@ -77,64 +79,89 @@ pub(super) fn finish(path: &Path, survey: Survey, options: &Options) -> Result<I
     Ok(Imported { text, part, report })
 }
 
+/// No loop of another part crosses or touches this one. Loops of one part are checked when it is made.
+fn apart_from_others(
+    region: &Region,
+    loops: &[Loop],
+    measures: &[Measure],
+    unit_mm: f64,
+    source: &dyn Fn(usize) -> String,
+) -> Result<(), Vec<Fault>> {
+    let own: Vec<usize> = std::iter::once(region.outer).chain(region.holes.iter().copied()).collect();
+    let bounds = measures[region.outer].bounds;
+    let mut is_own = vec![false; loops.len()];
+    own.iter().for_each(|&number| is_own[number] = true);
+    let beside = |number: &usize| !is_own[*number] && measures[*number].bounds.overlaps(bounds);
+    let others: Vec<usize> = (0..loops.len()).filter(beside).collect();
+    if others.is_empty() {
+        return Ok(());
+    }
+    // Whether loops meet is asked before whether they are nested, which these are not.
+    let together: Vec<Loop> = own.iter().chain(&others).map(|&number| loops[number].clone()).collect();
+    let Err(faults) = checked("", unit_mm, &together) else { return Ok(()) };
+    let strange = |fault: &&PartFault| match fault {
+        PartFault::Meet { a, b, .. } => (a.ring < own.len()) != (b.ring < own.len()),
+        // What is not listed may be among these.
+        PartFault::TooManyVertices { .. } | PartFault::AndMore => true,
+        _ => false,
+    };
+    let place = |at: EdgeId| place_words(&together, at, source);
+    let mut found: Vec<Fault> = faults.0.iter().filter(strange).map(|fault| worded(fault, &place)).collect();
+    if found.is_empty() {
+        return Ok(());
+    }
+    found.push(fault("lines of another part are in the way; leave them out with --layer, or mend them"));
+    Err(found)
+}
+
 /// The part these rings make.
-fn checked(name: &str, unit_mm: f64, rings: &[Loop], sagitta: f64) -> Result<Part, Vec<PlacedFault>> {
-    let mut flat = rings.to_vec();
-    // Which edge each chord belongs to.
-    let edges: Vec<Vec<usize>> = flat.iter_mut().map(|ring| ring.flatten(sagitta)).collect();
-    let rings = flat.iter().map(|ring| ring.vertices.iter().map(|p| [p.x + 0.0, p.y + 0.0]).collect()).collect();
-    let mut description = PartDescription::bare(name, rings);
+fn checked(name: &str, unit_mm: f64, rings: &[Loop]) -> Result<Part, PartFaults> {
+    let vertices = |ring: &Loop| ring.vertices.iter().map(|p| [p.x + 0.0, p.y + 0.0]).collect();
+    let mut description = PartDescription::bare(name, rings.iter().map(vertices).collect());
     description.unit_mm = unit_mm;
-    Part::new(description).map_err(|faults| faults.0.into_iter().map(|fault| PlacedFault::of(fault, &edges)).collect())
+    for (ring, shape) in rings.iter().enumerate() {
+        let arcs = shape.bulges.iter().enumerate().filter(|(_, bulge)| **bulge != 0.0);
+        description.arcs.extend(arcs.map(|(edge, &bulge)| ArcDescription { ring, edge, bulge }));
+    }
+    Part::new(description)
 }
 
-/// A fault with edges numbered as in the rings.
-struct PlacedFault {
-    fault: PartFault,
-    first: Option<(usize, usize)>,
-    second: Option<(usize, usize)>,
-}
-
-impl PlacedFault {
-    fn of(fault: PartFault, edges: &[Vec<usize>]) -> Self {
-        let edge = |ring: usize, edge: usize| Some((ring, *edges.get(ring)?.get(edge)?));
-        let (first, second) = match &fault {
-            PartFault::NotFinite { ring, vertex }
-            | PartFault::TooFar { ring, vertex, .. }
-            | PartFault::RepeatedVertex { ring, vertex, .. }
-            | PartFault::Spike { ring, vertex } => (edge(*ring, *vertex), None),
-            PartFault::Meet { a, b, .. } => (edge(a.ring, a.edge), edge(b.ring, b.edge)),
-            PartFault::TooFewVertices { ring, .. }
-            | PartFault::NoArea { ring, .. }
-            | PartFault::HoleOutside { ring }
-            | PartFault::HoleInHole { ring, .. } => (edge(*ring, 0), None),
-            _ => (None, None),
-        };
-        Self { fault, first, second }
+/// The edges a fault is about.
+fn edges_of(fault: &PartFault) -> [Option<EdgeId>; 2] {
+    let edge = |ring: usize, edge: usize| Some(EdgeId { ring, edge });
+    match fault {
+        PartFault::NotFinite { ring, vertex }
+        | PartFault::TooFar { ring, vertex, .. }
+        | PartFault::RepeatedVertex { ring, vertex, .. }
+        | PartFault::Spike { ring, vertex } => [edge(*ring, *vertex), None],
+        PartFault::Meet { a, b, .. } => [Some(*a), Some(*b)],
+        PartFault::TooFewVertices { ring, .. }
+        | PartFault::NoArea { ring, .. }
+        | PartFault::HoleOutside { ring }
+        | PartFault::HoleInHole { ring, .. } => [edge(*ring, 0), None],
+        _ => [None, None],
     }
 }
 
-fn place_words(rings: &[Loop], ring: usize, edge: usize, source: &dyn Fn(usize) -> String) -> String {
-    let Some(shape) = rings.get(ring) else { return String::new() };
-    let edge = edge.min(shape.vertices.len() - 1);
+fn place_words(rings: &[Loop], at: EdgeId, source: &dyn Fn(usize) -> String) -> String {
+    let Some(shape) = rings.get(at.ring) else { return String::new() };
+    let edge = at.edge.min(shape.vertices.len() - 1);
     let at = shape.vertices[edge];
     format!("({}, {}), {}", brief(at.x), brief(at.y), source(shape.sources[edge]))
 }
 
 /// A fault of the part in words about the drawing.
-fn worded(placed: &PlacedFault, place: &dyn Fn(usize, usize) -> String) -> Fault {
-    let at = |edge: Option<(usize, usize)>| edge.map_or("somewhere".to_owned(), |(ring, edge)| place(ring, edge));
-    let first = at(placed.first);
-    fault(match &placed.fault {
+fn worded(part_fault: &PartFault, place: &dyn Fn(EdgeId) -> String) -> Fault {
+    let [first, second] = edges_of(part_fault).map(|edge| edge.map_or("somewhere".to_owned(), place));
+    fault(match part_fault {
         PartFault::RepeatedVertex { .. } => format!("at {first}: two points coincide; remove one of them"),
         PartFault::Spike { .. } => format!("at {first}: the outline turns straight back on itself; remove the spike"),
         PartFault::Meet { how, .. } => format!(
-            "the edge from {first} {} the edge from {}; move one of them apart",
+            "the edge from {first} {} the edge from {second}; move one of them apart",
             match how {
                 Touch::Cross => "crosses",
                 Touch::Touch => "touches",
-            },
-            at(placed.second)
+            }
         ),
         PartFault::NoArea { .. } => format!("the loop at {first} encloses almost no area; remove it"),
         PartFault::TooFar { .. } => {

@@ -13,6 +13,8 @@ use std::collections::{BTreeMap, HashMap};
 pub(super) const MOST_PIECES: usize = 1_000_000;
 /// Coordinates beyond this are refused before anything is computed from them.
 const FARTHEST: f64 = 1e12;
+/// Bulges below this are straight for a part too.
+const STRAIGHT: f64 = 1e-7;
 
 /// A piece of a path, from where the one before ended.
 #[derive(Debug, Clone, PartialEq)]
@@ -199,7 +201,8 @@ impl Sheet {
                 continue;
             }
             let path = &self.paths[placed.path];
-            let strand = traced(path, root * placed.place, sagitta, source);
+            let mut strand = traced(path, root * placed.place, sagitta, source);
+            strand.bulges.iter_mut().filter(|bulge| bulge.abs() < STRAIGHT).for_each(|bulge| *bulge = 0.0);
             let sound = |p: &Point| p.x.abs() <= FARTHEST && p.y.abs() <= FARTHEST;
             if !(strand.vertices.iter().all(sound) && strand.bulges.iter().all(|bulge| bulge.is_finite())) {
                 return Err(fault(format!(

@@ -86,7 +86,6 @@ pub(super) fn survey(
     let pieces = strands.iter().map(|strand| strand.bulges.len()).sum();
     let chained = chain::chain(strands, join, options.skip_open, &mut |done, all| tell("joining", done, all));
     let Chained { loops, open, forks, without_length, duplicates, joints, largest_gap } = chained;
-    let loops: Vec<Loop> = loops.into_iter().map(Loop::with_three_edges).collect();
     let measures: Vec<Measure> = loops.iter().map(Measure::of).collect();
     let regions = nest::regions(&loops, &measures, &mut |done, all| tell("nesting", done, all));
 

@@ -18,11 +18,9 @@ impl Loop {
             let straight = b == 0.0 && c == 0.0;
             straight.then(|| (q - p).cross(r - q).atan2((q - p).dot(r - q)))
         };
-        // The vertex to begin with stays, so the first run does not reach back over it.
-        let Some(first) = (0..n).find(|&at| turn_at((at + n - 1) % n, at).is_none_or(|turn| turn.abs() >= angle))
-        else {
-            return 0;
-        };
+        // The vertex to begin with stays, so that the last run does not reach over it: a sharp one where there is one.
+        let sharp = |at: &usize| turn_at((at + n - 1) % n, *at).is_none_or(|turn| turn.abs() >= angle);
+        let first = (0..n).find(sharp).unwrap_or(0);
         let mut out = vec![false; n];
         let mut left = n;
         let mut turned = 0.0_f64;
