@@ -482,3 +482,28 @@ fn chords_on_request() {
     // n chords have a sagitta of r (1 - cos(pi / n)): 71 for this one, and an even number of them.
     assert_eq!(imported.report.rings[0].edges, 72);
 }
+
+/// Rings in rings, every one on the chords of the others' halves: depth by depth material and hole, areas of discs.
+#[test]
+fn rings_about_one_centre() {
+    let circle = |x: f64, y: f64, r: f64| format!("0\nCIRCLE\n8\n0\n10\n{x}\n20\n{y}\n40\n{r}\n");
+    // Circles to the left, right, above and below lie on the lines through the vertices of the large one.
+    for (x, y) in [(0.0, 0.0), (3.0, 0.0), (-3.0, 0.0), (0.0, 3.0), (0.0, -3.0), (2.0, 2.0)] {
+        let body = circle(0.0, 0.0, 9.0) + &circle(x, y, 4.0);
+        let imported = from_text("r.dxf", &with_entities(&body), &mm()).unwrap();
+        assert_close(imported.part.outline().region().area_mm2, PI * (81.0 - 16.0), 1e-13, 0.0);
+    }
+    for (x, y) in [(14.0, 0.0), (-14.0, 0.0), (0.0, 14.0), (0.0, -14.0)] {
+        let body = circle(0.0, 0.0, 9.0) + &circle(x, y, 4.0);
+        let refusal = from_text("r.dxf", &with_entities(&body), &mm()).unwrap_err();
+        assert!(matches!(refusal, Refusal::NeedsPick(report) if report.parts.iter().all(|part| part.holes == 0)));
+    }
+    let body: String = (1..=6).map(|r| circle(1.0, -2.0, f64::from(r))).collect();
+    let refusal = from_text("r.dxf", &with_entities(&body), &mm()).unwrap_err();
+    let Refusal::NeedsPick(report) = refusal else { panic!("{refusal}") };
+    let areas: Vec<f64> = report.parts.iter().map(|part| part.area_mm2 / PI).collect();
+    for (area, squares) in areas.iter().zip([36.0 - 25.0, 16.0 - 9.0, 4.0 - 1.0]) {
+        assert_close(*area, squares, 1e-12, 0.0);
+    }
+    assert_eq!(areas.len(), 3);
+}

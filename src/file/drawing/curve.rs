@@ -1,7 +1,7 @@
 //! Curves of drawings: elliptical arcs and rational Bezier pieces, the latter cut out of splines.
 
 use kurbo::{Affine, Point, Vec2};
-use std::f64::consts::{FRAC_PI_2, PI, TAU};
+use std::f64::consts::{FRAC_PI_2, FRAC_PI_4, PI, TAU};
 
 /// Highest degree of a spline.
 pub(super) const HIGHEST_DEGREE: usize = 25;
@@ -113,7 +113,10 @@ impl Ellipse {
 
     /// Bulge of a circular arc; nothing for a true ellipse.
     pub(super) fn bulge(&self) -> Option<f64> {
-        self.is_circular().then(|| ((self.to - self.from) * self.u.cross(self.v).signum() / 4.0).tan())
+        let quarter = (self.to - self.from) * self.u.cross(self.v).signum() / 4.0;
+        // Half a turn is 1 to the last digit, which keeps the centre on the chord.
+        let is_half = (quarter.abs() - FRAC_PI_4).abs() <= 2.0 * f64::EPSILON;
+        self.is_circular().then(|| if is_half { quarter.signum() } else { quarter.tan() })
     }
 }
 

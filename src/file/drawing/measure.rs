@@ -93,27 +93,33 @@ impl Measure {
     }
 }
 
-/// True when a point is within the region between an arc and its chord.
+/// Exact side of a point from the line through two others: above 0 on the left.
+fn side(from: Point, to: Point, point: Point) -> f64 {
+    let coord = |p: Point| Coord { x: p.x, y: p.y };
+    orient2d(coord(from), coord(to), coord(point))
+}
+
+/// True when a point is within the region between an arc and its chord. A point on the chord counts as moved from it a
+/// little to +x, and by much less to +y, as it does in the crossing count of [`Loop::contains`].
 fn in_cap(edge: (Point, Point, f64), point: Point) -> bool {
     let (from, to, bulge) = edge;
-    let turn = (to - from).cross(point - from);
-    if !(turn * bulge < 0.0) {
-        return false;
+    let mut turn = side(from, to, point);
+    if turn == 0.0 {
+        turn = if from.y == to.y { to.x - from.x } else { from.y - to.y };
     }
     let Round { centre, radius } = round(edge);
-    (point - centre).hypot() < radius
+    (turn < 0.0) == (bulge > 0.0) && (point - centre).hypot() < radius
 }
 
 impl Loop {
     /// True when a point is inside, by the parity of crossings of the chords with a ray to +x, each arc turning the
     /// answer over for what lies between it and its chord. The point is taken not to be on the loop.
     pub(super) fn contains(&self, point: Point) -> bool {
-        let coord = |p: Point| Coord { x: p.x, y: p.y };
         let mut inside = false;
         for edge in 0..self.vertices.len() {
             let (from, to, bulge) = self.edge(edge);
             let (low, high) = if from.y <= to.y { (from, to) } else { (to, from) };
-            if low.y <= point.y && point.y < high.y && orient2d(coord(low), coord(high), coord(point)) > 0.0 {
+            if low.y <= point.y && point.y < high.y && side(low, high, point) > 0.0 {
                 inside = !inside;
             }
             if bulge != 0.0 && in_cap((from, to, bulge), point) {
