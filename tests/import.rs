@@ -9,6 +9,7 @@ use holdwright::file::drawing::{self, Imported, Options, Refusal, unit_named};
 use holdwright::file::{part_digest, part_from_text};
 use std::f64::consts::{PI, TAU};
 use std::path::{Path, PathBuf};
+use std::process::{Command, Output, Stdio};
 
 fn reference(name: &str) -> PathBuf {
     Path::new(env!("CARGO_MANIFEST_DIR")).join("tests/reference/drawings").join(name)
@@ -506,4 +507,87 @@ fn rings_about_one_centre() {
         assert_close(*area, squares, 1e-12, 0.0);
     }
     assert_eq!(areas.len(), 3);
+}
+
+fn command(folder: &Path, args: &[&str]) -> Output {
+    let mut command = Command::new(env!("CARGO_BIN_EXE_holdwright"));
+    command.args(args).current_dir(folder).stdin(Stdio::null()).env_remove("RUST_BACKTRACE");
+    command.output().unwrap()
+}
+
+/// The command as a shell sees it: the part on standard output or in a file, the report beside it, exit codes.
+#[test]
+fn the_command() {
+    let folder = tempfile::tempdir().unwrap();
+    let drawing = folder.path().join("plate.dxf");
+    let text = "0\nSECTION\n2\nHEADER\n9\n$INSUNITS\n70\n5\n0\nENDSEC\n".to_owned()
+        + &entities(&[(0, "CIRCLE"), (8, "HULL"), (10, "0"), (20, "0"), (40, "5"), (0, "TEXT"), (1, "x")]);
+    std::fs::write(&drawing, text).unwrap();
+    let run = |args: &[&str]| command(folder.path(), args);
+    let out = |output: &Output| String::from_utf8(output.stdout.clone()).unwrap();
+    let err = |output: &Output| String::from_utf8(output.stderr.clone()).unwrap();
+
+    let plain = run(&["import", "plate.dxf"]);
+    assert_eq!(plain.status.code(), Some(0), "{}", err(&plain));
+    assert!(
+        err(&plain).contains("units: cm ($INSUNITS)") && err(&plain).contains("skipped: 1 TEXT"),
+        "{}",
+        err(&plain)
+    );
+    let (part, _) = part_from_text(Path::new("plate.toml"), &out(&plain)).unwrap();
+    assert_close(part.outline().region().area_mm2, 2500.0 * PI, 1e-12, 0.0);
+    assert_eq!(part.name(), "plate");
+
+    // A file: never over another without being told.
+    let saved = run(&["import", "plate.dxf", "-o", "plate.toml"]);
+    assert_eq!((saved.status.code(), out(&saved).as_str()), (Some(0), ""));
+    let first = std::fs::read_to_string(folder.path().join("plate.toml")).unwrap();
+    assert_eq!(first, out(&plain));
+    let again = run(&["import", "plate.dxf", "-o", "plate.toml", "--chords"]);
+    assert_eq!(again.status.code(), Some(2));
+    assert!(err(&again).contains("is there already"), "{}", err(&again));
+    assert_eq!(std::fs::read_to_string(folder.path().join("plate.toml")).unwrap(), first);
+    let forced = run(&["import", "plate.dxf", "-o", "plate.toml", "--chords", "--force"]);
+    assert_eq!(forced.status.code(), Some(0), "{}", err(&forced));
+    assert!(!std::fs::read_to_string(folder.path().join("plate.toml")).unwrap().contains("[[arc]]"));
+    let ranked = run(&["rank", "plate.toml", "--top", "1", "--json"]);
+    assert_eq!(ranked.status.code(), Some(0), "{}", err(&ranked));
+
+    let json = run(&["import", "plate.dxf", "--json", "-o", "other.toml"]);
+    assert_eq!((json.status.code(), err(&json).as_str()), (Some(0), ""));
+    let report: serde_json::Value = serde_json::from_slice(&json.stdout).unwrap();
+    assert_eq!(report["units"]["drawing"], "cm");
+    assert_eq!(report["rings"][0]["arcs"], 2);
+    assert_eq!(report["skipped"][0]["kind"], "TEXT");
+    assert!(folder.path().join("other.toml").exists());
+
+    let listed = run(&["import", "plate.dxf", "--list"]);
+    assert_eq!(listed.status.code(), Some(0));
+    assert!(out(&listed).contains("layer \"HULL\": 1 entities, read"), "{}", out(&listed));
+
+    for (args, word) in [
+        (&["import", "gone.dxf"][..], "there is no such file"),
+        (&["import", "."], "is a folder"),
+        (&["import", "plate.dxf", "--units", "parsec"], "none of mm"),
+        (&["import", "plate.dxf", "--join", "-1"], "above 0"),
+        (&["import", "plate.dxf", "--layer", "keel"], "no layer"),
+        (&["import", "plate.dxf", "--pick", "2"], "there is no part 2"),
+        (&["import", "plate.dxf", "-o", "no/such/plate.toml"], "plate.toml"),
+    ] {
+        let output = run(args);
+        assert_eq!((output.status.code(), out(&output).as_str()), (Some(2), ""), "{args:?}");
+        assert!(err(&output).contains(word), "{args:?}: {}", err(&output));
+    }
+}
+
+/// A listing needs no unit, and says what stands against a part.
+#[test]
+fn a_listing_of_what_cannot_be_taken() {
+    let folder = tempfile::tempdir().unwrap();
+    std::fs::write(folder.path().join("open.dxf"), with_entities(&line(0.0, 0.0, 5.0, 0.0))).unwrap();
+    let output = command(folder.path(), &["import", "open.dxf", "--list"]);
+    assert_eq!(output.status.code(), Some(0));
+    let (out, err) = (String::from_utf8(output.stdout).unwrap(), String::from_utf8(output.stderr).unwrap());
+    assert!(out.contains("units: not stated") && out.contains("open: from (0, 0) to (5, 0)"), "{out}");
+    assert!(err.contains("do not close"), "{err}");
 }

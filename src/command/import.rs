@@ -31,10 +31,10 @@ pub(super) struct ImportArgs {
     #[arg(long, value_name = "NUMBER")]
     pick: Option<usize>,
     /// Ends this close are joined, mm [default: 1e-5 of the larger side of what is read]
-    #[arg(long, value_name = "MM", value_parser = length)]
+    #[arg(long, value_name = "MM", value_parser = length, allow_negative_numbers = true)]
     join: Option<f64>,
     /// Largest distance between a curve and its arcs, mm [default: 0.01, or 1e-4 of the larger side where that is less]
-    #[arg(long, value_name = "MM", value_parser = length)]
+    #[arg(long, value_name = "MM", value_parser = length, allow_negative_numbers = true)]
     sagitta: Option<f64>,
     /// Do without lines that do not close, or without geometry that cannot be read
     #[arg(long, value_enum, value_name = "WHAT")]
@@ -43,10 +43,10 @@ pub(super) struct ImportArgs {
     #[arg(long)]
     chords: bool,
     /// Take out vertices between straight edges that turn by less than this, degrees
-    #[arg(long, value_name = "ANGLE", value_parser = angle)]
+    #[arg(long, value_name = "ANGLE", value_parser = angle, allow_negative_numbers = true)]
     merge_collinear: Option<f64>,
     /// Drop edges shorter than this, mm
-    #[arg(long, value_name = "MM", value_parser = length)]
+    #[arg(long, value_name = "MM", value_parser = length, allow_negative_numbers = true)]
     drop_shorter: Option<f64>,
     /// Print the report as JSON on standard output; the part is written only with --output
     #[arg(long)]

@@ -107,6 +107,7 @@ pub(super) fn size<'a>(points: impl Iterator<Item = &'a Point>) -> f64 {
 /// away, so that the loop is whole without them; they are among the open ones all the same.
 pub(super) fn chain(strands: Vec<Strand>, join: f64, prune: bool, tell: &mut dyn FnMut(u64, u64)) -> Chained {
     let mut chained = Chained::default();
+    tell(0, strands.len() as u64);
     let size = size(strands.iter().flat_map(|strand| &strand.vertices));
     let same = SAME * size;
     let mut open = Vec::new();
