@@ -1,6 +1,7 @@
 //! Drawings nobody would make on purpose: a clear refusal or the right part, in time, without a panic, nothing of the file
 //! printed raw.
 #![allow(clippy::unwrap_used, clippy::expect_used, reason = "a test that cannot go on has failed")]
+#![allow(clippy::float_cmp, reason = "what is exact must come out digit for digit")]
 
 use holdwright::file::drawing::{self, Imported, Options, Refusal, unit_named};
 use proptest::prelude::*;

@@ -1,6 +1,7 @@
 //! Drawings in: areas and holes against those of independent libraries and of published tables, units, layers, joining,
 //! nesting, cleaning, and the command.
 #![allow(clippy::unwrap_used, clippy::expect_used, reason = "a test that cannot go on has failed")]
+#![allow(clippy::float_cmp, reason = "what is exact must come out digit for digit")]
 
 mod common;
 

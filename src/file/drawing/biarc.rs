@@ -153,3 +153,100 @@ impl Arc {
         off.max(x.abs() - c / 2.0)
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use super::super::curve::Bezier;
+    use super::*;
+    use proptest::prelude::*;
+
+    fn traced(curve: &Bezier, sagitta: f64) -> Vec<Arc> {
+        let mut strand = Strand::at(curve.at(0.0), 0);
+        trace(curve, sagitta, &mut strand, 1_000_000);
+        (0..strand.bulges.len())
+            .map(|edge| {
+                let (from, to, bulge) = strand.edge(edge);
+                Arc { from, to, bulge }
+            })
+            .collect()
+    }
+
+    /// Directions of an arc at its ends: half the sweep either way from the chord.
+    fn directions(arc: &Arc) -> (Vec2, Vec2) {
+        let half = 2.0 * arc.bulge.atan();
+        let turned = |v: Vec2, by: f64| Vec2::new(v.x * by.cos() - v.y * by.sin(), v.x * by.sin() + v.y * by.cos());
+        let chord = (arc.to - arc.from).normalize();
+        (turned(chord, -half), turned(chord, half))
+    }
+
+    /// Distance from the nearest arc, by its centre and radius; from a chord where it is straight.
+    fn distance(arcs: &[Arc], point: Point) -> f64 {
+        let one = |arc: &Arc| {
+            let ends = (point - arc.from).hypot().min((point - arc.to).hypot());
+            let chord = arc.to - arc.from;
+            let along = (point - arc.from).dot(chord) / chord.hypot2();
+            if !(0.0..=1.0).contains(&along) {
+                return ends;
+            }
+            if arc.bulge.abs() < 1e-7 {
+                return (chord.cross(point - arc.from) / chord.hypot()).abs();
+            }
+            let centre = arc.from + chord * 0.5 + Vec2::new(-chord.y, chord.x) * ((1.0 / arc.bulge - arc.bulge) / 4.0);
+            ((point - centre).hypot() - (arc.from - centre).hypot()).abs()
+        };
+        arcs.iter().map(one).fold(f64::INFINITY, f64::min)
+    }
+
+    proptest! {
+        #![proptest_config(ProptestConfig::with_cases(300))]
+        /// By definition of the sagitta: every point of the curve is within it of the arcs. Twelve samples to a pair of
+        /// arcs may miss the largest distance by a little.
+        #[test]
+        fn arcs_are_within_the_sagitta(
+            points in prop::collection::vec((-100.0..100.0f64, -100.0..100.0f64), 4),
+            sagitta in prop::sample::select(vec![0.3, 0.01, 1e-4]),
+        ) {
+            let points: Vec<Point> = points.iter().map(|&(x, y)| Point::new(x, y)).collect();
+            let curve = Bezier::plain(&points);
+            let arcs = traced(&curve, sagitta);
+            prop_assert!(arcs.len() < 4000, "{}", arcs.len());
+            for i in 0..=700 {
+                let off = distance(&arcs, curve.at(f64::from(i) / 700.0));
+                prop_assert!(off <= 1.05 * sagitta, "{off} at {i} with {} arcs", arcs.len());
+            }
+        }
+
+        /// Neighbouring arcs share their tangent (Bolton 1975), so that the normal does not jump where the curve is
+        /// smooth. Control points in the corners of a quarter ring keep the curve free of cusps.
+        #[test]
+        fn neighbours_share_their_tangent(
+            a in 20.0..60.0f64, b in 20.0..60.0f64, r in 50.0..90.0f64,
+        ) {
+            let curve = Bezier::plain(&[(r, 0.0), (r, a), (b, r), (0.0, r)].map(|(x, y)| Point::new(x, y)));
+            let arcs = traced(&curve, 1e-3);
+            for pair in arcs.windows(2) {
+                let (end, start) = (directions(&pair[0]).1, directions(&pair[1]).0);
+                prop_assert!(angle(end, start).abs() < 1e-6, "{}", angle(end, start));
+            }
+            let last = arcs.len() - 1;
+            prop_assert!(angle(directions(&arcs[0]).0, curve.speed(0.0)).abs() < 1e-9);
+            prop_assert!(angle(directions(&arcs[last]).1, curve.speed(1.0)).abs() < 1e-9);
+        }
+    }
+
+    /// A quarter of a circle as a Bezier curve with handles of 0.5523 r is within 2.73e-4 r of the circle (from memory; it
+    /// follows from the curve's distance from the centre); its arcs have that radius.
+    #[test]
+    fn arcs_have_the_curvature_of_the_curve() {
+        const HANDLE: f64 = 0.552_284_749_8;
+        let curve = Bezier::plain(
+            &[(10.0, 0.0), (10.0, 10.0 * HANDLE), (10.0 * HANDLE, 10.0), (0.0, 10.0)].map(|(x, y)| Point::new(x, y)),
+        );
+        let arcs = traced(&curve, 0.01);
+        assert!(arcs.len() <= 4, "{}", arcs.len());
+        for arc in arcs {
+            let radius = (arc.to - arc.from).hypot() * (1.0 + arc.bulge * arc.bulge) / (4.0 * arc.bulge);
+            assert!((radius - 10.0).abs() < 0.1, "{radius}");
+        }
+    }
+}

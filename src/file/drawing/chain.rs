@@ -11,6 +11,11 @@ use std::collections::HashMap;
 
 /// Two ends closer than this fraction of the drawing are one point.
 const SAME: f64 = 1e-12;
+/// Rounding of a coordinate that has been through a few maps, as a fraction of it.
+const ROUNDED: f64 = 1e-15;
+
+/// A closing edge shorter than this fraction of its neighbours is a rounding, not an edge.
+const FAR_SHORTER: f64 = 0.01;
 
 /// What became of the strands.
 #[derive(Debug, Default)]
@@ -109,7 +114,9 @@ pub(super) fn chain(strands: Vec<Strand>, join: f64, prune: bool, tell: &mut dyn
     let mut chained = Chained::default();
     tell(0, strands.len() as u64);
     let size = size(strands.iter().flat_map(|strand| &strand.vertices));
-    let same = SAME * size;
+    let farthest =
+        strands.iter().flat_map(|strand| &strand.vertices).fold(0.0_f64, |far, p| far.max(p.x.abs()).max(p.y.abs()));
+    let same = (SAME * size).max(ROUNDED * farthest);
     let mut open = Vec::new();
     let mut closed_gaps = Vec::new();
     for mut strand in strands {
@@ -175,13 +182,17 @@ fn drop_short_edges(strand: &mut Strand, same: f64) {
     strand.vertices = vertices;
 }
 
-/// Takes out a straight closing edge within the tolerance, which a drawing has only because its numbers are rounded.
-/// Returns its length.
+/// Takes out a straight closing edge within the tolerance and far shorter than those beside it, which a drawing has only
+/// because its numbers are rounded. Returns its length.
 fn close_gap(strand: &mut Strand, join: f64) -> Option<f64> {
     let last = strand.bulges.len() - 1;
     let (from, to, bulge) = strand.edge(last);
     let gap = (to - from).hypot();
     if bulge != 0.0 || gap > join || last < 2 {
+        return None;
+    }
+    let chord = |edge: usize| (strand.edge(edge).1 - strand.edge(edge).0).hypot();
+    if gap > FAR_SHORTER * chord(0).min(chord(last - 1)) {
         return None;
     }
     strand.vertices.pop();
@@ -399,7 +410,7 @@ fn build(mut strands: Vec<Strand>, links: &Links, runs: &[Run], chained: &mut Ch
 
 impl Open {
     fn of(strands: &[Strand], run: &Run) -> Self {
-        let point = |end: usize| if end % 2 == 0 { strands[end / 2].vertices[0] } else { strands[end / 2].end() };
+        let point = |end: usize| if end & 1 == 0 { strands[end / 2].vertices[0] } else { strands[end / 2].end() };
         let (first, last) = (run.ends[0], run.ends[run.ends.len() - 1] ^ 1);
         Self { ends: [point(first), point(last)], source: strands[first / 2].source, nearest: None }
     }

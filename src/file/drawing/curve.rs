@@ -191,13 +191,8 @@ impl Curve for Bezier {
 
     fn at(&self, t: f64) -> Point {
         let (a, b) = self.last_two(t);
-        let [x, y, w] = if t == 0.0 {
-            a
-        } else if t == 1.0 {
-            b
-        } else {
-            blend(a, b, t)
-        };
+        // Blending is exact at both ends.
+        let [x, y, w] = blend(a, b, t);
         Point::new(x / w, y / w)
     }
 

@@ -105,7 +105,7 @@ fn in_cap(edge: (Point, Point, f64), point: Point) -> bool {
     let (from, to, bulge) = edge;
     let mut turn = side(from, to, point);
     if turn == 0.0 {
-        turn = if from.y == to.y { to.x - from.x } else { from.y - to.y };
+        turn = if to.y - from.y == 0.0 { to.x - from.x } else { from.y - to.y };
     }
     let Round { centre, radius } = round(edge);
     (turn < 0.0) == (bulge > 0.0) && (point - centre).hypot() < radius

@@ -1,9 +1,9 @@
 //! Drawings in: outlines from DXF and SVG files become part files, or are refused with what to mend.
 //!
-//! The way of a drawing: a format's reader makes a [`sheet::Sheet`] (paths, where they are placed, layers, what was
-//! skipped); tracing turns every path into straight edges and arcs ([`sheet`], [`curve`], [`biarc`]); loose ends are
-//! joined into loops ([`chain`]); loops are nested into parts ([`nest`]); one part is chosen, cleaned when asked
-//! ([`tidy`]), checked by [`Part::new`] and written ([`part_text`]). Nothing is guessed in silence: what was left out and
+//! The way of a drawing: a format's reader makes a `sheet::Sheet` (paths, where they are placed, layers, what was
+//! skipped); tracing turns every path into straight edges and arcs (`sheet`, `curve`, `biarc`); loose ends are
+//! joined into loops (`chain`); loops are nested into parts (`nest`); one part is chosen, cleaned when asked
+//! (`tidy`), checked by [`Part::new`] and written (`part_text`). Nothing is guessed in silence: what was left out and
 //! what was closed is in the [`Report`], and what could be part of an outline but cannot be read is a refusal.
 //!
 //! # Libraries, and what is guarded

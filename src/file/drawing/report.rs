@@ -35,7 +35,9 @@ pub struct Report {
     pub largest_gap_mm: f64,
     /// Curves are within this distance of their arcs, mm.
     pub sagitta_mm: f64,
-    /// Runs of lines that do not close.
+    /// Number of runs of lines that do not close.
+    pub open_runs: usize,
+    /// The first of them, 1000 at most.
     pub open: Vec<OpenReport>,
     /// Closed loops.
     pub loops: usize,
@@ -150,6 +152,9 @@ pub struct CleanedReport {
     pub area_gained_mm2: f64,
 }
 
+/// Lines of one kind in a report for people.
+const SHOWN: usize = 50;
+
 /// A length in few characters.
 pub(super) fn brief(value: f64) -> String {
     if value != 0.0 && !(1e-3..1e7).contains(&value.abs()) {
@@ -195,12 +200,15 @@ impl Report {
             }
         }
         lines.push(read);
-        for skipped in &self.skipped {
+        for skipped in self.skipped.iter().take(SHOWN) {
             let first = if skipped.count == 1 { String::new() } else { "first ".to_owned() };
             lines.push(format!(
                 "skipped: {} {} ({first}{}): {}",
                 skipped.count, skipped.kind, skipped.first, skipped.why
             ));
+        }
+        if self.skipped.len() > SHOWN {
+            lines.push(format!("skipped: things of {} more kinds", self.skipped.len() - SHOWN));
         }
         lines.push(format!(
             "joined: ends within {} mm; {} gaps closed, the largest {} mm",
@@ -211,7 +219,6 @@ impl Report {
         lines.push(format!("curves: arcs within {} mm", brief(self.sagitta_mm)));
         lines.extend(self.open_lines());
         lines.push(format!("loops: {}, parts: {}", self.loops, self.parts.len()));
-        const SHOWN: usize = 50;
         for part in self.parts.iter().take(SHOWN) {
             let mark = if self.picked == Some(part.number) && self.parts.len() > 1 { " (taken)" } else { "" };
             lines.push(format!("  {}{mark}", part.line(unit)));
@@ -254,7 +261,6 @@ impl Report {
     }
 
     fn layer_lines(&self) -> Vec<String> {
-        const SHOWN: usize = 50;
         let named: Vec<_> = self.layers.iter().filter(|layer| !layer.name.is_empty()).collect();
         let mut lines: Vec<String> = named
             .iter()
@@ -285,8 +291,8 @@ impl Report {
                 format!("open: from ({x}, {y}) to ({u}, {v}){near}, {}", open.first)
             })
             .collect();
-        if self.open.len() > SHOWN {
-            lines.push(format!("open: {} more", self.open.len() - SHOWN));
+        if self.open_runs > SHOWN {
+            lines.push(format!("open: {} more", self.open_runs - SHOWN));
         }
         lines
     }

@@ -11,6 +11,10 @@ use std::collections::{BTreeMap, HashMap};
 
 /// Paths in place, and pieces of them, that a drawing may come to.
 pub(super) const MOST_PIECES: usize = 1_000_000;
+/// Layers a drawing may have.
+pub(super) const MOST_LAYERS: usize = 10_000;
+/// Kinds of skipped things told apart.
+const MOST_SKIPPED: usize = 1000;
 /// Coordinates beyond this are refused before anything is computed from them.
 const FARTHEST: f64 = 1e12;
 /// Bulges below this are straight for a part too.
@@ -24,7 +28,7 @@ pub(super) enum Segment {
     /// A circular arc with this bulge.
     Bulge(Point, f64),
     /// An arc of an ellipse; it ends exactly at the point.
-    Ellipse(Ellipse, Point),
+    Ellipse(Box<Ellipse>, Point),
     /// A Bezier curve.
     Bezier(Bezier),
 }
@@ -115,6 +119,8 @@ pub(super) struct Sheet {
     by_name: HashMap<String, usize>,
     /// Paths.
     pub(super) paths: Vec<Path>,
+    /// Segments of all of them.
+    segments: usize,
     /// Paths in place.
     pub(super) placed: Vec<Placed>,
     /// What was skipped: kind, why, weight and layer, with the count and the first one in words.
@@ -134,6 +140,7 @@ impl Sheet {
             layers: Vec::new(),
             by_name: HashMap::new(),
             paths: Vec::new(),
+            segments: 0,
             placed: Vec::new(),
             skipped: BTreeMap::new(),
             notes: Vec::new(),
@@ -154,6 +161,16 @@ impl Sheet {
         self.by_name.get(&name.to_lowercase()).copied()
     }
 
+    /// Adds a path and returns its number.
+    pub(super) fn add(&mut self, path: Path) -> Result<usize, Fault> {
+        self.segments += path.segments.len();
+        if self.segments > MOST_PIECES {
+            return Err(too_much());
+        }
+        self.paths.push(path);
+        Ok(self.paths.len() - 1)
+    }
+
     /// Places a path.
     pub(super) fn place(&mut self, path: usize, place: Affine, layer: usize) -> Result<(), Fault> {
         if self.placed.len() >= MOST_PIECES {
@@ -165,7 +182,10 @@ impl Sheet {
 
     /// Notes something that is not read.
     pub(super) fn skip(&mut self, kind: &str, id: &Id, why: &str, weight: Weight, layer: usize) {
-        let key = (short(kind), why.to_owned(), weight, layer);
+        let mut key = (short(kind), why.to_owned(), weight, layer);
+        if self.skipped.len() >= MOST_SKIPPED && !self.skipped.contains_key(&key) {
+            key = ("others".to_owned(), "of more kinds than are told apart".to_owned(), weight, 0);
+        }
         let entry = self.skipped.entry(key).or_insert_with(|| (0, id.words(kind)));
         entry.0 += 1;
     }

@@ -37,7 +37,6 @@ impl Strand {
     /// Closes the strand with an edge from its last vertex to its first; where the two are one already, no edge is
     /// added and the last vertex goes.
     pub(super) fn close(&mut self, bulge: f64) {
-        #[expect(clippy::float_cmp, reason = "the same vertex written twice")]
         let same = self.vertices.len() > 1 && self.vertices[0] == self.end();
         if same {
             self.vertices.pop();

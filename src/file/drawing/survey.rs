@@ -17,6 +17,8 @@ const SAGITTA_MM: f64 = 0.01;
 const SAGITTA: f64 = 1e-4;
 /// Finest sagitta, as a fraction of the larger side: beyond it doubles have no digits left for the fit.
 const FINEST: f64 = 1e-10;
+/// Open runs in a report.
+const MOST_OPEN: usize = 1000;
 /// Lines of one kind of problem.
 const MOST_LINES: usize = 10;
 
@@ -109,8 +111,10 @@ pub(super) fn survey(
         joints,
         largest_gap_mm: largest_gap * unit.mm,
         sagitta_mm: sagitta * unit.mm,
+        open_runs: open.len(),
         open: open
             .iter()
+            .take(MOST_OPEN)
             .map(|open| OpenReport {
                 from: pair(open.ends[0]),
                 to: pair(open.ends[1]),

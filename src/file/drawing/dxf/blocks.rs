@@ -70,8 +70,8 @@ impl Expansion<'_> {
                     self.sheet.skip(path.kind, &path.id, why, Weight::Harmless, entity.layer);
                     return Ok(());
                 }
-                self.sheet.paths.push(path);
-                self.sheet.place(self.sheet.paths.len() - 1, plane, entity.layer)
+                let number = self.sheet.add(path)?;
+                self.sheet.place(number, plane, entity.layer)
             }
             _ => self.any(&entity, around, &mut None),
         }
@@ -86,10 +86,11 @@ impl Expansion<'_> {
                     self.sheet.skip(path.kind, &path.id, why, Weight::Harmless, layer);
                     return Ok(());
                 }
-                let number = *known.get_or_insert_with(|| {
-                    self.sheet.paths.push(path.clone());
-                    self.sheet.paths.len() - 1
-                });
+                let number = match *known {
+                    Some(number) => number,
+                    None => self.sheet.add(path.clone())?,
+                };
+                *known = Some(number);
                 self.sheet.place(number, around.place * *plane, layer)
             }
             What::Insert(insert) => self.insert(insert, entity, layer, around),

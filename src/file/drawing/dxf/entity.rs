@@ -2,7 +2,7 @@
 
 use super::super::curve::{Ellipse, Spline, rotation};
 use super::super::fault::Fault;
-use super::super::sheet::{Id, Path, Segment, Weight};
+use super::super::sheet::{Id, MOST_PIECES, Path, Segment, Weight};
 use super::pairs::{Pair, Place};
 use kurbo::{Affine, Point, Vec2};
 
@@ -155,7 +155,7 @@ impl<'a> Record<'a> {
         let mut circle = Ellipse::circle(centre, radius);
         if self.kind == "ARC" {
             let (from, to) = (self.real(50, 0.0)?, self.real(51, 360.0)?);
-            if from == to {
+            if (to - from).abs() == 0.0 {
                 return Ok(self.missed("it ends at the angle where it begins; draw a CIRCLE, or remove it"));
             }
             let sweep = (to - from).rem_euclid(360.0);
@@ -172,7 +172,7 @@ impl<'a> Record<'a> {
         let start = ellipse.point(ellipse.from);
         let whole = ellipse.is_whole();
         let end = if whole { start } else { ellipse.point(ellipse.to) };
-        self.path(start, vec![Segment::Ellipse(ellipse, end)], whole)
+        self.path(start, vec![Segment::Ellipse(Box::new(ellipse), end)], whole)
     }
 
     fn ellipse(&self) -> Result<What, Fault> {
@@ -188,7 +188,7 @@ impl<'a> Record<'a> {
         let round = if plane == Affine::IDENTITY { 1.0 } else { -1.0 };
         let minor = Vec2::new(-major.y, major.x) * (ratio * round);
         let (from, to) = (self.real(41, 0.0)?, self.real(42, std::f64::consts::TAU)?);
-        if from == to {
+        if (to - from).abs() == 0.0 {
             return Ok(self.missed("it ends where it begins; draw it whole, or remove it"));
         }
         let sweep = (to - from).rem_euclid(std::f64::consts::TAU);
@@ -308,6 +308,9 @@ impl<'a> Record<'a> {
         let size = spline.points.iter().fold(0.0_f64, |size, p| size.max((*p - spline.points[0]).hypot()));
         if levels.iter().any(|level| (level - levels[0]).abs() > LEVEL * size) {
             return Ok(self.out_of_plane());
+        }
+        if spline.points.len() * (spline.degree + 1) > MOST_PIECES {
+            return Err(self.at.fault("SPLINE has more control points than any outline; simplify it"));
         }
         let pieces = spline.beziers();
         let Some(start) = pieces.first().map(|piece| piece.start()) else {

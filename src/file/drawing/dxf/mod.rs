@@ -1,17 +1,18 @@
 //! DXF drawings, R12 to 2018, text and binary: the sections that matter to an outline.
 //!
-//! Read by this reader and not by a library, after trying: the one well-known crate leaves out entity kinds it does not
-//! know without a word (a report could not name them), takes 1.7 kB for each line, ends with a panic on a date out of
-//! range in the header, says "unexpected code pair" where a number is wrong, and brings picture, date and big-number
-//! crates that build longer than this whole program; another carries a licence of its own and a reader of other formats.
-//! The format needs two lines for each value and ten entity kinds; see [`pairs`] and [`entity`].
+//! Read here and not by a library, after trying. Crate `dxf` 0.6.2 drops entity kinds it does not know without a word, so
+//! that no report could name them; panics on a date out of range in the header; says "unexpected code pair" some lines
+//! after a number that is wrong; takes 1.7 kB for each line; and brings picture, date and big-number crates, over a
+//! minute of building. A guard in front of it would have had to read every pair all the same, and the pairs are most of
+//! the format: see [`pairs`], and [`entity`] for the ten kinds that draw lines. `acadrust` (MPL-2.0) carries a reader of
+//! other formats along.
 
 mod blocks;
 mod entity;
 mod pairs;
 
 use super::fault::{Fault, fault, quoted};
-use super::sheet::Sheet;
+use super::sheet::{MOST_LAYERS, Sheet};
 use super::units::Unit;
 use encoding_rs::{Encoding, UTF_8, WINDOWS_1252};
 use entity::Record;
@@ -24,6 +25,8 @@ use std::collections::HashMap;
 const MOST_PAIRS: usize = 2_000_000;
 /// Entities a file may have.
 const MOST_ENTITIES: usize = 1_000_000;
+/// Lines and curves a file may have, in blocks that are not in place too.
+const MOST_SEGMENTS: usize = 2_000_000;
 
 /// `$INSUNITS` of the DXF reference, from 1: name and length in mm. Those of the US survey follow from 1200 m = 3937 ft.
 const UNITS: [(&str, f64); 24] = [
@@ -45,7 +48,7 @@ const UNITS: [(&str, f64); 24] = [
     ("hm", 1e5),
     ("Gm", 1e12),
     ("astronomical unit", 149_597_870_700e3),
-    ("light year", 9_460_730_472_580_800e3),
+    ("light year", 9_460_730_472_580.8e6),
     ("parsec", 3.085_677_581_491_367e19),
     ("US survey ft", 1_200_000.0 / 3937.0),
     ("US survey in", 100_000.0 / 3937.0),
@@ -87,8 +90,9 @@ struct Reader<'a> {
     measurement: Option<i64>,
     blocks: Vec<Block>,
     entities: Vec<Entity>,
-    /// Entities met, in blocks too.
+    /// Entities met, in blocks too, and lines and curves in them.
     met: usize,
+    segments: usize,
     /// The section being read, in quotation marks.
     section: Option<String>,
 }
@@ -117,6 +121,7 @@ pub(super) fn read(bytes: &[u8], tell: &mut dyn FnMut(u64, u64)) -> Result<Sheet
         blocks: Vec::new(),
         entities: Vec::new(),
         met: 0,
+        segments: 0,
         section: None,
         pairs,
     };
@@ -360,6 +365,12 @@ impl<'a> Reader<'a> {
                 tell((self.total - left.min(self.total)) as u64, self.total as u64);
             }
             let entity = self.entity(pair)?;
+            if let entity::What::Path(path, _) = &entity.what {
+                self.segments += path.segments.len();
+            }
+            if self.segments > MOST_SEGMENTS {
+                return Err(fault(format!("it has more than {MOST_SEGMENTS} lines; leave out what is not the part")));
+            }
             entities.push(entity);
         }
     }
@@ -413,6 +424,9 @@ impl<'a> Reader<'a> {
                 }
             },
         };
+        if self.sheet.layers.len() > MOST_LAYERS {
+            return Err(fault(format!("it has more than {MOST_LAYERS} layers; leave out what is not the part")));
+        }
         let hidden = if record.whole(67)? == 1 {
             Some("it is on the paper, not in the model")
         } else if record.whole(60)? == 1 {

@@ -1,7 +1,7 @@
 //! Path data and elliptical arcs between two points (SVG 2, sections 9.3 and appendix B.2).
 
 use super::super::curve::{Bezier, Ellipse};
-use super::super::sheet::Segment;
+use super::super::sheet::{MOST_PIECES, Segment};
 use kurbo::{Point, Vec2};
 use svgtypes::{PathParser, PathSegment};
 
@@ -26,6 +26,10 @@ pub(super) fn subpaths(data: &str) -> Result<Vec<Subpath>, String> {
         let segment =
             segment.map_err(|error| format!("its path data is wrong: {}", super::short_error(&error.to_string())))?;
         pen.draw(segment);
+        pen.drawn += 1;
+        if pen.drawn > MOST_PIECES {
+            return Err("it is longer than any outline".to_owned());
+        }
     }
     pen.lift(false);
     Ok(pen.done)
@@ -33,6 +37,7 @@ pub(super) fn subpaths(data: &str) -> Result<Vec<Subpath>, String> {
 
 #[derive(Default)]
 struct Pen {
+    drawn: usize,
     done: Vec<Subpath>,
     start: Point,
     at: Point,
@@ -80,7 +85,7 @@ impl Pen {
             PathSegment::EllipticalArc { abs, rx, ry, x_axis_rotation, large_arc, sweep, x, y } => {
                 let end = place(abs, x, y);
                 match arc(at, rx, ry, x_axis_rotation, large_arc, sweep, end) {
-                    Some(ellipse) => self.to(Segment::Ellipse(ellipse, end), end),
+                    Some(ellipse) => self.to(Segment::Ellipse(Box::new(ellipse), end), end),
                     None => self.line(end),
                 }
             }

@@ -1,7 +1,7 @@
 //! Basic shapes as paths (SVG 2, section 10).
 
 use super::super::curve::Ellipse;
-use super::super::sheet::Segment;
+use super::super::sheet::{MOST_PIECES, Segment};
 use super::path::{Subpath, subpaths};
 use super::viewport::user_length;
 use kurbo::{Point, Vec2};
@@ -69,7 +69,7 @@ fn round(centre: Point, rx: f64, ry: f64) -> Result<Vec<Subpath>, String> {
     }
     let ellipse = Ellipse { centre, u: Vec2::new(rx, 0.0), v: Vec2::new(0.0, ry), from: 0.0, to: TAU };
     let start = ellipse.point(0.0);
-    Ok(vec![Subpath { start, segments: vec![Segment::Ellipse(ellipse, start)], closed: true }])
+    Ok(vec![Subpath { start, segments: vec![Segment::Ellipse(Box::new(ellipse), start)], closed: true }])
 }
 
 fn rect(node: &Node<'_, '_>) -> Result<Vec<Subpath>, String> {
@@ -104,7 +104,7 @@ fn rect(node: &Node<'_, '_>) -> Result<Vec<Subpath>, String> {
         let centre = Point::new(centre.0, centre.1);
         let ellipse = Ellipse { centre, u: Vec2::new(rx, 0.0), v: Vec2::new(0.0, ry), from, to: from + FRAC_PI_2 };
         segments.push(Segment::Line(Point::new(side_end.0, side_end.1)));
-        segments.push(Segment::Ellipse(ellipse, Point::new(corner_end.0, corner_end.1)));
+        segments.push(Segment::Ellipse(Box::new(ellipse), Point::new(corner_end.0, corner_end.1)));
     }
     Ok(vec![Subpath { start: Point::new(x + rx, y), segments, closed: true }])
 }
@@ -115,7 +115,10 @@ fn points(node: &Node<'_, '_>, closed: bool) -> Result<Vec<Subpath>, String> {
     let Some(start) = points.next() else {
         return if text.trim().is_empty() { Ok(Vec::new()) } else { Err(not_points()) };
     };
-    let segments: Vec<Segment> = points.map(Segment::Line).collect();
+    let segments: Vec<Segment> = points.map(Segment::Line).take(MOST_PIECES + 1).collect();
+    if segments.len() > MOST_PIECES {
+        return Err("it is longer than any outline".to_owned());
+    }
     // The parser stops without a word at what is no number; the numbers are counted against it.
     let numbers = text.split(|c: char| c.is_ascii_whitespace() || c == ',').filter(|word| !word.is_empty()).count();
     if numbers > 2 * (segments.len() + 1) {

@@ -104,8 +104,9 @@ pub(super) fn units(root: &Node<'_, '_>, sheet: &mut Sheet) -> Result<(), Fault>
     let up = Affine::new([1.0, 0.0, 0.0, -1.0, 0.0 - left, bottom]);
     sheet.root = up;
     let mut state = |mm: f64, by| {
-        let name = ["mm", "cm", "m", "in"].into_iter().find(|name| named(name).is_some_and(|unit| unit.mm == mm));
-        sheet.stated = Some((Unit { name: name.unwrap_or("user unit"), mm }, by));
+        let mut known = ["mm", "cm", "m", "in"].into_iter().filter_map(named);
+        let known = known.find(|unit| (unit.mm - mm).abs() <= 1e-12 * mm);
+        sheet.stated = Some((known.unwrap_or(Unit { name: "user unit", mm }), by));
     };
     match (view, width_mm, height_mm) {
         (None, None, None) | (Some(_), None, None) => {
@@ -119,13 +120,14 @@ pub(super) fn units(root: &Node<'_, '_>, sheet: &mut Sheet) -> Result<(), Fault>
             let fitted = fit(root, view, width, height)?.as_coeffs();
             let (sx, sy) = (fitted[0], fitted[3]);
             state(sx, "width, height and viewBox");
-            if sx != sy {
+            let stretched = (sx - sy).abs() > 0.0;
+            if stretched {
                 // Told apart on purpose: the drawing is stretched.
                 sheet.root = Affine::scale_non_uniform(1.0, sy / sx) * up;
                 sheet.notes.push(format!("the drawing is stretched: y by {} against x", sy / sx));
             }
             let (across, along) = (width / view.w, height / view.h);
-            if sx == sy && (across - along).abs() > SAME_SCALE * across {
+            if !stretched && (across - along).abs() > SAME_SCALE * across {
                 sheet.notes.push(format!(
                     "width and height do not fit the viewBox ({across} and {along} mm for a unit); {sx} was taken, as \
                      preserveAspectRatio says"

@@ -1,7 +1,8 @@
 //! The tree of elements: what is shown, where it is placed, and on which layer.
 
 use super::super::fault::{Fault, quoted, short};
-use super::super::sheet::{Id, MOST_PIECES, Path, Sheet, Weight, too_much};
+use super::super::sheet::{Id, MOST_LAYERS, MOST_PIECES, Path, Sheet, Weight, too_much};
+use super::path::Subpath;
 use super::shape::{SHAPES, length, shape};
 use super::viewport::{fit, view_box};
 use kurbo::Affine;
@@ -84,7 +85,7 @@ pub(super) fn walk(
         if walk.met > 4 * MOST_PIECES {
             return Err(too_much());
         }
-        if walk.met % 4096 == 0 {
+        if walk.met.is_multiple_of(4096) {
             tell((walk.sheet.placed.len()) as u64, MOST_PIECES as u64);
         }
         walk.element(node, &around, &mut waiting)?;
@@ -110,7 +111,7 @@ fn name_of<'d>(node: &Node<'d, '_>) -> Option<&'d str> {
 fn property<'d>(node: &Node<'d, '_>, name: &str) -> Option<&'d str> {
     let in_style = node.attribute("style").and_then(|style| {
         let entries = style.split(';').filter_map(|entry| entry.split_once(':'));
-        entries.filter(|(key, _)| key.trim() == name).map(|(_, value)| value.trim()).last()
+        entries.filter(|(key, _)| key.trim() == name).map(|(_, value)| value.trim()).next_back()
     });
     in_style.or_else(|| node.attribute(name).map(str::trim))
 }
@@ -186,7 +187,7 @@ impl<'d, 'i> Walk<'_, 'd, 'i> {
         }
         match kind {
             "g" | "a" => {
-                self.choose_layer(&node, &mut inside);
+                self.choose_layer(&node, &mut inside)?;
                 push_children(waiting, &node, inside);
             }
             "svg" => {
@@ -206,7 +207,7 @@ impl<'d, 'i> Walk<'_, 'd, 'i> {
     }
 
     /// A group that is a layer of a drawing program, or stands at the top with a name.
-    fn choose_layer(&mut self, node: &Node<'_, '_>, inside: &mut Around) {
+    fn choose_layer(&mut self, node: &Node<'_, '_>, inside: &mut Around) -> Result<(), Fault> {
         let own =
             |name: &str| node.attributes().find(|a| a.name() == name && a.namespace().is_some()).map(|a| a.value());
         let is_layer = own("groupmode") == Some("layer");
@@ -215,6 +216,10 @@ impl<'d, 'i> Walk<'_, 'd, 'i> {
         if let Some(name) = name.filter(|_| is_layer || (at_top && inside.uses.is_empty())) {
             inside.layer = self.sheet.layer(name);
         }
+        if self.sheet.layers.len() > MOST_LAYERS {
+            return Err(self.fault(node, "g", "there are more layers than in any drawing"));
+        }
+        Ok(())
     }
 
     /// The frame of a nested svg or a used symbol; false when it cannot be told.
@@ -298,14 +303,9 @@ impl<'d, 'i> Walk<'_, 'd, 'i> {
             }
         }
         for subpath in subpaths {
-            self.sheet.paths.push(Path {
-                kind,
-                id: self.id(node),
-                start: subpath.start,
-                segments: subpath.segments,
-                closed: subpath.closed,
-            });
-            self.sheet.place(self.sheet.paths.len() - 1, around.place, around.layer)?;
+            let Subpath { start, segments, closed } = subpath;
+            let path = self.sheet.add(Path { kind, id: self.id(node), start, segments, closed })?;
+            self.sheet.place(path, around.place, around.layer)?;
         }
         Ok(())
     }
