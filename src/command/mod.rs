@@ -1,6 +1,7 @@
 //! What is asked: the command line, its exit codes, one file for each command.
 
 mod check;
+mod import;
 mod json;
 mod knobs;
 mod output;
@@ -75,6 +76,8 @@ enum Command {
     Score(score::ScoreArgs),
     /// Score saved grasps again; exit code 1 when one no longer holds or the part changed
     Check(check::CheckArgs),
+    /// Make a part file of the outline in a DXF or SVG drawing
+    Import(import::ImportArgs),
     /// Print the default setup as a file to start from
     Setup,
 }
@@ -120,6 +123,7 @@ fn run(cli: Cli) -> Result<Answer, Stop> {
         Some(Command::Rank(args)) => rank::run(&args),
         Some(Command::Score(args)) => score::run(&args),
         Some(Command::Check(args)) => check::run(&args),
+        Some(Command::Import(args)) => import::run(&args),
         Some(Command::Setup) => {
             output::print(&file::default_setup_text())?;
             Ok(Answer::Done)
