@@ -1,6 +1,7 @@
 //! What is asked: the command line, its exit codes, one file for each command.
 
 mod check;
+mod drawing;
 mod import;
 mod json;
 mod knobs;
@@ -38,7 +39,7 @@ struct Cli {
 
 #[derive(Debug, Args)]
 struct Open {
-    /// Part file to open the workbench on
+    /// Part file to open the workbench on; a drawing (DXF, SVG) becomes one first
     #[arg(required = true)]
     part: Option<PathBuf>,
     #[command(flatten)]
@@ -141,6 +142,15 @@ fn open(args: Open) -> Result<Answer, Stop> {
             shown(&part_path.display().to_string())
         )));
     }
+    let part_path = if drawing::is_drawing(&part_path) {
+        match drawing::ask(&part_path, &mut io::stdin().lock(), &mut io::stdout())? {
+            drawing::Asked::Open(written) => written,
+            drawing::Asked::Left => return Ok(Answer::Done),
+            drawing::Asked::Refused(lines) => return Err(Stop::Bad(lines)),
+        }
+    } else {
+        part_path
+    };
     let part = knobs::part(&part_path)?;
     let setup = args.knobs.setup()?;
     args.knobs.use_threads_everywhere()?;
