@@ -244,6 +244,57 @@ fn two_hundred_thousand_vertices() {
     }
 }
 
+/// Crowds that a search by pairs would take hours for: one centre, one line, two points, one box for all, a far outlier.
+#[test]
+fn crowds() {
+    let n = 60_000;
+    let many = |one: &dyn Fn(f64) -> String| dxf("", &(0..n).map(|i| one(f64::from(i))).collect::<String>());
+    let line = |x: f64, y: f64, u: f64, v: f64| format!("0\nLINE\n8\n0\n10\n{x}\n20\n{y}\n11\n{u}\n21\n{v}\n");
+    refused("centre.dxf", many(&|i| circle(0.0, 1e4 + i)), "deep");
+    let spokes = many(&|i| {
+        let angle = i / f64::from(n) * std::f64::consts::PI;
+        line(angle.cos(), angle.sin(), -angle.cos(), -angle.sin())
+    });
+    refused("spokes.dxf", spokes, "do not close");
+    refused("star.dxf", many(&|i| line(0.0, 0.0, i, 1.0)), "lines meet at (0, 0)");
+    refused("copies.dxf", many(&|_| line(0.0, 0.0, 1.0, 1.0)), "do not close");
+    let arcs = many(&|i| {
+        let bulge = i / f64::from(n);
+        format!("0\nLWPOLYLINE\n8\n0\n90\n2\n70\n0\n10\n0\n20\n0\n42\n{bulge}\n10\n1\n20\n0\n")
+    });
+    refused("arcs.dxf", arcs, "lines meet at (0, 0)");
+    let slots = many(&|i| {
+        let (x, y) = (i, 1e5 + i);
+        format!(
+            "0\nLWPOLYLINE\n8\n0\n90\n3\n70\n1\n10\n{i}\n20\n{}\n10\n{x}\n20\n{y}\n10\n{}\n20\n{}\n",
+            -1e5 - i,
+            x + 0.3,
+            y
+        )
+    });
+    let _ = read_as("slots.dxf", slots.as_bytes(), &mm());
+    // The default tolerance, a part of the drawing's size, is wider than everything but the outlier.
+    let outlier = many(&|i| line(i % 300.0, (i / 300.0).floor(), i % 300.0 + 0.4, (i / 300.0).floor()));
+    let outlier = outlier.replace("0\nENDSEC\n0\nEOF", &(circle(1e8, 1.0) + "0\nENDSEC\n0\nEOF"));
+    let _ = read_as("outlier.dxf", outlier.as_bytes(), &mm());
+}
+
+/// A plate with as many vertices as holes: the search for what is inside must not look at every edge for every hole.
+#[test]
+fn many_holes_in_a_long_outline() {
+    let n = 100_000;
+    let mut body = format!("0\nLWPOLYLINE\n8\n0\n90\n{n}\n70\n1\n");
+    for i in 0..n {
+        let angle = std::f64::consts::TAU * f64::from(i) / f64::from(n);
+        let _ = write!(body, "10\n{}\n20\n{}\n", 1000.0 * angle.cos(), 1000.0 * angle.sin());
+    }
+    for i in 0..10_000 {
+        let _ = write!(body, "0\nCIRCLE\n8\n0\n10\n{}\n20\n{}\n40\n3\n", i % 100 * 10 - 500, i / 100 * 10 - 500);
+    }
+    let imported = read_as("x.dxf", dxf("", &body).as_bytes(), &mm()).unwrap();
+    assert_eq!(imported.report.rings.len(), 10_001);
+}
+
 /// Entities drawn from behind are mirrored (arbitrary axis algorithm of the DXF reference); other planes are refused.
 #[test]
 fn odd_planes() {

@@ -4,9 +4,11 @@
 //! nearest pair first. So a fine curve drawn in pieces shorter than the tolerance does not collapse, and a third end near
 //! a joint stays open and is reported instead of being taken for one of the two.
 
-use super::measure::Measure;
+use super::duplicates::{same_loops_once, without_duplicates};
 use super::strand::Strand;
 use kurbo::Point;
+use rstar::RTree;
+use rstar::primitives::GeomWithData;
 use std::collections::HashMap;
 
 /// Two ends closer than this fraction of the drawing are one point.
@@ -158,7 +160,7 @@ pub(super) fn chain(strands: Vec<Strand>, join: f64, prune: bool, tell: &mut dyn
     chained.largest_gap = closed_gaps.into_iter().fold(chained.largest_gap, f64::max);
     chained.open.append(&mut dangling);
     nearest_ends(&mut chained.open);
-    same_loops_once(&mut chained, join.max(same));
+    chained.duplicates += same_loops_once(&mut chained.loops, join, same);
     chained
 }
 
@@ -198,67 +200,6 @@ fn close_gap(strand: &mut Strand, join: f64) -> Option<f64> {
     strand.vertices.pop();
     strand.bulges.pop();
     Some(gap)
-}
-
-/// Middle of an edge, on the arc.
-fn middle((from, to, bulge): (Point, Point, f64)) -> Point {
-    let chord = to - from;
-    // A positive bulge lies on the right of its chord.
-    from.midpoint(to) + kurbo::Vec2::new(chord.y, -chord.x) * (bulge / 2.0)
-}
-
-/// Drops edges of open strands that lie on one another; what is left of a strand may come apart.
-fn without_duplicates(strands: Vec<Strand>, join: f64, same: f64, dropped: &mut usize) -> Vec<Strand> {
-    let mut grid = Grid::new(join.max(same).max(f64::MIN_POSITIVE));
-    // Edges kept so far, by number: ends and middle.
-    let mut kept: Vec<[Point; 3]> = Vec::new();
-    let mut result = Vec::with_capacity(strands.len());
-    for strand in strands {
-        let mut twice = Vec::new();
-        for edge in 0..strand.bulges.len() {
-            let (from, to, bulge) = strand.edge(edge);
-            let at = middle((from, to, bulge));
-            let length = (to - from).hypot();
-            // Short edges must agree better, or neighbours would pass for one another.
-            let near = join.min(1e-3 * length).max(same);
-            let close = |p: Point, q: Point| (p - q).hypot() <= near;
-            let is_twice = grid.near(at).any(|other| {
-                let [a, b, m] = kept[other];
-                close(m, at) && ((close(a, from) && close(b, to)) || (close(a, to) && close(b, from)))
-            });
-            if is_twice {
-                twice.push(edge);
-            } else {
-                grid.add(at, kept.len());
-                kept.push([from, to, at]);
-            }
-        }
-        *dropped += twice.len();
-        if twice.is_empty() {
-            result.push(strand);
-        } else {
-            result.extend(split(&strand, &twice));
-        }
-    }
-    result
-}
-
-/// The runs of an open strand between the edges taken out.
-fn split(strand: &Strand, out: &[usize]) -> Vec<Strand> {
-    let mut runs = Vec::new();
-    let mut begin = 0;
-    for &edge in out.iter().chain([&strand.bulges.len()]) {
-        if edge > begin {
-            runs.push(Strand {
-                vertices: strand.vertices[begin..=edge].to_vec(),
-                bulges: strand.bulges[begin..edge].to_vec(),
-                closed: false,
-                source: strand.source,
-            });
-        }
-        begin = edge + 1;
-    }
-    runs
 }
 
 /// Ends of open strands and what each is joined to. End 2 i is the first vertex of strand i, end 2 i + 1 its last.
@@ -328,20 +269,20 @@ impl Links {
         if !(join > same) {
             return;
         }
-        let mut grid = Grid::new(join);
-        open.iter().for_each(|&end| grid.add(ends[end], end));
+        let points = open.iter().map(|&end| GeomWithData::new([ends[end].x, ends[end].y], end)).collect();
+        let tree = RTree::bulk_load(points);
         let mut pairs: Vec<(f64, usize, usize)> = Vec::new();
         for &end in &open {
-            // Where very many open ends crowd into one cell, pairs with the nearest few are enough.
-            let mut near: Vec<(f64, usize)> = grid
-                .near(ends[end])
-                .filter(|&other| other != end)
-                .map(|other| ((ends[other] - ends[end]).hypot(), other))
-                .filter(|&(gap, _)| gap <= join)
-                .take(MOST_CROWD)
-                .collect();
-            near.sort_by(|a, b| a.0.total_cmp(&b.0).then(a.1.cmp(&b.1)));
-            pairs.extend(near.into_iter().filter(|&(_, other)| other > end).map(|(gap, other)| (gap, end, other)));
+            let at = ends[end];
+            // Where very many open ends crowd together, pairs with the nearest few are enough.
+            let near = tree
+                .nearest_neighbor_iter([at.x, at.y])
+                .map(|other| ((ends[other.data] - at).hypot(), other.data))
+                .take_while(|&(gap, _)| gap <= join)
+                .take(MOST_CROWD);
+            pairs.extend(
+                near.filter(|&(_, other)| other != end).map(|(gap, other)| (gap, end.min(other), end.max(other))),
+            );
         }
         pairs.sort_by(|a, b| a.0.total_cmp(&b.0).then(a.1.cmp(&b.1)).then(a.2.cmp(&b.2)));
         for (gap, a, b) in pairs {
@@ -486,45 +427,5 @@ impl Loop {
     pub(super) fn edge(&self, edge: usize) -> (Point, Point, f64) {
         let next = if edge + 1 == self.vertices.len() { 0 } else { edge + 1 };
         (self.vertices[edge], self.vertices[next], self.bulges[edge])
-    }
-}
-
-/// Drops loops that lie on another one, whatever they are drawn with.
-fn same_loops_once(chained: &mut Chained, near: f64) {
-    /// Points of one loop that are held against the other.
-    const HELD: usize = 64;
-    let measures: Vec<Measure> = chained.loops.iter().map(Measure::of).collect();
-    let mut grid = Grid::new(near.max(f64::MIN_POSITIVE));
-    let mut keep = Vec::with_capacity(measures.len());
-    for (number, measure) in measures.iter().enumerate() {
-        let this = &chained.loops[number];
-        let is_twice = grid.near(measure.bounds.center()).any(|other| {
-            measures[other].is_like(measure, near) && {
-                let step = this.vertices.len().div_ceil(HELD);
-                (0..this.vertices.len())
-                    .step_by(step)
-                    .flat_map(|edge| [this.vertices[edge], middle(this.edge(edge))])
-                    .all(|point| chained.loops[other].is_near(point, near))
-            }
-        });
-        if !is_twice {
-            grid.add(measure.bounds.center(), number);
-        }
-        keep.push(!is_twice);
-    }
-    chained.duplicates += keep.iter().filter(|keep| !**keep).count();
-    let mut number = 0;
-    chained.loops.retain(|_| {
-        number += 1;
-        keep[number - 1]
-    });
-}
-
-impl Strand {
-    /// Runs an open strand the other way.
-    fn turn_round(&mut self) {
-        self.vertices.reverse();
-        self.bulges.reverse();
-        self.bulges.iter_mut().for_each(|bulge| *bulge = -*bulge);
     }
 }

@@ -81,16 +81,6 @@ impl Measure {
         }
         Self { area, length, bounds }
     }
-
-    /// True when another loop's measures are the same within a distance of its outline.
-    pub(super) fn is_like(&self, other: &Self, near: f64) -> bool {
-        let corner = |a: f64, b: f64| (a - b).abs() <= 2.0 * near;
-        corner(self.bounds.x0, other.bounds.x0)
-            && corner(self.bounds.x1, other.bounds.x1)
-            && corner(self.bounds.y0, other.bounds.y0)
-            && corner(self.bounds.y1, other.bounds.y1)
-            && (self.area.abs() - other.area.abs()).abs() <= 2.0 * near * self.length
-    }
 }
 
 /// Exact side of a point from the line through two others: above 0 on the left.
@@ -100,7 +90,7 @@ fn side(from: Point, to: Point, point: Point) -> f64 {
 }
 
 /// True when a point is within the region between an arc and its chord. A point on the chord counts as moved from it a
-/// little to +x, and by much less to +y, as it does in the crossing count of [`Loop::contains`].
+/// little to +x, and by much less to +y, as it does in the crossing count of [`Loop::flips`].
 fn in_cap(edge: (Point, Point, f64), point: Point) -> bool {
     let (from, to, bulge) = edge;
     let mut turn = side(from, to, point);
@@ -112,21 +102,13 @@ fn in_cap(edge: (Point, Point, f64), point: Point) -> bool {
 }
 
 impl Loop {
-    /// True when a point is inside, by the parity of crossings of the chords with a ray to +x, each arc turning the
-    /// answer over for what lies between it and its chord. The point is taken not to be on the loop.
-    pub(super) fn contains(&self, point: Point) -> bool {
-        let mut inside = false;
-        for edge in 0..self.vertices.len() {
-            let (from, to, bulge) = self.edge(edge);
-            let (low, high) = if from.y <= to.y { (from, to) } else { (to, from) };
-            if low.y <= point.y && point.y < high.y && side(low, high, point) > 0.0 {
-                inside = !inside;
-            }
-            if bulge != 0.0 && in_cap((from, to, bulge), point) {
-                inside = !inside;
-            }
-        }
-        inside
+    /// Whether an edge turns over the answer to "is the point inside": its chord crosses the ray from the point to +x, or
+    /// the point lies between its arc and its chord; both together do not.
+    pub(super) fn flips(&self, edge: usize, point: Point) -> bool {
+        let (from, to, bulge) = self.edge(edge);
+        let (low, high) = if from.y <= to.y { (from, to) } else { (to, from) };
+        let crosses = low.y <= point.y && point.y < high.y && side(low, high, point) > 0.0;
+        crosses != (bulge != 0.0 && in_cap((from, to, bulge), point))
     }
 
     /// True when a point is within a distance of the loop.

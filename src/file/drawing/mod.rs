@@ -21,6 +21,7 @@
 mod biarc;
 mod chain;
 mod curve;
+mod duplicates;
 mod dxf;
 mod fault;
 mod measure;

@@ -51,4 +51,11 @@ impl Strand {
         let next = if edge + 1 == self.vertices.len() { 0 } else { edge + 1 };
         (self.vertices[edge], self.vertices[next], self.bulges[edge])
     }
+
+    /// Runs an open strand the other way.
+    pub(super) fn turn_round(&mut self) {
+        self.vertices.reverse();
+        self.bulges.reverse();
+        self.bulges.iter_mut().for_each(|bulge| *bulge = -*bulge);
+    }
 }

@@ -89,7 +89,7 @@ pub(super) fn survey(
     let chained = chain::chain(strands, join, options.skip_open, &mut |done, all| tell("joining", done, all));
     let Chained { loops, open, forks, without_length, duplicates, joints, largest_gap } = chained;
     let measures: Vec<Measure> = loops.iter().map(Measure::of).collect();
-    let regions = nest::regions(&loops, &measures, &mut |done, all| tell("nesting", done, all));
+    let regions = nest::regions(&loops, &measures, &mut |done, all| tell("nesting", done, all))?;
 
     let mut report = Report {
         schema: 1,
