@@ -3,6 +3,7 @@
 mod check;
 mod json;
 mod knobs;
+mod materials;
 mod output;
 mod progress;
 mod rank;
@@ -75,6 +76,8 @@ enum Command {
     Score(score::ScoreArgs),
     /// Score saved grasps again; exit code 1 when one no longer holds or the part changed
     Check(check::CheckArgs),
+    /// List the built-in densities and friction pairs with their sources
+    Materials(materials::MaterialsArgs),
     /// Print the default setup as a file to start from
     Setup,
 }
@@ -120,6 +123,7 @@ fn run(cli: Cli) -> Result<Answer, Stop> {
         Some(Command::Rank(args)) => rank::run(&args),
         Some(Command::Score(args)) => score::run(&args),
         Some(Command::Check(args)) => check::run(&args),
+        Some(Command::Materials(args)) => materials::run(&args),
         Some(Command::Setup) => {
             output::print(&file::default_setup_text())?;
             Ok(Answer::Done)

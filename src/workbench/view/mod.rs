@@ -238,7 +238,7 @@ fn put(buf: &mut Buffer, area: Rect, text: &str, style: Style) {
 }
 
 /// Breaks text into lines of at most so many characters, at spaces where there are any.
-fn wrapped(text: &str, width: usize) -> Vec<String> {
+pub(crate) fn wrapped(text: &str, width: usize) -> Vec<String> {
     let width = width.max(1);
     let mut lines = Vec::new();
     let mut line = String::new();

@@ -196,7 +196,7 @@ impl Page<'_> {
             }
             let friction = &self.state.setup().friction;
             if let Some(condition) = friction.condition {
-                meaning.push_str(&format!(" ({})", condition_word(condition)));
+                meaning.push_str(&format!(" ({})", condition.word()));
             }
             self.tell("band", "", look.plain(), &meaning);
             if let (true, Some(source)) = (self.full, &friction.source) {
@@ -299,13 +299,4 @@ impl Page<'_> {
 
 fn spot_word(spot: &Spot) -> String {
     format!("{}:{} @ {}", spot.edge.ring, spot.edge.edge, number::at(spot.along_mm))
-}
-
-fn condition_word(condition: crate::mechanics::Condition) -> &'static str {
-    use crate::mechanics::Condition;
-    match condition {
-        Condition::Dry => "dry",
-        Condition::Oily => "oily",
-        Condition::Wet => "wet",
-    }
 }
