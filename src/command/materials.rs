@@ -45,9 +45,9 @@ pub(super) fn run(args: &MaterialsArgs) -> Result<Answer, Stop> {
         )));
     }
     if args.json {
-        output::print_json(&Report::of(&chosen))?
+        output::print_json(&Report::of(&chosen))?;
     } else {
-        output::print(&in_words(&chosen))?
+        output::print(&in_words(&chosen))?;
     }
     Ok(Answer::Done)
 }
@@ -56,17 +56,17 @@ fn in_words(chosen: &Chosen) -> String {
     let mut text = String::new();
     // Writing to a String cannot fail.
     if !chosen.densities.is_empty() {
-        let _ = writeln!(text, "{:<34}{:>6}  {:<11}source", "density", "kg/m3", "range");
+        let _ = writeln!(text, "{:<27}{:>6}  {:<11}source", "density", "kg/m3", "range");
         for row in &chosen.densities {
             let range = row.range.map_or(String::new(), |[low, high]| format!("{low}-{high}"));
             let name = row.names().collect::<Vec<_>>().join(", ");
-            let _ = writeln!(text, "{name:<34}{:>6}  {range:<11}{}", row.kg_m3, row.source);
+            let _ = writeln!(text, "{name:<27}{:>6}  {range:<11}{}", row.kg_m3, row.source);
         }
         text.push('\n');
     }
     if !chosen.pairs.is_empty() {
-        let _ = writeln!(text, "{:<46}{:<13} quoted before slip", "friction of a pair", "   plan");
-        let _ = writeln!(text, "{:<46}{:>5}{:>7}  {:<11}oily", "", "dry", "oily", "dry");
+        let _ = writeln!(text, "{:<42}{:<13} quoted before slip", "friction of a pair", "   plan");
+        let _ = writeln!(text, "{:<42}{:>5}{:>7}  {:<11}oily", "", "dry", "oily", "dry");
         for pair in &chosen.pairs {
             write_pair(&mut text, pair);
         }
@@ -89,7 +89,7 @@ fn write_pair(text: &mut String, pair: &Pair) {
     let plan = |condition| pair.plan(condition).map_or("-".to_owned(), |mu| format!("{mu:.2}"));
     let _ = writeln!(
         text,
-        "{:<46}{:>5}{:>7}  {:<11}{}",
+        "{:<42}{:>5}{:>7}  {:<11}{}",
         pair.name,
         plan(Dry),
         plan(Oily),

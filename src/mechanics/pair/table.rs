@@ -103,7 +103,7 @@ pub static PAIRS: &[Pair] = &[
         &[one(Dry, 0.50, &SLIP_CLASSES)],
         "with a zinc silicate coat 0.40 in the code and 0.20 met in tests (SCI Advisory Desk AD 383)",
     ),
-    pair("steel, galvanised and roughened (slip joint)", (0.30, 0.0), &[one(Dry, 0.35, &SLIP_CLASSES)], ""),
+    pair("steel, galvanised, roughened (slip joint)", (0.30, 0.0), &[one(Dry, 0.35, &SLIP_CLASSES)], ""),
     pair("metal, smooth - metal, smooth", (0.20, 0.10), &[one(Dry, 0.2, &CTU), one(Wet, 0.2, &CTU)], ""),
     pair("metal, rough and unpainted - metal", (0.35, 0.15), &[one(Dry, 0.4, &CTU)], ""),
     pair(
@@ -319,7 +319,7 @@ pub static PAIRS: &[Pair] = &[
         "",
     ),
     pair(
-        "wood, planed - plywood, aluminium, stainless",
+        "planed wood - plywood or smooth metal",
         (0.20, 0.0),
         &[
             one(Dry, 0.3, &CTU).about("on plywood"),

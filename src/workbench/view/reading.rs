@@ -294,6 +294,10 @@ impl Page<'_> {
             assumed.push_str("; read under the present knobs, the list is being ranked");
         }
         self.tell("assumed", "", state.look.plain(), &assumed);
+        if let (Some(row), Some(mass)) = (state.density, state.order.scene.part().mass()) {
+            let how = format!("by {} kg/m3 of {}, chosen here ({})", row.kg_m3, row.name, row.source);
+            self.tell("mass", &number::kg(mass.kg), state.look.plain(), &how);
+        }
     }
 }
 
