@@ -1,6 +1,8 @@
 //! What is asked: the command line, its exit codes, one file for each command.
 
 mod check;
+mod drawing;
+mod import;
 mod json;
 mod knobs;
 mod materials;
@@ -38,7 +40,7 @@ struct Cli {
 
 #[derive(Debug, Args)]
 struct Open {
-    /// Part file to open the workbench on
+    /// Part file to open the workbench on; a drawing (DXF, SVG) becomes one first
     #[arg(required = true)]
     part: Option<PathBuf>,
     #[command(flatten)]
@@ -76,6 +78,8 @@ enum Command {
     Score(score::ScoreArgs),
     /// Score saved grasps again; exit code 1 when one no longer holds or the part changed
     Check(check::CheckArgs),
+    /// Make a part file of the outline in a DXF or SVG drawing
+    Import(import::ImportArgs),
     /// List the built-in densities and friction pairs with their sources
     Materials(materials::MaterialsArgs),
     /// Print the default setup as a file to start from
@@ -123,6 +127,7 @@ fn run(cli: Cli) -> Result<Answer, Stop> {
         Some(Command::Rank(args)) => rank::run(&args),
         Some(Command::Score(args)) => score::run(&args),
         Some(Command::Check(args)) => check::run(&args),
+        Some(Command::Import(args)) => import::run(&args),
         Some(Command::Materials(args)) => materials::run(&args),
         Some(Command::Setup) => {
             output::print(&file::default_setup_text())?;
@@ -141,6 +146,15 @@ fn open(args: Open) -> Result<Answer, Stop> {
             shown(&part_path.display().to_string())
         )));
     }
+    let part_path = if drawing::is_drawing(&part_path) {
+        match drawing::ask(&part_path, &mut io::stdin().lock(), &mut io::stdout())? {
+            drawing::Asked::Open(written) => written,
+            drawing::Asked::Left => return Ok(Answer::Done),
+            drawing::Asked::Refused(lines) => return Err(Stop::Bad(lines)),
+        }
+    } else {
+        part_path
+    };
     let part = knobs::part(&part_path)?;
     let setup = args.knobs.setup()?;
     args.knobs.use_threads_everywhere()?;

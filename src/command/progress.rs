@@ -22,15 +22,24 @@ impl ProgressLine {
         Self { state: seen.then(|| Mutex::new((Instant::now() + PATIENCE, 0))) }
     }
 
-    /// Tells how far the work is.
+    /// Tells how far a ranking is.
     pub(super) fn tell(&self, done: u64, total: u64) {
+        self.say(done, total, || format!("of {total} candidate sets"));
+    }
+
+    /// Tells how far a step of another kind of work is.
+    pub(super) fn tell_of(&self, step: &str, done: u64, total: u64) {
+        self.say(done, total, || step.to_owned());
+    }
+
+    fn say(&self, done: u64, total: u64, words: impl FnOnce() -> String) {
         let Some(Ok(mut state)) = self.state.as_ref().map(Mutex::lock) else { return };
         let now = Instant::now();
         if now < state.0 {
             return;
         }
         let share = done as f64 / total.max(1) as f64 * 100.0;
-        let line = format!("{share:3.0} % of {total} candidate sets");
+        let line = format!("{share:3.0} % {}", words());
         let width = state.1.max(line.len());
         let _ = write!(io::stderr(), "\r{line:width$}");
         *state = (now + PAUSE, width);

@@ -1,6 +1,7 @@
 //! What is kept: part, setup and grasp files, and careful writing.
 
 mod digest;
+pub mod drawing;
 mod grasp_file;
 mod grasp_text;
 mod part_file;

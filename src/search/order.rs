@@ -51,6 +51,11 @@ pub(super) fn quanta(score: f64) -> i64 {
     (score / SCORE_QUANTUM).round() as i64
 }
 
+/// The least score that is rounded to so many quanta.
+pub(super) fn below(quanta: i64) -> f64 {
+    (quanta as f64 - 0.5) * SCORE_QUANTUM
+}
+
 /// A friction factor in quanta.
 pub(super) fn friction_quanta(factor: f64) -> i64 {
     (factor / FRICTION_QUANTUM).round() as i64

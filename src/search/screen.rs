@@ -88,6 +88,8 @@ impl Tally {
     }
 }
 
+/// Quanta of a placement on arcs that nobody has asked for yet.
+const UNKNOWN: i64 = i64::MIN;
 /// Sets looked at between two questions whether to stop.
 const BETWEEN_CANCEL: u64 = 4096;
 
@@ -183,7 +185,7 @@ struct Run<'a, 'b> {
     /// The candidate set being looked at.
     set: SiteSet,
     best: Option<Candidate>,
-    lead_friction_known: bool,
+    lead_is_settled: bool,
     /// Direction in which the family's best grasp is weakest under a limit on each finger.
     weak_per_finger: Option<Vector3<f64>>,
     looked: u64,
@@ -201,7 +203,7 @@ impl<'a, 'b> Run<'a, 'b> {
             at_factor: None,
             set: SiteSet::default(),
             best: None,
-            lead_friction_known: false,
+            lead_is_settled: false,
             weak_per_finger: None,
             looked: 0,
             tally,
@@ -218,14 +220,14 @@ impl<'a, 'b> Run<'a, 'b> {
             self.family.hash(&mut hasher);
             self.tally.spread.insert(hasher.finish());
         }
-        if !self.lead_friction_known {
+        if !self.lead_is_settled {
             self.set = best.sites;
             if let Some(worst) = self.tally.top.worst().copied()
                 && !self.comes_before(&mut best, &worst)
             {
                 return;
             }
-            best.friction = self.friction_quanta(&best.sites);
+            self.settle(&mut best);
         }
         self.tally.top.offer(best, self.family.group());
     }
@@ -267,9 +269,9 @@ impl<'a, 'b> Run<'a, 'b> {
         let Some(score) = self.closed_score() else { return Ok(()) };
         self.tally.closed += 1;
         let floors = &self.screen.scene.setup().floors;
-        let room_mm = (0..self.k).map(|finger| self.site(finger).room_mm).fold(f64::INFINITY, f64::min);
+        let room_mm = self.room_mm();
         let straight_mm = score.torque_up.min(score.torque_down) * self.screen.scale_mm;
-        let mut placement_mm = straight_mm.min(room_mm);
+        let placement_mm = straight_mm.min(room_mm);
         if score.signed_quality < floors.quality
             || placement_mm < floors.placement_mm
             || (floors.placement_mm > 0.0 && !self.keeps_placement(floors.placement_mm))
@@ -282,22 +284,25 @@ impl<'a, 'b> Run<'a, 'b> {
         let Some(mut key) = self.key(&score, order::quanta(placement_mm / self.screen.scale_mm)) else {
             return Ok(());
         };
+        let mut placement = order::quanta(placement_mm / self.screen.scale_mm);
         if self.forces.curved {
-            // So far the placement is that on straight edges, an upper bound; the guarantee on arcs costs more, and is
-            // worked out only for who may come before the one in front.
-            let front = match self.screen.listing {
-                Listing::Families => self.best,
-                Listing::Members => self.tally.top.worst().copied(),
-            };
-            if front.is_some_and(|front| key < front.key) {
-                return Ok(());
-            }
-            placement_mm = self.on_arcs(|on_arcs| on_arcs.tolerance_mm(straight_mm)).min(room_mm);
+            // So far the placement is that on straight edges, an upper bound. The guarantee on arcs costs more: it is
+            // worked out for ties, and by placement only for who passes one question at the tolerance in front.
+            placement = UNKNOWN;
             if self.screen.key == Key::Placement {
-                key = order::quanta(placement_mm / self.screen.scale_mm);
+                let front = match self.screen.listing {
+                    Listing::Families => self.best,
+                    Listing::Members => self.tally.top.worst().copied(),
+                };
+                if let Some(front) = front
+                    && (key < front.key || !self.keeps_placement(order::below(front.key) * self.screen.scale_mm))
+                {
+                    return Ok(());
+                }
+                placement = self.placement_on_arcs(straight_mm, room_mm);
+                key = placement;
             }
         }
-        let placement = order::quanta(placement_mm / self.screen.scale_mm);
         let mut candidate = Candidate { key, friction: 0, placement, room, sites: self.set };
         match self.screen.listing {
             Listing::Families => {
@@ -308,7 +313,7 @@ impl<'a, 'b> Run<'a, 'b> {
             Listing::Members => {
                 let worst = self.tally.top.worst().copied();
                 if worst.is_none_or(|worst| self.comes_before(&mut candidate, &worst)) {
-                    candidate.friction = self.friction_quanta(&candidate.sites);
+                    self.settle(&mut candidate);
                     self.tally.top.offer(candidate, candidate.sites);
                 }
             }
@@ -342,10 +347,37 @@ impl<'a, 'b> Run<'a, 'b> {
         })
     }
 
-    /// Whether the current set becomes the family's best. A leader's friction needed is found only once someone ties
-    /// with it: while quality rises along an edge the lead changes at every step.
+    /// Quanta of the guarantee on arcs for the current set.
+    fn placement_on_arcs(&self, straight_mm: f64, room_mm: f64) -> i64 {
+        let mm = self.on_arcs(|on_arcs| on_arcs.tolerance_mm(straight_mm)).min(room_mm);
+        order::quanta(mm / self.screen.scale_mm)
+    }
+
+    /// Finds what the tie-breaks ask of a candidate and is not known yet.
+    fn settle(&mut self, candidate: &mut Candidate) {
+        candidate.friction = self.friction_quanta(&candidate.sites);
+        self.settle_placement(candidate);
+    }
+
+    fn settle_placement(&mut self, candidate: &mut Candidate) {
+        if candidate.placement == UNKNOWN {
+            let current = std::mem::replace(&mut self.set, candidate.sites);
+            let score = self.closed_score();
+            let straight_mm = score.map_or(0.0, |s| s.torque_up.min(s.torque_down)) * self.screen.scale_mm;
+            candidate.placement = self.placement_on_arcs(straight_mm, self.room_mm());
+            self.set = current;
+        }
+    }
+
+    /// Distance of the current set's fingers to the ends of their stretches, the least, mm.
+    fn room_mm(&self) -> f64 {
+        (0..self.k).map(|finger| self.site(finger).room_mm).fold(f64::INFINITY, f64::min)
+    }
+
+    /// Whether the current set becomes the family's best. What the tie-breaks ask of a leader is found only once someone
+    /// ties with it: while quality rises along an edge the lead changes at every step.
     fn takes_lead(&mut self, candidate: &mut Candidate) -> bool {
-        self.lead_friction_known &= match self.best {
+        self.lead_is_settled &= match self.best {
             None => false,
             Some(best) => best.key >= candidate.key,
         };
@@ -355,14 +387,14 @@ impl<'a, 'b> Run<'a, 'b> {
             Ordering::Greater => return false,
             Ordering::Equal => {}
         }
-        if !self.lead_friction_known {
-            best.friction = self.friction_quanta(&best.sites);
+        if !self.lead_is_settled {
+            self.settle(&mut best);
             self.best = Some(best);
-            self.lead_friction_known = true;
+            self.lead_is_settled = true;
         }
         let takes = self.comes_before(candidate, &best);
         if takes && candidate.friction != best.friction {
-            candidate.friction = self.friction_quanta(&candidate.sites);
+            self.settle(candidate);
         }
         takes
     }
@@ -431,6 +463,7 @@ impl<'a, 'b> Run<'a, 'b> {
             }
             Ordering::Greater => false,
             Ordering::Equal => {
+                self.settle_placement(candidate);
                 candidate.friction = other.friction;
                 *candidate < *other
             }
