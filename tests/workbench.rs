@@ -97,7 +97,7 @@ fn every_size_is_drawn_without_a_panic() {
     let mut desk = Desk::hinge();
     desk.keys("jmc");
     let mut screens = vec![desk.state.clone()];
-    for script in ["<cr>", "?", "M", "n", "=x<cr>", "q"] {
+    for script in ["<cr>", "?", "M", "n", "=x<cr>", "q", "tjj", "tG", "djj", "dG"] {
         let mut other = Desk { state: desk.state.clone(), saved: Vec::new(), other: Vec::new(), ..Desk::hinge() };
         other.keys(script);
         screens.push(other.state);
@@ -184,7 +184,7 @@ fn without_colour_every_cell_has_the_terminals_own_and_with_it_only_named_ones()
 fn ascii_mode_shows_nothing_but_ascii() {
     let mut desk = Desk::hinge();
     desk.keys("jmc");
-    for script in ["", "<cr>", "<esc>?", "<esc>M", "<esc>q"] {
+    for script in ["", "<cr>", "<esc>?", "<esc>M", "<esc>tj", "<esc>dj", "<esc>q"] {
         let screen = desk.keys(script).screen(100, 40);
         assert!(screen.is_ascii(), "{:?}", screen.chars().find(|c| !c.is_ascii()));
     }

@@ -5,6 +5,7 @@ mod drawing;
 mod import;
 mod json;
 mod knobs;
+mod materials;
 mod output;
 mod progress;
 mod rank;
@@ -79,6 +80,8 @@ enum Command {
     Check(check::CheckArgs),
     /// Make a part file of the outline in a DXF or SVG drawing
     Import(import::ImportArgs),
+    /// List the built-in densities and friction pairs with their sources
+    Materials(materials::MaterialsArgs),
     /// Print the default setup as a file to start from
     Setup,
 }
@@ -125,6 +128,7 @@ fn run(cli: Cli) -> Result<Answer, Stop> {
         Some(Command::Score(args)) => score::run(&args),
         Some(Command::Check(args)) => check::run(&args),
         Some(Command::Import(args)) => import::run(&args),
+        Some(Command::Materials(args)) => materials::run(&args),
         Some(Command::Setup) => {
             output::print(&file::default_setup_text())?;
             Ok(Answer::Done)

@@ -202,7 +202,7 @@ fn note_unknown_material(root: &Table<'_>, material: Option<&str>, mass_is_known
     if mass_is_known || material::density(name).is_some() {
         return;
     }
-    let near = nearest(name.trim(), material::DENSITIES.iter().map(|row| row.name))
+    let near = nearest(name.trim(), material::DENSITIES.iter().flat_map(material::Density::names))
         .map_or(String::new(), |row| format!(" (nearest in the table: \"{row}\")"));
     root.sheet().note(
         root.place("material"),

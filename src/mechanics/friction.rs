@@ -21,6 +21,17 @@ pub enum Condition {
     Wet,
 }
 
+impl Condition {
+    /// The word for it.
+    pub fn word(self) -> &'static str {
+        match self {
+            Self::Dry => "dry",
+            Self::Oily => "oily",
+            Self::Wet => "wet",
+        }
+    }
+}
+
 /// Friction of the finger tips on the part: a band, never one number alone.
 #[derive(Debug, Clone, PartialEq)]
 pub struct FrictionBand {

@@ -11,6 +11,7 @@ pub mod escape;
 pub mod force_polygon;
 pub mod friction;
 pub mod load;
+pub mod pair;
 pub mod placement;
 pub mod program;
 pub mod quality;
@@ -23,6 +24,7 @@ pub use contact::Contact;
 pub use escape::Escape;
 pub use friction::{Condition, FrictionBand};
 pub use load::LoadCase;
+pub use pair::Pair;
 pub use quality::Weakest;
 pub use wrench::{Frame, Lever, Wrenches};
 

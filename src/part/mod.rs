@@ -9,12 +9,14 @@ mod fault;
 mod mass;
 pub mod material;
 mod outline;
+mod source;
 mod sweep;
 
 pub use edge::{Arc, BULGE_LARGEST, Edge, EdgeId};
 pub use fault::{PartFault, PartFaults, Touch};
 pub use mass::{Mass, RegionMoments};
 pub use outline::Outline;
+pub use source::Source;
 
 use nalgebra::Point2;
 use std::collections::BTreeMap;
@@ -174,9 +176,20 @@ impl Part {
         let thickness_mm = d.thickness.map(|t| t * d.unit_mm);
         let density =
             d.density_kg_m3.or_else(|| d.material.as_deref().and_then(material::density).map(|row| row.kg_m3));
-        let mass_kg = d.mass_kg.or_else(|| Some(density? * thickness_mm? * outline.region().area_mm2 * 1e-9));
+        let mass_kg = d.mass_kg.or_else(|| Some(mass_of(density?, thickness_mm?, outline.region())));
         let mass = mass_kg.map(|kg| Mass::of(kg, outline.region(), com));
         Ok(Self { name: d.name, outline, thickness_mm, material: d.material, mass, com, keep_outs, edge_friction })
+    }
+
+    /// The same part of a material with a density in kg/m3; its outline, marks and centre of mass stay. Nothing when the
+    /// thickness is not known, for then no density gives a mass, or when the density cannot be one.
+    pub fn with_density(&self, material: &str, kg_m3: f64) -> Option<Self> {
+        if !(kg_m3 > 0.0 && kg_m3 <= DENSEST_KG_M3) {
+            return None;
+        }
+        let region = self.outline.region();
+        let mass = Mass::of(mass_of(kg_m3, self.thickness_mm?, region), region, self.com);
+        Some(Self { material: Some(material.to_owned()), mass: Some(mass), ..self.clone() })
     }
 
     /// Name for people, as written in the file.
@@ -244,6 +257,11 @@ impl Part {
 const DENSEST_KG_M3: f64 = 1e5;
 /// Larger numbers are slips of the keyboard, and would overflow on the way to a force.
 const HEAVIEST_KG: f64 = 1e12;
+
+/// Mass in kg of a plate of a density and a thickness.
+fn mass_of(kg_m3: f64, thickness_mm: f64, region: &RegionMoments) -> f64 {
+    kg_m3 * thickness_mm * region.area_mm2 * 1e-9
+}
 
 /// Bulges by edge; those that are none, or of no edge, are noted.
 fn checked_arcs(d: &PartDescription, faults: &mut Vec<PartFault>) -> BTreeMap<EdgeId, f64> {

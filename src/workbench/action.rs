@@ -73,6 +73,10 @@ pub enum Scope {
     Page,
     /// The list of marks.
     Marks,
+    /// The table of friction pairs.
+    Pairs,
+    /// The table of densities.
+    Materials,
     /// A line of text being typed.
     Entry,
     /// Unsaved marks at the end.
@@ -92,6 +96,8 @@ impl Scope {
             None => Self::Bench,
             Some(Layer::Help { .. } | Layer::Reading { .. } | Layer::Fault { .. }) => Self::Page,
             Some(Layer::Marks { .. }) => Self::Marks,
+            Some(Layer::Pairs { .. }) => Self::Pairs,
+            Some(Layer::Materials { .. }) => Self::Materials,
             Some(Layer::Entry(_)) => Self::Entry,
             Some(Layer::Ask(Question::Quit)) => Self::AskQuit,
             Some(Layer::Ask(Question::Reload)) => Self::AskReload,
@@ -155,6 +161,12 @@ pub enum Action {
     Note,
     /// The list of marks.
     OpenMarks,
+    /// The table of friction pairs.
+    OpenPairs,
+    /// The table of densities.
+    OpenMaterials,
+    /// Dry or oily, in the table of pairs.
+    OtherCondition,
     /// Save unsaved marks.
     Save,
     /// The help page.
@@ -226,6 +238,10 @@ fn any_mark(state: &State) -> bool {
     !state.marks.is_empty()
 }
 
+fn no_mass_in_the_file(state: &State) -> bool {
+    state.opened.part.mass().is_none()
+}
+
 fn any_unsaved(state: &State) -> bool {
     state.unsaved() > 0
 }
@@ -254,6 +270,15 @@ pub static TABLE: &[Row] = &[
     row(A::Note, S::Bench, &[C('w')], "why", "mark the grasp and note why", any_row),
     row(A::OpenMarks, S::Bench, &[C('M')], "marks", "list the marks, also those no longer ranked", any_mark),
     row(A::MuEnter, S::Bench, &[C('=')], "set mu", "type mu", always),
+    row(A::OpenPairs, S::Bench, &[C('t')], "pairs", "take mu from the table of friction pairs", always),
+    row(
+        A::OpenMaterials,
+        S::Bench,
+        &[C('d')],
+        "density",
+        "take a density from the table, where the part file gives no mass",
+        no_mass_in_the_file,
+    ),
     row(A::MuUpCoarse, S::Bench, &[C('>')], "", "mu up by 0.05", always),
     row(A::MuDownCoarse, S::Bench, &[C('<')], "", "mu down by 0.05", always),
     row(A::SpacingFiner, S::Bench, &[C('.')], "finer", "sites closer together (spacing x 0.8)", always),
@@ -279,6 +304,23 @@ pub static TABLE: &[Row] = &[
     row(A::Accept, S::Marks, &[Key::Enter], "find in the list", "", any_mark),
     row(A::Mark, S::Marks, &[C('m'), C(' ')], "unmark", "", any_mark),
     row(A::Save, S::Marks, &[C('s')], "save", "", any_unsaved),
+    row(A::Accept, S::Pairs, &[Key::Enter], "take", "", always),
+    row(A::OtherCondition, S::Pairs, &[C('l'), C('h'), Key::Right, Key::Left], "dry or oily", "", always),
+    row(A::Close, S::Pairs, &[Key::Esc, C('q'), C('t')], "close", "", always),
+    row(A::Down, S::Pairs, &[C('j'), Key::Down], "down", "", always),
+    row(A::Up, S::Pairs, &[C('k'), Key::Up], "up", "", always),
+    row(A::PageDown, S::Pairs, &[C(' '), C('J'), Key::PageDown], "page", "", always),
+    row(A::PageUp, S::Pairs, &[C('K'), Key::PageUp], "", "", always),
+    row(A::First, S::Pairs, &[C('g'), Key::Home], "first", "", always),
+    row(A::Last, S::Pairs, &[C('G'), Key::End], "last", "", always),
+    row(A::Accept, S::Materials, &[Key::Enter], "take", "", always),
+    row(A::Close, S::Materials, &[Key::Esc, C('q'), C('d')], "close", "", always),
+    row(A::Down, S::Materials, &[C('j'), Key::Down], "down", "", always),
+    row(A::Up, S::Materials, &[C('k'), Key::Up], "up", "", always),
+    row(A::PageDown, S::Materials, &[C(' '), C('J'), Key::PageDown], "page", "", always),
+    row(A::PageUp, S::Materials, &[C('K'), Key::PageUp], "", "", always),
+    row(A::First, S::Materials, &[C('g'), Key::Home], "first", "", always),
+    row(A::Last, S::Materials, &[C('G'), Key::End], "last", "", always),
     row(A::Accept, S::Entry, &[Key::Enter], "take", "", always),
     row(A::Close, S::Entry, &[Key::Esc], "leave", "", always),
     row(A::Backspace, S::Entry, &[Key::Backspace, Ctrl('h')], "", "", always),
@@ -322,6 +364,12 @@ pub fn footer(state: &State) -> impl Iterator<Item = &'static Row> {
 /// The keys of a row, joined for reading.
 pub fn keys_of(row: &Row) -> String {
     row.keys.iter().map(Key::to_string).collect::<Vec<_>>().join(" ")
+}
+
+/// The key an action of the bench has first.
+pub fn key_of(action: Action) -> String {
+    let row = TABLE.iter().find(|row| row.scope == Scope::Bench && row.action == action);
+    row.and_then(|row| row.keys.first()).map_or_else(String::new, Key::to_string)
 }
 
 /// The rows of the help page: the bench's keys, then those that hold everywhere.

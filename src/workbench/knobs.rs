@@ -4,6 +4,7 @@ use super::look::Marker;
 use super::state::{Job, State};
 use super::update::Effect;
 use crate::hand::FingerCount;
+use crate::part::Part;
 use crate::search::{Key, Listing, Scene, Setup};
 use std::sync::Arc;
 
@@ -29,6 +30,17 @@ pub(super) fn turn(state: &mut State, change: impl FnOnce(&mut Setup)) -> Result
         return Err(fault.to_string());
     }
     let scene = Scene::new(Arc::clone(state.order.scene.part()), setup).map_err(|fault| fault.to_string())?;
+    state.order.scene = Arc::new(scene);
+    state.read();
+    Ok(rank(state))
+}
+
+/// Takes another part in place of the present one, of the same outline, and ranks again.
+///
+/// # Errors
+/// What is wrong with the setup for this part; everything stays as it was.
+pub(super) fn take_part(state: &mut State, part: Arc<Part>) -> Result<Vec<Effect>, String> {
+    let scene = Scene::new(part, state.setup().clone()).map_err(|fault| fault.to_string())?;
     state.order.scene = Arc::new(scene);
     state.read();
     Ok(rank(state))

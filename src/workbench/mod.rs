@@ -12,6 +12,7 @@ mod marks;
 mod recovery;
 mod run;
 pub mod state;
+mod tables;
 mod terminal;
 pub mod update;
 pub mod view;

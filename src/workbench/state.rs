@@ -4,7 +4,9 @@ use super::look::{ColorChoice, Look, Marker};
 use crate::file::Keep;
 use crate::hand::Stretch;
 use crate::mechanics::assess::Doubt;
-use crate::mechanics::{Assessment, Verdict};
+use crate::mechanics::{Assessment, Condition, FrictionBand, Verdict};
+use crate::part::Part;
+use crate::part::material::Density;
 use crate::search::job::Request;
 use crate::search::{Grasp, Key, Listed, Listing, Ranking, Scene, Setup, Spot};
 use std::path::PathBuf;
@@ -173,6 +175,18 @@ pub enum Layer {
         /// Selected mark.
         at: usize,
     },
+    /// The table of friction pairs.
+    Pairs {
+        /// Selected row; the first is the friction the workbench was opened with.
+        at: usize,
+        /// Dry or oily: the planning value that would be taken.
+        condition: Condition,
+    },
+    /// The table of densities.
+    Materials {
+        /// Selected row; the first is the part as its file has it.
+        at: usize,
+    },
     /// A line of text being typed.
     Entry(Entry),
     /// A question.
@@ -188,6 +202,15 @@ pub enum Panel {
     Outline,
     /// The reading.
     Reading,
+}
+
+/// What the workbench was opened with, to go back to.
+#[derive(Debug, Clone)]
+pub struct Opened {
+    /// The part as its file has it.
+    pub part: Arc<Part>,
+    /// Friction by file and command line.
+    pub friction: FrictionBand,
 }
 
 /// All of it.
@@ -219,6 +242,10 @@ pub struct State {
     pub panel: Panel,
     /// Colours, marker and cell shape.
     pub look: Look,
+    /// What the workbench was opened with.
+    pub opened: Opened,
+    /// The row of the table that stands in for the density the part file does not give.
+    pub density: Option<&'static Density>,
     /// Where marks are saved.
     pub grasp_path: PathBuf,
     pub(super) quit_when_saved: bool,
@@ -257,6 +284,8 @@ impl State {
                 aspect: 2.0,
                 utf8: true,
             },
+            opened: Opened { part: Arc::clone(&options.part), friction: options.setup.friction.clone() },
+            density: None,
             grasp_path: options.grasp_path.clone(),
             quit_when_saved: false,
             draft: None,

@@ -5,6 +5,7 @@ use super::entry;
 use super::knobs;
 use super::marks;
 use super::state::{Entry, EntryKind, Job, Layer, Panel, Question, Reading, State};
+use super::tables;
 use crate::file::Keep;
 use crate::search::job::{News, Request, What};
 
@@ -174,6 +175,7 @@ fn act(state: &mut State, action: Action) -> Vec<Effect> {
             Vec::new()
         }
         Some(Layer::Marks { .. }) => marks::act(state, action),
+        Some(Layer::Pairs { .. } | Layer::Materials { .. }) => tables::act(state, action),
         Some(Layer::Entry(_)) => typing(state, action),
         Some(&Layer::Ask(question)) => answer(state, question, action),
     }
@@ -212,6 +214,8 @@ fn bench(state: &mut State, action: Action) -> Vec<Effect> {
         Action::OpenReading => state.layers.push(Layer::Reading { top: 0 }),
         Action::Help => state.layers.push(Layer::Help { top: 0 }),
         Action::OpenMarks => state.layers.push(Layer::Marks { at: 0 }),
+        Action::OpenPairs => tables::open_pairs(state),
+        Action::OpenMaterials => tables::open_materials(state),
         Action::Mark => marks::toggle(state),
         Action::Name => open_entry(state, EntryKind::Name),
         Action::Note => open_entry(state, EntryKind::Note),

@@ -2,6 +2,7 @@
 
 use super::super::action;
 use super::super::state::{Job, State};
+use super::super::tables;
 use super::{number, put, shifted};
 use crate::file::shown;
 use crate::search::Listing;
@@ -52,7 +53,7 @@ fn columns(text: &str) -> usize {
 }
 
 /// A text cut to a number of columns, with two dots where something is missing.
-fn cut(text: &str, most: usize) -> String {
+pub(super) fn cut(text: &str, most: usize) -> String {
     if columns(text) <= most {
         return text.to_owned();
     }
@@ -87,6 +88,22 @@ pub(super) fn message(state: &State, area: Rect, buf: &mut Buffer) {
     };
     let style = if state.message.is_some() { state.look.title() } else { state.look.plain() };
     put(buf, area, &text, style);
+    if state.message.is_none() && state.layers.is_empty() && !matches!(state.job, Job::Failed(_)) {
+        missing(state, shifted(area, columns(&text) as u16), buf);
+    }
+}
+
+/// What the setup or the part leaves out, as far as it fits.
+fn missing(state: &State, area: Rect, buf: &mut Buffer) {
+    let mut at = area;
+    for text in tables::missing(state) {
+        let gap = if at.x > 0 { 2 } else { 0 };
+        if text.len() + usize::from(gap) > usize::from(at.width) {
+            return;
+        }
+        put(buf, shifted(at, gap), &text, state.look.dim());
+        at = shifted(at, gap + text.len() as u16);
+    }
 }
 
 /// As many keys as fit, most useful first; none is cut in half.

@@ -16,6 +16,7 @@ mod outline;
 mod reading;
 mod sheet;
 mod table;
+mod tables;
 
 use super::state::{Layer, Panel, State};
 use ratatui::Frame;
@@ -58,6 +59,8 @@ pub fn render(state: &State, area: Rect, buf: &mut Buffer) -> Option<Position> {
             page(state, area, title, &dialog::fault_lines(lines, area.width), *top, buf);
         }
         Some(Layer::Marks { at }) => dialog::marks(state, area, *at, buf),
+        Some(Layer::Pairs { at, condition }) => tables::pairs(state, area, *at, *condition, buf),
+        Some(Layer::Materials { at }) => tables::materials(state, area, *at, buf),
         top @ (None | Some(Layer::Entry(_) | Layer::Ask(_))) => {
             bench(state, &layout, buf);
             return match top {
@@ -238,7 +241,7 @@ fn put(buf: &mut Buffer, area: Rect, text: &str, style: Style) {
 }
 
 /// Breaks text into lines of at most so many characters, at spaces where there are any.
-fn wrapped(text: &str, width: usize) -> Vec<String> {
+pub(crate) fn wrapped(text: &str, width: usize) -> Vec<String> {
     let width = width.max(1);
     let mut lines = Vec::new();
     let mut line = String::new();

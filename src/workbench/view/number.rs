@@ -39,6 +39,11 @@ pub(super) fn mm(value: f64) -> String {
     }
 }
 
+/// Mass: about three figures, in kg or g.
+pub(super) fn kg(value: f64) -> String {
+    if value >= 0.9995 { format!("{} kg", mm(value)) } else { format!("{} g", mm(value * 1e3)) }
+}
+
 /// Position in mm: two decimals, without a minus before zero.
 pub(super) fn at(value: f64) -> String {
     let text = format!("{value:.2}");

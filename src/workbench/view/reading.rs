@@ -196,7 +196,7 @@ impl Page<'_> {
             }
             let friction = &self.state.setup().friction;
             if let Some(condition) = friction.condition {
-                meaning.push_str(&format!(" ({})", condition_word(condition)));
+                meaning.push_str(&format!(" ({})", condition.word()));
             }
             self.tell("band", "", look.plain(), &meaning);
             if let (true, Some(source)) = (self.full, &friction.source) {
@@ -294,18 +294,13 @@ impl Page<'_> {
             assumed.push_str("; read under the present knobs, the list is being ranked");
         }
         self.tell("assumed", "", state.look.plain(), &assumed);
+        if let (Some(row), Some(mass)) = (state.density, state.order.scene.part().mass()) {
+            let how = format!("by {} kg/m3 of {}, chosen here ({})", row.kg_m3, row.name, row.source);
+            self.tell("mass", &number::kg(mass.kg), state.look.plain(), &how);
+        }
     }
 }
 
 fn spot_word(spot: &Spot) -> String {
     format!("{}:{} @ {}", spot.edge.ring, spot.edge.edge, number::at(spot.along_mm))
-}
-
-fn condition_word(condition: crate::mechanics::Condition) -> &'static str {
-    use crate::mechanics::Condition;
-    match condition {
-        Condition::Dry => "dry",
-        Condition::Oily => "oily",
-        Condition::Wet => "wet",
-    }
 }
