@@ -9,7 +9,10 @@ use super::strand::Strand;
 use kurbo::{Point, Vec2};
 
 /// Points of the curve held against each pair of arcs.
-const SAMPLES: usize = 12;
+const SAMPLES: usize = 16;
+/// Part of the sagitta that the samples may use up: between two of them the distance may be larger, most where the curve
+/// turns sharply.
+const SAMPLED: f64 = 0.75;
 /// Halvings of a curve before it is taken as straight.
 const DEEPEST: u32 = 24;
 /// Largest angle between an arc's chord and its end tangent, rad.
@@ -35,6 +38,7 @@ pub(super) fn trace(curve: &impl Curve, sagitta: f64, strand: &mut Strand, most:
         }
         return;
     }
+    let sagitta = SAMPLED * sagitta;
     // What is left to do, the next stretch last.
     let mut waiting = vec![(from, to, DEEPEST)];
     let mut here = (from, start);
@@ -198,9 +202,8 @@ mod tests {
     }
 
     proptest! {
-        #![proptest_config(ProptestConfig::with_cases(300))]
-        /// By definition of the sagitta: every point of the curve is within it of the arcs. Twelve samples to a pair of
-        /// arcs may miss the largest distance by a little.
+        #![proptest_config(ProptestConfig::with_cases(1000))]
+        /// By definition of the sagitta: every point of the curve is within it of the arcs.
         #[test]
         fn arcs_are_within_the_sagitta(
             points in prop::collection::vec((-100.0..100.0f64, -100.0..100.0f64), 4),
@@ -212,7 +215,7 @@ mod tests {
             prop_assert!(arcs.len() < 4000, "{}", arcs.len());
             for i in 0..=700 {
                 let off = distance(&arcs, curve.at(f64::from(i) / 700.0));
-                prop_assert!(off <= 1.05 * sagitta, "{off} at {i} with {} arcs", arcs.len());
+                prop_assert!(off <= sagitta, "{off} at {i} with {} arcs", arcs.len());
             }
         }
 
