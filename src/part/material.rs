@@ -25,7 +25,7 @@ impl Density {
 }
 
 static GERE: Source =
-    Source::seen("Gere, Table H-1", "Gere, Mechanics of Materials, 5th ed., Table H-1 (by a course page)");
+    Source::seen("Gere, Table H-1", "Gere, Mechanics of Materials, 5th ed., Table H-1 (by a reprint)");
 static CALLISTER: Source =
     Source::seen("Callister, App. B", "Callister, Materials Science and Engineering, Appendix B (by a compilation)");
 static CAMBRIDGE: Source = Source::remembered("Cambridge data book", "Cambridge Materials Data Book 2003, p. 10");
