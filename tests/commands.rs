@@ -476,6 +476,17 @@ fn check_notices_a_part_that_changed() {
     assert_eq!(bench.run(&["check", "bar.grasps.toml", "--part", "old.toml"]).status.code(), Some(0));
 }
 
+#[test]
+fn check_never_calls_a_verdict_that_turned_the_same() {
+    let bench = Bench::new();
+    let path = saved(&bench);
+    let text = std::fs::read_to_string(&path).unwrap();
+    std::fs::write(&path, text.replacen("verdict = \"closed\"", "verdict = \"open\"", 1)).unwrap();
+    let output = bench.run(&["check", "bar.grasps.toml"]);
+    assert_eq!(output.status.code(), Some(1));
+    assert_eq!(out(&output), "middle: score changed: saved as open, now closed\naskew: holds\n");
+}
+
 /// Two contacts close with friction iff their chord is strictly inside both cones (Nguyen 1988): "askew" leans by 12 mm
 /// in 40 mm, so it needs mu 0.3; "middle" by 1 in 40 needs 0.025.
 #[test]
@@ -484,8 +495,13 @@ fn check_answers_what_if_with_the_knobs() {
     saved(&bench);
     for (mu, code, middle, askew) in [
         ("0.31", 0, "middle: holds", "askew: holds"),
-        ("0.29", 1, "middle: holds", "askew: no longer closed, now open"),
-        ("0.02", 1, "middle: no longer closed, now open", "askew: no longer closed, now open"),
+        ("0.29", 1, "middle: holds", "askew: no longer closed: saved as closed, now open"),
+        (
+            "0.02",
+            1,
+            "middle: no longer closed: saved as closed, now open",
+            "askew: no longer closed: saved as closed, now open",
+        ),
     ] {
         let output = bench.run(&["check", "bar.grasps.toml", "--mu", mu]);
         assert_eq!(output.status.code(), Some(code), "{}", out(&output));

@@ -4,6 +4,7 @@ use super::knobs::{self, Knobs};
 use super::output::{self, Answer, Stop};
 use super::reading::{Reading, misfits};
 use crate::file::{self, GraspFile, SCORES, SavedGrasp, Scores, shown};
+use crate::mechanics::Verdict;
 use crate::part::Part;
 use crate::search::{Scene, Setup};
 use clap::Args;
@@ -151,14 +152,18 @@ fn check_one<'a>(saved: &'a SavedGrasp, scene: &Scene, asked: bool) -> Checked<'
     checked.changes = changes(&saved.scores, &now);
     checked.reasons = misfits(&reading.grasp);
     checked.reasons.extend(reading.doubts.iter().map(|doubt| format!("two ways of scoring disagree: {doubt}")));
-    let was_closed = saved.scores.verdict == crate::mechanics::Verdict::Closed;
+    let was_closed = saved.scores.verdict == Verdict::Closed;
+    if saved.scores.verdict != reading.assessment.verdict {
+        let (was, now) = (saved.scores.verdict.word(), reading.assessment.verdict.word());
+        checked.reasons.push(format!("saved as {was}, now {now}"));
+    }
     checked.outcome = if !reading.grasp.fits() {
         Outcome::NoLongerFits
     } else if !reading.doubts.is_empty() {
         Outcome::Inconclusive
     } else if !reading.is_closed() {
         if was_closed { Outcome::NoLongerClosed } else { Outcome::NeverClosed }
-    } else if checked.changes.is_empty() || asked {
+    } else if asked || (checked.changes.is_empty() && was_closed) {
         Outcome::Holds
     } else {
         Outcome::ScoreChanged
@@ -192,11 +197,6 @@ fn in_words(report: &CheckReport<'_>, saved: &GraspFile) -> String {
     }
     for checked in &report.grasps {
         let _ = write!(text, "{}: {}", shown(checked.name), checked.outcome.words());
-        if checked.outcome == Outcome::NoLongerClosed
-            && let Some(verdict) = checked.verdict
-        {
-            let _ = write!(text, ", now {verdict}");
-        }
         let value = |score: Option<f64>| score.map_or("none".to_owned(), |score| score.to_string());
         let changes: Vec<_> = checked
             .changes

@@ -240,7 +240,8 @@ impl Page<'_> {
         }
         // A share that would be shown as nothing is left out.
         if weakest.torque().abs() >= 0.005 {
-            let turn = if weakest.torque() > 0.0 { "counter-clockwise" } else { "clockwise" };
+            // In short, so that the shares of both fit 80 columns.
+            let turn = if weakest.torque() > 0.0 { "ccw" } else { "cw" };
             told.push(format!("turning {turn} ({:.2})", weakest.torque().abs()));
         }
         let meaning = format!("fingers give least {}", told.join(", "));
