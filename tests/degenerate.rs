@@ -4,7 +4,7 @@
 //! rounding. Edges parallel to within 1e-15 to 1e-4, several fingers at nearly one point, mu from 0 to 0.5.
 #![allow(clippy::unwrap_used, clippy::expect_used, reason = "a test that cannot go on has failed")]
 
-use holdwright::mechanics::{Contact, Frame, MARGINAL, Verdict, Wrenches, quality};
+use holdwright::mechanics::{Assessment, Contact, Frame, MARGINAL, Verdict, Wrenches, quality};
 use nalgebra::{Point2, Vector2};
 
 const TABLE: &str = include_str!("reference/degenerate.csv");
@@ -63,4 +63,29 @@ fn the_kernel_is_mostly_certain() {
         })
         .count();
     assert!(uncertain < 40, "{uncertain} of 400");
+}
+
+/// A grasp may stay exactly on the edge of closure over a whole range of mu; rounding must not pass for closure there.
+///
+/// Two facing pins, one without friction, and a third across: below mu = 5/7 of the third its push cannot be balanced in
+/// torque (0.5 against 0.7 mu about the middle), so it cannot help and the pair alone is marginal. Derived (statics).
+#[test]
+fn a_marginal_plateau_needs_the_friction_at_its_end() {
+    for (turn, far) in [(0.0, 0.0), (0.3, 0.0), (1.1, 1e3), (2.5, -4e4), (4.0, 1e5)] {
+        let (rotate, by) = (nalgebra::Rotation2::new(turn), Vector2::new(far, -0.7 * far));
+        let contact = |x: f64, y: f64, nx: f64, ny: f64, mu: f64| Contact {
+            point: rotate * Point2::new(x, y) + by,
+            normal: rotate * Vector2::new(nx, ny),
+            mu,
+        };
+        let grasp =
+            [contact(0.0, -0.5, 0.0, 1.0, 0.6), contact(0.7, 0.0, -1.0, 0.0, 1.0), contact(0.0, 0.5, 0.0, -1.0, 0.0)];
+        let frame = Frame { about: Point2::origin() + by, scale_mm: 1.0 };
+        let wrenches = Wrenches::new(&grasp, &frame);
+        let reading = Assessment::of(&wrenches, &frame, 1.0, &[9.0; 3]);
+        assert_eq!(reading.verdict, Verdict::Closed);
+        let needed = reading.friction_needed.unwrap();
+        assert!((needed - 5.0 / 7.0).abs() < 2e-6, "{needed} turned {turn}, {far} away");
+        assert_eq!(reading.doubts(&wrenches, &frame, 1.0), []);
+    }
 }

@@ -4,6 +4,7 @@
 //! found by a bracketing root finder on the kernel, with every generator scaled to unit force: scaling a generator
 //! changes no verdict, and puts contacts of different mu on one circle.
 
+use super::MARGINAL;
 use super::force_polygon::ForcePolygon;
 use super::quality;
 use super::root;
@@ -64,8 +65,27 @@ pub const LARGEST_MU: f64 = 1000.0;
 const WIDTH: f64 = 1e-11;
 /// A friction needed below this is none.
 const NONE: f64 = 1e-9;
-/// Signed quality (of unit-force generators) above which the root finder takes a grasp for closed.
+/// Signed quality (of unit-force generators) that rounding alone may reach.
 pub const CLOSED: f64 = 1e-12;
+/// Step of the friction angle, rad, over which a quality that is not yet told from 0 has to grow by more than [`NOISE`].
+const STEP: f64 = 1e-6;
+/// What rounding may change from one factor to the next, generously.
+const NOISE: f64 = 1e-11;
+
+/// Whether contacts close with all friction multiplied by a factor, given their signed quality there.
+///
+/// Closure begins where the quality leaves 0, which is told most sharply just above rounding. But a grasp may stay on the
+/// very edge of closure over a whole range of mu, and rounding then lifts it a hair above 0: a hair counts only when the
+/// quality truly grows from there.
+pub fn closes(levers: &[Lever], mus: &[f64], factor: f64, signed_quality: f64) -> bool {
+    if signed_quality > MARGINAL || signed_quality <= CLOSED {
+        return signed_quality > MARGINAL;
+    }
+    let largest = mus.iter().copied().fold(0.0, f64::max);
+    // d mu = (1 + mu^2) d angle; without friction there is nothing to grow with.
+    let further = factor + STEP * (1.0 + (factor * largest).powi(2)) / largest;
+    further.is_finite() && signed_quality_at(levers, mus, further) - signed_quality > NOISE
+}
 
 /// Signed quality of the generators scaled to unit force, with every mu multiplied by a factor. Its sign is the verdict.
 pub fn signed_quality_at(levers: &[Lever], mus: &[f64], factor: f64) -> f64 {
@@ -99,7 +119,10 @@ pub fn signed_quality_at(levers: &[Lever], mus: &[f64], factor: f64) -> f64 {
 /// [`LARGEST_MU`] does not close them, or when there is no friction to scale.
 pub fn factor_needed(levers: &[Lever], mus: &[f64]) -> Option<f64> {
     let largest = mus.iter().copied().fold(0.0, f64::max);
-    let at = |factor: f64| signed_quality_at(levers, mus, factor) - CLOSED;
+    let at = |factor: f64| {
+        let quality = signed_quality_at(levers, mus, factor);
+        if closes(levers, mus, factor, quality) { quality } else { -(quality - CLOSED).abs() }
+    };
     let (mut low, mut at_low) = (0.0, at(0.0));
     if at_low > 0.0 {
         return Some(0.0);

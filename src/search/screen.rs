@@ -522,10 +522,13 @@ impl<'a, 'b> Run<'a, 'b> {
             }
         }
         let score = polygon.score(&polygon.heights(&torques[..2 * self.k]));
-        if score.certain {
-            return score.signed_quality > friction::CLOSED;
+        if score.certain && score.signed_quality > MARGINAL {
+            return true;
         }
-        friction::signed_quality_at(&self.levers()[..self.k], &self.forces.mus[..self.k], factor) > friction::CLOSED
+        let (levers, mus) = (&self.levers()[..self.k], &self.forces.mus[..self.k]);
+        let quality =
+            if score.certain { score.signed_quality } else { friction::signed_quality_at(levers, mus, factor) };
+        friction::closes(levers, mus, factor, quality)
     }
 
     fn keeps_margin_floor(&mut self) -> bool {
