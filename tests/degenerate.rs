@@ -15,7 +15,12 @@ fn rows() -> impl Iterator<Item = (Wrenches, f64, &'static str)> {
         let numbers: Vec<f64> = left.split(',').map(|x| x.parse().unwrap()).collect();
         let contacts: Vec<Contact> = numbers[1..]
             .chunks_exact(4)
-            .map(|c| Contact { point: Point2::new(c[0], c[1]), normal: Vector2::new(c[2], c[3]), mu: numbers[0] })
+            .map(|c| Contact {
+                point: Point2::new(c[0], c[1]),
+                normal: Vector2::new(c[2], c[3]),
+                mu: numbers[0],
+                half_width_mm: 0.0,
+            })
             .collect();
         let frame = Frame { about: Point2::origin(), scale_mm: 1.0 };
         (Wrenches::new(&contacts, &frame), right.parse().unwrap(), line)
@@ -73,10 +78,8 @@ fn the_kernel_is_mostly_certain() {
 fn a_marginal_plateau_needs_the_friction_at_its_end() {
     for (turn, far) in [(0.0, 0.0), (0.3, 0.0), (1.1, 1e3), (2.5, -4e4), (4.0, 1e5)] {
         let (rotate, by) = (nalgebra::Rotation2::new(turn), Vector2::new(far, -0.7 * far));
-        let contact = |x: f64, y: f64, nx: f64, ny: f64, mu: f64| Contact {
-            point: rotate * Point2::new(x, y) + by,
-            normal: rotate * Vector2::new(nx, ny),
-            mu,
+        let contact = |x: f64, y: f64, nx: f64, ny: f64, mu: f64| {
+            Contact::at_point(rotate * Point2::new(x, y) + by, rotate * Vector2::new(nx, ny), mu)
         };
         let grasp =
             [contact(0.0, -0.5, 0.0, 1.0, 0.6), contact(0.7, 0.0, -1.0, 0.0, 1.0), contact(0.0, 0.5, 0.0, -1.0, 0.0)];

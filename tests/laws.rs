@@ -41,15 +41,17 @@ fn contact() -> impl Strategy<Value = Contact> {
     prop_oneof![3 => inward, 2 => any]
 }
 
-/// Two to six contacts, of one friction coefficient or of several. Points so near, but not the same, that rounding alone
+/// Two to six contacts, pins or pads, of one friction coefficient or of several. Points so near, but not the same, that rounding alone
 /// turns the line through them are left out: no score of such a pair has digits to compare.
 fn grasp() -> impl Strategy<Value = Vec<Contact>> {
+    let half_width = prop_oneof![1 => Just(0.0), 1 => 0.5..15.0];
     let contacts = prop::collection::vec((contact(), friction_coefficient()), 2..=6);
-    let with_friction = |(all, mixed): (Vec<(Contact, f64)>, bool)| -> Vec<Contact> {
+    let with_friction = |(all, mixed, half_width_mm): (Vec<(Contact, f64)>, bool, f64)| -> Vec<Contact> {
         let common_mu = all[0].1;
-        all.iter().map(|(c, own)| Contact { mu: if mixed { *own } else { common_mu }, ..*c }).collect()
+        let one = |(c, own): &(Contact, f64)| Contact { mu: if mixed { *own } else { common_mu }, half_width_mm, ..*c };
+        all.iter().map(one).collect()
     };
-    (contacts, any::<bool>()).prop_map(with_friction).prop_filter("points a hair apart", |grasp| {
+    (contacts, any::<bool>(), half_width).prop_map(with_friction).prop_filter("points a hair apart", |grasp| {
         let hair = |a: &Contact, b: &Contact| (1e-300..1e-4).contains(&(a.point - b.point).norm());
         !grasp.iter().any(|a| grasp.iter().any(|b| hair(a, b)))
     })
@@ -110,7 +112,7 @@ proptest! {
             .map(|c| Contact {
                 point: Point2::new(-c.point.x, c.point.y),
                 normal: Vector2::new(-c.normal.x, c.normal.y),
-                mu: c.mu,
+                ..*c
             })
             .collect();
         let there = frame(-at.about.x, at.about.y, at.scale_mm);
@@ -130,7 +132,7 @@ proptest! {
     /// Lengths and l scaled together leave quality unchanged and scale the placement tolerance.
     #[test]
     fn scale_moves_only_lengths(grasp in grasp(), at in somewhere(), by in 0.01..300.0) {
-        let scaled: Vec<_> = grasp.iter().map(|c| Contact { point: c.point * by, ..*c }).collect();
+        let scaled: Vec<_> = grasp.iter().map(|c| Contact { point: c.point * by, half_width_mm: c.half_width_mm * by, ..*c }).collect();
         let there = Frame { about: at.about * by, scale_mm: at.scale_mm * by };
         assert_same_scores(&read(&grasp, &at), &read(&scaled, &there), by);
     }
@@ -265,11 +267,12 @@ proptest! {
         }
     }
 
-    /// Every contact normal may be off by less than the margin, all at once.
+    /// Every contact normal may be off by less than the margin, all at once. Of pins: turning a pad would move its ends.
     #[test]
     fn the_margin_in_degrees_is_a_tolerance_on_normals(
         grasp in grasp(), at in somewhere(), shares in prop::array::uniform6(-1.0..1.0), signs in any::<u8>(),
     ) {
+        let grasp: Vec<_> = grasp.iter().map(|c| Contact { half_width_mm: 0.0, ..*c }).collect();
         let a = read(&grasp, &at);
         prop_assume!(a.verdict == Verdict::Closed && a.quality > 1e-4);
         let margin = a.friction_margin_deg.expect("a closed grasp has a margin").to_radians();
@@ -326,6 +329,7 @@ proptest! {
                 point: Point2::new(2.0, -7.0) + if one_line { across * t } else { along * t },
                 normal: if flip { -across } else { across },
                 mu: 0.0,
+                half_width_mm: 0.0,
             })
             .collect();
         let a = read(&grasp, &at);
@@ -413,7 +417,8 @@ fn closes(wrenches: &Wrenches) -> bool {
 /// Velocity of each contact point under the motion, from the words of the escape alone: the part may not press on any
 /// finger, `-f . v >= 0` being the power a cone-edge force f takes from the part.
 fn check_escape(grasp: &[Contact], at: &Frame, way: Escape) {
-    for c in grasp {
+    let ends = |c: &Contact| [-1.0, 1.0].map(|side| slid(std::slice::from_ref(c), |_| side * c.half_width_mm)[0]);
+    for c in grasp.iter().flat_map(ends) {
         // Scaled so that the largest of translation and l times rate is of order 1.
         let velocity = match way {
             Escape::Slide { toward_deg } => {

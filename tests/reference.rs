@@ -47,8 +47,12 @@ impl Row {
         let k: usize = given.next().unwrap().parse().unwrap();
         let numbers: Vec<f64> = given.map(|x| x.parse().unwrap()).collect();
         assert_eq!(numbers.len(), 3 + 5 * k);
-        let contact =
-            |c: &[f64]| Contact { point: Point2::new(c[0], c[1]), normal: Vector2::new(c[2], c[3]), mu: c[4] };
+        let contact = |c: &[f64]| Contact {
+            point: Point2::new(c[0], c[1]),
+            normal: Vector2::new(c[2], c[3]),
+            mu: c[4],
+            half_width_mm: 0.0,
+        };
         let found: Vec<&str> = found.split(',').collect();
         let value = |column: usize| (found[column] != "-").then(|| found[column].parse::<f64>().unwrap());
         Self {

@@ -17,15 +17,15 @@
 //! - placement = least height above (below) 0 at which a facet's plane crosses the torque axis;
 //! - closed iff all of these are above 0.
 //!
-//! Several generators with one force direction (parallel edges, several fingers on one edge) share a vertex; only the
-//! highest counts above and the lowest below. The same holds for a box of positions: heights at both ends of the box.
+//! Several generators with one force direction (both ends of a pad, parallel edges, several fingers on one edge) share a
+//! vertex; only the highest counts above and the lowest below. The same holds for a box of positions: heights at both ends.
 //!
 //! # Why it can be trusted
 //! The facets form a closed surface inside the true hull, so their least distance is never above the true quality.
 //! The reach of the wrench set in the direction of the nearest facet is never below it. [`ForcePolygon::score`] computes
 //! both and says so when they differ by more than [`CERTAIN`]; the caller then takes the slow, plain definition.
 
-use super::wrench::{Lever, MOST_GENERATORS};
+use super::wrench::{Lever, MOST_DIRECTIONS};
 use nalgebra::Vector3;
 
 /// Force directions closer than this on the unit circle are one vertex; it moves a generator, and so the quality, by no more.
@@ -38,8 +38,8 @@ const LEAST_SHADOW: f64 = 1e-12;
 /// Heights over the vertices of a [`ForcePolygon`].
 #[derive(Debug, Clone, Copy)]
 pub struct Heights {
-    top: [f64; MOST_GENERATORS],
-    bottom: [f64; MOST_GENERATORS],
+    top: [f64; MOST_DIRECTIONS],
+    bottom: [f64; MOST_DIRECTIONS],
 }
 
 /// What the kernel says of one grasp.
@@ -61,9 +61,9 @@ pub struct PlanarScore {
 #[derive(Debug, Clone, Copy)]
 pub struct ForcePolygon {
     count: usize,
-    forces: [[f64; 2]; MOST_GENERATORS],
+    forces: [[f64; 2]; MOST_DIRECTIONS],
     /// Vertex of each generator, in the caller's order.
-    vertex: [u8; MOST_GENERATORS],
+    vertex: [u8; MOST_DIRECTIONS],
     generators: usize,
     /// Distance from the origin to the nearest side, 0 or below when the origin is not inside.
     wall: f64,
@@ -80,9 +80,9 @@ impl ForcePolygon {
     /// Builds the polygon of forces that all have the same length (at most twelve of them).
     pub fn new(forces: &[[f64; 2]]) -> Self {
         let n = forces.len();
-        debug_assert!(n <= MOST_GENERATORS);
-        let mut order = [0u8; MOST_GENERATORS];
-        let mut angle = [0.0; MOST_GENERATORS];
+        debug_assert!(n <= MOST_DIRECTIONS);
+        let mut order = [0u8; MOST_DIRECTIONS];
+        let mut angle = [0.0; MOST_DIRECTIONS];
         for (i, f) in forces.iter().enumerate() {
             let a = pseudo_angle(f[0], f[1]);
             let mut at = i;
@@ -96,8 +96,8 @@ impl ForcePolygon {
         }
         let mut polygon = Self {
             count: 0,
-            forces: [[0.0; 2]; MOST_GENERATORS],
-            vertex: [0; MOST_GENERATORS],
+            forces: [[0.0; 2]; MOST_DIRECTIONS],
+            vertex: [0; MOST_DIRECTIONS],
             generators: n,
             wall: f64::NEG_INFINITY,
             wall_normal: [0.0; 2],
@@ -125,7 +125,7 @@ impl ForcePolygon {
 
     /// The polygon of contacts with one friction coefficient. Generator order: finger after finger, `+mu` before `-mu`.
     pub fn of_levers(levers: &[Lever], mu: f64) -> Self {
-        let mut forces = [[0.0; 2]; MOST_GENERATORS];
+        let mut forces = [[0.0; 2]; MOST_DIRECTIONS];
         for (pair, lever) in forces.chunks_exact_mut(2).zip(levers) {
             let (nx, ny, tx, ty) = (lever.normal.x, lever.normal.y, mu * lever.tangent.x, mu * lever.tangent.y);
             pair[0] = [nx + tx, ny + ty];
@@ -157,11 +157,12 @@ impl ForcePolygon {
         self.wall
     }
 
-    /// Heights of one grasp from the torques over l of its generators, in the order the polygon was built with.
-    pub fn heights(&self, torques: &[f64]) -> Heights {
+    /// Heights of one grasp from the least and the largest torque over l of each force, in the order the polygon was built
+    /// with.
+    pub fn heights(&self, torques: &[[f64; 2]]) -> Heights {
         let mut heights = self.no_heights();
-        for (&vertex, &torque) in self.vertex[..self.generators].iter().zip(torques) {
-            heights.cover(usize::from(vertex), torque, torque);
+        for (&vertex, torque) in self.vertex[..self.generators].iter().zip(torques) {
+            heights.cover(usize::from(vertex), torque);
         }
         heights
     }
@@ -171,15 +172,14 @@ impl ForcePolygon {
         let mut heights = self.no_heights();
         for (pair, lever) in self.vertex.chunks_exact(2).zip(levers) {
             for (vertex, m) in [(pair[0], mu), (pair[1], -mu)] {
-                let torque = lever.normal_torque + m * lever.tangent_torque;
-                heights.cover(usize::from(vertex), torque, torque);
+                heights.cover(usize::from(vertex), &lever.torques(m));
             }
         }
         heights
     }
 
     fn no_heights(&self) -> Heights {
-        Heights { top: [f64::NEG_INFINITY; MOST_GENERATORS], bottom: [f64::INFINITY; MOST_GENERATORS] }
+        Heights { top: [f64::NEG_INFINITY; MOST_DIRECTIONS], bottom: [f64::INFINITY; MOST_DIRECTIONS] }
     }
 
     /// Closure, quality and placement of the wrench set with these heights.
@@ -195,7 +195,7 @@ impl ForcePolygon {
             return score;
         }
         let up = self.cap(&heights.top);
-        let mut flipped = [0.0; MOST_GENERATORS];
+        let mut flipped = [0.0; MOST_DIRECTIONS];
         for (flipped, bottom) in flipped.iter_mut().zip(&heights.bottom) {
             *flipped = -bottom;
         }
@@ -226,10 +226,10 @@ impl ForcePolygon {
     }
 
     /// Wraps the upper envelope of heights `z` over the polygon.
-    fn cap(&self, z: &[f64; MOST_GENERATORS]) -> Cap {
+    fn cap(&self, z: &[f64; MOST_DIRECTIONS]) -> Cap {
         let point = |i: usize| [self.forces[i][0], self.forces[i][1], z[i]];
         let mut cap = Cap { signed_square: f64::INFINITY, height: f64::INFINITY, normal: [0.0, 0.0, 1.0] };
-        let mut chords = [(0usize, 0usize); MOST_GENERATORS];
+        let mut chords = [(0usize, 0usize); MOST_DIRECTIONS];
         chords[0] = (0, self.count - 1);
         let mut open = 1;
         while open > 0 {
@@ -273,9 +273,9 @@ impl ForcePolygon {
 
 impl Heights {
     /// Raises the top and lowers the bottom over a vertex to cover `[bottom, top]`.
-    fn cover(&mut self, vertex: usize, bottom: f64, top: f64) {
-        self.top[vertex] = self.top[vertex].max(top);
-        self.bottom[vertex] = self.bottom[vertex].min(bottom);
+    fn cover(&mut self, vertex: usize, [bottom, top]: &[f64; 2]) {
+        self.top[vertex] = self.top[vertex].max(*top);
+        self.bottom[vertex] = self.bottom[vertex].min(*bottom);
     }
 }
 

@@ -8,7 +8,7 @@ use super::MARGINAL;
 use super::force_polygon::ForcePolygon;
 use super::quality;
 use super::root;
-use super::wrench::{Lever, MOST_GENERATORS};
+use super::wrench::{Lever, MOST_DIRECTIONS, MOST_GENERATORS};
 use nalgebra::Vector3;
 
 /// State of the surfaces in contact.
@@ -89,30 +89,59 @@ pub fn closes(levers: &[Lever], mus: &[f64], factor: f64, signed_quality: f64) -
 
 /// Signed quality of the generators scaled to unit force, with every mu multiplied by a factor. Its sign is the verdict.
 pub fn signed_quality_at(levers: &[Lever], mus: &[f64], factor: f64) -> f64 {
-    let mut forces = [[0.0; 2]; MOST_GENERATORS];
-    let mut torques = [0.0; MOST_GENERATORS];
-    for (finger, (lever, mu)) in levers.iter().zip(mus).enumerate() {
-        let mu = mu * factor;
-        let length = (1.0 + mu * mu).sqrt();
-        for (side, m) in [(0, mu), (1, -mu)] {
-            let at = 2 * finger + side;
-            forces[at] =
-                [(lever.normal.x + m * lever.tangent.x) / length, (lever.normal.y + m * lever.tangent.y) / length];
-            torques[at] = (lever.normal_torque + m * lever.tangent_torque) / length;
-        }
-    }
-    let n = 2 * levers.len();
-    let polygon = ForcePolygon::new(&forces[..n]);
-    let score = polygon.score(&polygon.heights(&torques[..n]));
+    let unit = UnitForces::new(levers, mus, factor);
+    let polygon = ForcePolygon::new(unit.forces());
+    let score = polygon.score(&polygon.heights(unit.torques()));
     if score.certain {
         return score.signed_quality;
     }
     // Edges parallel but for a hair: the kernel's facets may lie anywhere inside the hull, and "open" be wrong.
     let mut generators = [Vector3::zeros(); MOST_GENERATORS];
-    for ((generator, [x, y]), torque) in generators.iter_mut().zip(forces).zip(torques) {
-        *generator = Vector3::new(x, y, torque);
+    let mut n = 0;
+    for ([x, y], torques) in unit.forces().iter().zip(unit.torques()) {
+        for torque in torques {
+            generators[n] = Vector3::new(*x, *y, *torque);
+            n += 1;
+        }
     }
     quality::by_definition(&generators[..n]).signed_quality
+}
+
+/// Cone-edge forces scaled to unit length, with every mu multiplied by a factor: whatever the friction of each contact,
+/// they lie on one circle, and scaling a generator changes no verdict.
+#[derive(Debug, Clone, Copy)]
+pub struct UnitForces {
+    count: usize,
+    forces: [[f64; 2]; MOST_DIRECTIONS],
+    torques: [[f64; 2]; MOST_DIRECTIONS],
+}
+
+impl UnitForces {
+    /// Of contacts: finger after finger, `+mu` before `-mu`.
+    pub fn new(levers: &[Lever], mus: &[f64], factor: f64) -> Self {
+        let mut unit =
+            Self { count: 2 * levers.len(), forces: [[0.0; 2]; MOST_DIRECTIONS], torques: [[0.0; 2]; MOST_DIRECTIONS] };
+        for (finger, (lever, mu)) in levers.iter().zip(mus).enumerate() {
+            let mu = mu * factor;
+            let length = (1.0 + mu * mu).sqrt();
+            for (at, m) in [(2 * finger, mu), (2 * finger + 1, -mu)] {
+                let force = (lever.normal + lever.tangent * m) / length;
+                unit.forces[at] = [force.x, force.y];
+                unit.torques[at] = lever.torques(m).map(|torque| torque / length);
+            }
+        }
+        unit
+    }
+
+    /// The forces.
+    pub fn forces(&self) -> &[[f64; 2]] {
+        &self.forces[..self.count]
+    }
+
+    /// Least and largest torque over l of each force.
+    pub fn torques(&self) -> &[[f64; 2]] {
+        &self.torques[..self.count]
+    }
 }
 
 /// Least factor on all friction coefficients at which the contacts close, to about 1e-10 of mu; nothing when even

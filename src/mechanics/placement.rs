@@ -92,8 +92,9 @@ impl OnArcs<'_> {
         let mut generators = [Vector3::zeros(); MOST_GENERATORS];
         let mut n = 0;
         for (lever, &mu) in self.levers.iter().zip(&left) {
-            generators[n..n + 2].copy_from_slice(&lever.generators(mu));
-            n += 2;
+            let own = lever.generators(mu);
+            generators[n..n + own.len()].copy_from_slice(&own);
+            n += own.len();
         }
         let score = quality::by_definition(&generators[..n]);
         score.torque_up.min(score.torque_down) - change / self.scale_mm

@@ -9,7 +9,7 @@
 //! facet's normal, and keep the least support.
 
 use super::force_polygon::{ForcePolygon, PlanarScore};
-use super::wrench::{MOST_GENERATORS, Wrenches};
+use super::wrench::{Lever, MOST_DIRECTIONS, MOST_GENERATORS, Wrenches};
 use crate::hand::FingerCount;
 use nalgebra::Vector3;
 
@@ -58,7 +58,16 @@ pub fn planar(wrenches: &Wrenches) -> PlanarScore {
 
 /// Closure, quality and placement by the plain definition: the planes through every three generators, both sides.
 pub fn by_definition(generators: &[Vector3<f64>]) -> PlanarScore {
-    let n = generators.len().min(MOST_GENERATORS);
+    // Pins alone need half the lanes.
+    if generators.len() <= MOST_DIRECTIONS {
+        over_triples::<MOST_DIRECTIONS>(generators)
+    } else {
+        over_triples::<MOST_GENERATORS>(generators)
+    }
+}
+
+fn over_triples<const MOST: usize>(generators: &[Vector3<f64>]) -> PlanarScore {
+    let n = generators.len().min(MOST);
     let mut score = PlanarScore {
         signed_quality: f64::INFINITY,
         torque_up: f64::INFINITY,
@@ -67,10 +76,10 @@ pub fn by_definition(generators: &[Vector3<f64>]) -> PlanarScore {
         certain: true,
     };
     // Padding repeats the first generator: it never reaches farther than the set itself.
-    let mut xs = [0.0; MOST_GENERATORS];
-    let mut ys = [0.0; MOST_GENERATORS];
-    let mut zs = [0.0; MOST_GENERATORS];
-    for i in 0..MOST_GENERATORS {
+    let mut xs = [0.0; MOST];
+    let mut ys = [0.0; MOST];
+    let mut zs = [0.0; MOST];
+    for i in 0..MOST {
         let w = generators.get(i).or(generators.first()).copied().unwrap_or_default();
         (xs[i], ys[i], zs[i]) = (w.x, w.y, w.z);
     }
@@ -85,7 +94,7 @@ pub fn by_definition(generators: &[Vector3<f64>]) -> PlanarScore {
                     continue;
                 }
                 let (mut high, mut low) = (f64::NEG_INFINITY, f64::INFINITY);
-                for m in 0..MOST_GENERATORS {
+                for m in 0..MOST {
                     let reach = normal.x * xs[m] + normal.y * ys[m] + normal.z * zs[m];
                     high = if reach > high { reach } else { high };
                     low = if reach < low { reach } else { low };
@@ -183,25 +192,47 @@ pub fn least_reach(generators: &[Vector3<f64>]) -> (f64, Vector3<f64>) {
 
 /// Quality with each finger's normal force limited to 1; 0 when not closed.
 pub fn per_finger(wrenches: &Wrenches) -> f64 {
-    let pairs: Vec<[Vector3<f64>; 2]> =
-        wrenches.levers().iter().zip(wrenches.mus()).map(|(lever, &mu)| lever.generators(mu)).collect();
-    per_finger_of(&pairs).0
+    per_finger_of(wrenches.levers(), wrenches.mus()).0
 }
 
 /// How far the fingers together push in direction u: each as far as it can with a unit normal force, or not at all.
-pub fn reach_per_finger(pairs: &[[Vector3<f64>; 2]], u: &Vector3<f64>) -> f64 {
-    pairs.iter().map(|[a, b]| u.dot(a).max(u.dot(b)).max(0.0)).sum()
+pub fn reach_per_finger(levers: &[Lever], mus: &[f64], u: &Vector3<f64>) -> f64 {
+    let reach = |(lever, mu): (&Lever, &f64)| lever.generators(*mu).iter().map(|w| u.dot(w)).fold(0.0, f64::max);
+    levers.iter().zip(mus).map(reach).sum()
 }
 
-/// Quality with each finger limited, from each finger's two generators (equal where mu is 0), and the direction that
-/// attains it. Exact: all normals of the Minkowski sum's facets are tried, the cross products of two edges of the
-/// fingers' triangles conv{0, w+, w-}.
-pub fn per_finger_of(pairs: &[[Vector3<f64>; 2]]) -> (f64, Vector3<f64>) {
-    let mut edges = [Vector3::zeros(); 3 * FingerCount::MOST];
-    for (three, [a, b]) in edges.chunks_exact_mut(3).zip(pairs) {
-        three.copy_from_slice(&[*a, *b, a - b]);
+/// Directions of the edges of conv{0, a finger's generators}, most of one finger: to each generator, from cone edge to
+/// cone edge, and from end to end of a pad. The generators of a pad are the corners of a parallelogram.
+const MOST_EDGES: usize = 6;
+
+/// Quality with each finger limited, and the direction that attains it. Exact: all normals of the Minkowski sum's facets
+/// are tried, the cross products of two edges of the fingers' own hulls.
+pub fn per_finger_of(levers: &[Lever], mus: &[f64]) -> (f64, Vector3<f64>) {
+    let mut edges = [Vector3::zeros(); MOST_EDGES * FingerCount::MOST];
+    let mut count = 0;
+    let mut add = |edge| {
+        edges[count] = edge;
+        count += 1;
+    };
+    for (lever, &mu) in levers.iter().zip(mus) {
+        lever.generators(mu).iter().copied().for_each(&mut add);
+        if mu > 0.0 {
+            add(Vector3::new(lever.tangent.x, lever.tangent.y, lever.tangent_torque));
+        }
     }
-    let edges = &edges[..3 * pairs.len()];
+    if levers.iter().any(|lever| lever.spread > 0.0) {
+        add(Vector3::z());
+    }
+    let edges = &edges[..count];
+    let mut generators = [Vector3::zeros(); MOST_GENERATORS];
+    let mut ends = [0; FingerCount::MOST];
+    let mut n = 0;
+    for (end, (lever, &mu)) in ends.iter_mut().zip(levers.iter().zip(mus)) {
+        let own = lever.generators(mu);
+        generators[n..n + own.len()].copy_from_slice(&own);
+        n += own.len();
+        *end = n;
+    }
     let mut least = (f64::INFINITY, Vector3::z());
     for (i, a) in edges.iter().enumerate() {
         for b in &edges[i + 1..] {
@@ -211,10 +242,17 @@ pub fn per_finger_of(pairs: &[[Vector3<f64>; 2]]) -> (f64, Vector3<f64>) {
                 continue;
             }
             let (mut up, mut down) = (0.0, 0.0);
-            for [p, q] in pairs {
-                let (x, y) = (normal.dot(p), normal.dot(q));
-                up += x.max(y).max(0.0);
-                down -= x.min(y).min(0.0);
+            let mut from = 0;
+            for &end in &ends[..levers.len()] {
+                let (mut high, mut low) = (0.0_f64, 0.0_f64);
+                for w in &generators[from..end] {
+                    let reach = normal.dot(w);
+                    high = high.max(reach);
+                    low = low.min(reach);
+                }
+                up += high;
+                down -= low;
+                from = end;
             }
             let norm = square.sqrt();
             for (reach, sign) in [(up, 1.0), (down, -1.0)] {

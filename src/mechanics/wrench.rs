@@ -2,14 +2,16 @@
 //!
 //! A contact's cone in the plane has two edges of unit normal force, `n + mu t` and `n - mu t`, exact and not
 //! linearised (the unit-normal convention of Ferrari & Canny 1992 with L1 force limits). Its generators are
-//! `w = (fx, fy, ((p - c) x f) / l)`; a grasp of k contacts has 2k of them, k when mu is 0.
+//! `w = (fx, fy, ((p - c) x f) / l)`: two for a point, four for a pad (both at each end), half of that when mu is 0.
 
 use super::Contact;
 use crate::hand::FingerCount;
 use nalgebra::{Matrix3xX, Point2, Vector2, Vector3};
 
-/// Most generators of a grasp: two for each finger.
-pub const MOST_GENERATORS: usize = 2 * FingerCount::MOST;
+/// Most force directions of a grasp: two for each finger.
+pub const MOST_DIRECTIONS: usize = 2 * FingerCount::MOST;
+/// Most generators of a grasp: four for each finger.
+pub const MOST_GENERATORS: usize = 4 * FingerCount::MOST;
 
 /// The frame wrenches are taken in.
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -31,6 +33,9 @@ pub struct Lever {
     pub normal_torque: f64,
     /// Torque of a unit tangential force over l.
     pub tangent_torque: f64,
+    /// What the torque of a unit normal force gains or loses over l when it moves to either end of a pad; 0 for a point.
+    /// Moving a force along the edge by s adds s times its normal part to the torque and nothing else.
+    pub spread: f64,
 }
 
 impl Lever {
@@ -38,15 +43,49 @@ impl Lever {
     pub fn new(point: Point2<f64>, normal: Vector2<f64>, frame: &Frame) -> Self {
         let arm = (point - frame.about) / frame.scale_mm;
         let tangent = Vector2::new(normal.y, -normal.x);
-        Self { normal, tangent, normal_torque: cross(arm, normal), tangent_torque: cross(arm, tangent) }
+        Self { normal, tangent, normal_torque: cross(arm, normal), tangent_torque: cross(arm, tangent), spread: 0.0 }
     }
 
-    /// The two cone-edge wrenches at a friction coefficient; they coincide when it is 0.
-    pub fn generators(&self, mu: f64) -> [Vector3<f64>; 2] {
-        [mu, -mu].map(|m| {
+    /// The lever of a contact.
+    pub fn of(contact: &Contact, frame: &Frame) -> Self {
+        Self { spread: contact.half_width_mm / frame.scale_mm, ..Self::new(contact.point, contact.normal, frame) }
+    }
+
+    /// Torques over l of a force on the cone edge of a signed friction coefficient with a unit normal part: the least and
+    /// the largest, from end to end of a pad.
+    pub fn torques(&self, mu: f64) -> [f64; 2] {
+        let middle = self.normal_torque + mu * self.tangent_torque;
+        [middle - self.spread, middle + self.spread]
+    }
+
+    /// The cone-edge wrenches at a friction coefficient.
+    pub fn generators(&self, mu: f64) -> Generators {
+        let mut made = Generators { all: [Vector3::zeros(); 4], count: 0 };
+        let sides = [mu, -mu];
+        for &m in &sides[..if mu > 0.0 { 2 } else { 1 }] {
             let force = self.normal + self.tangent * m;
-            Vector3::new(force.x, force.y, self.normal_torque + m * self.tangent_torque)
-        })
+            let torques = self.torques(m);
+            for &torque in &torques[..if self.spread > 0.0 { 2 } else { 1 }] {
+                made.all[made.count] = Vector3::new(force.x, force.y, torque);
+                made.count += 1;
+            }
+        }
+        made
+    }
+}
+
+/// The generators of one contact: one to four, read as a slice.
+#[derive(Debug, Clone, Copy)]
+pub struct Generators {
+    all: [Vector3<f64>; 4],
+    count: usize,
+}
+
+impl std::ops::Deref for Generators {
+    type Target = [Vector3<f64>];
+
+    fn deref(&self) -> &[Vector3<f64>] {
+        &self.all[..self.count]
     }
 }
 
@@ -68,7 +107,7 @@ pub struct Wrenches {
     mus: Vec<f64>,
     /// Curvature of each contact's edge, 1/mm; 0 where it is straight.
     curvatures: Vec<f64>,
-    /// Generators, finger after finger, two each (one where that contact's mu is 0).
+    /// Generators, finger after finger.
     generators: Vec<Vector3<f64>>,
     /// Finger of each generator.
     fingers: Vec<usize>,
@@ -78,18 +117,17 @@ impl Wrenches {
     /// Wrenches of contacts in a frame. Takes at most [`FingerCount::MOST`] contacts; more are a caller's error.
     pub fn new(contacts: &[Contact], frame: &Frame) -> Self {
         assert!(contacts.len() <= FingerCount::MOST, "at most {} contacts", FingerCount::MOST);
-        let levers = contacts.iter().map(|c| Lever::new(c.point, c.normal, frame)).collect();
+        let levers = contacts.iter().map(|contact| Lever::of(contact, frame)).collect();
         Self::from_levers(levers, contacts.iter().map(|c| c.mu).collect())
     }
 
     fn from_levers(levers: Vec<Lever>, mus: Vec<f64>) -> Self {
-        let mut generators = Vec::with_capacity(2 * levers.len());
-        let mut fingers = Vec::with_capacity(2 * levers.len());
+        let mut generators = Vec::with_capacity(4 * levers.len());
+        let mut fingers = Vec::with_capacity(4 * levers.len());
         for (finger, (lever, &mu)) in levers.iter().zip(&mus).enumerate() {
-            let edges = lever.generators(mu);
-            let count = if mu > 0.0 { 2 } else { 1 };
-            generators.extend_from_slice(&edges[..count]);
-            fingers.extend(std::iter::repeat_n(finger, count));
+            let own = lever.generators(mu);
+            generators.extend_from_slice(&own);
+            fingers.extend(std::iter::repeat_n(finger, own.len()));
         }
         let curvatures = vec![0.0; levers.len()];
         Self { levers, mus, curvatures, generators, fingers }

@@ -4,7 +4,7 @@ use super::families::Family;
 use super::sites::Sites;
 use crate::hand::FingerCount;
 use crate::mechanics::force_polygon::ForcePolygon;
-use crate::mechanics::wrench::MOST_GENERATORS;
+use crate::mechanics::friction::UnitForces;
 use crate::mechanics::{Lever, MARGINAL};
 use crate::part::MU_LARGEST;
 
@@ -23,25 +23,11 @@ pub(super) struct FamilyForces {
     pub polygon: ForcePolygon,
 }
 
-/// Force polygon of generators scaled to unit force.
-pub(super) fn unit_polygon(levers: &[Lever], mus: &[f64], factor: f64) -> ForcePolygon {
-    let mut forces = [[0.0; 2]; MOST_GENERATORS];
-    for ((pair, lever), mu) in forces.chunks_exact_mut(2).zip(levers).zip(mus) {
-        let mu = mu * factor;
-        let length = (1.0 + mu * mu).sqrt();
-        for (force, m) in pair.iter_mut().zip([mu, -mu]) {
-            let f = (lever.normal + lever.tangent * m) / length;
-            *force = [f.x, f.y];
-        }
-    }
-    ForcePolygon::new(&forces[..2 * levers.len()])
-}
-
 /// Polygon of the generators where contacts share one mu, else of the generators scaled to unit force.
 pub(super) fn polygon_of(mu: Option<f64>, levers: &[Lever], mus: &[f64]) -> ForcePolygon {
     match mu {
         Some(mu) => ForcePolygon::of_levers(levers, mu),
-        None => unit_polygon(levers, mus, 1.0),
+        None => ForcePolygon::new(UnitForces::new(levers, mus, 1.0).forces()),
     }
 }
 
@@ -79,4 +65,5 @@ pub(super) const NO_LEVER: Lever = Lever {
     tangent: nalgebra::Vector2::new(0.0, 0.0),
     normal_torque: 0.0,
     tangent_torque: 0.0,
+    spread: 0.0,
 };

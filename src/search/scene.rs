@@ -5,7 +5,7 @@ use super::sites;
 use crate::hand::{self, Stretch, Tip};
 use crate::mechanics::assess::Doubt;
 use crate::mechanics::{Assessment, Contact, Frame, Wrenches};
-use crate::part::{EdgeId, Part};
+use crate::part::{Edge, EdgeId, Part};
 use std::sync::Arc;
 
 /// The place of one finger: an edge and the distance from its first vertex.
@@ -143,11 +143,7 @@ impl Scene {
             if !(spot.along_mm >= -1e-9 * length_mm && spot.along_mm <= length_mm * (1.0 + 1e-9)) {
                 return Err(PlaceFault::OffEdge { edge: spot.edge, along_mm: spot.along_mm, length_mm });
             }
-            contacts.push(Contact {
-                point: edge.point_at(spot.along_mm),
-                normal: edge.normal_at(spot.along_mm),
-                mu: self.part.mu_on(spot.edge, self.setup.friction.mu),
-            });
+            contacts.push(self.contact(edge, spot.along_mm));
             curvatures.push(edge.curvature());
             let room = hand::stretch_around(&self.stretches, spot.edge, spot.along_mm)
                 .map_or(-1.0, |stretch| stretch.room_mm(spot.along_mm).max(0.0));
@@ -162,6 +158,18 @@ impl Scene {
             }
         }
         Ok(Grasp { spots: spots.to_vec(), contacts, curvatures, rooms_mm, too_near })
+    }
+
+    /// The contact a finger makes at a place on an edge. A pad lies flush on a straight edge; on an arc it touches at one
+    /// point, as a pin does.
+    pub(super) fn contact(&self, edge: &Edge, along_mm: f64) -> Contact {
+        let flush = self.setup.hand.tip == Tip::Pad && edge.arc().is_none();
+        Contact {
+            point: edge.point_at(along_mm),
+            normal: edge.normal_at(along_mm),
+            mu: self.part.mu_on(edge.id(), self.setup.friction.mu),
+            half_width_mm: if flush { self.setup.hand.pad_width_mm / 2.0 } else { 0.0 },
+        }
     }
 
     /// Wrenches of a grasp in the scene's frame.

@@ -8,7 +8,7 @@
 //!   call each; the root finder runs only for a candidate that takes the lead.
 
 use super::families::Family;
-use super::family_forces::{FamilyForces, NO_LEVER, polygon_of, unit_polygon};
+use super::family_forces::{FamilyForces, NO_LEVER, polygon_of};
 use super::order::{self, Candidate, FRICTION_QUANTUM, Key, SiteSet, Top};
 use super::plan::TRIES;
 use super::rank::{Cancel, Cancelled, Listing};
@@ -16,8 +16,9 @@ use super::scene::Scene;
 use super::sites::{Site, Sites};
 use crate::hand::FingerCount;
 use crate::mechanics::force_polygon::{ForcePolygon, PlanarScore};
+use crate::mechanics::friction::UnitForces;
 use crate::mechanics::placement::OnArcs;
-use crate::mechanics::wrench::MOST_GENERATORS;
+use crate::mechanics::wrench::{MOST_DIRECTIONS, MOST_GENERATORS};
 use crate::mechanics::{Lever, MARGINAL, friction, quality};
 use nalgebra::Vector3;
 use std::cmp::Ordering;
@@ -405,7 +406,7 @@ impl<'a, 'b> Run<'a, 'b> {
         if !self.forces.may_close() {
             return None;
         }
-        let mut torques = [0.0; MOST_GENERATORS];
+        let mut torques = [[0.0; 2]; MOST_DIRECTIONS];
         for (finger, pair) in torques.chunks_exact_mut(2).take(self.k).enumerate() {
             pair.copy_from_slice(&self.site(finger).torques);
         }
@@ -428,7 +429,7 @@ impl<'a, 'b> Run<'a, 'b> {
                 for (finger, pair) in torques.chunks_exact_mut(2).take(self.k).enumerate() {
                     let mu = self.forces.mus[finger];
                     let length = (1.0 + mu * mu).sqrt();
-                    pair.iter_mut().for_each(|torque| *torque /= length);
+                    pair.as_flattened_mut().iter_mut().for_each(|torque| *torque /= length);
                 }
                 // Unit forces are the shorter ones: what closes has at least this quality with the longer.
                 let score = polygon.score(&polygon.heights(&torques[..2 * self.k]));
@@ -445,10 +446,9 @@ impl<'a, 'b> Run<'a, 'b> {
         let mut generators = [Vector3::zeros(); MOST_GENERATORS];
         let mut n = 0;
         for finger in 0..self.k {
-            let count = if self.forces.mus[finger] > 0.0 { 2 } else { 1 };
-            let edges = self.site(finger).lever.generators(self.forces.mus[finger]);
-            generators[n..n + count].copy_from_slice(&edges[..count]);
-            n += count;
+            let own = self.site(finger).lever.generators(self.forces.mus[finger]);
+            generators[n..n + own.len()].copy_from_slice(&own);
+            n += own.len();
         }
         quality::by_definition(&generators[..n])
     }
@@ -504,7 +504,7 @@ impl<'a, 'b> Run<'a, 'b> {
             #[expect(clippy::float_cmp, reason = "a cache: only the very same factor will do")]
             Some((cached, polygon)) if cached == factor && !self.forces.curved => polygon,
             _ => {
-                let polygon = unit_polygon(&self.levers()[..self.k], &self.forces.mus[..self.k], factor);
+                let polygon = self.unit_polygon(factor);
                 self.at_factor = Some((factor, polygon));
                 polygon
             }
@@ -512,20 +512,16 @@ impl<'a, 'b> Run<'a, 'b> {
         self.closes_on(&polygon, factor)
     }
 
+    fn unit_polygon(&self, factor: f64) -> ForcePolygon {
+        ForcePolygon::new(UnitForces::new(&self.levers()[..self.k], &self.forces.mus[..self.k], factor).forces())
+    }
+
     fn closes_on(&self, polygon: &ForcePolygon, factor: f64) -> bool {
-        let mut torques = [0.0; MOST_GENERATORS];
-        for (finger, pair) in torques.chunks_exact_mut(2).take(self.k).enumerate() {
-            let (mu, lever) = (self.forces.mus[finger] * factor, &self.site(finger).lever);
-            let length = (1.0 + mu * mu).sqrt();
-            for (torque, m) in pair.iter_mut().zip([mu, -mu]) {
-                *torque = (lever.normal_torque + m * lever.tangent_torque) / length;
-            }
-        }
-        let score = polygon.score(&polygon.heights(&torques[..2 * self.k]));
+        let (levers, mus) = (&self.levers()[..self.k], &self.forces.mus[..self.k]);
+        let score = polygon.score(&polygon.heights(UnitForces::new(levers, mus, factor).torques()));
         if score.certain && score.signed_quality > MARGINAL {
             return true;
         }
-        let (levers, mus) = (&self.levers()[..self.k], &self.forces.mus[..self.k]);
         let quality =
             if score.certain { score.signed_quality } else { friction::signed_quality_at(levers, mus, factor) };
         friction::closes(levers, mus, factor, quality)
@@ -539,7 +535,7 @@ impl<'a, 'b> Run<'a, 'b> {
         let polygon = match self.margin_floor {
             Some((_, polygon)) if !self.forces.curved => polygon,
             _ => {
-                let polygon = unit_polygon(&self.levers()[..self.k], &self.forces.mus[..self.k], 1.0 / floor);
+                let polygon = self.unit_polygon(1.0 / floor);
                 self.margin_floor = Some((floor, polygon));
                 polygon
             }
@@ -549,21 +545,18 @@ impl<'a, 'b> Run<'a, 'b> {
 
     /// Quality with each finger limited, or nothing when a direction already tried shows that the family's best is better.
     fn per_finger(&mut self) -> Option<f64> {
-        let mut generators = [[Vector3::zeros(); 2]; FingerCount::MOST];
-        for (finger, pair) in generators[..self.k].iter_mut().enumerate() {
-            *pair = self.site(finger).lever.generators(self.forces.mus[finger]);
-        }
-        let generators = &generators[..self.k];
+        let levers = self.levers();
+        let (levers, mus) = (&levers[..self.k], &self.forces.mus[..self.k]);
         let least = match self.screen.listing {
             Listing::Families => self.best,
             Listing::Members => self.tally.top.worst().copied(),
         };
         if let (Some(least), Some(u)) = (least, self.weak_per_finger)
-            && order::quanta(quality::reach_per_finger(generators, &u)) < least.key
+            && order::quanta(quality::reach_per_finger(levers, mus, &u)) < least.key
         {
             return None;
         }
-        let (value, direction) = quality::per_finger_of(generators);
+        let (value, direction) = quality::per_finger_of(levers, mus);
         self.weak_per_finger = Some(direction);
         Some(value)
     }

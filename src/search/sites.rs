@@ -21,8 +21,8 @@ pub(super) struct Site {
     pub curvature: f64,
     /// Contact in the scene's frame.
     pub lever: Lever,
-    /// Torque over l of the two generators at `mu`.
-    pub torques: [f64; 2],
+    /// Least and largest torque over l of the two cone edges at `mu`.
+    pub torques: [[f64; 2]; 2],
     /// Axis of the pin, local frame, mm.
     pub centre: Point2<f64>,
 }
@@ -59,11 +59,9 @@ impl Sites {
         for (number, stretch) in scene.stretches().iter().enumerate() {
             starts.push(all.len());
             let Some(edge) = scene.part().outline().edge(stretch.edge) else { continue };
-            let mu = scene.part().mu_on(stretch.edge, scene.setup().friction.mu);
             for along_mm in positions(stretch, spacing_mm) {
-                let (point, normal) = (edge.point_at(along_mm), edge.normal_at(along_mm));
-                let lever = Lever::new(point, normal, scene.frame());
-                let torque = |m: f64| lever.normal_torque + m * lever.tangent_torque;
+                let contact = scene.contact(edge, along_mm);
+                let (mu, lever) = (contact.mu, Lever::of(&contact, scene.frame()));
                 all.push(Site {
                     stretch: number as u32,
                     along_mm,
@@ -71,8 +69,8 @@ impl Sites {
                     mu,
                     curvature: edge.curvature(),
                     lever,
-                    torques: [torque(mu), torque(-mu)],
-                    centre: point - normal * scene.setup().hand.pin_radius_mm,
+                    torques: [lever.torques(mu), lever.torques(-mu)],
+                    centre: contact.point - contact.normal * scene.setup().hand.pin_radius_mm,
                 });
             }
         }

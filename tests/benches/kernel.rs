@@ -54,7 +54,7 @@ fn grasp(dice: &mut Dice, part: &Part, pins: usize, mu: f64) -> (Vec<Contact>, F
                 })
                 .unwrap()
                 .1;
-            Contact { point: edge.point_at(at), normal: edge.normal_at(at), mu }
+            Contact { point: edge.point_at(at), normal: edge.normal_at(at), mu, half_width_mm: 0.0 }
         })
         .collect();
     (contacts, Frame { about: part.com(), scale_mm: part.reach_mm() })

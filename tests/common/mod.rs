@@ -19,18 +19,18 @@ pub(crate) fn assert_close(a: f64, b: f64, rel: f64, abs: f64) {
 /// A contact at a point with the inward normal at `normal_deg` from +x.
 pub(crate) fn touch(x: f64, y: f64, normal_deg: f64, mu: f64) -> Contact {
     let angle = normal_deg.to_radians();
-    Contact { point: Point2::new(x, y), normal: Vector2::new(angle.cos(), angle.sin()), mu }
+    Contact { point: Point2::new(x, y), normal: Vector2::new(angle.cos(), angle.sin()), mu, half_width_mm: 0.0 }
 }
 
 /// A contact with its unit normal given outright, for right angles that are to be exact.
 pub(crate) fn touch_along(x: f64, y: f64, normal: [f64; 2], mu: f64) -> Contact {
-    Contact { point: Point2::new(x, y), normal: Vector2::new(normal[0], normal[1]), mu }
+    Contact { point: Point2::new(x, y), normal: Vector2::new(normal[0], normal[1]), mu, half_width_mm: 0.0 }
 }
 
 /// A contact on a circle about the origin, pressing toward the centre.
 pub(crate) fn on_disc(radius: f64, at_rad: f64, mu: f64) -> Contact {
     let out = Vector2::new(at_rad.cos(), at_rad.sin());
-    Contact { point: Point2::from(out * radius), normal: -out, mu }
+    Contact { point: Point2::from(out * radius), normal: -out, mu, half_width_mm: 0.0 }
 }
 
 /// A frame about a point with a torque scale.
@@ -47,7 +47,7 @@ pub(crate) fn read(contacts: &[Contact], frame: &Frame) -> Assessment {
 /// The contacts turned about the origin, then moved.
 pub(crate) fn moved(contacts: &[Contact], turn_rad: f64, by: Vector2<f64>) -> Vec<Contact> {
     let turn = Rotation2::new(turn_rad);
-    contacts.iter().map(|c| Contact { point: turn * c.point + by, normal: turn * c.normal, mu: c.mu }).collect()
+    contacts.iter().map(|c| Contact { point: turn * c.point + by, normal: turn * c.normal, ..*c }).collect()
 }
 
 /// Seeded dice; the same numbers on every machine.
