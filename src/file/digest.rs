@@ -12,7 +12,7 @@ pub(super) fn of_bytes(bytes: &[u8]) -> String {
 }
 
 /// SHA-256, in hexadecimal, of everything about a part that alters a score or a contact's place: rings and arcs in mm, centre of
-/// mass, mass, thickness, keep-outs, edges with their own friction. Names, reasons and the unit of the file do not
+/// mass, mass, thickness, keep-outs, edges with their own friction or limits. Names, reasons and the unit of the file do not
 /// count, as long as the lengths in mm are the same digit for digit.
 pub fn part_digest(part: &Part) -> String {
     let mut bytes = Canonical(Vec::new());
@@ -48,6 +48,15 @@ pub fn part_digest(part: &Part) -> String {
         bytes.count(own.edge.ring);
         bytes.count(own.edge.edge);
         bytes.numbers(&[own.mu]);
+    }
+    // As with arcs: a part without limits has the digest it had before there were any.
+    for limit in part.edge_limits() {
+        bytes.count(limit.edge.ring);
+        bytes.count(limit.edge.edge);
+        for option in [limit.face_mpa, limit.line_n_per_mm] {
+            bytes.count(option.iter().len());
+            bytes.numbers(option.as_slice());
+        }
     }
     of_bytes(&bytes.0)
 }

@@ -3,7 +3,7 @@
 use super::reading::text_of;
 use super::toml_reader::{self, Table, described, nearest};
 use super::{FileFault, FileFaults};
-use crate::part::{ArcDescription, EdgeId, KeepOutDescription, Part, PartDescription, PartFault, material};
+use crate::part::{ArcDescription, EdgeId, EdgeLimit, KeepOutDescription, Part, PartDescription, PartFault, material};
 use std::path::Path;
 use toml::Spanned;
 use toml::de::DeValue;
@@ -55,6 +55,8 @@ fn part_of(root: &Table<'_>, path: &Path) -> Option<Part> {
     let keep_outs = keep_out_tables.iter().map(keep_out).collect();
     let friction_tables = root.tables("edge_friction");
     let edge_friction = friction_tables.iter().map(edge_friction).collect();
+    let limit_tables = root.tables("edge_limit");
+    let edge_limits = limit_tables.iter().map(edge_limit).collect();
     let arc_tables = root.tables("arc");
     let arcs = arc_tables.iter().map(arc).collect();
     note_unknown_material(root, material.as_deref(), density_kg_m3.is_some() || mass_kg.is_some());
@@ -71,6 +73,7 @@ fn part_of(root: &Table<'_>, path: &Path) -> Option<Part> {
             com,
             keep_outs,
             edge_friction,
+            edge_limits,
         };
         match Part::new(description) {
             Ok(part) => Some(part),
@@ -79,6 +82,7 @@ fn part_of(root: &Table<'_>, path: &Path) -> Option<Part> {
                     place(&fault, root, &places, &|table| match table {
                         "keep_out" => &keep_out_tables,
                         "arc" => &arc_tables,
+                        "edge_limit" => &limit_tables,
                         _ => &friction_tables,
                     });
                 }
@@ -86,7 +90,7 @@ fn part_of(root: &Table<'_>, path: &Path) -> Option<Part> {
             }
         }
     });
-    keep_out_tables.into_iter().chain(friction_tables).chain(arc_tables).for_each(Table::finish);
+    keep_out_tables.into_iter().chain(friction_tables).chain(arc_tables).chain(limit_tables).for_each(Table::finish);
     built
 }
 
@@ -185,6 +189,22 @@ fn edge_friction(table: &Table<'_>) -> (usize, usize, f64) {
     (ring, edge, table.number("mu").unwrap_or(0.0))
 }
 
+fn edge_limit(table: &Table<'_>) -> EdgeLimit {
+    let (ring, edge) = edge_numbers(table);
+    let limit = EdgeLimit {
+        edge: EdgeId { ring, edge },
+        face_mpa: table.number("face_mpa"),
+        line_n_per_mm: table.number("line_n_per_mm"),
+    };
+    if !table.has("face_mpa") {
+        table.require(
+            "line_n_per_mm",
+            "give what the edge may bear: `face_mpa` under pads or `line_n_per_mm` under pins",
+        );
+    }
+    limit
+}
+
 fn arc(table: &Table<'_>) -> ArcDescription {
     let (ring, edge) = edge_numbers(table);
     table.require("bulge", "give the tangent of a quarter of the angle swept, positive counter-clockwise");
@@ -235,6 +255,7 @@ fn place<'a>(fault: &PartFault, root: &Table<'_>, rings: &Rings<'_>, tables: &dy
         PartFault::NoSuchEdge { table, entry, .. } => entry_place(table, *entry, &["edge", "ring"]),
         PartFault::BadInterval { entry, .. } => entry_place("keep_out", *entry, &["from", "to"]),
         PartFault::BadEdgeFriction { entry, .. } => entry_place("edge_friction", *entry, &["mu"]),
+        PartFault::BadEdgeLimit { entry, key, .. } => entry_place("edge_limit", *entry, &[key]),
         PartFault::BadBulge { entry, .. } => entry_place("arc", *entry, &["bulge"]),
         PartFault::ArcTwice { entry, .. } => entry_place("arc", *entry, &["edge"]),
         PartFault::AndMore => {

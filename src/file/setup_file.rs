@@ -105,14 +105,17 @@ fn hand_of(table: &Table<'_>) -> Hand {
         }
         counted
     });
+    let closing = table.word("closing", &CLOSINGS).unwrap_or(usual.closing);
+    // Two pads go without saying.
+    let parallel = closing == Closing::Parallel;
     Hand {
-        fingers: fingers.unwrap_or(usual.fingers),
-        tip: table.word("tip", &TIPS).unwrap_or(usual.tip),
-        closing: table.word("closing", &CLOSINGS).unwrap_or(usual.closing),
+        fingers: fingers.or(FingerCount::new(2).filter(|_| parallel)).unwrap_or(usual.fingers),
+        tip: table.word("tip", &TIPS).unwrap_or(if parallel { Tip::Pad } else { usual.tip }),
+        closing,
         pin_radius_mm: table.number("pin_radius_mm").unwrap_or(usual.pin_radius_mm),
         pad_width_mm: table.number("pad_width_mm").unwrap_or(usual.pad_width_mm),
         pad_depth_mm: table.number("pad_depth_mm").unwrap_or(usual.pad_depth_mm),
-        bite_mm: table.number("bite_mm").unwrap_or(usual.bite_mm),
+        bite_mm: table.number("bite_mm").or(usual.bite_mm),
         opening_mm: table.numbers("opening_mm").unwrap_or(usual.opening_mm),
         corner_clearance_mm: table.number("corner_clearance_mm").unwrap_or(usual.corner_clearance_mm),
         gap_mm: table.number("gap_mm").unwrap_or(usual.gap_mm),
@@ -133,6 +136,7 @@ fn search_of(table: &Table<'_>) -> SearchSettings {
         budget: table.whole("budget").unwrap_or(usual.budget),
         seed: table.whole("seed").unwrap_or(usual.seed),
         torque_scale: torque_scale.unwrap_or(usual.torque_scale),
+        cone_sides: table.index("cone_sides").unwrap_or(usual.cone_sides),
     }
 }
 
@@ -161,6 +165,7 @@ fn load_of(table: &Table<'_>, number: usize) -> LoadCase {
         force_n: table.numbers("force_n").unwrap_or(usual.force_n),
         at_mm: table.numbers("at_mm").unwrap_or(usual.at_mm),
         safety: table.number("safety").unwrap_or(usual.safety),
+        squeeze_left: table.number("squeeze_left").unwrap_or(usual.squeeze_left),
     }
 }
 
@@ -209,7 +214,12 @@ fn hand_rows(h: &Hand) -> Vec<Row> {
         row("pin_radius_mm", number(h.pin_radius_mm), "0 is a point"),
         row("pad_width_mm", number(h.pad_width_mm), "along the edge"),
         row("pad_depth_mm", number(h.pad_depth_mm), "away from the edge"),
-        row("bite_mm", number(h.bite_mm), "height of contact along the edge face"),
+        option(
+            "bite_mm",
+            h.bite_mm.map(number),
+            "6.0",
+            "height of contact along the edge face; 6 or the thickness if less",
+        ),
         row("opening_mm", list(&h.opening_mm), "parallel closing: least and largest distance of the faces"),
         row("corner_clearance_mm", number(h.corner_clearance_mm), "kept from both ends of an edge"),
         row("gap_mm", number(h.gap_mm), "kept between two fingers"),
@@ -232,6 +242,7 @@ fn search_rows(s: &SearchSettings) -> Vec<Row> {
         option("spacing_mm", s.spacing_mm.map(number), "2.0", "between sites; perimeter / 200 when left out"),
         row("budget", s.budget.to_string(), "candidate sets looked at before sampling takes over"),
         row("seed", s.seed.to_string(), "of the sampler"),
+        row("cone_sides", s.cone_sides.to_string(), "even; of the pyramid that stands in for a friction cone in space"),
         row("torque_scale", scale, "\"reach\" | \"gyration\" | a number in mm"),
     ]
 }
@@ -255,6 +266,7 @@ fn load_rows(l: &LoadCase) -> Vec<Row> {
         row("force_n", list(&l.force_n), "an outside force"),
         row("at_mm", list(&l.at_mm), "where it acts"),
         row("safety", number(l.safety), "factor on the whole load"),
+        row("squeeze_left", number(l.squeeze_left), "part of the squeeze left: below 1 where air or power fails"),
     ]
 }
 

@@ -2,6 +2,8 @@
 
 mod stretch;
 
+use crate::part::EdgeLimit;
+
 pub use stretch::{Stretch, apart, stretch_around, stretches};
 
 /// How many fingers the hand has: two to six.
@@ -67,8 +69,8 @@ pub struct Hand {
     pub pad_width_mm: f64,
     /// Depth of a pad away from the edge.
     pub pad_depth_mm: f64,
-    /// Height of contact along the edge face.
-    pub bite_mm: f64,
+    /// Height of contact along the edge face; see [`Hand::bite_for`] where it is not stated.
+    pub bite_mm: Option<f64>,
     /// Smallest and largest distance between the faces of parallel pads.
     pub opening_mm: [f64; 2],
     /// Distance kept from both ends of an edge.
@@ -81,6 +83,63 @@ pub struct Hand {
     pub drive: Drive,
 }
 
+/// Height of contact where none is stated, mm.
+const USUAL_BITE_MM: f64 = 6.0;
+
+impl Hand {
+    /// Height of contact on a part of a thickness, mm: as stated, or else 6 mm and never more than the thickness.
+    pub fn bite_for(&self, thickness_mm: Option<f64>) -> f64 {
+        self.bite_mm.unwrap_or_else(|| thickness_mm.map_or(USUAL_BITE_MM, |thickness| thickness.min(USUAL_BITE_MM)))
+    }
+
+    /// What carries a squeeze on one finger: the face of a pad that lies flush, mm2, or the line of a pin, mm.
+    pub fn bearing(&self, flush: bool, thickness_mm: Option<f64>) -> Bearing {
+        let bite_mm = self.bite_for(thickness_mm);
+        if flush { Bearing::Face { mm2: self.pad_width_mm * bite_mm } } else { Bearing::Line { mm: bite_mm } }
+    }
+}
+
+/// What carries the squeeze of one finger.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub enum Bearing {
+    /// A flush face: the squeeze over it is a pressure, N/mm2 = MPa.
+    Face {
+        /// Its area.
+        mm2: f64,
+    },
+    /// A line across the edge: the squeeze over it is a line load, N/mm.
+    Line {
+        /// Its length.
+        mm: f64,
+    },
+}
+
+impl Bearing {
+    /// What a squeeze comes to: MPa on a face, N/mm on a line.
+    pub fn load(self, squeeze_n: f64) -> f64 {
+        match self {
+            Self::Face { mm2 } => squeeze_n / mm2,
+            Self::Line { mm } => squeeze_n / mm,
+        }
+    }
+
+    /// The largest squeeze an edge bears here without being marked, N; nothing where its limits do not say.
+    pub fn most_n(self, limit: &EdgeLimit) -> Option<f64> {
+        match self {
+            Self::Face { mm2 } => limit.face_mpa.map(|mpa| mpa * mm2),
+            Self::Line { mm } => limit.line_n_per_mm.map(|n_per_mm| n_per_mm * mm),
+        }
+    }
+
+    /// The unit of [`Bearing::load`].
+    pub fn unit(self) -> &'static str {
+        match self {
+            Self::Face { .. } => "MPa",
+            Self::Line { .. } => "N/mm",
+        }
+    }
+}
+
 impl Default for Hand {
     /// Three points without size: what can be said of a part before anything is known of the fingers.
     fn default() -> Self {
@@ -91,7 +150,7 @@ impl Default for Hand {
             pin_radius_mm: 0.0,
             pad_width_mm: 12.0,
             pad_depth_mm: 8.0,
-            bite_mm: 6.0,
+            bite_mm: None,
             opening_mm: [0.0, 120.0],
             corner_clearance_mm: 0.0,
             gap_mm: 0.0,

@@ -6,7 +6,7 @@ use super::force_polygon::PlanarScore;
 use super::program::{self, Balance, Solved};
 use super::quality::{self, Weakest};
 use super::wrench::{Frame, Wrenches};
-use super::{MARGINAL, friction};
+use super::{Holding, MARGINAL, friction};
 use nalgebra::Vector3;
 
 use super::placement::OnArcs;
@@ -37,6 +37,16 @@ pub enum Doubt {
     Placement {
         /// Kernel's value.
         kernel: f64,
+        /// The program's.
+        program: f64,
+    },
+    /// Squeeze.
+    #[error("squeeze for \"{case}\": the batch solver says {batch} N, the linear program {program} N")]
+    Squeeze {
+        /// The load case.
+        case: String,
+        /// The batch solver's value; infinite where no squeeze holds it.
+        batch: f64,
         /// The program's.
         program: f64,
     },
@@ -86,6 +96,11 @@ pub struct Assessment {
     pub weakest: Option<Weakest>,
     /// Motion out of an open grasp.
     pub escape: Option<Escape>,
+    /// Least mu at which every load case is held within the limit, on the setup's scale as above; nothing without loads
+    /// or a limit, or when no mu does.
+    pub friction_needed_holding: Option<f64>,
+    /// What the load cases ask of the fingers; nothing when there are none.
+    pub holding: Option<Holding>,
 }
 
 impl Assessment {
@@ -117,13 +132,31 @@ impl Assessment {
                 Verdict::Open => program::separating_direction(wrenches).map(|u| Escape::along(&u, frame)),
                 Verdict::Closed | Verdict::Marginal => None,
             },
+            friction_needed_holding: None,
+            holding: None,
         }
     }
 
-    /// The verdict with every contact's friction scaled from `setup_mu` to another mu of the band.
-    pub fn verdict_at(wrenches: &Wrenches, setup_mu: f64, mu: f64) -> Verdict {
-        let scaled = scaled_to(wrenches, setup_mu, mu);
-        Verdict::of(&scaled, &quality::planar(&scaled))
+    /// Adds what the load cases ask: the friction needed becomes the larger of that for closure and that for holding,
+    /// the margins the smaller.
+    pub fn hold(&mut self, holding: Holding, wrenches: &Wrenches, setup_mu: f64) {
+        if holding.limit.is_some() {
+            let closed = self.verdict == Verdict::Closed;
+            let own = FrictionReading::of_factor(wrenches, setup_mu, closed, holding.friction_factor);
+            self.friction_needed_holding = own.needed;
+            self.friction_needed = self.friction_needed.zip(own.needed).map(|(closure, holding)| closure.max(holding));
+            self.friction_margin = match (self.friction_margin, own.margin) {
+                (Some(closure), Some(holding)) => Some(closure.min(holding)),
+                (one, other) => one.or(other),
+            };
+            self.friction_margin_deg = self.friction_margin_deg.zip(own.margin_deg).map(|(a, b)| a.min(b));
+        }
+        self.holding = Some(holding);
+    }
+
+    /// The verdict on contacts.
+    pub fn verdict_at(wrenches: &Wrenches) -> Verdict {
+        Verdict::of(wrenches, &quality::planar(wrenches))
     }
 
     /// Confirms the reading by the linear programs and the plain definition of the hull. Empty when all agree.
@@ -165,6 +198,11 @@ pub fn scaled_to(wrenches: &Wrenches, setup_mu: f64, mu: f64) -> Wrenches {
     }
 }
 
+/// No contact has any friction.
+fn is_frictionless(wrenches: &Wrenches) -> bool {
+    wrenches.mus().iter().all(|&mu| mu <= 0.0)
+}
+
 fn not_closed(score: PlanarScore) -> PlanarScore {
     PlanarScore { torque_up: 0.0, torque_down: 0.0, ..score }
 }
@@ -177,11 +215,19 @@ struct FrictionReading {
 
 impl FrictionReading {
     fn of(wrenches: &Wrenches, setup_mu: f64, closed: bool) -> Self {
-        let frictionless = wrenches.mus().iter().all(|&mu| mu <= 0.0);
         let ones = vec![1.0; wrenches.finger_count()];
         // Without any friction to scale, ask what common mu would do.
+        let mus = if is_frictionless(wrenches) { &ones[..] } else { wrenches.mus() };
+        let factor = friction::factor_needed(wrenches.levers(), mus);
+        Self::of_factor(wrenches, setup_mu, closed, factor)
+    }
+
+    /// From the least factor on all friction, where there is one.
+    fn of_factor(wrenches: &Wrenches, setup_mu: f64, closed: bool, factor: Option<f64>) -> Self {
+        let frictionless = is_frictionless(wrenches);
+        let ones = vec![1.0; wrenches.finger_count()];
         let (mus, unit) = if frictionless { (&ones[..], 1.0) } else { (wrenches.mus(), setup_mu) };
-        match friction::factor_needed(wrenches.levers(), mus) {
+        match factor {
             None => Self { needed: None, margin: Some(0.0), margin_deg: None },
             Some(factor) => {
                 // With a setup mu of 0 and edges of their own, the factor scales nothing the setup names.

@@ -4,9 +4,11 @@
 //! an answer outside tolerance is [`Solved::Inconclusive`].
 
 use super::quality;
+use super::spatial::{Hold, Wrench};
 use super::wrench::Wrenches;
+use crate::hand::Drive;
 use good_lp::{Expression, ResolutionError, Solution, SolverModel, Variable, constraint, microlp, variable, variables};
-use nalgebra::{DMatrix, DVector, SVector, Vector3};
+use nalgebra::{DMatrix, DVector, Vector3};
 
 /// Outcome of a program.
 #[derive(Debug, Clone, PartialEq)]
@@ -17,6 +19,17 @@ pub enum Solved<T> {
     Infeasible,
     /// The solver gave up, or its answer failed the checks; why.
     Inconclusive(&'static str),
+}
+
+impl<T> Solved<T> {
+    /// The same outcome of what is made of the answer.
+    pub fn map<U>(self, make: impl FnOnce(T) -> U) -> Solved<U> {
+        match self {
+            Self::Answer(answer) => Solved::Answer(make(answer)),
+            Self::Infeasible => Solved::Infeasible,
+            Self::Inconclusive(why) => Solved::Inconclusive(why),
+        }
+    }
 }
 
 /// Largest equality residual accepted, for generators of order one.
@@ -33,92 +46,105 @@ pub struct Balance {
     pub residual: f64,
 }
 
-/// Solves `min cost . x` with `sum_j x_j column_j = target`, `x >= 0`.
-///
-/// Columns that are parallel but for a hair can lead the simplex method astray. An answer that fails its checks is asked
-/// for again with the columns and the equations in reverse, which takes another path of pivots; it has to pass the same
-/// checks: the equations within [`RESIDUAL`], no weight below `-below`, by default
-/// below what rounding of the largest one leaves.
-fn solve<const ROWS: usize>(
-    columns: &[[f64; ROWS]],
-    cost: &[f64],
-    target: [f64; ROWS],
+/// A program `min cost . x` with `sum_j x_j column_j = target`, `x >= 0`.
+struct Program {
+    columns: Vec<Vec<f64>>,
+    cost: Vec<f64>,
+    target: Vec<f64>,
+    /// A weight may be below 0 by this much; by default by what rounding of the largest one leaves.
     below: Option<f64>,
-) -> Solved<Vec<f64>> {
-    let first = attempt(columns, cost, target, below);
-    if !matches!(first, Solved::Inconclusive(_)) {
-        return first;
-    }
-    let turn = |mut rows: [f64; ROWS]| {
-        rows.reverse();
-        rows
-    };
-    let columns: Vec<_> = columns.iter().rev().copied().map(turn).collect();
-    let cost: Vec<f64> = cost.iter().rev().copied().collect();
-    match attempt(&columns, &cost, turn(target), below) {
-        Solved::Answer(mut x) => {
-            x.reverse();
-            Solved::Answer(x)
-        }
-        other => other,
-    }
 }
 
-/// One run of the solver, its answer checked.
-fn attempt<const ROWS: usize>(
-    columns: &[[f64; ROWS]],
-    cost: &[f64],
-    target: [f64; ROWS],
-    below: Option<f64>,
-) -> Solved<Vec<f64>> {
-    let mut vars = variables!();
-    let x: Vec<Variable> = columns.iter().map(|_| vars.add(variable().min(0.0))).collect();
-    let objective: Expression = x.iter().zip(cost).map(|(&x, &c)| c * x).sum();
-    let mut problem = vars.minimise(objective).using(microlp);
-    for (row, &target) in target.iter().enumerate() {
-        let sum: Expression = x.iter().zip(columns).map(|(&x, column)| column[row] * x).sum();
-        problem = problem.with(constraint!(sum == target));
+impl Program {
+    /// Adds an equation with no columns yet.
+    fn add_row(&mut self, target: f64) {
+        self.target.push(target);
+        self.columns.iter_mut().for_each(|column| column.push(0.0));
     }
-    let solution = match problem.solve() {
-        Ok(solution) => solution,
-        Err(ResolutionError::Infeasible) => return Solved::Infeasible,
-        Err(_) => return Solved::Inconclusive("the solver gave up"),
-    };
-    let mut values: Vec<f64> = x.iter().map(|&x| solution.value(x)).collect();
-    if left_over(columns, &values, &target).amax() > RESIDUAL * size(&values) {
-        polish(columns, &mut values, &target);
+
+    /// Adds a variable that stands in no equation yet; its number.
+    fn add_column(&mut self, cost: f64) -> usize {
+        self.columns.push(vec![0.0; self.target.len()]);
+        self.cost.push(cost);
+        self.columns.len() - 1
     }
-    let size = size(&values);
-    if !values.iter().all(|v| v.is_finite() && *v >= -below.unwrap_or(RESIDUAL * size)) {
-        return Solved::Inconclusive("a negative weight");
+
+    /// Solves the program.
+    ///
+    /// Columns that are parallel but for a hair can lead the simplex method astray. An answer that fails its checks is
+    /// asked for again with the columns and the equations in reverse, which takes another path of pivots; it has to pass the
+    /// same checks: the equations within [`RESIDUAL`], no weight below what is allowed.
+    fn solve(mut self) -> Solved<Vec<f64>> {
+        let first = self.attempt();
+        if !matches!(first, Solved::Inconclusive(_)) {
+            return first;
+        }
+        self.columns.iter_mut().for_each(|column| column.reverse());
+        self.columns.reverse();
+        self.cost.reverse();
+        self.target.reverse();
+        match self.attempt() {
+            Solved::Answer(mut x) => {
+                x.reverse();
+                Solved::Answer(x)
+            }
+            other => other,
+        }
     }
-    if !(left_over(columns, &values, &target).amax() <= RESIDUAL * size) {
-        return Solved::Inconclusive("an equation is not met");
+
+    /// One run of the solver, its answer checked.
+    fn attempt(&self) -> Solved<Vec<f64>> {
+        let mut vars = variables!();
+        let x: Vec<Variable> = self.columns.iter().map(|_| vars.add(variable().min(0.0))).collect();
+        let objective: Expression = x.iter().zip(&self.cost).map(|(&x, &c)| c * x).sum();
+        let mut problem = vars.minimise(objective).using(microlp);
+        for (row, &target) in self.target.iter().enumerate() {
+            let sum: Expression = x.iter().zip(&self.columns).map(|(&x, column)| column[row] * x).sum();
+            problem = problem.with(constraint!(sum == target));
+        }
+        let solution = match problem.solve() {
+            Ok(solution) => solution,
+            Err(ResolutionError::Infeasible) => return Solved::Infeasible,
+            Err(_) => return Solved::Inconclusive("the solver gave up"),
+        };
+        let mut values: Vec<f64> = x.iter().map(|&x| solution.value(x)).collect();
+        if self.left_over(&values).amax() > RESIDUAL * size(&values) {
+            self.polish(&mut values);
+        }
+        let size = size(&values);
+        if !values.iter().all(|v| v.is_finite() && *v >= -self.below.unwrap_or(RESIDUAL * size)) {
+            return Solved::Inconclusive("a negative weight");
+        }
+        if !(self.left_over(&values).amax() <= RESIDUAL * size) {
+            return Solved::Inconclusive("an equation is not met");
+        }
+        Solved::Answer(values)
     }
-    Solved::Answer(values)
+
+    /// By how much each equation is missed.
+    fn left_over(&self, x: &[f64]) -> DVector<f64> {
+        let mut missed = -DVector::from_column_slice(&self.target);
+        for (column, x) in self.columns.iter().zip(x) {
+            missed.iter_mut().zip(column).for_each(|(missed, w)| *missed += w * x);
+        }
+        missed
+    }
+
+    /// Meets the equations by the least change of the weights: what tiny pivots left over is made good. The checks that
+    /// follow tell whether the weights bore it.
+    fn polish(&self, x: &mut [f64]) {
+        let missed = self.left_over(x);
+        let w = DMatrix::from_fn(self.target.len(), self.columns.len(), |row, column| self.columns[column][row]);
+        if let Some(share) = (&w * w.transpose()).lu().solve(&missed) {
+            for (x, change) in x.iter_mut().zip(w.tr_mul(&share).iter()) {
+                *x -= change;
+            }
+        }
+    }
 }
 
 fn size(values: &[f64]) -> f64 {
     values.iter().fold(1.0_f64, |size, v| size.max(v.abs()))
-}
-
-/// By how much each equation is missed.
-fn left_over<const ROWS: usize>(columns: &[[f64; ROWS]], x: &[f64], target: &[f64; ROWS]) -> SVector<f64, ROWS> {
-    let sum: SVector<f64, ROWS> = columns.iter().zip(x).map(|(column, x)| SVector::from(*column) * *x).sum();
-    sum - SVector::from(*target)
-}
-
-/// Meets the equations by the least change of the weights: what tiny pivots left over is made good. The checks that follow
-/// tell whether the weights bore it.
-fn polish<const ROWS: usize>(columns: &[[f64; ROWS]], x: &mut [f64], target: &[f64; ROWS]) {
-    let missed = left_over(columns, x, target);
-    let w = DMatrix::from_fn(ROWS, columns.len(), |row, column| columns[column][row]);
-    let missed = DVector::from_column_slice(missed.as_slice());
-    if let Some(share) = (&w * w.transpose()).lu().solve(&missed) {
-        for (x, change) in x.iter_mut().zip(w.tr_mul(&share).iter()) {
-            *x -= change;
-        }
-    }
 }
 
 /// Quantitative closure (Trinkle 1992): maximise d with `W lambda = 0`, `sum lambda = 1`, `lambda_i >= d`.
@@ -129,10 +155,14 @@ fn polish<const ROWS: usize>(columns: &[[f64; ROWS]], x: &mut [f64], target: &[f
 pub fn closure(wrenches: &Wrenches) -> Solved<Balance> {
     let generators = wrenches.generators();
     let sum: Vector3<f64> = generators.iter().sum();
-    let columns: Vec<[f64; 3]> = generators.iter().map(|w| [w.x, w.y, w.z]).collect();
-    let cost = vec![1.0; columns.len()];
-    // Weights 1 + s are above 0, and so prove closure, as long as no s is near -1.
-    match solve(&columns, &cost, [-sum.x, -sum.y, -sum.z], Some(0.5)) {
+    let program = Program {
+        columns: generators.iter().map(|w| vec![w.x, w.y, w.z]).collect(),
+        cost: vec![1.0; generators.len()],
+        target: vec![-sum.x, -sum.y, -sum.z],
+        // Weights 1 + s are above 0, and so prove closure, as long as no s is near -1.
+        below: Some(0.5),
+    };
+    match program.solve() {
         Solved::Answer(s) => {
             let total = generators.len() as f64 + s.iter().sum::<f64>();
             let lambda: Vec<f64> = s.iter().map(|s| (1.0 + s) / total).collect();
@@ -154,13 +184,13 @@ pub fn closure(wrenches: &Wrenches) -> Solved<Balance> {
 /// balance.
 pub fn pure_torque(wrenches: &Wrenches, sense: f64) -> Solved<f64> {
     let generators = wrenches.generators();
-    let columns: Vec<[f64; 3]> = generators.iter().map(|w| [w.x, w.y, 1.0]).collect();
-    let cost: Vec<f64> = generators.iter().map(|w| -sense * w.z).collect();
-    match solve(&columns, &cost, [0.0, 0.0, 1.0], None) {
-        Solved::Answer(lambda) => Solved::Answer(-lambda.iter().zip(&cost).map(|(l, c)| l * c).sum::<f64>()),
-        Solved::Infeasible => Solved::Infeasible,
-        Solved::Inconclusive(why) => Solved::Inconclusive(why),
-    }
+    let program = Program {
+        columns: generators.iter().map(|w| vec![w.x, w.y, 1.0]).collect(),
+        cost: generators.iter().map(|w| -sense * w.z).collect(),
+        target: vec![0.0, 0.0, 1.0],
+        below: None,
+    };
+    program.solve().map(|lambda| sense * lambda.iter().zip(generators).map(|(l, w)| l * w.z).sum::<f64>())
 }
 
 /// Certificate of an open grasp: a unit direction u with `u . w <= 0` (to 1e-9) for every generator, checked by
@@ -168,4 +198,74 @@ pub fn pure_torque(wrenches: &Wrenches, sense: f64) -> Solved<f64> {
 pub fn separating_direction(wrenches: &Wrenches) -> Option<Vector3<f64>> {
     let (reach, u) = quality::least_reach(wrenches.generators());
     (reach <= super::MARGINAL).then_some(u)
+}
+
+/// The least squeeze that holds a load, N per finger: `min F` with the wrenches of all cone-edge forces balancing the
+/// load and each finger's normal force at most F, or equal to F where the drive presses all alike.
+pub fn squeeze(hold: &Hold<'_>, load: &Wrench) -> Solved<f64> {
+    let size = load.norm();
+    if size <= 0.0 {
+        return Solved::Answer(0.0);
+    }
+    let (mut program, _) = balance(hold, &(load / size), &Wrench::zeros());
+    let squeeze = program.columns.len() - 1;
+    program.cost[squeeze] = 1.0;
+    program.solve().map(|x| x[squeeze] * size)
+}
+
+/// The largest c for which the load `fixed + c growing` is held with a squeeze of at most `limit_n`. With nothing fixed
+/// it is the load margin; with the weight fixed and an acceleration growing, a point of the acceleration envelope.
+/// Infeasible when not even `fixed` is held.
+pub fn most_held(hold: &Hold<'_>, fixed: &Wrench, growing: &Wrench, limit_n: f64) -> Solved<f64> {
+    let size = growing.norm();
+    if !(size > 0.0 && limit_n > 0.0) {
+        return Solved::Inconclusive("nothing grows, or there is no limit");
+    }
+    let growing = growing / size;
+    let (mut program, rows) = balance(hold, &(fixed / limit_n), &growing);
+    // In units of the limit: the squeeze and what is left of it make 1.
+    let squeeze = program.columns.len() - 1;
+    program.add_row(1.0);
+    program.add_column(0.0);
+    let most = program.add_column(-1.0);
+    let last = program.target.len() - 1;
+    program.columns[squeeze][last] = 1.0;
+    program.columns[most - 1][last] = 1.0;
+    for (at, row) in rows.into_iter().enumerate() {
+        program.columns[most][at] = growing[row];
+    }
+    program.solve().map(|x| x[most] * limit_n / size)
+}
+
+/// The equations of a load balanced by fingers, the last column the squeeze they share, and which rows of the wrench
+/// stand in it: those that are nought throughout, as out of the plane, are left out.
+fn balance(hold: &Hold<'_>, load: &Wrench, growing: &Wrench) -> (Program, Vec<usize>) {
+    let mut wrenches = Vec::new();
+    for (finger, press) in hold.presses().iter().enumerate() {
+        wrenches.extend(press.forces(hold.pyramid()).map(|force| (finger, press.wrench(&force))));
+    }
+    let used = |row: &usize| {
+        load[*row] != 0.0 || growing[*row] != 0.0 || wrenches.iter().any(|(_, wrench)| wrench[*row] != 0.0)
+    };
+    let rows: Vec<usize> = (0..load.len()).filter(used).collect();
+    let fingers = hold.presses().len();
+    let mut program = Program { columns: Vec::new(), cost: Vec::new(), target: Vec::new(), below: None };
+    rows.iter().for_each(|&row| program.add_row(-load[row]));
+    (0..fingers).for_each(|_| program.add_row(0.0));
+    for (finger, wrench) in wrenches {
+        let column = program.add_column(0.0);
+        for (at, &row) in rows.iter().enumerate() {
+            program.columns[column][at] = wrench[row];
+        }
+        program.columns[column][rows.len() + finger] = 1.0;
+    }
+    if hold.drive() == Drive::Adjustable {
+        for finger in 0..fingers {
+            let spare = program.add_column(0.0);
+            program.columns[spare][rows.len() + finger] = 1.0;
+        }
+    }
+    let squeeze = program.add_column(0.0);
+    program.columns[squeeze][rows.len()..].fill(-1.0);
+    (program, rows)
 }

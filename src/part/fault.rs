@@ -179,6 +179,16 @@ pub enum PartFault {
         /// The value.
         mu: f64,
     },
+    /// What an edge may bear is no pressure or line load.
+    #[error("edge_limit {entry}: {key} is {value}; give a number above 0")]
+    BadEdgeLimit {
+        /// Entry, from 0.
+        entry: usize,
+        /// Key.
+        key: &'static str,
+        /// The value.
+        value: f64,
+    },
     /// More faults than are worth listing.
     #[error("and more; mend these first")]
     AndMore,

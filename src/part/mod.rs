@@ -43,6 +43,17 @@ pub struct EdgeFriction {
     pub mu: f64,
 }
 
+/// What one edge may bear before a finger marks it.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct EdgeLimit {
+    /// The edge, numbered as in the part file.
+    pub edge: EdgeId,
+    /// Largest pressure under a pad that lies flush, MPa.
+    pub face_mpa: Option<f64>,
+    /// Largest line load under a pin, or under a pad on an arc, N/mm.
+    pub line_n_per_mm: Option<f64>,
+}
+
 /// A keep-out as it stands in a description: interval ends may be left open and are in the description's unit.
 #[derive(Debug, Clone, PartialEq)]
 pub struct KeepOutDescription {
@@ -95,6 +106,8 @@ pub struct PartDescription {
     pub keep_outs: Vec<KeepOutDescription>,
     /// Edges with their own friction: ring, edge, mu.
     pub edge_friction: Vec<(usize, usize, f64)>,
+    /// What edges may bear.
+    pub edge_limits: Vec<EdgeLimit>,
 }
 
 impl PartDescription {
@@ -112,6 +125,7 @@ impl PartDescription {
             com: None,
             keep_outs: Vec::new(),
             edge_friction: Vec::new(),
+            edge_limits: Vec::new(),
         }
     }
 }
@@ -128,6 +142,7 @@ pub struct Part {
     com: Point2<f64>,
     keep_outs: Vec<KeepOut>,
     edge_friction: Vec<EdgeFriction>,
+    edge_limits: Vec<EdgeLimit>,
 }
 
 impl Part {
@@ -165,6 +180,7 @@ impl Part {
         };
         let keep_outs = checked_keep_outs(&d, &outline, &mut faults);
         let edge_friction = checked_edge_friction(&d, &outline, &mut faults);
+        let edge_limits = checked_edge_limits(&d, &outline, &mut faults);
         if !faults.is_empty() {
             return Err(PartFaults(faults));
         }
@@ -178,7 +194,17 @@ impl Part {
             d.density_kg_m3.or_else(|| d.material.as_deref().and_then(material::density).map(|row| row.kg_m3));
         let mass_kg = d.mass_kg.or_else(|| Some(mass_of(density?, thickness_mm?, outline.region())));
         let mass = mass_kg.map(|kg| Mass::of(kg, outline.region(), com));
-        Ok(Self { name: d.name, outline, thickness_mm, material: d.material, mass, com, keep_outs, edge_friction })
+        Ok(Self {
+            name: d.name,
+            outline,
+            thickness_mm,
+            material: d.material,
+            mass,
+            com,
+            keep_outs,
+            edge_friction,
+            edge_limits,
+        })
     }
 
     /// The same part of a material with a density in kg/m3; its outline, marks and centre of mass stay. Nothing when the
@@ -235,6 +261,16 @@ impl Part {
     /// Friction coefficient of an edge: its own, or `mu` where it has none. The last entry for an edge wins.
     pub fn mu_on(&self, edge: EdgeId, mu: f64) -> f64 {
         self.edge_friction.iter().rev().find(|own| own.edge == edge).map_or(mu, |own| own.mu)
+    }
+
+    /// Edges with limits on what they may bear.
+    pub fn edge_limits(&self) -> &[EdgeLimit] {
+        &self.edge_limits
+    }
+
+    /// What an edge may bear, where it is stated. The last entry for an edge wins.
+    pub fn limit_on(&self, edge: EdgeId) -> Option<&EdgeLimit> {
+        self.edge_limits.iter().rev().find(|own| own.edge == edge)
     }
 
     /// A local point in the file's frame, mm: what is shown and saved.
@@ -319,6 +355,25 @@ fn checked_edge_friction(d: &PartDescription, outline: &Outline, faults: &mut Ve
         }
     }
     own
+}
+
+fn checked_edge_limits(d: &PartDescription, outline: &Outline, faults: &mut Vec<PartFault>) -> Vec<EdgeLimit> {
+    let mut limits = Vec::with_capacity(d.edge_limits.len());
+    for (entry, limit) in d.edge_limits.iter().enumerate() {
+        if outline.edge(limit.edge).is_none() {
+            let (edge, have) = (limit.edge, outline.ring_sizes());
+            faults.push(PartFault::NoSuchEdge { table: "edge_limit", entry, edge, have });
+            continue;
+        }
+        let values = [("face_mpa", limit.face_mpa), ("line_n_per_mm", limit.line_n_per_mm)];
+        let bad =
+            values.into_iter().find_map(|(key, value)| Some((key, value.filter(|v| !(*v > 0.0 && v.is_finite()))?)));
+        match bad {
+            Some((key, value)) => faults.push(PartFault::BadEdgeLimit { entry, key, value }),
+            None => limits.push(*limit),
+        }
+    }
+    limits
 }
 
 /// Largest friction coefficient taken as a number rather than a slip of the keyboard. Tacky rubber reaches about 4

@@ -13,5 +13,5 @@ mod sites;
 
 pub use order::Key;
 pub use rank::{Cancel, Cancelled, Listed, Listing, Progress, Ranking, rank};
-pub use scene::{Grasp, PlaceFault, Scene, Spot};
+pub use scene::{Grasp, PlaceFault, Scene, Spot, Standing};
 pub use setup::{Floors, SearchSettings, Setup, SetupFault, TorqueScale};

@@ -2,9 +2,11 @@
 
 use super::setup::{Setup, SetupFault};
 use super::sites;
-use crate::hand::{self, Stretch, Tip};
-use crate::mechanics::assess::Doubt;
-use crate::mechanics::{Assessment, Contact, Frame, Wrenches};
+use crate::hand::{self, Bearing, Stretch, Tip};
+use crate::mechanics::assess::{self, Doubt};
+use crate::mechanics::load::Body;
+use crate::mechanics::spatial::{Hold, Pyramid};
+use crate::mechanics::{Assessment, Case, Contact, Frame, Holding, Limit, LimitedBy, LoadCase, Verdict, Wrenches};
 use crate::part::{Edge, EdgeId, Part};
 use std::sync::Arc;
 
@@ -70,24 +72,20 @@ pub struct Scene {
     setup: Setup,
     frame: Frame,
     stretches: Vec<Stretch>,
+    cases: Vec<Case>,
+    pyramid: Pyramid,
+    /// Half the bite over the torque scale; 0 for a part without a thickness.
+    half_height: f64,
 }
 
 impl Scene {
     /// Works out the frame and the stretches. The setup must have no [`Setup::faults`].
     ///
     /// # Errors
-    /// A setup that asks for something not built yet, or for more sites than a ranking takes.
+    /// A setup the part does not allow ([`Setup::faults_with`]), or one with more sites than a ranking takes.
     pub fn new(part: Arc<Part>, setup: Setup) -> Result<Self, SetupFault> {
-        let not_yet = |key: &str, value: &str, mend: &str| SetupFault {
-            key: key.to_owned(),
-            value: value.to_owned(),
-            mend: mend.to_owned(),
-        };
-        if setup.hand.tip == Tip::Pad {
-            return Err(not_yet("hand.tip", "pad", "pads are not built yet; set it to \"pin\""));
-        }
-        if setup.hand.closing == hand::Closing::Parallel {
-            return Err(not_yet("hand.closing", "parallel", "parallel closing is not built yet; set it to \"free\""));
+        if let Some(fault) = setup.faults_with(&part).into_iter().next() {
+            return Err(fault);
         }
         let frame = Frame { about: part.com(), scale_mm: setup.search.torque_scale.mm(&part) };
         let stretches = hand::stretches(&part, &setup.hand);
@@ -101,7 +99,22 @@ impl Scene {
                 mend: format!("that makes {sites:.1e} sites, more than {MOST_SITES:.0e}; give at least {least:.1e} mm"),
             });
         }
-        Ok(Self { part, setup, frame, stretches })
+        let body = Body {
+            mass_kg: part.mass().map_or(0.0, |mass| mass.kg),
+            polar_kg_m2: part.mass().map_or(0.0, |mass| mass.polar_kg_m2),
+            com_mm: part.file_point(part.com()).into(),
+        };
+        let case = |load: &LoadCase| Case {
+            name: load.name.clone(),
+            loads: load.loads(&body, frame.scale_mm),
+            squeeze_left: load.squeeze_left,
+        };
+        let cases = setup.loads.iter().map(case).collect();
+        let in_space = part.thickness_mm().is_some();
+        let pyramid = Pyramid::new(setup.search.cone_sides).filter(|_| in_space).unwrap_or_else(Pyramid::planar);
+        let bite_mm = if in_space { setup.hand.bite_for(part.thickness_mm()) } else { 0.0 };
+        let half_height = bite_mm / 2.0 / frame.scale_mm;
+        Ok(Self { part, setup, frame, stretches, cases, pyramid, half_height })
     }
 
     /// The part.
@@ -177,12 +190,76 @@ impl Scene {
         Wrenches::new(&grasp.contacts, &self.frame).on_curves(&grasp.curvatures)
     }
 
+    /// The load cases, ready to be put on grasps, in the setup's order.
+    pub fn cases(&self) -> &[Case] {
+        &self.cases
+    }
+
+    /// The fingers of a grasp in space; in the plane where the part has no thickness.
+    pub fn hold(&self, wrenches: &Wrenches) -> Hold<'_> {
+        Hold::of(wrenches, self.half_height, &self.pyramid, self.setup.hand.drive)
+    }
+
+    /// What carries the squeeze of a finger that makes this contact.
+    pub fn bearing(&self, contact: &Contact) -> Bearing {
+        self.setup.hand.bearing(contact.half_width_mm > 0.0, self.part.thickness_mm())
+    }
+
+    /// What the squeeze may not exceed for fingers on these edges: the hand's limit, or less where an edge would be marked.
+    pub fn limit<'e>(&self, on: impl Iterator<Item = (EdgeId, &'e Contact)>) -> Option<Limit> {
+        let hand = self.setup.hand.force_limit_n.map(|squeeze_n| Limit { squeeze_n, by: LimitedBy::Hand });
+        let edges = on.enumerate().filter_map(|(finger, (edge, contact))| {
+            let squeeze_n = self.bearing(contact).most_n(self.part.limit_on(edge)?)?;
+            Some(Limit { squeeze_n, by: LimitedBy::Edge { finger } })
+        });
+        hand.into_iter()
+            .chain(edges)
+            .reduce(|least, other| if other.squeeze_n < least.squeeze_n { other } else { least })
+    }
+
+    /// What the load cases ask of a grasp; nothing when there are none.
+    pub fn holding(&self, grasp: &Grasp, wrenches: &Wrenches) -> Option<Holding> {
+        if self.cases.is_empty() {
+            return None;
+        }
+        let on = grasp.spots.iter().map(|spot| spot.edge).zip(&grasp.contacts);
+        Some(Holding::of(&self.hold(wrenches), &self.cases, self.limit(on)))
+    }
+
     /// Reads a grasp and confirms the reading by the second way.
     pub fn assess(&self, grasp: &Grasp) -> (Assessment, Vec<Doubt>) {
         let wrenches = self.wrenches(grasp);
         let mu = self.setup.friction.mu;
-        let assessment = Assessment::of(&wrenches, &self.frame, mu, &grasp.rooms_mm);
-        let doubts = assessment.doubts(&wrenches, &self.frame, mu);
+        let mut assessment = Assessment::of(&wrenches, &self.frame, mu, &grasp.rooms_mm);
+        let mut doubts = assessment.doubts(&wrenches, &self.frame, mu);
+        if let Some(holding) = self.holding(grasp, &wrenches) {
+            doubts.extend(holding.doubts(&self.hold(&wrenches), &self.cases));
+            assessment.hold(holding, &wrenches, mu);
+        }
         (assessment, doubts)
+    }
+
+    /// How a grasp stands at another friction of the band: `mu` in place of the setup's.
+    pub fn standing_at(&self, grasp: &Grasp, mu: f64) -> Standing {
+        let wrenches = assess::scaled_to(&self.wrenches(grasp), self.setup.friction.mu, mu);
+        Standing { mu, verdict: Assessment::verdict_at(&wrenches), holding: self.holding(grasp, &wrenches) }
+    }
+}
+
+/// How a grasp stands at some friction.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Standing {
+    /// The friction in place of the setup's.
+    pub mu: f64,
+    /// Closed, open or marginal there.
+    pub verdict: Verdict,
+    /// What the load cases ask there; nothing when there are none.
+    pub holding: Option<Holding>,
+}
+
+impl Standing {
+    /// Closed, and every load held: what a person may count on.
+    pub fn holds(&self) -> bool {
+        self.verdict == Verdict::Closed && self.holding.as_ref().is_none_or(Holding::held)
     }
 }

@@ -1,6 +1,7 @@
 //! The setup: friction, hand, search settings, floors and loads under which grasps are scored, and its checks.
 
-use crate::hand::Hand;
+use crate::hand::{Closing, Hand, Tip};
+use crate::mechanics::spatial::{MOST_SIDES, Pyramid};
 use crate::mechanics::{FrictionBand, LoadCase};
 use crate::part::{MU_LARGEST, Part};
 
@@ -37,11 +38,13 @@ pub struct SearchSettings {
     pub seed: u64,
     /// Torque scale.
     pub torque_scale: TorqueScale,
+    /// Sides of the pyramid that stands in for a friction cone in space; even.
+    pub cone_sides: usize,
 }
 
 impl Default for SearchSettings {
     fn default() -> Self {
-        Self { spacing_mm: None, budget: 2_000_000, seed: 1, torque_scale: TorqueScale::Reach }
+        Self { spacing_mm: None, budget: 2_000_000, seed: 1, torque_scale: TorqueScale::Reach, cone_sides: 8 }
     }
 }
 
@@ -102,6 +105,46 @@ pub struct SetupFault {
 const MOST_LOADS: usize = 64;
 
 impl Setup {
+    /// Every fault of the values together with a part: what its thickness and mass do not allow.
+    pub fn faults_with(&self, part: &Part) -> Vec<SetupFault> {
+        let mut faults = Checks(Vec::new());
+        if let (Some(bite), Some(thickness)) = (self.hand.bite_mm, part.thickness_mm())
+            && bite > thickness
+        {
+            faults.note("hand.bite_mm", bite, format!("the part is {thickness} mm thick; give no more than that"));
+        }
+        for (number, load) in self.loads.iter().enumerate() {
+            let name = &load.name;
+            if load.needs_mass() && part.mass().is_none() {
+                faults.note(
+                    &format!("load.{number}"),
+                    format!("\"{name}\""),
+                    "it moves a mass, and the part has none: give the part `mass_kg`, or `thickness` and a `material` or \
+                     `density_kg_m3`"
+                        .into(),
+                );
+            }
+            if part.thickness_mm().is_none()
+                && let Some(key) = load.out_of_plane()
+            {
+                let value = match key {
+                    "gravity" => load.gravity,
+                    "acceleration_m_s2" => load.acceleration_m_s2,
+                    "force_n" => load.force_n,
+                    _ => load.at_mm,
+                };
+                faults.note(
+                    &format!("load.{number}.{key}"),
+                    format!("{value:?}"),
+                    "it points out of the plane of a part without a thickness: give the part `thickness`, or keep the load in \
+                     the plane (gravity = [0, 0, 0] for none)"
+                        .into(),
+                );
+            }
+        }
+        faults.0
+    }
+
     /// Every fault of the values by themselves; empty when the setup can be used.
     pub fn faults(&self) -> Vec<SetupFault> {
         let mut faults = Checks(Vec::new());
@@ -153,7 +196,17 @@ impl Setup {
         faults.range("hand.pin_radius_mm", h.pin_radius_mm, 0.0, LONGEST_MM);
         faults.above("hand.pad_width_mm", h.pad_width_mm, LONGEST_MM);
         faults.range("hand.pad_depth_mm", h.pad_depth_mm, 0.0, LONGEST_MM);
-        faults.above("hand.bite_mm", h.bite_mm, LONGEST_MM);
+        if let Some(bite) = h.bite_mm {
+            faults.above("hand.bite_mm", bite, LONGEST_MM);
+        }
+        if h.closing == Closing::Parallel {
+            if h.tip != Tip::Pad {
+                faults.note("hand.tip", "pin", "parallel closing takes pads: set it to \"pad\"".into());
+            }
+            if h.fingers.get() != 2 {
+                faults.note("hand.fingers", h.fingers.get(), "parallel closing takes two pads: set it to 2".into());
+            }
+        }
         faults.range("hand.corner_clearance_mm", h.corner_clearance_mm, 0.0, LONGEST_MM);
         faults.range("hand.gap_mm", h.gap_mm, 0.0, LONGEST_MM);
         if let Some(limit) = h.force_limit_n {
@@ -180,6 +233,9 @@ impl Setup {
         if let TorqueScale::Mm(mm) = s.torque_scale {
             faults.above("search.torque_scale", mm, LONGEST_MM);
         }
+        if Pyramid::new(s.cone_sides).is_none() || s.cone_sides < 4 {
+            faults.note("search.cone_sides", s.cone_sides, format!("give an even number from 4 to {MOST_SIDES}"));
+        }
         faults.range("floors.quality", self.floors.quality, 0.0, 1e9);
         faults.range("floors.friction_margin", self.floors.friction_margin, 0.0, 1e9);
         faults.range("floors.placement_mm", self.floors.placement_mm, 0.0, LONGEST_MM);
@@ -205,6 +261,7 @@ impl Setup {
             faults.range(&key("angular_acceleration_rad_s2"), load.angular_acceleration_rad_s2, -1e9, 1e9);
             faults.range(&key("any_direction_m_s2"), load.any_direction_m_s2, 0.0, 1e9);
             faults.above(&key("safety"), load.safety, 1e6);
+            faults.above(&key("squeeze_left"), load.squeeze_left, 1.0);
         }
     }
 }

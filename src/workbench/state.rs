@@ -4,11 +4,11 @@ use super::look::{ColorChoice, Look, Marker};
 use crate::file::Keep;
 use crate::hand::Stretch;
 use crate::mechanics::assess::Doubt;
-use crate::mechanics::{Assessment, Condition, FrictionBand, Verdict};
+use crate::mechanics::{Assessment, Condition, FrictionBand};
 use crate::part::Part;
 use crate::part::material::Density;
 use crate::search::job::Request;
-use crate::search::{Grasp, Key, Listed, Listing, Ranking, Scene, Setup, Spot};
+use crate::search::{Grasp, Key, Listed, Listing, Ranking, Scene, Setup, Spot, Standing};
 use std::path::PathBuf;
 use std::sync::Arc;
 
@@ -71,8 +71,8 @@ pub struct Reading {
     pub assessment: Assessment,
     /// Why a number is not to be trusted.
     pub doubts: Vec<Doubt>,
-    /// Name, mu and verdict for each value of the friction band the setup states.
-    pub band: Vec<(&'static str, f64, Verdict)>,
+    /// Name, and how the grasp stands there, for each value of the friction band the setup states.
+    pub band: Vec<(&'static str, Standing)>,
 }
 
 impl Reading {
@@ -81,7 +81,6 @@ impl Reading {
         let grasp = scene.grasp(spots).ok()?;
         let (assessment, doubts) = scene.assess(&grasp);
         let friction = &scene.setup().friction;
-        let wrenches = scene.wrenches(&grasp);
         let band = [
             ("low", friction.low),
             ("nominal", friction.nominal),
@@ -89,7 +88,7 @@ impl Reading {
             ("sliding", friction.sliding),
         ]
         .into_iter()
-        .filter_map(|(name, mu)| Some((name, mu?, Assessment::verdict_at(&wrenches, friction.mu, mu?))))
+        .filter_map(|(name, mu)| Some((name, scene.standing_at(&grasp, mu?))))
         .collect();
         Some(Self { grasp, assessment, doubts, band })
     }

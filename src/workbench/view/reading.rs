@@ -6,7 +6,7 @@ use crate::mechanics::assess::Assessment;
 use crate::mechanics::escape::{Escape, Sense};
 use crate::mechanics::placement::Governor;
 use crate::mechanics::{Verdict, Weakest};
-use crate::search::Spot;
+use crate::search::{Spot, Standing};
 use ratatui::style::Style;
 use ratatui::text::{Line, Span};
 
@@ -184,7 +184,7 @@ impl Page<'_> {
         if !reading.band.is_empty() {
             let mut meaning = String::new();
             let mut last = None;
-            for (name, mu, verdict) in &reading.band {
+            for (name, Standing { mu, verdict, .. }) in &reading.band {
                 if last == Some(*verdict) {
                     meaning.push_str(", ");
                 } else {

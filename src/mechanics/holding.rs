@@ -1,0 +1,399 @@
+//! Holding: what the load cases ask of a grasp's fingers, and whether they can give it.
+//!
+//! All of it is *weak* stability (Pang & Trinkle 2000): suitable finger forces exist. That fingers locked in place, or a
+//! drive that shares its force in another way, reach those forces by themselves is not said.
+
+use super::assess::Doubt;
+use super::load::Load;
+use super::program::{self, Solved};
+use super::root;
+use super::spatial::{Hold, Wrench};
+use super::squeeze::{Answer, BEYOND, FingerForce, Held, Squeezer};
+use crate::hand::Drive;
+
+/// A load case ready to be put on grasps.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Case {
+    /// Name for people.
+    pub name: String,
+    /// Its loads: one, or one for each direction.
+    pub loads: Vec<Load>,
+    /// Part of the squeeze that is left, above 0 up to 1.
+    pub squeeze_left: f64,
+}
+
+/// What a squeeze may not exceed.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct Limit {
+    /// N per finger.
+    pub squeeze_n: f64,
+    /// Why.
+    pub by: LimitedBy,
+}
+
+/// Where a limit on the squeeze comes from.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum LimitedBy {
+    /// The hand gives no more.
+    Hand,
+    /// More would mark the edge this finger presses on, counted from 0.
+    Edge {
+        /// The finger.
+        finger: usize,
+    },
+}
+
+/// What one load case asks.
+#[derive(Debug, Clone, PartialEq)]
+pub struct CaseHolding {
+    /// Name of the case.
+    pub name: String,
+    /// Least squeeze that holds it, N per finger, in its worst direction; nothing when no squeeze does. Where only a part
+    /// of the squeeze is left, the squeeze to be set before.
+    pub squeeze_n: Option<f64>,
+    /// The worst direction of the acceleration, degrees from +x, where the case asks for any.
+    pub direction_deg: Option<f64>,
+    /// Limit over squeeze: the largest multiple of the load that is held. Nothing without a limit or without a load; 0
+    /// when no squeeze holds it.
+    pub margin: Option<f64>,
+    /// Held within the limit.
+    pub held: bool,
+    /// Forces that hold it with the squeeze asked for (with the part of it that is left), finger after finger; often one
+    /// set of many. Empty when there are none.
+    pub forces: Vec<FingerForce>,
+    /// Which of the case's loads is the worst.
+    pub worst: usize,
+    /// The numbers were not proved: the solvers gave up.
+    pub unsure: bool,
+}
+
+/// What all load cases together ask of a grasp.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Holding {
+    /// How the squeeze is shared.
+    pub drive: Drive,
+    /// The cases, in the setup's order; at least one.
+    pub cases: Vec<CaseHolding>,
+    /// The case that asks most.
+    pub governing: usize,
+    /// What the squeeze may not exceed.
+    pub limit: Option<Limit>,
+    /// Least factor on all friction (the least common mu where there is none) with which every case is held within the
+    /// limit; nothing when none does. Without a limit nothing is asked and it is 0: what closes holds every load with some
+    /// squeeze.
+    pub friction_factor: Option<f64>,
+}
+
+impl Holding {
+    /// Puts the cases on the fingers.
+    pub fn of(hold: &Hold<'_>, cases: &[Case], limit: Option<Limit>) -> Self {
+        let mut squeezer = Squeezer::new(*hold);
+        let answers: Vec<CaseHolding> = cases.iter().map(|case| on_one(&mut squeezer, hold, case, limit)).collect();
+        let rank = |case: &CaseHolding| case.squeeze_n.unwrap_or(f64::INFINITY);
+        let governing =
+            (0..answers.len()).fold(0, |worst, i| if rank(&answers[i]) > rank(&answers[worst]) { i } else { worst });
+        let friction_factor = match limit {
+            Some(limit) => {
+                // Without any friction to scale, ask what common mu would do.
+                let scale =
+                    if hold.presses().iter().all(|press| press.mu <= 0.0) { hold.with_friction(1.0) } else { *hold };
+                factor_needed(&scale, &in_turn(cases, &answers, governing), limit.squeeze_n)
+            }
+            None => Some(0.0),
+        };
+        Self { drive: hold.drive(), cases: answers, governing, limit, friction_factor }
+    }
+
+    /// The case that asks most.
+    pub fn governing_case(&self) -> &CaseHolding {
+        &self.cases[self.governing]
+    }
+
+    /// The squeeze needed, N per finger; nothing when some case is not held by any.
+    pub fn squeeze_n(&self) -> Option<f64> {
+        self.governing_case().squeeze_n
+    }
+
+    /// The largest multiple of every load that is held at the limit; nothing without a limit or without a load.
+    pub fn load_margin(&self) -> Option<f64> {
+        self.governing_case().margin
+    }
+
+    /// Every case is held.
+    pub fn held(&self) -> bool {
+        self.cases.iter().all(|case| case.held)
+    }
+
+    /// Some number was not proved.
+    pub fn unsure(&self) -> bool {
+        self.cases.iter().any(|case| case.unsure)
+    }
+
+    /// Confirms the squeeze of every case in its worst direction by the linear program. Empty when all agree.
+    pub fn doubts(&self, hold: &Hold<'_>, cases: &[Case]) -> Vec<Doubt> {
+        let all = 0..self.cases.len();
+        all.filter_map(|case| self.doubt(hold, cases, case)).collect()
+    }
+
+    /// Confirms the squeeze of the governing case alone.
+    pub fn doubt_of_governing(&self, hold: &Hold<'_>, cases: &[Case]) -> Option<Doubt> {
+        self.doubt(hold, cases, self.governing)
+    }
+
+    fn doubt(&self, hold: &Hold<'_>, cases: &[Case], case: usize) -> Option<Doubt> {
+        let own = &self.cases[case];
+        if own.unsure {
+            return Some(Doubt::Solver("the squeeze could not be proved"));
+        }
+        let load = &self.worst_load(cases, case)?.wrench;
+        let left = cases.get(case)?.squeeze_left;
+        let program = match program::squeeze(hold, load) {
+            // Beyond any force both mean none.
+            Solved::Answer(n) if n > BEYOND / 10.0 * load.norm() => f64::INFINITY,
+            Solved::Answer(n) => n / left,
+            Solved::Infeasible => f64::INFINITY,
+            Solved::Inconclusive(why) => return Some(Doubt::Solver(why)),
+        };
+        let batch = own
+            .squeeze_n
+            .map_or(f64::INFINITY, |n| if n * left > BEYOND / 10.0 * load.norm() { f64::INFINITY } else { n });
+        let both_none = batch.is_infinite() && program.is_infinite();
+        let agree = both_none || (batch - program).abs() <= AGREE * (1.0 + batch);
+        (!agree).then(|| Doubt::Squeeze { case: own.name.clone(), batch, program })
+    }
+
+    /// The worst load of a case.
+    pub fn worst_load<'c>(&self, cases: &'c [Case], case: usize) -> Option<&'c Load> {
+        cases.get(case)?.loads.get(self.cases.get(case)?.worst)
+    }
+}
+
+/// Agreement asked of the batch solver and the linear program, relative.
+const AGREE: f64 = 1e-6;
+
+/// A load and what its squeeze is divided by.
+type Asked<'a> = (&'a Wrench, f64);
+
+/// All loads, the one that asks most first: what holds it holds the others, mostly.
+fn in_turn<'a>(cases: &'a [Case], answers: &[CaseHolding], governing: usize) -> Vec<Asked<'a>> {
+    let mut all: Vec<(bool, Asked<'a>)> = Vec::new();
+    for (number, (case, answer)) in cases.iter().zip(answers).enumerate() {
+        for (at, load) in case.loads.iter().enumerate() {
+            all.push((number != governing || at != answer.worst, (&load.wrench, case.squeeze_left)));
+        }
+    }
+    all.sort_by_key(|(later, _)| *later);
+    all.into_iter().map(|(_, asked)| asked).collect()
+}
+
+/// The least squeeze for one load, by the batch solver, or by the linear program where that gives up.
+fn least(squeezer: &mut Squeezer<'_>, hold: &Hold<'_>, load: &Wrench) -> Answer {
+    match squeezer.squeeze(load) {
+        Answer::Unsure => match program::squeeze(hold, load) {
+            Solved::Answer(squeeze_n) if squeeze_n <= BEYOND * load.norm() => {
+                Answer::Held(Held { squeeze_n, direction: Wrench::zeros(), forces: Vec::new(), residual_n: 0.0 })
+            }
+            Solved::Answer(_) | Solved::Infeasible => Answer::Never { direction: Wrench::zeros() },
+            Solved::Inconclusive(_) => Answer::Unsure,
+        },
+        answer => answer,
+    }
+}
+
+fn on_one(squeezer: &mut Squeezer<'_>, hold: &Hold<'_>, case: &Case, limit: Option<Limit>) -> CaseHolding {
+    let mut worst = CaseHolding {
+        name: case.name.clone(),
+        squeeze_n: Some(0.0),
+        direction_deg: None,
+        margin: None,
+        held: true,
+        forces: Vec::new(),
+        worst: 0,
+        unsure: false,
+    };
+    for (at, load) in case.loads.iter().enumerate() {
+        let (squeeze_n, forces) = match least(squeezer, hold, &load.wrench) {
+            Answer::Held(held) => (Some(held.squeeze_n / case.squeeze_left), held.forces),
+            Answer::Never { .. } => (None, Vec::new()),
+            Answer::Unsure => {
+                worst.unsure = true;
+                (None, Vec::new())
+            }
+        };
+        let asks_more = match (squeeze_n, worst.squeeze_n) {
+            _ if at == 0 => true,
+            (_, None) => false,
+            (None, Some(_)) => true,
+            (Some(now), Some(before)) => now > before,
+        };
+        if asks_more {
+            worst = CaseHolding { squeeze_n, direction_deg: load.direction_deg, forces, worst: at, ..worst };
+        }
+    }
+    worst.held =
+        !worst.unsure && worst.squeeze_n.is_some_and(|n| limit.is_none_or(|limit| n <= at_most(limit.squeeze_n)));
+    worst.margin = limit.and_then(|limit| match worst.squeeze_n {
+        Some(n) => (n > 0.0).then(|| limit.squeeze_n / n),
+        None => Some(0.0),
+    });
+    worst
+}
+
+/// A limit met to within rounding is met.
+pub fn at_most(limit_n: f64) -> f64 {
+    limit_n * (1.0 + 1e-9)
+}
+
+/// Friction factors beyond this are not looked at.
+const LARGEST_FACTOR: f64 = 1e6;
+/// Relative width of the final bracket on a factor.
+const WIDTH: f64 = 1e-12;
+/// Rounds after which a load is given up.
+const MOST_ROUNDS: usize = 60;
+
+/// Least factor on all friction with which every load is held by a squeeze of at most `limit_n`, to about 1e-9; nothing
+/// when no friction does.
+///
+/// Newton's method from below: where a load is not held, the direction that proves it names the least factor at which
+/// that direction reaches far enough, and the next look is taken there. Cones only grow with friction, so the factor only
+/// rises, and what is held at the end is held by the answer of the solver itself.
+fn factor_needed(hold: &Hold<'_>, loads: &[Asked<'_>], limit_n: f64) -> Option<f64> {
+    let mut factor = 0.0;
+    let mut scaled = hold.with_friction_times(factor);
+    let mut squeezer = Squeezer::new(scaled);
+    for &(load, left) in loads {
+        let enough = at_most(limit_n * left);
+        let mut rounds = 0;
+        loop {
+            let direction = match squeezer.squeeze(load) {
+                Answer::Held(held) if held.squeeze_n <= enough => break,
+                Answer::Held(held) => held.direction,
+                Answer::Never { direction } => direction,
+                Answer::Unsure => return by_halving(hold, loads, limit_n),
+            };
+            rounds += 1;
+            if rounds > MOST_ROUNDS {
+                return by_halving(hold, loads, limit_n);
+            }
+            // Aimed a hair below the limit, so that the next look is not stopped by rounding just above it.
+            let reach = -load.dot(&direction) / (limit_n * left);
+            factor = factor_that_reaches(hold, &direction, reach, factor)?;
+            scaled = hold.with_friction_times(factor);
+            squeezer = Squeezer::new(scaled);
+        }
+    }
+    Some(factor)
+}
+
+/// Least factor above `from` at which the fingers reach so far in a direction; nothing when none does.
+fn factor_that_reaches(hold: &Hold<'_>, u: &Wrench, reach: f64, from: f64) -> Option<f64> {
+    let short = |factor: f64| hold.reach(u, factor) - reach;
+    let mut low = (from, short(from));
+    let mut high = ((2.0 * from).max(from + 0.5), 0.0);
+    loop {
+        high.1 = short(high.0);
+        if high.1 > 0.0 {
+            break;
+        }
+        if high.0 > LARGEST_FACTOR {
+            return None;
+        }
+        low = high;
+        high.0 *= 2.0;
+    }
+    if low.1 > 0.0 {
+        // Within rounding of the limit already.
+        return Some(from + WIDTH * (1.0 + from));
+    }
+    let scale = high.1;
+    let scaled = |factor: f64| short(factor) / scale;
+    let width = WIDTH * (1.0 + high.0);
+    Some(root::bracket(scaled, (low.0, low.1 / scale), (high.0, 1.0), width).1)
+}
+
+/// The same by halving the range, with the linear program where the batch solver gives up.
+fn by_halving(hold: &Hold<'_>, loads: &[Asked<'_>], limit_n: f64) -> Option<f64> {
+    let held = |factor: f64| {
+        let scaled = hold.with_friction_times(factor);
+        let mut squeezer = Squeezer::new(scaled);
+        loads.iter().all(|&(load, left)| match least(&mut squeezer, &scaled, load) {
+            Answer::Held(held) => held.squeeze_n <= at_most(limit_n * left),
+            Answer::Never { .. } | Answer::Unsure => false,
+        })
+    };
+    if held(0.0) {
+        return Some(0.0);
+    }
+    let (mut low, mut high) = (0.0, 1.0);
+    while !held(high) {
+        if high > LARGEST_FACTOR {
+            return None;
+        }
+        (low, high) = (high, 2.0 * high);
+    }
+    while high - low > 1e-9 * (1.0 + high) {
+        let middle = low + (high - low) / 2.0;
+        if held(middle) { high = middle } else { low = middle }
+    }
+    Some(high)
+}
+
+/// The acceleration envelope: for each of `directions` even directions in the plane, from +x, the largest acceleration
+/// that is held at a limit of the squeeze on top of a fixed load; nothing when not even that is held. `per_unit` is the
+/// load of a unit acceleration along +x and of one along +y. What is held is convex, so the polygon through the ends lies
+/// inside the envelope.
+pub fn envelope(
+    hold: &Hold<'_>,
+    fixed: &Wrench,
+    per_unit: &[Wrench; 2],
+    limit_n: f64,
+    directions: usize,
+) -> Option<Vec<(f64, f64)>> {
+    let mut squeezer = Squeezer::new(*hold);
+    let mut ends = Vec::with_capacity(directions);
+    for i in 0..directions {
+        let deg = 360.0 * i as f64 / directions as f64;
+        let (sin, cos) = deg.to_radians().sin_cos();
+        ends.push((deg, farthest(&mut squeezer, hold, fixed, &(per_unit[0] * cos + per_unit[1] * sin), limit_n)?));
+    }
+    Some(ends)
+}
+
+/// The largest multiple of `growing` held on top of `fixed`. Newton's method from above: the direction that proves the last
+/// one not held names a smaller one. Infinite when the fingers hold any; nothing when they do not hold `fixed`.
+fn farthest(
+    squeezer: &mut Squeezer<'_>,
+    hold: &Hold<'_>,
+    fixed: &Wrench,
+    growing: &Wrench,
+    limit_n: f64,
+) -> Option<f64> {
+    let mut at: Option<f64> = None;
+    for _ in 0..MOST_ROUNDS {
+        let load = at.map_or(*growing, |at| fixed + growing * at);
+        let direction = match squeezer.squeeze(&load) {
+            // The first look is at the growing load alone, as from infinitely far.
+            Answer::Held(held) if at.is_some() && held.squeeze_n <= at_most(limit_n) => return at,
+            Answer::Held(held) if held.squeeze_n <= 0.0 => return Some(f64::INFINITY),
+            Answer::Held(held) => held.direction,
+            Answer::Never { direction } => direction,
+            Answer::Unsure => break,
+        };
+        // Held only if -(fixed + a growing) . u <= limit reach(u).
+        let rises = -growing.dot(&direction);
+        let room = limit_n * hold.reach(&direction, 1.0) + fixed.dot(&direction);
+        if rises <= 0.0 || room < -1e-12 * limit_n {
+            return None;
+        }
+        let next = (room / rises).max(0.0);
+        if at.is_some_and(|at| next >= at) {
+            // Rounding: as near as it gets.
+            return Some(next);
+        }
+        at = Some(next);
+    }
+    match program::most_held(hold, fixed, growing, limit_n) {
+        Solved::Answer(most) => Some(most),
+        Solved::Infeasible | Solved::Inconclusive(_) => None,
+    }
+}

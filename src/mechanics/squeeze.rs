@@ -1,0 +1,322 @@
+//! Squeeze: the least force of one finger with which a load is held, by a small dense simplex method.
+//!
+//! # The program
+//! Minimise F subject to `sum of all cone-edge forces' wrenches = -load`, each finger's normal force at most F (or equal to F
+//! where the drive presses all fingers alike). With one squeeze F the fingers reach exactly F times the Minkowski sum of their
+//! own hulls, so the program is `min sum x_v` subject to `sum x_v v = -load`, `x >= 0` over the corners v of that sum: six
+//! equations whatever the number of fingers. The corners are never written down. The one that enters the basis is the
+//! farthest in the direction u of the present prices, and each finger finds its own share of it: [`Hold::farthest`]
+//! (column generation; Dantzig & Wolfe 1960).
+//!
+//! # Why it can be trusted
+//! Every answer carries both sides of its proof, computed again from the fingers themselves: forces that balance the load with
+//! a squeeze F, and a direction u in which no smaller squeeze reaches, `F >= -load . u / reach(u)`. [`Squeezer::squeeze`] says
+//! [`Answer::Unsure`] when the two differ. A load that no squeeze holds comes with a u in which the fingers do not reach at all.
+//!
+//! # Many loads
+//! The basis of the last load is where the next one starts: its columns that would press backwards are turned round into
+//! artificial ones and driven out again, mostly in a step or two.
+
+use super::spatial::{Hold, UnitForce, Wrench};
+use crate::hand::FingerCount;
+use nalgebra::Matrix6;
+
+/// Rows.
+const N: usize = 6;
+/// Pivots smaller than this are none.
+const PIVOT: f64 = 1e-9;
+/// A direction is farthest enough when it promises less than this.
+const PRICE: f64 = 1e-11;
+/// What the two sides of a proof may differ by, relative.
+const GAP: f64 = 1e-9;
+/// Artificial weight below this is rounding.
+const NOTHING: f64 = 1e-12;
+/// Squeezes above this, for a load of 1, are called none: the fingers reach there by rounding alone.
+pub const BEYOND: f64 = 1e8;
+/// Pivots after which the method gives up.
+const MOST_PIVOTS: usize = 400;
+/// Pivots without progress after which the load is nudged to break ties.
+const MOST_STALLED: usize = 12;
+
+/// The force of one finger, in N.
+#[derive(Debug, Clone, Copy, PartialEq, Default)]
+pub struct FingerForce {
+    /// Normal part, into the material.
+    pub normal_n: f64,
+    /// Part along the edge (along the tangent, material on its left).
+    pub along_n: f64,
+    /// Part toward the viewer.
+    pub up_n: f64,
+}
+
+impl FingerForce {
+    /// Size of the tangential part, N.
+    pub fn tangential_n(&self) -> f64 {
+        self.along_n.hypot(self.up_n)
+    }
+}
+
+/// A load held.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Held {
+    /// The least squeeze, N per finger.
+    pub squeeze_n: f64,
+    /// No smaller one will do: `squeeze = -load . u` and the fingers reach 1 in direction u.
+    pub direction: Wrench,
+    /// Forces that balance the load with this squeeze, finger after finger; often one set of many.
+    pub forces: Vec<FingerForce>,
+    /// By how much they miss the load, N.
+    pub residual_n: f64,
+}
+
+/// What is said of one load.
+#[derive(Debug, Clone, PartialEq)]
+pub enum Answer {
+    /// A squeeze holds it.
+    Held(Held),
+    /// No squeeze does: the load pushes along -u, and the fingers do not reach in direction u.
+    Never {
+        /// Unit wrench direction.
+        direction: Wrench,
+    },
+    /// The method gave up, or the two sides of its proof disagree.
+    Unsure,
+}
+
+#[derive(Debug, Clone, Copy)]
+struct Column {
+    wrench: Wrench,
+    artificial: bool,
+    forces: [Option<UnitForce>; FingerCount::MOST],
+}
+
+impl Column {
+    fn artificial(row: usize) -> Self {
+        let mut wrench = Wrench::zeros();
+        wrench[row] = 1.0;
+        Self { wrench, artificial: true, forces: [None; FingerCount::MOST] }
+    }
+}
+
+/// Solves load after load for the fingers of one grasp.
+#[derive(Debug, Clone)]
+pub struct Squeezer<'a> {
+    hold: Hold<'a>,
+    columns: [Column; N],
+    inverse: Matrix6<f64>,
+    x: Wrench,
+}
+
+impl<'a> Squeezer<'a> {
+    /// For these fingers.
+    pub fn new(hold: Hold<'a>) -> Self {
+        let columns = std::array::from_fn(Column::artificial);
+        Self { hold, columns, inverse: Matrix6::identity(), x: Wrench::zeros() }
+    }
+
+    /// The least squeeze for a load.
+    pub fn squeeze(&mut self, load: &Wrench) -> Answer {
+        let size = load.norm();
+        if size <= 0.0 {
+            return Answer::Held(Held {
+                squeeze_n: 0.0,
+                direction: Wrench::zeros(),
+                forces: vec![FingerForce::default(); self.hold.presses().len()],
+                residual_n: 0.0,
+            });
+        }
+        if !size.is_finite() {
+            return Answer::Unsure;
+        }
+        let target = -load / size;
+        match self.solve(&target) {
+            Answer::Unsure => {
+                // From a clean start, once.
+                *self = Self::new(self.hold);
+                self.solve(&target).of_size(size)
+            }
+            answer => answer.of_size(size),
+        }
+    }
+
+    fn solve(&mut self, target: &Wrench) -> Answer {
+        self.start(target);
+        let mut stalled = 0;
+        let mut renewed = false;
+        for _ in 0..MOST_PIVOTS {
+            let artificial: f64 = (0..N).filter(|&r| self.columns[r].artificial).map(|r| self.x[r]).sum();
+            let first_phase = artificial > NOTHING;
+            let u = self.prices(first_phase);
+            let (reach, forces, wrench) = self.hold.farthest(&u);
+            let gain = if first_phase { reach - PRICE * u.norm() } else { reach - 1.0 - PRICE };
+            let entered =
+                gain > 0.0 && self.enter(Column { wrench, artificial: false, forces }, first_phase, &mut stalled);
+            if entered {
+                if stalled == MOST_STALLED {
+                    self.nudge();
+                }
+                continue;
+            }
+            // Nothing better: prove it from scratch, on a fresh inverse if need be.
+            let answer = self.proof(target, first_phase, &u);
+            if answer == Answer::Unsure && !renewed {
+                renewed = true;
+                if self.renew(target) {
+                    continue;
+                }
+            }
+            return answer;
+        }
+        Answer::Unsure
+    }
+
+    /// Puts a new load on the basis that is there.
+    fn start(&mut self, target: &Wrench) {
+        self.x = self.inverse * target;
+        for r in 0..N {
+            if self.x[r] < 0.0 {
+                self.turn(r);
+            }
+        }
+    }
+
+    /// Turns a column that would press backwards round into an artificial one.
+    fn turn(&mut self, r: usize) {
+        let column = &mut self.columns[r];
+        column.wrench = -column.wrench;
+        column.artificial = true;
+        column.forces = [None; FingerCount::MOST];
+        self.x[r] = -self.x[r];
+        self.inverse.row_mut(r).neg_mut();
+    }
+
+    /// Prices of the rows: in the first phase artificial weight costs, afterwards squeeze does.
+    fn prices(&self, first_phase: bool) -> Wrench {
+        let mut u = Wrench::zeros();
+        for r in 0..N {
+            if self.columns[r].artificial == first_phase {
+                u += self.inverse.row(r).transpose();
+            }
+        }
+        u
+    }
+
+    /// Brings a column into the basis; false when nothing gives way for it.
+    fn enter(&mut self, column: Column, first_phase: bool, stalled: &mut usize) -> bool {
+        let d = self.inverse * column.wrench;
+        let mut leaves: Option<(usize, f64)> = None;
+        for r in 0..N {
+            // Artificial columns that are down to nothing go first: they must not come back.
+            let gone = !first_phase && self.columns[r].artificial;
+            let step = if gone && d[r].abs() > PIVOT {
+                0.0
+            } else if d[r] > PIVOT {
+                self.x[r].max(0.0) / d[r]
+            } else {
+                continue;
+            };
+            let better = match leaves {
+                None => true,
+                Some((other, least)) => step < least || (step <= least && d[r].abs() > d[other].abs()),
+            };
+            if better {
+                leaves = Some((r, step));
+            }
+        }
+        let Some((r, step)) = leaves else { return false };
+        *stalled = if step > NOTHING { 0 } else { *stalled + 1 };
+        let pivot = self.inverse.row(r) / d[r];
+        for other in 0..N {
+            if other != r && d[other] != 0.0 {
+                let row = self.inverse.row(other) - pivot * d[other];
+                self.inverse.set_row(other, &row);
+                self.x[other] -= step * d[other];
+            }
+        }
+        self.inverse.set_row(r, &pivot);
+        self.x[r] = step;
+        self.columns[r] = column;
+        true
+    }
+
+    /// Lifts weights that are nought a little, each by another amount, so that ties are broken. The proof is made with the
+    /// true load.
+    fn nudge(&mut self) {
+        for r in 0..N {
+            if self.x[r].abs() < 1e-10 {
+                self.x[r] += 1e-10 * (1.0 + r as f64);
+            }
+        }
+    }
+
+    /// Inverts the basis afresh; false when it is singular.
+    fn renew(&mut self, target: &Wrench) -> bool {
+        let basis = Matrix6::from_columns(&self.columns.map(|column| column.wrench));
+        let Some(inverse) = basis.try_inverse() else { return false };
+        self.inverse = inverse;
+        self.start(target);
+        true
+    }
+
+    /// The answer for a load of size 1, both sides of it worked out again.
+    fn proof(&self, target: &Wrench, first_phase: bool, u: &Wrench) -> Answer {
+        let reach = self.hold.reach(u, 1.0);
+        let pushed = target.dot(u);
+        if first_phase {
+            // No squeeze below pushed / reach will do.
+            return if pushed > 0.0 && pushed > BEYOND * reach {
+                Answer::Never { direction: u / u.norm() }
+            } else {
+                Answer::Unsure
+            };
+        }
+        let x = self.inverse * target;
+        let mut sum = Wrench::zeros();
+        let mut squeeze = 0.0;
+        let mut forces = vec![FingerForce::default(); self.hold.presses().len()];
+        for (column, x) in self.columns.iter().zip(x.iter()) {
+            if column.artificial || *x <= 0.0 {
+                continue;
+            }
+            squeeze += x;
+            for ((own, total), press) in column.forces.iter().zip(&mut forces).zip(self.hold.presses()) {
+                let Some(force) = own else { continue };
+                sum += press.wrench(force) * *x;
+                total.normal_n += x;
+                total.along_n += force.along * x;
+                total.up_n += force.up * x;
+            }
+        }
+        let residual_n = (sum - target).norm();
+        let least = pushed / reach;
+        if squeeze > BEYOND {
+            return if least > BEYOND / 2.0 { Answer::Never { direction: u / u.norm() } } else { Answer::Unsure };
+        }
+        let agree =
+            reach > 0.0 && (squeeze - least).abs() <= GAP * (1.0 + squeeze) && residual_n <= GAP * (1.0 + squeeze);
+        if agree {
+            Answer::Held(Held { squeeze_n: squeeze, direction: u / reach, forces, residual_n })
+        } else {
+            Answer::Unsure
+        }
+    }
+}
+
+impl Answer {
+    /// The answer for a load of size 1 made that for one of another size.
+    fn of_size(self, size: f64) -> Self {
+        match self {
+            Self::Held(mut held) => {
+                held.squeeze_n *= size;
+                held.residual_n *= size;
+                for force in &mut held.forces {
+                    force.normal_n *= size;
+                    force.along_n *= size;
+                    force.up_n *= size;
+                }
+                Self::Held(held)
+            }
+            other => other,
+        }
+    }
+}
