@@ -129,7 +129,7 @@ mod tests {
         let fault = |b| jaws_at(&hand, below, b).unwrap_err();
         let JawFault::NotParallel { off_deg, .. } = fault(spot(0.0, 20.0, -89.4)) else { panic!() };
         assert!((off_deg - 0.6).abs() < 1e-12);
-        assert!(jaws_at(&hand, below, spot(20.0 * 0.2_f64.to_radians().tan(), 20.0, -89.6)).is_ok_and(|j| !j.inside));
+        assert!(jaws_at(&hand, below, spot(-20.0 * 0.2_f64.to_radians().tan(), 20.0, -89.6)).is_ok_and(|j| !j.inside));
         let JawFault::NotParallel { off_deg, .. } = fault(spot(0.0, 20.0, 90.0)) else { panic!() };
         assert!((off_deg - 180.0).abs() < 1e-12);
         let JawFault::NotFacing { off_mm } = fault(spot(0.3, 20.0, -90.0)) else { panic!() };
