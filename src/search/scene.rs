@@ -2,7 +2,7 @@
 
 use super::setup::{Setup, SetupFault};
 use super::sites;
-use crate::hand::{self, Bearing, Drive, Stretch, Tip};
+use crate::hand::{self, Bearing, Closing, Drive, JawFault, JawRun, Jaws, Stretch, Tip};
 use crate::mechanics::assess::{self, Doubt};
 use crate::mechanics::holding;
 use crate::mechanics::load::Body;
@@ -39,6 +39,9 @@ pub enum PlaceFault {
     /// Too few or too many fingers.
     #[error("a grasp has two to six fingers, not {0}")]
     FingerCount(usize),
+    /// Parallel jaws are two.
+    #[error("parallel jaws are two fingers, not {0}")]
+    JawCount(usize),
 }
 
 /// Fingers placed on the part, ready to be assessed.
@@ -54,12 +57,15 @@ pub struct Grasp {
     pub rooms_mm: Vec<f64>,
     /// Pairs of fingers that stand nearer to each other than the hand's gap allows.
     pub too_near: Vec<(usize, usize)>,
+    /// With parallel closing: how the jaws stand, or why jaws cannot stand so.
+    pub jaws: Option<Result<Jaws, JawFault>>,
 }
 
 impl Grasp {
-    /// True when every finger stands on a stretch and keeps its distance.
+    /// True when every finger stands on a stretch and keeps its distance, and parallel jaws face each other.
     pub fn fits(&self) -> bool {
-        self.too_near.is_empty() && self.rooms_mm.iter().all(|&room| room >= 0.0)
+        let jaws = self.jaws.as_ref().is_none_or(Result::is_ok);
+        jaws && self.too_near.is_empty() && self.rooms_mm.iter().all(|&room| room >= 0.0)
     }
 }
 
@@ -73,6 +79,7 @@ pub struct Scene {
     setup: Setup,
     frame: Frame,
     stretches: Vec<Stretch>,
+    jaw_runs: Vec<JawRun>,
     cases: Vec<Case>,
     pyramid: Pyramid,
     /// Half the bite over the torque scale; 0 for a part without a thickness.
@@ -91,9 +98,18 @@ impl Scene {
         let frame = Frame { about: part.com(), scale_mm: setup.search.torque_scale.mm(&part) };
         let stretches = hand::stretches(&part, &setup.hand);
         let spacing_mm = setup.search.spacing_for(&part);
-        let sites: f64 = stretches.iter().map(|stretch| sites::count_on(stretch, spacing_mm)).sum();
+        let jaw_runs = match setup.hand.closing {
+            Closing::Free => Vec::new(),
+            Closing::Parallel => hand::jaw_runs(&part, &setup.hand, &stretches),
+        };
+        let lengths: Vec<f64> = match setup.hand.closing {
+            Closing::Free => stretches.iter().map(Stretch::length_mm).collect(),
+            // A site for each of two fingers.
+            Closing::Parallel => jaw_runs.iter().flat_map(|run| [run.length_mm(); 2]).collect(),
+        };
+        let sites: f64 = lengths.iter().map(|&length_mm| sites::count_on(length_mm, spacing_mm)).sum();
         if sites > MOST_SITES {
-            let least = stretches.iter().map(Stretch::length_mm).sum::<f64>() / MOST_SITES;
+            let least = lengths.iter().sum::<f64>() / MOST_SITES;
             return Err(SetupFault {
                 key: "search.spacing_mm".to_owned(),
                 value: spacing_mm.to_string(),
@@ -115,7 +131,7 @@ impl Scene {
         let pyramid = Pyramid::new(setup.search.cone_sides).filter(|_| in_space).unwrap_or_else(Pyramid::planar);
         let bite_mm = if in_space { setup.hand.bite_for(part.thickness_mm()) } else { 0.0 };
         let half_height = bite_mm / 2.0 / frame.scale_mm;
-        Ok(Self { part, setup, frame, stretches, cases, pyramid, half_height })
+        Ok(Self { part, setup, frame, stretches, jaw_runs, cases, pyramid, half_height })
     }
 
     /// The part.
@@ -138,6 +154,11 @@ impl Scene {
         &self.stretches
     }
 
+    /// With parallel closing: every placement of the two jaws, as one-parameter sets.
+    pub fn jaw_runs(&self) -> &[JawRun] {
+        &self.jaw_runs
+    }
+
     /// Places fingers.
     ///
     /// # Errors
@@ -146,6 +167,10 @@ impl Scene {
     pub fn grasp(&self, spots: &[Spot]) -> Result<Grasp, PlaceFault> {
         if hand::FingerCount::new(spots.len()).is_none() {
             return Err(PlaceFault::FingerCount(spots.len()));
+        }
+        let parallel = self.setup.hand.closing == Closing::Parallel;
+        if parallel && spots.len() != 2 {
+            return Err(PlaceFault::JawCount(spots.len()));
         }
         let mut contacts = Vec::with_capacity(spots.len());
         let mut curvatures = Vec::with_capacity(spots.len());
@@ -171,7 +196,11 @@ impl Scene {
                 }
             }
         }
-        Ok(Grasp { spots: spots.to_vec(), contacts, curvatures, rooms_mm, too_near })
+        let jaws = match &contacts[..] {
+            [a, b] if parallel => Some(hand::jaws_at(&self.setup.hand, (a.point, a.normal), (b.point, b.normal))),
+            _ => None,
+        };
+        Ok(Grasp { spots: spots.to_vec(), contacts, curvatures, rooms_mm, too_near, jaws })
     }
 
     /// The contact a finger makes at a place on an edge. A pad lies flush on a straight edge; on an arc it touches at one

@@ -19,7 +19,7 @@ use super::plan::TRIES;
 use super::rank::{Cancel, Cancelled, Listing};
 use super::scene::Scene;
 use super::sites::{Site, Sites};
-use crate::hand::FingerCount;
+use crate::hand::{self, FingerCount, Tip};
 use crate::mechanics::force_polygon::{ForcePolygon, PlanarScore};
 use crate::mechanics::friction::UnitForces;
 use crate::mechanics::placement::OnArcs;
@@ -121,15 +121,24 @@ impl<'a> Screen<'a> {
     }
 
     fn apart(&self, a: u32, b: u32) -> bool {
-        let (a, b) = (self.sites.get(a).centre, self.sites.get(b).centre);
-        (a - b).norm_squared() >= self.least_apart_square
+        let (a, b) = (self.sites.get(a), self.sites.get(b));
+        let hand = &self.scene.setup().hand;
+        match hand.tip {
+            Tip::Pin => (a.centre - b.centre).norm_squared() >= self.least_apart_square,
+            Tip::Pad => hand::apart(hand, (a.point, a.lever.normal), (b.point, b.lever.normal)),
+        }
+    }
+
+    /// True when fingers may stand as near to one another as they like.
+    fn any_distance(&self) -> bool {
+        self.scene.setup().hand.tip == Tip::Pin && self.least_apart_square <= 0.0
     }
 
     /// The loads as a family meets them: all its members press on the same edges, which may limit the squeeze.
     fn load_check(&self, family: &Family) -> Option<LoadCheck<'a>> {
         let on = |&stretch: &u32| {
-            let first = self.sites.on(stretch as usize).start as u32;
-            (self.scene.stretches()[stretch as usize].edge, self.sites.get(first).lever.spread > 0.0)
+            let first = self.sites.get(self.sites.on(stretch as usize).start as u32);
+            (self.scene.stretches()[first.stretch as usize].edge, first.lever.spread > 0.0)
         };
         let limit = self.scene.limit_on(family.stretches().iter().map(on));
         LoadCheck::new(self.scene, limit.map_or(f64::INFINITY, |limit| limit.squeeze_n))
@@ -149,7 +158,7 @@ impl<'a> Screen<'a> {
     pub(super) fn every(&self, family: &Family, first: Range<usize>, tally: &mut Tally) -> Result<(), Cancelled> {
         let whole = self.sites.on(family.stretches()[0] as usize) == first;
         let mut run = Run::new(self, family, tally);
-        if !run.forces.may_close() && self.least_apart_square <= 0.0 && whole {
+        if !run.forces.may_close() && self.any_distance() && whole {
             run.tally.examined += u64::try_from(family.count(self.sites)).unwrap_or(u64::MAX);
             return Ok(());
         }
@@ -186,6 +195,20 @@ impl<'a> Screen<'a> {
             }
         }
         run.finish(whole);
+        Ok(())
+    }
+
+    /// Screens so many pairs of parallel jaws on a run, evenly along it.
+    pub(super) fn jaws(&self, family: &Family, take: usize, tally: &mut Tally) -> Result<(), Cancelled> {
+        let mut run = Run::new(self, family, tally);
+        let [first, second] = [0, 1].map(|finger| self.sites.on(family.stretches()[finger] as usize));
+        for i in 0..take {
+            // All of them, or else the middles of even pieces.
+            let at = if take == first.len() { i } else { (2 * i + 1) * first.len() / (2 * take) };
+            run.set[..2].copy_from_slice(&[(first.start + at) as u32, (second.start + at) as u32]);
+            run.look()?;
+        }
+        run.finish(true);
         Ok(())
     }
 
@@ -287,8 +310,7 @@ impl<'a, 'b> Run<'a, 'b> {
         let same = next == Some(self.family.stretches()[finger]);
         for site in on {
             self.set[finger] = site as u32;
-            if self.screen.least_apart_square > 0.0
-                && !(0..finger).all(|other| self.screen.apart(self.set[other], site as u32))
+            if !self.screen.any_distance() && !(0..finger).all(|other| self.screen.apart(self.set[other], site as u32))
             {
                 continue;
             }
