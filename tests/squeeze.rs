@@ -71,6 +71,7 @@ struct Row {
     squeeze: Option<f64>,
     margin: Option<f64>,
     factor: &'static str,
+    inside: &'static str,
 }
 
 impl Row {
@@ -107,6 +108,7 @@ impl Row {
             squeeze: value(0),
             margin: value(1),
             factor: found[2],
+            inside: found[3],
         }
     }
 
@@ -577,11 +579,11 @@ fn three_fingers_share_a_weight_by_barycentric_coordinates() {
     for toward in [0.0, 5.0, 12.0] {
         let at = |deg: f64| common::on_disc(r, f64::to_radians(deg), mu);
         let com = Point2::new(toward, 0.0);
-        // A low bite: no finger bears a moment about its own edge.
+        // Points without a height: no finger bears a moment about its own edge.
         let grip = Grip {
             contacts: vec![at(0.0), at(120.0), at(240.0)],
             frame: Frame { about: com, scale_mm: r },
-            half_height_mm: 1e-7,
+            half_height_mm: 0.0,
             pyramid: Pyramid::new(64).unwrap(),
             drive: Drive::Equal,
         };
@@ -595,15 +597,14 @@ fn three_fingers_share_a_weight_by_barycentric_coordinates() {
 #[test]
 fn pads_carry_what_two_points_cannot() {
     let weight = |grip: &Grip| load([0.0, 0.0, -5.0], [0.0; 3], &grip.frame);
-    let with = |half_width: f64, half_height: f64| {
-        let mut grip = jaw(30.0, half_width, 0.4, 0.0, half_height, Drive::Adjustable);
-        grip.frame.about = Point2::new(0.0, 3.0);
-        grip
+    let with = |half_width: f64| {
+        let grip = jaw(30.0, half_width, 0.4, 0.0, 0.0, Drive::Adjustable);
+        let frame = Frame { about: Point2::new(0.0, 3.0), ..grip.frame };
+        Grip { pyramid: Pyramid::new(8).unwrap(), frame, ..grip }
     };
-    // As good as a point: the squeeze grows without bound as the bite shrinks.
-    let point = with(0.0, 1e-6);
-    assert!(point.squeeze(&weight(&point)) > 1e5);
-    let pads = with(8.0, 1e-6);
+    let points = with(0.0);
+    assert!(points.squeeze(&weight(&points)).is_infinite());
+    let pads = with(8.0);
     // W / (2 mu) each at the line 3 mm off the middle: the ends share it 11 : 5, and both stay within the pad.
     assert_close(pads.squeeze(&weight(&pads)), 5.0 / (2.0 * 0.4), 1e-6, 0.0);
 }
@@ -629,4 +630,41 @@ fn the_ell_plate_under_load() {
     let asked: [Asked; 1] = [(load([-w, 0.0, 0.0], [0.0; 3], &grip.frame), 1.0)];
     let factor = holding::factor_needed(&grip.hold(), &asked, 60.0, 0.0).unwrap();
     assert_close(factor * mu, 0.112946, 0.0, 1e-6);
+}
+
+#[test]
+fn debug_rows() {
+    for row in rows() {
+        let answer = Squeezer::new(row.grip.hold()).squeeze(&row.load);
+        if answer == Answer::Unsure {
+            println!("UNSURE {} {} {:?} {}", row.line, row.kind, row.grip.drive, row.inside);
+        }
+        match (&answer, row.squeeze) {
+            (Answer::Held(own), Some(q)) if (own.squeeze_n - q).abs() > 1e-8 * q => {
+                println!("OFF {} {} {:?} {} {} {q}", row.line, row.kind, row.grip.drive, row.inside, own.squeeze_n)
+            }
+            (Answer::Held(own), None) => {
+                println!("HELD {} {} {:?} {} {}", row.line, row.kind, row.grip.drive, row.inside, own.squeeze_n)
+            }
+            (Answer::Never { .. }, Some(q)) => {
+                println!("NEVER {} {} {:?} {} {q}", row.line, row.kind, row.grip.drive, row.inside)
+            }
+            _ => {}
+        }
+        match (program::squeeze(&row.grip.hold(), &row.load), row.squeeze) {
+            (Solved::Answer(own), Some(q)) if (own - q).abs() > 1e-6 * q => {
+                println!("POFF {} {} {:?} {} {} {q}", row.line, row.kind, row.grip.drive, row.inside, own)
+            }
+            (Solved::Answer(own), None) => {
+                println!("PHELD {} {} {:?} {} {}", row.line, row.kind, row.grip.drive, row.inside, own)
+            }
+            (Solved::Infeasible, Some(q)) => {
+                println!("PNEVER {} {} {:?} {} {q}", row.line, row.kind, row.grip.drive, row.inside)
+            }
+            (Solved::Inconclusive(w), _) => {
+                println!("PINC {} {} {:?} {} {w}", row.line, row.kind, row.grip.drive, row.inside)
+            }
+            _ => {}
+        }
+    }
 }

@@ -387,7 +387,7 @@ fn farthest(
         };
         // Held only if -(fixed + a growing) . u <= limit reach(u).
         let rises = -growing.dot(&direction);
-        let room = limit_n * hold.reach(&direction, 1.0) + fixed.dot(&direction);
+        let room = limit_n * hold.reach(&direction, 1.0).max(0.0) + fixed.dot(&direction);
         if rises <= 0.0 || room < -1e-12 * limit_n {
             return None;
         }

@@ -22,18 +22,25 @@ pub enum Solved<T> {
 }
 
 impl<T> Solved<T> {
-    /// The same outcome of what is made of the answer.
-    pub fn map<U>(self, make: impl FnOnce(T) -> U) -> Solved<U> {
+    /// What follows from the answer.
+    fn then<U>(self, follow: impl FnOnce(T) -> Solved<U>) -> Solved<U> {
         match self {
-            Self::Answer(answer) => Solved::Answer(make(answer)),
+            Self::Answer(answer) => follow(answer),
             Self::Infeasible => Solved::Infeasible,
             Self::Inconclusive(why) => Solved::Inconclusive(why),
         }
+    }
+
+    /// The same outcome of what is made of the answer.
+    pub fn map<U>(self, make: impl FnOnce(T) -> U) -> Solved<U> {
+        self.then(|answer| Solved::Answer(make(answer)))
     }
 }
 
 /// Largest equality residual accepted, for generators of order one.
 const RESIDUAL: f64 = 1e-8;
+/// Largest equality residual accepted of a squeeze, relative to the largest weight.
+const SHARP: f64 = 1e-11;
 
 /// Weights that balance: `W lambda = 0`, `sum lambda = 1`, all `lambda >= least`.
 #[derive(Debug, Clone, PartialEq)]
@@ -74,21 +81,46 @@ impl Program {
     /// Columns that are parallel but for a hair can lead the simplex method astray. An answer that fails its checks is
     /// asked for again with the columns and the equations in reverse, which takes another path of pivots; it has to pass the
     /// same checks: the equations within [`RESIDUAL`], no weight below what is allowed.
-    fn solve(mut self) -> Solved<Vec<f64>> {
+    fn solve(&self) -> Solved<Vec<f64>> {
         let first = self.attempt();
         if !matches!(first, Solved::Inconclusive(_)) {
             return first;
         }
-        self.columns.iter_mut().for_each(|column| column.reverse());
-        self.columns.reverse();
-        self.cost.reverse();
-        self.target.reverse();
-        match self.attempt() {
+        let reversed = |list: &[f64]| list.iter().rev().copied().collect::<Vec<f64>>();
+        let turned = Self {
+            columns: self.columns.iter().rev().map(|column| reversed(column)).collect(),
+            cost: reversed(&self.cost),
+            target: reversed(&self.target),
+            below: self.below,
+        };
+        match turned.attempt() {
             Solved::Answer(mut x) => {
                 x.reverse();
                 Solved::Answer(x)
             }
             other => other,
+        }
+    }
+
+    /// The same answer with the equations met as exactly as its own columns allow. The checks let through what they miss by
+    /// 1e-8 of the largest weight; where columns are nearly parallel, that is much in the objective.
+    fn sharpened(&self, x: Vec<f64>) -> Solved<Vec<f64>> {
+        let size = size(&x);
+        let used: Vec<usize> = (0..x.len()).filter(|&j| x[j] > RESIDUAL * size).collect();
+        let w = DMatrix::from_fn(self.target.len(), used.len(), |row, at| self.columns[used[at]][row]);
+        let target = DVector::from_column_slice(&self.target);
+        let mut best = x;
+        if let Ok(y) = w.svd(true, true).solve(&target, 1e-14) {
+            let mut sharp = vec![0.0; best.len()];
+            used.iter().zip(y.iter()).for_each(|(&j, y)| sharp[j] = *y);
+            if y.iter().all(|y| *y >= 0.0) && self.left_over(&sharp).amax() <= self.left_over(&best).amax() {
+                best = sharp;
+            }
+        }
+        if self.left_over(&best).amax() <= SHARP * size {
+            Solved::Answer(best)
+        } else {
+            Solved::Inconclusive("the load is balanced by rounding alone")
         }
     }
 
@@ -210,7 +242,7 @@ pub fn squeeze(hold: &Hold<'_>, load: &Wrench) -> Solved<f64> {
     let (mut program, _) = balance(hold, &(load / size), &Wrench::zeros());
     let squeeze = program.columns.len() - 1;
     program.cost[squeeze] = 1.0;
-    program.solve().map(|x| x[squeeze] * size)
+    program.solve().then(|x| program.sharpened(x)).map(|x| x[squeeze] * size)
 }
 
 /// The largest c for which the load `fixed + c growing` is held with a squeeze of at most `limit_n`. With nothing fixed
@@ -234,7 +266,7 @@ pub fn most_held(hold: &Hold<'_>, fixed: &Wrench, growing: &Wrench, limit_n: f64
     for (at, row) in rows.into_iter().enumerate() {
         program.columns[most][at] = growing[row];
     }
-    program.solve().map(|x| x[most] * limit_n / size)
+    program.solve().then(|x| program.sharpened(x)).map(|x| x[most] * limit_n / size)
 }
 
 /// The equations of a load balanced by fingers, the last column the squeeze they share, and which rows of the wrench

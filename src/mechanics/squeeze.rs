@@ -24,9 +24,16 @@ use nalgebra::Matrix6;
 /// Rows.
 const N: usize = 6;
 /// Pivots smaller than this are none.
-const PIVOT: f64 = 1e-9;
-/// A direction is farthest enough when it promises less than this.
+const PIVOT: f64 = 1e-10;
+/// Pivots to be had without harm.
+const GOOD_PIVOT: f64 = 1e-7;
+/// What a weight may fall below nought on the way.
+const HAIR: f64 = 1e-11;
+/// A direction is farthest enough when it promises less than this, and less than rounding of its own length: bases nearly
+/// singular make long ones.
 const PRICE: f64 = 1e-11;
+/// Rounding of a reach, as a part of the direction's length.
+const ROUNDING: f64 = 1e-14;
 /// A direction falls short when it does by more than this.
 const DECIDED: f64 = 1e-10;
 /// What the two sides of a proof may differ by, relative.
@@ -201,7 +208,7 @@ impl<'a> Squeezer<'a> {
             {
                 return Ok(Decision::Short { direction: u });
             }
-            let gain = if first_phase { reach - PRICE * u.norm() } else { reach - 1.0 - PRICE };
+            let gain = if first_phase { reach - PRICE * u.norm() } else { reach - 1.0 - PRICE - ROUNDING * u.norm() };
             let entered =
                 gain > 0.0 && self.enter(Column { wrench, artificial: false, forces }, first_phase, &mut stalled);
             if entered {
@@ -211,7 +218,7 @@ impl<'a> Squeezer<'a> {
                 continue;
             }
             // Nothing better: prove it from scratch, on a fresh inverse if need be.
-            let answer = self.proof(target, first_phase, &u);
+            let answer = self.proof(target, first_phase);
             if answer == Answer::Unsure && !renewed {
                 renewed = true;
                 if self.renew(target) {
@@ -262,26 +269,12 @@ impl<'a> Squeezer<'a> {
     /// Brings a column into the basis; false when nothing gives way for it.
     fn enter(&mut self, column: Column, first_phase: bool, stalled: &mut usize) -> bool {
         let d = self.inverse * column.wrench;
-        let mut leaves: Option<(usize, f64)> = None;
-        for r in 0..N {
-            // Artificial columns that are down to nothing go first: they must not come back.
-            let gone = !first_phase && self.columns[r].artificial;
-            let step = if gone && d[r].abs() > PIVOT {
-                0.0
-            } else if d[r] > PIVOT {
-                self.x[r].max(0.0) / d[r]
-            } else {
-                continue;
-            };
-            let better = match leaves {
-                None => true,
-                Some((other, least)) => step < least || (step <= least && d[r].abs() > d[other].abs()),
-            };
-            if better {
-                leaves = Some((r, step));
-            }
-        }
-        let Some((r, step)) = leaves else { return false };
+        // Tiny pivots ruin the inverse; they are taken only where there is no other.
+        let Some(r) = [GOOD_PIVOT, PIVOT].into_iter().find_map(|least| self.leaves(&d, first_phase, least)) else {
+            return false;
+        };
+        let gone = !first_phase && self.columns[r].artificial;
+        let step = if gone { 0.0 } else { self.x[r].max(0.0) / d[r] };
         *stalled = if step > NOTHING { 0 } else { *stalled + 1 };
         let pivot = self.inverse.row(r) / d[r];
         for other in 0..N {
@@ -294,7 +287,37 @@ impl<'a> Squeezer<'a> {
         self.inverse.set_row(r, &pivot);
         self.x[r] = step;
         self.columns[r] = column;
+        // What a pivot passed over let fall below nought is driven out again.
+        for other in 0..N {
+            if self.x[other] < -HAIR {
+                self.turn(other);
+            }
+        }
         true
+    }
+
+    /// Which weight gives way for a column that changes the weights by -d, with a pivot of at least `least`.
+    fn leaves(&self, d: &Wrench, first_phase: bool, least: f64) -> Option<usize> {
+        // Artificial columns that are down to nothing go first: they must not come back.
+        let gone = |r: usize| !first_phase && self.columns[r].artificial && d[r].abs() > least;
+        // How far the column may come in before another weight falls below nought by more than a hair. Of all that then
+        // may leave, the one with the largest pivot does (Harris 1973).
+        let mut farthest = f64::INFINITY;
+        for r in 0..N {
+            if gone(r) {
+                farthest = 0.0;
+            } else if d[r] > least {
+                farthest = farthest.min((self.x[r].max(0.0) + HAIR) / d[r]);
+            }
+        }
+        let mut leaves: Option<usize> = None;
+        for r in 0..N {
+            let may = gone(r) || (d[r] > least && self.x[r] <= farthest * d[r]);
+            if may && leaves.is_none_or(|other| d[r].abs() > d[other].abs()) {
+                leaves = Some(r);
+            }
+        }
+        leaves
     }
 
     /// Lifts weights that are nought a little, each by another amount, so that ties are broken. The proof is made with the
@@ -316,8 +339,22 @@ impl<'a> Squeezer<'a> {
         true
     }
 
+    /// Weights that meet the load and prices that meet the costs, with what rounding in the inverse left over taken out.
+    fn refined(&self, target: &Wrench, first_phase: bool) -> (Wrench, Wrench) {
+        let basis = Matrix6::from_columns(&self.columns.map(|column| column.wrench));
+        let cost = Wrench::from_fn(|r, _| if self.columns[r].artificial == first_phase { 1.0 } else { 0.0 });
+        let (mut x, mut u) = (self.inverse * target, self.prices(first_phase));
+        for _ in 0..2 {
+            x += self.inverse * (target - basis * x);
+            u += self.inverse.tr_mul(&(cost - basis.tr_mul(&u)));
+        }
+        (x, u)
+    }
+
     /// The answer for a load of size 1, both sides of it worked out again.
-    fn proof(&self, target: &Wrench, first_phase: bool, u: &Wrench) -> Answer {
+    fn proof(&self, target: &Wrench, first_phase: bool) -> Answer {
+        let (x, u) = self.refined(target, first_phase);
+        let u = &u;
         let reach = self.hold.reach(u, 1.0);
         let pushed = target.dot(u);
         if first_phase {
@@ -328,7 +365,6 @@ impl<'a> Squeezer<'a> {
                 Answer::Unsure
             };
         }
-        let x = self.inverse * target;
         let mut sum = Wrench::zeros();
         let mut squeeze = 0.0;
         let mut forces = vec![FingerForce::default(); self.hold.presses().len()];
@@ -350,8 +386,8 @@ impl<'a> Squeezer<'a> {
         if squeeze > BEYOND {
             return if least > BEYOND / 2.0 { Answer::Never { direction: u / u.norm() } } else { Answer::Unsure };
         }
-        let agree =
-            reach > 0.0 && (squeeze - least).abs() <= GAP * (1.0 + squeeze) && residual_n <= GAP * (1.0 + squeeze);
+        let gap = GAP * (1.0 + squeeze) + ROUNDING * u.norm();
+        let agree = reach > 0.0 && (squeeze - least).abs() <= gap && residual_n <= gap;
         if agree {
             Answer::Held(Held { squeeze_n: squeeze, direction: u / reach, forces, residual_n })
         } else {
