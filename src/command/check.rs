@@ -118,7 +118,7 @@ fn check<'a>(saved: &'a GraspFile, part: &Arc<Part>, knobs: &Knobs) -> Result<Ch
         let known = scenes.iter().position(|(other, _)| *other == setup);
         let index = known.unwrap_or(scenes.len());
         if known.is_none() {
-            scenes.push((setup.clone(), knobs::scene(Arc::clone(part), setup)?));
+            scenes.push((setup.clone(), knobs.scene(Arc::clone(part), setup)?));
         }
         grasps.push(check_one(grasp, &scenes[index].1, asked));
     }
