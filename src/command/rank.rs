@@ -110,7 +110,8 @@ fn head(text: &mut String, scene: &Scene, ranking: &Ranking) -> std::fmt::Result
         setup.friction.mu.atan().to_degrees()
     )?;
     let limit = setup.hand.force_limit_n.map_or("no force limit".to_owned(), |n| format!("at most {n} N per finger"));
-    writeln!(text, "drive {}: {}; {limit}", word_for(&DRIVES, setup.hand.drive), drive(setup.hand.drive))?;
+    let drive_word = word_for(&DRIVES, setup.hand.drive);
+    writeln!(text, "{}", wrapped(&format!("drive {drive_word}: {}; {limit}", drive(setup.hand.drive)), 0, 4))?;
     writeln!(text, "torque scale {} mm ({scale}), seed {}", length(scene.frame().scale_mm), search.seed)?;
     writeln!(
         text,
