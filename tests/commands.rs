@@ -397,7 +397,7 @@ fn score_says_what_the_loads_ask() {
         "hand formula S W / (2 mu): 12.32 N per finger",
         "an equal squeeze of both fingers holds it",
         "0.205 MPa on a pad face of 60.00 mm2 (fingers 1, 2)",
-        "once slip has begun (mu 0.100): closed, loads NOT HELD, 24.63 N each, 49.26 N in all",
+        "once slip has begun (mu 0.100): closed, loads NOT HELD, 24.63 N each, 49.27 N in all",
         "at mu 0.400 (high): closed, loads held, 6.16 N each",
     ] {
         assert!(flowing(text).contains(&flowing(said)), "{said}\n{text}");

@@ -87,7 +87,7 @@ const USES: [Use; 4] = [
     ("deck_cell", ["hinge_leaf", "cleat_base"], &[(1, 9.0), (1, 29.0), (11, 19.0)]),
     ("plate_hand", ["strainer_plate", "angle_bracket"], &[(6, 65.7), (13, 34.7), (20, 60.2), (27, 7.9)]),
     ("three_pin", ["mast_collar_flange", "pintle_washer"], &[(0, 3.4), (16, 3.4), (32, 3.4)]),
-    ("two_jaw", ["cleat_base", "hinge_leaf"], &[(1, 55.0), (19, 51.4)]),
+    ("two_jaw", ["hinge_leaf", "cleat_base"], &[(0, 40.0), (6, 8.0)]),
 ];
 
 /// Every demo setup reads, has its load set, finds grasps on its parts, and holds its loads with the grasp above.
