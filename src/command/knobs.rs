@@ -133,6 +133,11 @@ impl Knobs {
 
     /// A fault of the setup in force, named after the option that brought it in, or after the setup file.
     fn blame(&self, fault: &SetupFault) -> String {
+        // The name of a load case comes from a file.
+        file::shown(&self.blamed(fault))
+    }
+
+    fn blamed(&self, fault: &SetupFault) -> String {
         let options = [
             ("friction.mu", "--mu", self.mu.is_some()),
             ("hand.fingers", "--fingers", self.fingers.is_some()),
@@ -158,7 +163,7 @@ impl Knobs {
             return format!("with {option}: {fault}");
         }
         match &self.setup {
-            Some(path) => format!("{}: {fault}", file::shown(&path.display().to_string())),
+            Some(path) => format!("{}: {fault}", path.display()),
             None => fault.to_string(),
         }
     }

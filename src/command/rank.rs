@@ -11,7 +11,7 @@ use crate::hand::Tip;
 use crate::mechanics::{Assessment, Holding};
 use crate::search::{self, Cancel, Key, Listed, Listing, Ranking, Scene, TorqueScale};
 use clap::Args;
-use clap::builder::PossibleValuesParser;
+use clap::builder::{PossibleValuesParser, TypedValueParser};
 use std::fmt::Write;
 use std::path::PathBuf;
 
@@ -29,7 +29,7 @@ pub(super) struct RankArgs {
     top: u32,
     /// Score to sort by
     #[arg(long, value_name = "KEY", default_value = "quality", value_parser = keys())]
-    sort: String,
+    sort: Key,
     /// List single grasps instead of the best of each family
     #[arg(long)]
     members: bool,
@@ -38,14 +38,13 @@ pub(super) struct RankArgs {
     json: bool,
 }
 
-fn keys() -> PossibleValuesParser {
-    PossibleValuesParser::new(Key::ALL.into_iter().map(Key::word))
+fn keys() -> impl TypedValueParser<Value = Key> {
+    let words = PossibleValuesParser::new(Key::ALL.map(Key::word));
+    words.try_map(|word| Key::from_word(&word).ok_or("there is no such key"))
 }
 
 pub(super) fn run(args: &RankArgs) -> Result<Answer, Stop> {
-    let Some(key) = Key::from_word(&args.sort) else {
-        return Err(Stop::bad(format!("--sort {}: there is no such key", args.sort)));
-    };
+    let key = args.sort;
     let part = knobs::part(&args.part)?;
     let scene = args.knobs.scene(part, args.knobs.setup()?)?;
     if key.word() == SQUEEZE && scene.cases().is_empty() {
