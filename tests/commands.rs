@@ -2,88 +2,17 @@
 #![allow(clippy::unwrap_used, clippy::expect_used, reason = "a test that cannot go on has failed")]
 #![allow(clippy::float_cmp, reason = "numbers that pass through JSON must come out digit for digit")]
 
+mod shell;
+
 use holdwright::file::{Keep, read_part, save, setup_from_text};
 use holdwright::part::EdgeId;
 use holdwright::search::{Scene, Setup, Spot};
 use serde_json::Value;
+use shell::{BAR, Bench, command, complaints, err, json, keys, out, sorted};
 use std::io::Read;
 use std::path::{Path, PathBuf};
-use std::process::{Command, Output, Stdio};
+use std::process::Stdio;
 use std::sync::Arc;
-
-/// Two by one, COM in the middle: opposite contacts across the width have a = 20 mm.
-const BAR: &str = "schema = 1\nname = \"gunwale bar\"\nthickness = 5.0\nmaterial = \"steel\"\nouter = [
-  [0, 0],
-  [80, 0],
-  [80, 40],
-  [0, 40],
-]\n";
-
-struct Bench {
-    folder: tempfile::TempDir,
-    part: PathBuf,
-}
-
-impl Bench {
-    fn new() -> Self {
-        let folder = tempfile::tempdir().unwrap();
-        let part = folder.path().join("bar.toml");
-        std::fs::write(&part, BAR).unwrap();
-        Self { folder, part }
-    }
-
-    fn write(&self, name: &str, text: &str) -> PathBuf {
-        let path = self.folder.path().join(name);
-        std::fs::write(&path, text).unwrap();
-        path
-    }
-
-    /// Runs the program in the folder of the bench.
-    fn run(&self, args: &[&str]) -> Output {
-        command(args).current_dir(self.folder.path()).output().unwrap()
-    }
-}
-
-fn command(args: &[&str]) -> Command {
-    let mut command = Command::new(env!("CARGO_BIN_EXE_holdwright"));
-    command.args(args).stdin(Stdio::null()).env_remove("RUST_BACKTRACE");
-    command
-}
-
-fn out(output: &Output) -> &str {
-    std::str::from_utf8(&output.stdout).unwrap()
-}
-
-fn err(output: &Output) -> &str {
-    std::str::from_utf8(&output.stderr).unwrap()
-}
-
-/// The one JSON object of a run that went well.
-#[track_caller]
-fn json(output: &Output) -> Value {
-    assert_eq!(output.status.code(), Some(0), "{}", err(output));
-    assert_eq!(out(output).lines().count(), 1);
-    serde_json::from_slice(&output.stdout).unwrap()
-}
-
-/// The lines of complaint of a run that ended with exit code 2 and no result.
-#[track_caller]
-fn complaints(output: &Output) -> Vec<&str> {
-    assert_eq!(output.status.code(), Some(2), "{}", err(output));
-    assert_eq!(out(output), "");
-    err(output).lines().collect()
-}
-
-fn keys(value: &Value) -> Vec<&str> {
-    let mut keys: Vec<_> = value.as_object().unwrap().keys().map(String::as_str).collect();
-    keys.sort_unstable();
-    keys
-}
-
-fn sorted<const N: usize>(mut words: [&str; N]) -> Vec<&str> {
-    words.sort_unstable();
-    words.to_vec()
-}
 
 #[test]
 fn rank_prints_the_promised_object() {
@@ -95,7 +24,21 @@ fn rank_prints_the_promised_object() {
     );
     let (part, setup) = (&report["part"], &report["setup"]);
     assert_eq!(keys(part), sorted(["name", "area_mm2", "centroid_mm", "com_mm", "mass_kg", "polar_kg_m2", "reach_mm"]));
-    assert_eq!(keys(setup), sorted(["mu", "fingers", "torque_scale_mm", "seed", "drive"]));
+    assert_eq!(
+        keys(setup),
+        sorted([
+            "mu",
+            "fingers",
+            "tip",
+            "closing",
+            "torque_scale_mm",
+            "seed",
+            "drive",
+            "force_limit_n",
+            "cone_sides",
+            "loads"
+        ])
+    );
     assert_eq!(part["area_mm2"], 3200.0);
     assert_eq!(part["com_mm"], serde_json::json!([40.0, 20.0]));
     // m = 7850 kg/m3 (Gere, Table H-1) times volume; J = m (b2 + h2) / 12 of a rectangle (any text on statics).
@@ -132,9 +75,18 @@ fn rank_prints_the_promised_object() {
                 "placement_torque_mm",
                 "weakest",
                 "escape",
+                "friction_needed_holding",
                 "squeeze_n",
+                "squeeze_total_n",
                 "load_margin",
+                "held",
+                "governing_load",
+                "limit_n",
+                "limited_by",
                 "loads",
+                "bearing",
+                "jaws",
+                "standing",
             ])
         );
         assert_eq!(keys(&grasp["contacts"][0]), sorted(["ring", "edge", "along_mm", "point_mm", "normal", "mu"]));
@@ -304,8 +256,13 @@ fn bad_usage_is_told_from_bad_input_by_words_not_by_code() {
     one(&["rank", "bar.toml", "--threads", "0"], "--threads");
     one(&["rank", "bar.toml", "--top", "0"], "--top");
     one(&["rank", "bar.toml", "--sort", "beauty"], "--sort");
-    one(&["rank", "bar.toml", "--sort", "squeeze"], "squeeze needs load cases");
-    one(&["rank", "bar.toml", "--tip", "pad"], "not built yet");
+    one(&["rank", "bar.toml", "--sort", "squeeze"], "squeeze");
+    one(&["rank", "bar.toml", "--bite", "0"], "--bite is 0: give a number above 0");
+    one(&["rank", "bar.toml", "--bite", "5.5"], "--bite is 5.5: the part is 5 mm thick; give no more than that");
+    one(&["rank", "bar.toml", "--force-limit", "-3"], "--force-limit is -3: give a number above 0");
+    one(&["rank", "bar.toml", "--drive", "shared"], "--drive");
+    one(&["rank", "bar.toml", "--closing", "parallel", "--tip", "pin"], "--tip is pin: parallel closing takes pads");
+    one(&["rank", "bar.toml", "--closing", "parallel", "--fingers", "3"], "--fingers is 3: parallel closing takes two");
     one(&["rank"], "required arguments");
     one(&["score", "bar.toml"], "required arguments");
     one(&["score", "bar.toml", "--at", "0:0"], "\"0:0\" is no RING:EDGE:ALONG_MM");
@@ -421,7 +378,7 @@ fn saved(bench: &Bench) -> PathBuf {
         let spot = |edge, along_mm| Spot { edge: EdgeId { ring: 0, edge }, along_mm };
         let grasp = scene.grasp(&[spot(0, 40.0), spot(2, along_mm)]).unwrap();
         let (assessment, _) = scene.assess(&grasp);
-        Keep { name: name.into(), note: String::new(), grasp, assessment, setup: setup.clone() }
+        Keep { name: name.into(), note: String::new(), grasp, assessment, setup: setup.clone(), density: None }
     };
     let path = bench.folder.path().join("bar.grasps.toml");
     // The first leans by 1 mm in 40 mm, the second by 12.
