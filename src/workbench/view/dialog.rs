@@ -1,5 +1,6 @@
 //! What lies on top of the bench: a line being typed, questions, the list of marks, faults.
 
+use super::super::loads;
 use super::super::state::{Entry, EntryKind, Question, State};
 use super::{bars, number, put, shifted, split_rows, table, titled, wrapped};
 use crate::file::shown;
@@ -27,6 +28,9 @@ pub(super) fn entry(state: &State, area: Rect, entry: &Entry, buf: &mut Buffer) 
         EntryKind::Mu => "mu, the friction coefficient",
         EntryKind::Name => "name of the grasp",
         EntryKind::Note => "why it is kept",
+        EntryKind::Limit => "force limit, N per finger",
+        EntryKind::Size { .. } => "size of the load",
+        EntryKind::Safety { .. } => "safety factor on the load",
     };
     let mut inside = titled(state, strip, title, "", buf);
     if let Some(fault) = &entry.fault {
@@ -34,8 +38,7 @@ pub(super) fn entry(state: &State, area: Rect, entry: &Entry, buf: &mut Buffer) 
     } else if entry.suggested {
         let how = "typing replaces it; the arrow keys keep it";
         put(buf, shifted(Rect { y: inside.y + 1, height: 1, ..inside }, 2), how, state.look.dim());
-    } else if entry.kind == EntryKind::Mu {
-        let now = format!("now {}", number::mu(state.setup().friction.mu));
+    } else if let Some(now) = now(state, entry.kind) {
         put(buf, shifted(Rect { y: inside.y + 1, height: 1, ..inside }, 2), &now, state.look.dim());
     }
     inside.height = 1;
@@ -50,6 +53,24 @@ pub(super) fn entry(state: &State, area: Rect, entry: &Entry, buf: &mut Buffer) 
     bars::footer(state, footer, buf);
     let cursor = Line::raw(before).width().min(usize::from(line.width.saturating_sub(1))) as u16;
     Position { x: line.x.saturating_add(cursor).min(area.right() - 1), y: line.y }
+}
+
+/// The value that is about to be typed over.
+fn now(state: &State, kind: EntryKind) -> Option<String> {
+    let value = match kind {
+        EntryKind::Name | EntryKind::Note => return None,
+        EntryKind::Mu => number::mu(state.setup().friction.mu),
+        EntryKind::Limit => match state.setup().hand.force_limit_n {
+            Some(limit) => format!("{} N; none takes it away", number::given(limit)),
+            None => "none".to_owned(),
+        },
+        EntryKind::Size { row } => {
+            let (size, unit) = loads::size_of(state, row)?;
+            format!("{} {unit}", number::given(size))
+        }
+        EntryKind::Safety { row } => number::given(state.loads.get(row)?.case.safety),
+    };
+    Some(format!("now {value}"))
 }
 
 /// Draws a question.
@@ -96,13 +117,17 @@ pub(super) fn marks(state: &State, area: Rect, at: usize, buf: &mut Buffer) {
             None => "-".to_owned(),
         };
         let text = format!(
-            "{}{} {rank:>4} {}  {}  quality {}  margin {}  at mu {}  {}",
+            "{}{} {rank:>4} {}  {}  quality {}  margin {}{}  at mu {}  {}",
             if i == at { '>' } else { ' ' },
             if mark.saved { "saved" } else { "NEW  " },
             shown(&keep.name),
             table::edges(&keep.grasp.spots),
             number::quality(keep.assessment.quality),
             number::margin(keep.assessment.friction_margin),
+            keep.assessment
+                .holding
+                .as_ref()
+                .map_or(String::new(), |holding| format!("  load {}", number::load(holding.load_margin(), holding.held()))),
             number::mu(keep.setup.friction.mu),
             shown(&keep.note),
         );
