@@ -313,7 +313,7 @@ fn a_pair_taken_on_the_bench_sets_the_band_and_ranks_again() {
     let shown = desk.state.shown.as_ref().unwrap();
     assert_eq!(shown.order.scene.setup().friction.mu.to_bits(), 0.15f64.to_bits());
     let band: Vec<_> =
-        desk.state.reading.as_ref().unwrap().band.iter().map(|(name, _, verdict)| (*name, *verdict)).collect();
+        desk.state.reading.as_ref().unwrap().band.iter().map(|(name, standing)| (*name, standing.verdict)).collect();
     assert_eq!(band, [("low", Verdict::Closed), ("nominal", Verdict::Closed), ("high", Verdict::Closed)]);
     // What is kept says where mu is from.
     desk.keys("ms");

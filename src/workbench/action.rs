@@ -306,7 +306,14 @@ pub static TABLE: &[Row] = &[
     row(A::MuEnter, S::Bench, &[C('=')], "set mu", "type mu", always),
     row(A::LimitEnter, S::Bench, &[C('N')], "set limit", "type the force limit, N per finger", always),
     row(A::OtherTip, S::Bench, &[C('T')], "tip", "pins or pads", always),
-    row(A::OtherClosing, S::Bench, &[C('P')], "closing", "two parallel pads facing each other, or fingers of their own", always),
+    row(
+        A::OtherClosing,
+        S::Bench,
+        &[C('P')],
+        "closing",
+        "two parallel pads facing each other, or fingers of their own",
+        always,
+    ),
     row(A::OtherDrive, S::Bench, &[C('e')], "drive", "each finger's force can be set, or all press alike", always),
     row(A::OpenPairs, S::Bench, &[C('t')], "pairs", "take mu from the table of friction pairs", always),
     row(

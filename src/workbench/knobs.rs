@@ -150,9 +150,8 @@ pub(super) fn other_drive(state: &mut State) -> Vec<Effect> {
 }
 
 /// Preferred numbers of a decade, about 12 % apart (ISO 3:1973, series R20).
-const R20: [f64; 20] = [
-    1.0, 1.12, 1.25, 1.4, 1.6, 1.8, 2.0, 2.24, 2.5, 2.8, 3.15, 3.55, 4.0, 4.5, 5.0, 5.6, 6.3, 7.1, 8.0, 9.0,
-];
+const R20: [f64; 20] =
+    [1.0, 1.12, 1.25, 1.4, 1.6, 1.8, 2.0, 2.24, 2.5, 2.8, 3.15, 3.55, 4.0, 4.5, 5.0, 5.6, 6.3, 7.1, 8.0, 9.0];
 
 /// The preferred number above or below a value above 0.
 pub(super) fn preferred(value: f64, up: bool) -> f64 {

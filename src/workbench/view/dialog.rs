@@ -124,10 +124,10 @@ pub(super) fn marks(state: &State, area: Rect, at: usize, buf: &mut Buffer) {
             table::edges(&keep.grasp.spots),
             number::quality(keep.assessment.quality),
             number::margin(keep.assessment.friction_margin),
-            keep.assessment
-                .holding
-                .as_ref()
-                .map_or(String::new(), |holding| format!("  load {}", number::load(holding.load_margin(), holding.held()))),
+            keep.assessment.holding.as_ref().map_or(String::new(), |holding| format!(
+                "  load {}",
+                number::load(holding.load_margin(), holding.held())
+            )),
             number::mu(keep.setup.friction.mu),
             shown(&keep.note),
         );

@@ -33,26 +33,21 @@ pub(super) fn drive_words(drive: Drive) -> &'static str {
 
 /// The limit and where it comes from.
 pub(super) fn limit_words(limit: &Limit, grasp: &Grasp) -> String {
-    format!("limit {} N per finger: {}", number::given(limit.squeeze_n), limited_by(limit, grasp))
-}
-
-fn limited_by(limit: &Limit, grasp: &Grasp) -> String {
+    let limit_n = number::given(limit.squeeze_n);
     match limit.by {
-        LimitedBy::Hand => "the hand gives no more".to_owned(),
+        LimitedBy::Hand => format!("{limit_n} N each is all the hand gives"),
         LimitedBy::Edge { finger } => {
-            let edge = grasp.spots.get(finger).map_or(String::new(), |spot| {
-                format!(" {}:{}", spot.edge.ring, spot.edge.edge)
-            });
-            format!("more would mark edge{edge}")
+            let edge = grasp.spots.get(finger).map(|spot| format!(" {}:{}", spot.edge.ring, spot.edge.edge));
+            format!("more than {limit_n} N each would mark edge{}", edge.unwrap_or_default())
         }
     }
 }
 
 /// Squeeze of a case per finger and in all, with its worst direction.
 pub(super) fn asks(case: &CaseHolding, fingers: usize) -> String {
-    let worst = case.direction_deg.map_or(String::new(), |deg| {
-        format!(", worst when accelerated toward {} deg", number::degrees(deg))
-    });
+    let worst = case
+        .direction_deg
+        .map_or(String::new(), |deg| format!(", worst when accelerated toward {} deg", number::degrees(deg)));
     let margin = case.margin.map_or(String::new(), |margin| format!(", margin {}", number::times(Some(margin))));
     match case.squeeze_n {
         _ if case.unsure => "the solvers could not prove a squeeze".to_owned(),
@@ -86,17 +81,20 @@ impl Page<'_> {
             }
             None => self.tell("squeeze", "none will do", look.bad(), &format!("\"{name}\" is not held by any squeeze")),
         }
-        let value = match (holding.held(), holding.load_margin()) {
-            (true, Some(margin)) => format!("held {}", number::times(Some(margin))),
-            (false, Some(margin)) if margin > 0.0 => format!("NOT HELD {}", number::times(Some(margin))),
-            (true, None) => "held".to_owned(),
-            (false, _) => "NOT HELD".to_owned(),
-        };
-        let meaning = match &holding.limit {
+        let times = holding.load_margin().map(|margin| number::times(Some(margin)));
+        let limit = match &holding.limit {
             Some(limit) => limit_words(limit, &reading.grasp),
             None => format!("no force limit is set: {} types one", key_of(Action::LimitEnter)),
         };
-        self.tell("loads", &value, if holding.held() { look.good() } else { look.bad() }, &meaning);
+        if holding.held() {
+            let value = times.map_or("held".to_owned(), |times| format!("held {times}"));
+            self.tell("loads", &value, look.good(), &limit);
+        } else {
+            let failing = holding.cases.iter().filter(|case| !case.held).count();
+            let times = times.map_or(String::new(), |times| format!(", {times}"));
+            let meaning = format!("{failing} of {}{times}; {limit}", holding.cases.len());
+            self.tell("loads", "NOT HELD", look.bad(), &meaning);
+        }
     }
 
     /// Every case, the forces of the one that asks most, the hand formula, what presses on the edges, other friction.
@@ -104,7 +102,8 @@ impl Page<'_> {
         let plain = self.state.look.plain();
         self.tell("", "", plain, "");
         let Some(holding) = &reading.assessment.holding else {
-            let how = format!("{} adds load cases; squeeze and load margin follow from them", key_of(Action::OpenLoads));
+            let how =
+                format!("{} adds load cases; squeeze and load margin follow from them", key_of(Action::OpenLoads));
             self.tell("loads", "none", plain, &how);
             return;
         };
@@ -132,7 +131,10 @@ impl Page<'_> {
         }
         let left = self.state.setup().loads.get(holding.governing).map_or(1.0, |load| load.squeeze_left);
         let with = if left < 1.0 { ", with the part of the squeeze that is left" } else { "" };
-        let of = format!("of \"{}\"{with}, N; often one set of many", shown(&case.name));
+        let of = format!(
+            "N, of \"{}\"{with}; along: as the edge runs with the material on its left; often one set of many",
+            shown(&case.name)
+        );
         self.tell("forces", "", plain, &of);
         for (finger, force) in case.forces.iter().enumerate() {
             let [normal, along, up] = [force.normal_n, force.along_n, force.up_n].map(number::at);
@@ -182,7 +184,12 @@ impl Page<'_> {
             };
             let edge = reading.grasp.spots.get(finger).and_then(|spot| scene.part().limit_on(spot.edge));
             let limit = edge.and_then(|limit| bearing.most_n(limit)).map_or(String::new(), |most_n| {
-                format!("; finger {} marks its edge from {} {}", finger + 1, number::mm(bearing.load(most_n)), bearing.unit())
+                format!(
+                    "; finger {} marks its edge from {} {}",
+                    finger + 1,
+                    number::mm(bearing.load(most_n)),
+                    bearing.unit()
+                )
             });
             let text = (value, format!("{over} at that squeeze{limit}"));
             if !told.contains(&text) {
@@ -199,10 +206,10 @@ impl Page<'_> {
         for (i, (name, standing)) in reading.band.iter().enumerate() {
             let Some(holding) = &standing.holding else { continue };
             let case = holding.governing_case();
-            let squeeze = case.squeeze_n.map_or("no squeeze holds".to_owned(), |n| format!("{} N each for", number::mm(n)));
+            let squeeze =
+                case.squeeze_n.map_or("no squeeze holds".to_owned(), |n| format!("{} N each for", number::mm(n)));
             let once = if *name == "sliding" { "once slip has begun: " } else { "" };
-            let meaning =
-                format!("{once}{}; {squeeze} \"{}\"", held_at(standing, holding), shown(&case.name));
+            let meaning = format!("{once}{}; {squeeze} \"{}\"", held_at(standing, holding), shown(&case.name));
             let style = if standing.holds() { self.state.look.plain() } else { self.state.look.bad() };
             let value = format!("{name} {}", number::mu(standing.mu));
             self.tell(if i == 0 { "at mu" } else { "" }, &value, style, &meaning);
@@ -213,14 +220,20 @@ impl Page<'_> {
     fn friction_of_both(&mut self, reading: &Reading, holding: &Holding) {
         let a = &reading.assessment;
         let (Some(limit), Some(closure)) = (&holding.limit, a.friction_needed_closure) else { return };
-        let loads = a.friction_needed_holding.map_or("no mu holds".to_owned(), |n| format!("mu {} holds", number::mu(n)));
+        let loads =
+            a.friction_needed_holding.map_or("no mu holds".to_owned(), |n| format!("mu {} holds", number::mu(n)));
         let text = format!(
-            "mu {} closes; {loads} the loads within {} N per finger; the larger counts",
-            number::mu(closure),
+            "{}; {loads} the loads within {} N per finger; the larger counts",
+            closes_at(closure),
             number::given(limit.squeeze_n)
         );
         self.tell("friction", "", self.state.look.plain(), &text);
     }
+}
+
+/// The friction at which a grasp closes, in words.
+pub(super) fn closes_at(mu: f64) -> String {
+    if mu < 5e-5 { "any mu closes".to_owned() } else { format!("mu {} closes", number::mu(mu)) }
 }
 
 /// Closed or not and held or not, at a friction of the band.

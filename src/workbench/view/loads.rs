@@ -16,7 +16,7 @@ const NAME: usize = 16;
 /// Draws the list over the whole screen.
 pub(super) fn list(state: &State, area: Rect, at: usize, buf: &mut Buffer) {
     let name = NAME.min(usize::from(area.width).saturating_sub(28)).max(4);
-    let head = format!("  {:<name$}{:>8}{:>7}  {:<9}what it is", "load case", "N each", "margin", "");
+    let head = format!("  {:<name$}{:>8}{:>7}  {:<9}what it is", "load case", "squeeze", "margin", "");
     let row = |at: usize| {
         state.loads.get(at).map_or(String::new(), |row| {
             let (squeeze, margin, held) = asked(state, at, row);
@@ -69,8 +69,11 @@ fn told(state: &State, at: usize, row: &LoadRow) -> Vec<String> {
             (Some(_), number) => format!("of grasp number {number} it asks:"),
             (None, _) => "of the grasp last selected it asks:".to_owned(),
         });
-        told.push(holding::asks(case, reading.grasp.contacts.len()));
-        if let Some(limit) = reading.assessment.holding.as_ref().and_then(|holding| holding.limit) {
+        let holding_of_all = reading.assessment.holding.as_ref();
+        let most = holding_of_all.is_some_and(|all| all.cases.len() > 1 && std::ptr::eq(all.governing_case(), case));
+        let most = if most { "; of all cases it asks most" } else { "" };
+        told.push(holding::asks(case, reading.grasp.contacts.len()) + most);
+        if let Some(limit) = holding_of_all.and_then(|holding| holding.limit) {
             told.push(holding::limit_words(&limit, &reading.grasp));
         }
         told.push(holding::drive_words(state.setup().hand.drive).to_owned());

@@ -129,11 +129,11 @@ impl Layout {
                 let rows = (body.height * 9 / 20).clamp(5, 12) + 2 * u16::from(loads && body.height > 18);
                 let (upper, lower) = split_rows(body, body.height - rows);
                 layout.reading = Some(lower);
-                layout.beside(upper, Panel::Outline);
+                layout.beside(upper, Panel::Outline, loads);
             }
             (true, false) => {
                 let left = if chosen == Panel::Reading { Panel::Reading } else { Panel::Outline };
-                layout.beside(body, left);
+                layout.beside(body, left, loads);
             }
             (false, true) => {
                 let (upper, lower) = split_rows(body, body.height / 2);
@@ -152,9 +152,10 @@ impl Layout {
         layout
     }
 
-    fn beside(&mut self, area: Rect, left: Panel) {
-        // The table needs about forty columns for three fingers; what is more goes to the picture first.
-        let table_width = (area.width * 9 / 20).clamp(40, 62).min(area.width / 2 + 8);
+    fn beside(&mut self, area: Rect, left: Panel, loads: bool) {
+        // The table needs about forty columns for three fingers, eight more for the squeeze; what is more goes to the
+        // picture first.
+        let table_width = (area.width * 9 / 20).clamp(if loads { 48 } else { 40 }, 62).min(area.width / 2 + 8);
         let left_area = Rect { width: area.width - table_width - 1, ..area };
         self.divider = Some(Rect { x: left_area.right(), width: 1, ..area });
         self.table = Some(Rect { x: left_area.right() + 1, width: table_width, ..area });

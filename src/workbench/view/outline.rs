@@ -62,6 +62,9 @@ impl Signs {
     /// As many explanations as fit, none cut.
     fn text(&self, state: &State, width: usize) -> String {
         let mut parts = vec!["@ centre of mass"];
+        if self.pads {
+            parts.push("# pad");
+        }
         let reasons = reasons(state);
         let keep_out = format!("x keep-out: {reasons}");
         if self.keep_out {
@@ -73,9 +76,6 @@ impl Signs {
             } else {
                 ". no finger fits"
             });
-        }
-        if self.pads {
-            parts.push("# pad");
         }
         if state.cones {
             parts.push(": cone");

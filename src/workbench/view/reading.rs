@@ -1,7 +1,7 @@
 //! The reading of the selected grasp: every score with its meaning in one line.
 
 use super::super::state::{Job, Reading, State};
-use super::{number, table, wrapped};
+use super::{holding, number, table, wrapped};
 use crate::mechanics::assess::Assessment;
 use crate::mechanics::escape::{Escape, Sense};
 use crate::mechanics::placement::Governor;
@@ -165,7 +165,7 @@ impl Page<'_> {
             }
             None => match a.friction_needed_closure {
                 Some(closure) => {
-                    let meaning = format!("holds the loads within the limit; closure needs {}", number::mu(closure));
+                    let meaning = format!("holds the loads within the limit; {} it", holding::closes_at(closure));
                     self.tell("friction", "no mu", look.bad(), &meaning);
                 }
                 None => self.tell("friction", "no mu", look.bad(), "closes this grasp"),
@@ -180,8 +180,8 @@ impl Page<'_> {
                 };
                 let meaning = match (a.verdict, a.friction_margin_deg) {
                     _ if for_loads(a) => {
-                        let closure = a.friction_needed_closure.map_or("none".to_owned(), number::mu);
-                        format!("for the loads, {closure} to close; mu {mu}: margin {}", number::margin(a.friction_margin))
+                        let closure = a.friction_needed_closure.map_or(String::new(), holding::closes_at);
+                        format!("for the loads ({closure}); of mu {mu}: margin {}", number::margin(a.friction_margin))
                     }
                     (Verdict::Closed, Some(degrees)) => format!(
                         "of mu {mu}: margin {}, normals may be off {degrees:.1} deg",

@@ -95,7 +95,7 @@ fn columns(key: Key, loads: bool) -> Vec<Column> {
         let load = |a: &Assessment| {
             a.holding.as_ref().map_or(String::new(), |holding| number::load(holding.load_margin(), holding.held()))
         };
-        columns.push(column("N each", 7, squeeze, key.word() == "squeeze"));
+        columns.push(column("squeeze", 8, squeeze, key.word() == "squeeze"));
         columns.push(column("load", 9, load, false));
     }
     columns

@@ -57,7 +57,13 @@ pub(super) fn pairs(state: &State, area: Rect, at: usize, condition: Condition, 
             told
         }
     };
-    list(state, area, "friction of a pair", &List { head, at, count: PAIRS.len() + 1, row: &row, told, rest: REST }, buf);
+    list(
+        state,
+        area,
+        "friction of a pair",
+        &List { head, at, count: PAIRS.len() + 1, row: &row, told, rest: REST },
+        buf,
+    );
 }
 
 /// Draws the list of densities over the whole screen.
@@ -84,7 +90,13 @@ pub(super) fn materials(state: &State, area: Rect, at: usize, buf: &mut Buffer) 
             ]
         }
     };
-    list(state, area, "density of the part", &List { head, at, count: DENSITIES.len() + 1, row: &row, told, rest: REST }, buf);
+    list(
+        state,
+        area,
+        "density of the part",
+        &List { head, at, count: DENSITIES.len() + 1, row: &row, told, rest: REST },
+        buf,
+    );
 }
 
 /// A band in words.
