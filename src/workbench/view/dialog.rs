@@ -25,14 +25,14 @@ fn strip(area: Rect, rows: u16, buf: &mut Buffer) -> (Rect, Rect) {
 pub(super) fn entry(state: &State, area: Rect, entry: &Entry, buf: &mut Buffer) -> Position {
     let (strip, footer) = strip(area, 3, buf);
     let title = match entry.kind {
-        EntryKind::Mu => "mu, the friction coefficient",
-        EntryKind::Name => "name of the grasp",
-        EntryKind::Note => "why it is kept",
-        EntryKind::Limit => "force limit, N per finger",
-        EntryKind::Size { .. } => "size of the load",
-        EntryKind::Safety { .. } => "safety factor on the load",
+        EntryKind::Mu => "mu, the friction coefficient".to_owned(),
+        EntryKind::Name => "name of the grasp".to_owned(),
+        EntryKind::Note => "why it is kept".to_owned(),
+        EntryKind::Limit => "force limit, N per finger".to_owned(),
+        EntryKind::Size { row } => format!("size of {}", case_name(state, row)),
+        EntryKind::Safety { row } => format!("safety factor on {}", case_name(state, row)),
     };
-    let mut inside = titled(state, strip, title, "", buf);
+    let mut inside = titled(state, strip, &title, "", buf);
     if let Some(fault) = &entry.fault {
         put(buf, shifted(Rect { y: inside.y + 1, height: 1, ..inside }, 2), &shown(fault), state.look.bad());
     } else if entry.suggested {
@@ -53,6 +53,11 @@ pub(super) fn entry(state: &State, area: Rect, entry: &Entry, buf: &mut Buffer) 
     bars::footer(state, footer, buf);
     let cursor = Line::raw(before).width().min(usize::from(line.width.saturating_sub(1))) as u16;
     Position { x: line.x.saturating_add(cursor).min(area.right() - 1), y: line.y }
+}
+
+/// Name of a load case, short enough for a title.
+fn case_name(state: &State, row: usize) -> String {
+    state.loads.get(row).map_or(String::new(), |own| format!("\"{}\"", bars::cut(&shown(&own.case.name), 24)))
 }
 
 /// The value that is about to be typed over.

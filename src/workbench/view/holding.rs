@@ -48,7 +48,7 @@ pub(super) fn asks(case: &CaseHolding, fingers: usize) -> String {
     let worst = case
         .direction_deg
         .map_or(String::new(), |deg| format!(", worst when accelerated toward {} deg", number::degrees(deg)));
-    let margin = case.margin.map_or(String::new(), |margin| format!(", margin {}", number::times(Some(margin))));
+    let margin = case.margin.map_or(String::new(), |margin| format!(", load margin {}", number::times(Some(margin))));
     match case.squeeze_n {
         _ if case.unsure => "the solvers could not prove a squeeze".to_owned(),
         Some(n) => format!(
@@ -79,9 +79,20 @@ impl Page<'_> {
             None if case.unsure => {
                 self.tell("squeeze", "in doubt", look.bad(), &format!("no squeeze could be proved for \"{name}\""));
             }
-            None => self.tell("squeeze", "none will do", look.bad(), &format!("\"{name}\" is not held by any squeeze")),
+            None => {
+                let meaning = match holding.drive {
+                    Drive::Adjustable => format!("\"{name}\" is not held by any squeeze"),
+                    Drive::Equal => {
+                        let other = key_of(Action::OtherDrive);
+                        format!("pressing alike never holds \"{name}\"; {other} sets each force")
+                    }
+                };
+                self.tell("squeeze", "none will do", look.bad(), &meaning);
+            }
         }
-        let times = holding.load_margin().map(|margin| number::times(Some(margin)));
+        // Where no squeeze will do there is no margin to speak of.
+        let margin = holding.load_margin().filter(|margin| *margin > 0.0);
+        let times = margin.map(|margin| number::times(Some(margin)));
         let limit = match &holding.limit {
             Some(limit) => limit_words(limit, &reading.grasp),
             None => format!("no force limit is set: {} types one", key_of(Action::LimitEnter)),

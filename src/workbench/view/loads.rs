@@ -147,10 +147,8 @@ fn in_full(case: &LoadCase) -> String {
         let [x, y, z] = case.at_mm.map(number::given);
         told.push(format!("acting at ({x}, {y}, {z}) mm"));
     }
-    told.push(match toward(case.gravity) {
-        _ if is_nought(case.gravity) => "no weight".to_owned(),
-        toward => format!("weight {toward}"),
-    });
+    let weightless = is_nought(case.gravity);
+    told.push(if weightless { "no weight".to_owned() } else { format!("weight {}", toward(case.gravity)) });
     told.push(format!("safety factor {}", number::given(case.safety)));
     if case.squeeze_left < 1.0 {
         told.push(format!("{} % of the squeeze left", number::given(case.squeeze_left * 100.0)));

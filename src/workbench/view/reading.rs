@@ -181,7 +181,8 @@ impl Page<'_> {
                 let meaning = match (a.verdict, a.friction_margin_deg) {
                     _ if for_loads(a) => {
                         let closure = a.friction_needed_closure.map_or(String::new(), holding::closes_at);
-                        format!("for the loads ({closure}); of mu {mu}: margin {}", number::margin(a.friction_margin))
+                        let margin = number::margin(a.friction_margin);
+                        format!("margin {margin} of mu {mu}, for the loads; {closure}")
                     }
                     (Verdict::Closed, Some(degrees)) => format!(
                         "of mu {mu}: margin {}, normals may be off {degrees:.1} deg",
