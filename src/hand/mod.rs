@@ -1,10 +1,19 @@
 //! What holds the part: the fingers, and where on the outline they fit.
 
+mod apart;
+mod crossing;
+mod jaw_run;
+mod jaws;
+mod pad;
+mod pin;
 mod stretch;
 
-use crate::part::EdgeLimit;
+pub use apart::apart;
+pub use jaw_run::{JawRun, jaw_runs};
+pub use jaws::{JawFault, Jaws, PARALLEL_RAD, jaws_at};
+pub use stretch::{Stretch, stretch_around, stretches};
 
-pub use stretch::{Stretch, apart, stretch_around, stretches};
+use crate::part::EdgeLimit;
 
 /// How many fingers the hand has: two to six.
 #[derive(Debug, Clone, Copy, PartialEq, Eq, PartialOrd, Ord, Hash)]

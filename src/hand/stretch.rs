@@ -1,14 +1,9 @@
-//! Stretches: the parts of each edge where a pin may stand, in closed form.
-//!
-//! A pin of radius r that touches edge e at p has its centre at p - r n. While p runs along e the centre runs along a
-//! parallel line, or along a concentric circle where e is an arc, and it meets another edge f exactly while it is closer
-//! to f than r. The distance changes from above r to below only where the centre's path crosses the curve at distance r
-//! from f: two lines or two concentric circles beside it, and a circle round each end. All those crossings are in closed
-//! form; between two of them one look decides. Nothing is sampled, so nothing thin is missed.
+//! Stretches: the parts of each edge where a finger may stand, in closed form.
 
-use super::Hand;
-use crate::part::{Arc, Edge, EdgeId, Outline, Part};
-use nalgebra::{Point2, Vector2};
+use super::pad::Pad;
+use super::pin::Path;
+use super::{Hand, Tip};
+use crate::part::{Edge, EdgeId, Outline, Part};
 use rayon::prelude::*;
 use rstar::primitives::{GeomWithData, Rectangle};
 use rstar::{AABB, RTree};
@@ -36,28 +31,34 @@ impl Stretch {
     }
 }
 
-/// A pin that only grazes an edge is not stopped by it: what stops it is closer by this fraction of the radius, well
-/// above rounding and well below any drawing's precision.
-const GRAZE: f64 = 1e-9;
+/// A finger that only grazes an edge is not stopped by it: what stops it reaches farther in by this fraction of the
+/// finger's size, well above rounding and well below any drawing's precision.
+pub(super) const GRAZE: f64 = 1e-9;
 
-/// All stretches of a part for the pins of a hand, in order of edge and position.
+/// An edge shorter than what its two ends keep free by no more than this fraction is exactly as long.
+const EXACT: f64 = 1e-12;
+
+/// All stretches of a part for the fingers of a hand, in order of edge and position. A position is that of the pin's
+/// contact, or of the middle of the pad.
 pub fn stretches(part: &Part, hand: &Hand) -> Vec<Stretch> {
     let outline = part.outline();
-    let neighbours = Neighbours::of(outline, hand.pin_radius_mm);
+    let neighbours = Neighbours::of(outline, reach_mm(hand));
     let on_edge = |(index, edge): (usize, &Edge)| {
         let mut free = Vec::new();
-        let from = hand.corner_clearance_mm;
-        let to = edge.length_mm() - hand.corner_clearance_mm;
-        if from > to {
+        let Some(body) = Body::on(edge, hand) else { return free };
+        let half_face_mm = body.half_face_mm();
+        let Some((from, to)) = between_ends(edge.length_mm(), hand.corner_clearance_mm + half_face_mm) else {
             return free;
-        }
+        };
         let mut blocked: Vec<(f64, f64)> = part
             .keep_outs()
             .iter()
             .filter(|keep_out| keep_out.edge == edge.id())
-            .map(|keep_out| (keep_out.from_mm, keep_out.to_mm))
+            .map(|keep_out| (keep_out.from_mm - half_face_mm, keep_out.to_mm + half_face_mm))
             .collect();
-        neighbours.block(outline, index, &mut blocked);
+        for other in neighbours.of_edge(edge).filter(|&other| other != index) {
+            body.block(&outline.edges()[other], &mut blocked);
+        }
         free_intervals(from, to, &mut blocked, |from_mm, to_mm| {
             free.push(Stretch { edge: edge.id(), from_mm, to_mm });
         });
@@ -76,17 +77,58 @@ pub fn stretch_around(stretches: &[Stretch], edge: EdgeId, along_mm: f64) -> Opt
         .find(|stretch| stretch.room_mm(along_mm) >= -1e-9 * (1.0 + stretch.to_mm.abs()))
 }
 
-/// True when two pins with these contact points and inward normals keep the hand's gap.
-pub fn apart(hand: &Hand, a: (Point2<f64>, Vector2<f64>), b: (Point2<f64>, Vector2<f64>)) -> bool {
-    let r = hand.pin_radius_mm;
-    let least = 2.0 * r + hand.gap_mm;
-    let between = (a.0 - a.1 * r) - (b.0 - b.1 * r);
-    // Touching is allowed up to rounding of the positions themselves.
-    between.norm() >= least * (1.0 - 1e-12)
+/// The body of a finger while it runs along an edge.
+enum Body<'a> {
+    Pin(Path<'a>),
+    Pad(Pad<'a>),
+}
+
+impl<'a> Body<'a> {
+    /// Nothing where the finger cannot touch the edge anywhere.
+    fn on(edge: &'a Edge, hand: &Hand) -> Option<Self> {
+        match hand.tip {
+            Tip::Pin => Path::of(edge, hand.pin_radius_mm).map(Body::Pin),
+            Tip::Pad => Pad::of(edge, hand).map(Body::Pad),
+        }
+    }
+
+    /// How far the contact reaches along the edge on either side of its position, mm.
+    fn half_face_mm(&self) -> f64 {
+        match self {
+            Body::Pin(_) => 0.0,
+            Body::Pad(pad) => pad.half_face_mm,
+        }
+    }
+
+    /// Adds the intervals on which the finger meets another edge.
+    fn block(&self, other: &Edge, blocked: &mut Vec<(f64, f64)>) {
+        match self {
+            Body::Pin(path) => path.block(other, blocked),
+            Body::Pad(pad) => pad.block(other, blocked),
+        }
+    }
+}
+
+/// How far a finger's body reaches from its contact, mm; 0 for one without a body, which nothing can stop.
+fn reach_mm(hand: &Hand) -> f64 {
+    match hand.tip {
+        Tip::Pin => 2.0 * hand.pin_radius_mm,
+        Tip::Pad if hand.pad_depth_mm > 0.0 => (hand.pad_width_mm / 2.0).hypot(hand.pad_depth_mm),
+        Tip::Pad => 0.0,
+    }
+}
+
+/// What is left of an edge when both its ends are kept free; one point where that is exactly its length.
+fn between_ends(length_mm: f64, kept_mm: f64) -> Option<(f64, f64)> {
+    let (from, to) = (kept_mm, length_mm - kept_mm);
+    if from <= to {
+        return Some((from, to));
+    }
+    (from - to <= EXACT * length_mm).then_some((length_mm / 2.0, length_mm / 2.0))
 }
 
 /// Shortest piece left between two obstacles that is still a place to stand, mm.
-const SHORTEST_MM: f64 = 1e-9;
+pub(super) const SHORTEST_MM: f64 = 1e-9;
 
 /// Emits what is left of `[from, to]` when open intervals are taken out. The single points left between two
 /// obstacles, or between an obstacle and a corner, are no place for a finger; an edge cut to one point by the corner
@@ -113,146 +155,28 @@ fn free_intervals(from: f64, to: f64, blocked: &mut [(f64, f64)], mut emit: impl
     }
 }
 
-/// Edges near each edge, by a tree of their boxes; empty for point fingers, which nothing can stop.
+/// Edges near each edge, by a tree of their boxes; empty for fingers without a body.
 struct Neighbours {
-    radius: f64,
+    reach_mm: f64,
     tree: RTree<GeomWithData<Rectangle<[f64; 2]>, usize>>,
 }
 
 impl Neighbours {
-    fn of(outline: &Outline, radius: f64) -> Self {
+    fn of(outline: &Outline, reach_mm: f64) -> Self {
         let boxed = |(i, edge): (usize, &Edge)| {
             let (low, high) = edge.bounds();
             GeomWithData::new(Rectangle::from_corners([low.x, low.y], [high.x, high.y]), i)
         };
-        let boxes = if radius > 0.0 { outline.edges().iter().enumerate().map(boxed).collect() } else { Vec::new() };
-        Self { radius, tree: RTree::bulk_load(boxes) }
+        let boxes = if reach_mm > 0.0 { outline.edges().iter().enumerate().map(boxed).collect() } else { Vec::new() };
+        Self { reach_mm, tree: RTree::bulk_load(boxes) }
     }
 
-    /// Adds the intervals of edge `index` that each other edge forbids.
-    fn block(&self, outline: &Outline, index: usize, blocked: &mut Vec<(f64, f64)>) {
-        if self.radius <= 0.0 {
-            return;
-        }
-        let path = Path::of(&outline.edges()[index], self.radius);
-        if !path.fits() {
-            blocked.push((f64::NEG_INFINITY, f64::INFINITY));
-            return;
-        }
-        let (low, high) = path.edge.bounds();
-        let r = 2.0 * self.radius;
+    /// Numbers of the edges that may be within reach of a finger on an edge, that edge included.
+    fn of_edge(&self, edge: &Edge) -> impl Iterator<Item = usize> {
+        let (low, high) = edge.bounds();
+        let r = self.reach_mm;
         let near = AABB::from_corners([low.x - r, low.y - r], [high.x + r, high.y + r]);
-        for other in self.tree.locate_in_envelope_intersecting(near) {
-            if other.data != index {
-                path.block(&outline.edges()[other.data], blocked);
-            }
-        }
-    }
-}
-
-/// The way of a pin's centre while the pin runs along an edge.
-struct Path<'a> {
-    edge: &'a Edge,
-    radius: f64,
-    /// The circle the centre runs on, where the edge is an arc: the arc's own, and its radius for the centre.
-    round: Option<(Arc, f64)>,
-}
-
-impl<'a> Path<'a> {
-    fn of(edge: &'a Edge, radius: f64) -> Self {
-        let round = edge.arc().map(|arc| (arc, if arc.convex { arc.radius + radius } else { arc.radius - radius }));
-        Self { edge, radius, round }
-    }
-
-    /// False for a pin thicker than the hollow it should touch.
-    fn fits(&self) -> bool {
-        self.round.is_none_or(|(_, radius)| radius > -GRAZE * self.radius)
-    }
-
-    fn centre(&self, along_mm: f64) -> Point2<f64> {
-        self.edge.point_at(along_mm) - self.edge.normal_at(along_mm) * self.radius
-    }
-
-    /// Adds the intervals on which the pin meets another edge.
-    fn block(&self, other: &Edge, blocked: &mut Vec<(f64, f64)>) {
-        let r = self.radius * (1.0 - GRAZE);
-        let length = self.edge.length_mm();
-        let mut cuts = vec![0.0, length];
-        self.cross_circle(other.start(), r, &mut cuts);
-        self.cross_circle(other.end(), r, &mut cuts);
-        match other.arc() {
-            Some(arc) => {
-                self.cross_circle(arc.centre, arc.radius + r, &mut cuts);
-                self.cross_circle(arc.centre, arc.radius - r, &mut cuts);
-            }
-            None => {
-                let along = other.direction_at(0.0);
-                let beside = Vector2::new(-along.y, along.x) * r;
-                self.cross_line(other.start() + beside, along, &mut cuts);
-                self.cross_line(other.start() - beside, along, &mut cuts);
-            }
-        }
-        cuts.retain(|cut| (0.0..=length).contains(cut));
-        cuts.sort_by(f64::total_cmp);
-        for pair in cuts.windows(2) {
-            if pair[0] < pair[1] && other.distance_to(self.centre((pair[0] + pair[1]) / 2.0)) < r {
-                blocked.push((pair[0], pair[1]));
-            }
-        }
-    }
-
-    /// Adds where the path crosses a circle, as distances along the edge.
-    fn cross_circle(&self, centre: Point2<f64>, radius: f64, cuts: &mut Vec<f64>) {
-        if radius < 0.0 {
-            return;
-        }
-        match self.round {
-            None => {
-                let to = centre - self.centre(0.0);
-                let direction = self.edge.direction_at(0.0);
-                let (middle, off) = (to.dot(&direction), to.perp(&direction));
-                let half = (radius - off) * (radius + off);
-                if half >= 0.0 {
-                    cuts.extend([middle - half.sqrt(), middle + half.sqrt()]);
-                }
-            }
-            Some((arc, own)) => {
-                // Two circles: the foot of the common chord lies (d^2 + own^2 - radius^2) / 2 d from the own centre.
-                let to = centre - arc.centre;
-                let apart = to.norm();
-                let foot = (apart + (own - radius) * (own + radius) / apart) / 2.0;
-                let half = (own - foot) * (own + foot);
-                if apart > 0.0 && half >= 0.0 {
-                    let (toward, side) = (to / apart * foot, Vector2::new(-to.y, to.x) / apart * half.sqrt());
-                    self.cut_toward(&arc, [toward + side, toward - side], cuts);
-                }
-            }
-        }
-    }
-
-    /// Adds where the path crosses a line.
-    fn cross_line(&self, start: Point2<f64>, along: Vector2<f64>, cuts: &mut Vec<f64>) {
-        match self.round {
-            None => {
-                let rate = along.perp(&self.edge.direction_at(0.0));
-                let cut = along.perp(&(start - self.centre(0.0))) / rate;
-                if cut.is_finite() {
-                    cuts.push(cut);
-                }
-            }
-            Some((arc, own)) => {
-                let to = start - arc.centre;
-                let foot = to - along * to.dot(&along);
-                let half = own * own - foot.norm_squared();
-                if half >= 0.0 {
-                    self.cut_toward(&arc, [foot + along * half.sqrt(), foot - along * half.sqrt()], cuts);
-                }
-            }
-        }
-    }
-
-    fn cut_toward(&self, arc: &Arc, directions: [Vector2<f64>; 2], cuts: &mut Vec<f64>) {
-        cuts.extend(directions.into_iter().filter_map(|direction| self.edge.along_toward(arc, direction)));
+        self.tree.locate_in_envelope_intersecting(near).map(|other| other.data)
     }
 }
 

@@ -8,7 +8,7 @@ use super::load::Load;
 use super::program::{self, Solved};
 use super::root;
 use super::spatial::{Hold, Wrench};
-use super::squeeze::{Answer, BEYOND, FingerForce, Held, Squeezer};
+use super::squeeze::{Answer, BEYOND, Decision, FingerForce, Held, Squeezer};
 use crate::hand::Drive;
 
 /// A load case ready to be put on grasps.
@@ -97,7 +97,7 @@ impl Holding {
                 // Without any friction to scale, ask what common mu would do.
                 let scale =
                     if hold.presses().iter().all(|press| press.mu <= 0.0) { hold.with_friction(1.0) } else { *hold };
-                factor_needed(&scale, &in_turn(cases, &answers, governing), limit.squeeze_n)
+                factor_needed(&scale, &in_turn(cases, &answers, governing), limit.squeeze_n, 0.0)
             }
             None => Some(0.0),
         };
@@ -171,19 +171,22 @@ impl Holding {
 /// Agreement asked of the batch solver and the linear program, relative.
 const AGREE: f64 = 1e-6;
 
-/// A load and what its squeeze is divided by.
-type Asked<'a> = (&'a Wrench, f64);
+/// A load and the part of the squeeze that is left for it.
+pub type Asked = (Wrench, f64);
+
+/// Every load of every case.
+pub fn all_loads(cases: &[Case]) -> Vec<Asked> {
+    cases.iter().flat_map(|case| case.loads.iter().map(|load| (load.wrench, case.squeeze_left))).collect()
+}
 
 /// All loads, the one that asks most first: what holds it holds the others, mostly.
-fn in_turn<'a>(cases: &'a [Case], answers: &[CaseHolding], governing: usize) -> Vec<Asked<'a>> {
-    let mut all: Vec<(bool, Asked<'a>)> = Vec::new();
-    for (number, (case, answer)) in cases.iter().zip(answers).enumerate() {
-        for (at, load) in case.loads.iter().enumerate() {
-            all.push((number != governing || at != answer.worst, (&load.wrench, case.squeeze_left)));
-        }
+fn in_turn(cases: &[Case], answers: &[CaseHolding], governing: usize) -> Vec<Asked> {
+    let mut all = all_loads(cases);
+    let before: usize = cases[..governing].iter().map(|case| case.loads.len()).sum();
+    if let Some(first) = all.get_mut(..=before + answers[governing].worst) {
+        first.rotate_right(1);
     }
-    all.sort_by_key(|(later, _)| *later);
-    all.into_iter().map(|(_, asked)| asked).collect()
+    all
 }
 
 /// The least squeeze for one load, by the batch solver, or by the linear program where that gives up.
@@ -251,29 +254,32 @@ const WIDTH: f64 = 1e-12;
 /// Rounds after which a load is given up.
 const MOST_ROUNDS: usize = 60;
 
-/// Least factor on all friction with which every load is held by a squeeze of at most `limit_n`, to about 1e-9; nothing
-/// when no friction does.
+/// Least factor on all friction, not below `from`, with which every load is held by a squeeze of at most `limit_n`, to
+/// about 1e-9; nothing when no friction does.
 ///
 /// Newton's method from below: where a load is not held, the direction that proves it names the least factor at which
 /// that direction reaches far enough, and the next look is taken there. Cones only grow with friction, so the factor only
 /// rises, and what is held at the end is held by the answer of the solver itself.
-fn factor_needed(hold: &Hold<'_>, loads: &[Asked<'_>], limit_n: f64) -> Option<f64> {
-    let mut factor = 0.0;
+pub fn factor_needed(hold: &Hold<'_>, loads: &[Asked], limit_n: f64, from: f64) -> Option<f64> {
+    let mut factor = from;
     let mut scaled = hold.with_friction_times(factor);
     let mut squeezer = Squeezer::new(scaled);
-    for &(load, left) in loads {
+    for (load, left) in loads {
         let enough = at_most(limit_n * left);
         let mut rounds = 0;
         loop {
+            if squeezer.decide(load, limit_n * left) == Decision::Enough {
+                break;
+            }
             let direction = match squeezer.squeeze(load) {
                 Answer::Held(held) if held.squeeze_n <= enough => break,
                 Answer::Held(held) => held.direction,
                 Answer::Never { direction } => direction,
-                Answer::Unsure => return by_halving(hold, loads, limit_n),
+                Answer::Unsure => return by_halving(hold, loads, limit_n, from),
             };
             rounds += 1;
             if rounds > MOST_ROUNDS {
-                return by_halving(hold, loads, limit_n);
+                return by_halving(hold, loads, limit_n, from);
             }
             // Aimed a hair below the limit, so that the next look is not stopped by rounding just above it.
             let reach = -load.dot(&direction) / (limit_n * left);
@@ -312,19 +318,19 @@ fn factor_that_reaches(hold: &Hold<'_>, u: &Wrench, reach: f64, from: f64) -> Op
 }
 
 /// The same by halving the range, with the linear program where the batch solver gives up.
-fn by_halving(hold: &Hold<'_>, loads: &[Asked<'_>], limit_n: f64) -> Option<f64> {
+fn by_halving(hold: &Hold<'_>, loads: &[Asked], limit_n: f64, from: f64) -> Option<f64> {
     let held = |factor: f64| {
         let scaled = hold.with_friction_times(factor);
         let mut squeezer = Squeezer::new(scaled);
-        loads.iter().all(|&(load, left)| match least(&mut squeezer, &scaled, load) {
+        loads.iter().all(|(load, left)| match least(&mut squeezer, &scaled, load) {
             Answer::Held(held) => held.squeeze_n <= at_most(limit_n * left),
             Answer::Never { .. } | Answer::Unsure => false,
         })
     };
-    if held(0.0) {
-        return Some(0.0);
+    if held(from) {
+        return Some(from);
     }
-    let (mut low, mut high) = (0.0, 1.0);
+    let (mut low, mut high) = (from, from.max(1.0));
     while !held(high) {
         if high > LARGEST_FACTOR {
             return None;

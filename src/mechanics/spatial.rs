@@ -218,16 +218,11 @@ impl<'a> Hold<'a> {
     ///
     /// For every load and every u, no squeeze below `(-load . u) / reach(u)` holds the load.
     pub fn reach(&self, u: &Wrench, factor: f64) -> f64 {
-        let least = self.least();
-        self.presses().iter().map(|press| press.reach(u, self.pyramid, factor).0.max(least)).sum()
-    }
-
-    /// What a finger that presses the wrong way counts for: nothing when it may be left out.
-    fn least(&self) -> f64 {
-        match self.drive {
+        let least = match self.drive {
             Drive::Adjustable => 0.0,
             Drive::Equal => f64::NEG_INFINITY,
-        }
+        };
+        self.presses().iter().map(|press| press.reach(u, self.pyramid, factor).0.max(least)).sum()
     }
 
     /// The forces of [`Hold::reach`], nothing for a finger that is better left out, and their wrenches' sum.

@@ -27,6 +27,8 @@ const N: usize = 6;
 const PIVOT: f64 = 1e-9;
 /// A direction is farthest enough when it promises less than this.
 const PRICE: f64 = 1e-11;
+/// A direction falls short when it does by more than this.
+const DECIDED: f64 = 1e-10;
 /// What the two sides of a proof may differ by, relative.
 const GAP: f64 = 1e-9;
 /// Artificial weight below this is rounding.
@@ -83,6 +85,20 @@ pub enum Answer {
     Unsure,
 }
 
+/// Whether a squeeze is enough for a load.
+#[derive(Debug, Clone, PartialEq)]
+pub enum Decision {
+    /// It is.
+    Enough,
+    /// It is not: the load pushes along -u, and the fingers reach too short in direction u.
+    Short {
+        /// Wrench direction.
+        direction: Wrench,
+    },
+    /// The method gave up.
+    Unsure,
+}
+
 #[derive(Debug, Clone, Copy)]
 struct Column {
     wrench: Wrench,
@@ -114,6 +130,23 @@ impl<'a> Squeezer<'a> {
         Self { hold, columns, inverse: Matrix6::identity(), x: Wrench::zeros() }
     }
 
+    /// Whether a squeeze is enough for a load, in fewer steps than it takes to find the least one: any forces within it
+    /// will do, and so will any direction in which they reach too short. For screening, without the proof of
+    /// [`Squeezer::squeeze`].
+    pub fn decide(&mut self, load: &Wrench, enough_n: f64) -> Decision {
+        let size = load.norm();
+        if size <= 0.0 {
+            return Decision::Enough;
+        }
+        let target = -load / size;
+        match self.solve(&target, Some(enough_n / size)) {
+            Ok(decision) => decision,
+            Err(Answer::Held(held)) if held.squeeze_n * size <= enough_n => Decision::Enough,
+            Err(Answer::Held(Held { direction, .. }) | Answer::Never { direction }) => Decision::Short { direction },
+            Err(Answer::Unsure) => Decision::Unsure,
+        }
+    }
+
     /// The least squeeze for a load.
     pub fn squeeze(&mut self, load: &Wrench) -> Answer {
         let size = load.norm();
@@ -129,25 +162,45 @@ impl<'a> Squeezer<'a> {
             return Answer::Unsure;
         }
         let target = -load / size;
-        match self.solve(&target) {
+        match self.least(&target) {
             Answer::Unsure => {
                 // From a clean start, once.
                 *self = Self::new(self.hold);
-                self.solve(&target).of_size(size)
+                self.least(&target).of_size(size)
             }
             answer => answer.of_size(size),
         }
     }
 
-    fn solve(&mut self, target: &Wrench) -> Answer {
+    fn least(&mut self, target: &Wrench) -> Answer {
+        match self.solve(target, None) {
+            Ok(_) => Answer::Unsure,
+            Err(answer) => answer,
+        }
+    }
+
+    /// Goes on until the least squeeze for a load of size 1 is proved (`Err`) or, where so much would be enough, until
+    /// that is decided (`Ok`).
+    fn solve(&mut self, target: &Wrench, enough: Option<f64>) -> Result<Decision, Answer> {
         self.start(target);
         let mut stalled = 0;
         let mut renewed = false;
         for _ in 0..MOST_PIVOTS {
             let artificial: f64 = (0..N).filter(|&r| self.columns[r].artificial).map(|r| self.x[r]).sum();
             let first_phase = artificial > NOTHING;
+            if let Some(enough) = enough
+                && !first_phase
+                && self.weight() <= enough
+            {
+                return Ok(Decision::Enough);
+            }
             let u = self.prices(first_phase);
             let (reach, forces, wrench) = self.hold.farthest(&u);
+            if let Some(enough) = enough
+                && target.dot(&u) > enough * reach.max(0.0) + DECIDED * u.norm()
+            {
+                return Ok(Decision::Short { direction: u });
+            }
             let gain = if first_phase { reach - PRICE * u.norm() } else { reach - 1.0 - PRICE };
             let entered =
                 gain > 0.0 && self.enter(Column { wrench, artificial: false, forces }, first_phase, &mut stalled);
@@ -165,9 +218,14 @@ impl<'a> Squeezer<'a> {
                     continue;
                 }
             }
-            return answer;
+            return Err(answer);
         }
-        Answer::Unsure
+        Err(Answer::Unsure)
+    }
+
+    /// Weight of the columns that cost squeeze.
+    fn weight(&self) -> f64 {
+        (0..N).filter(|&r| !self.columns[r].artificial).map(|r| self.x[r]).sum()
     }
 
     /// Puts a new load on the basis that is there.

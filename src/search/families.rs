@@ -116,7 +116,7 @@ fn extend(
         let family = Family::new(&stretches[..fingers]);
         return family.count(sites) == 0 || visit(&family);
     }
-    for next in stretches[have - 1]..sites.stretch_count() as u32 {
+    for next in stretches[have - 1]..sites.group_count() as u32 {
         stretches[have] = next;
         if !extend(stretches, have + 1, fingers, sites, visit) {
             return false;

@@ -3,6 +3,7 @@
 mod families;
 mod family_forces;
 pub mod job;
+mod load_check;
 mod order;
 mod plan;
 mod rank;
@@ -10,6 +11,7 @@ mod scene;
 mod screen;
 mod setup;
 mod sites;
+mod under_load;
 
 pub use order::Key;
 pub use rank::{Cancel, Cancelled, Listed, Listing, Progress, Ranking, rank};

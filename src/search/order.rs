@@ -19,11 +19,13 @@ pub enum Key {
     Friction,
     /// Placement tolerance; largest first.
     Placement,
+    /// Squeeze needed for every load case; smallest first. Needs load cases.
+    Squeeze,
 }
 
 impl Key {
     /// All keys, in the order they are offered.
-    pub const ALL: [Self; 4] = [Self::Quality, Self::QualityPerFinger, Self::Friction, Self::Placement];
+    pub const ALL: [Self; 5] = [Self::Quality, Self::QualityPerFinger, Self::Friction, Self::Placement, Self::Squeeze];
 
     /// The word used on the command line and in files.
     pub fn word(self) -> &'static str {
@@ -32,6 +34,7 @@ impl Key {
             Self::QualityPerFinger => "quality_per_finger",
             Self::Friction => "friction",
             Self::Placement => "placement",
+            Self::Squeeze => "squeeze",
         }
     }
 
@@ -54,6 +57,19 @@ pub(super) fn quanta(score: f64) -> i64 {
 /// The least score that is rounded to so many quanta.
 pub(super) fn below(quanta: i64) -> f64 {
     (quanta as f64 - 0.5) * SCORE_QUANTUM
+}
+
+/// Quantum of a squeeze, as a part of the largest load: it comes from a linear program.
+const SQUEEZE_QUANTUM: f64 = 1e-8;
+
+/// Minus a squeeze in quanta, so that larger is better; `size_n` is the largest load.
+pub(super) fn squeeze_quanta(squeeze_n: f64, size_n: f64) -> i64 {
+    -((squeeze_n / size_n / SQUEEZE_QUANTUM).round() as i64)
+}
+
+/// The largest squeeze that is rounded to so many quanta, N.
+pub(super) fn squeeze_above(quanta: i64, size_n: f64) -> f64 {
+    (0.5 - quanta as f64) * SQUEEZE_QUANTUM * size_n
 }
 
 /// A friction factor in quanta.

@@ -42,6 +42,8 @@ enum Work {
     Every { begin: [u32; 2], first: Range<usize> },
     /// Sets of one family, one from each of these strata of `of` equal ones.
     Strata { family: Family, strata: Range<u64>, of: u64 },
+    /// Pairs of parallel jaws on one run: so many of them, evenly.
+    Jaws { family: Family, take: usize },
     /// Sets drawn one by one from all, the first finger of each from one of these strata of `of` equal ones of all sites.
     Draws { strata: Range<u64>, of: u64 },
 }
@@ -51,11 +53,14 @@ impl Plan {
         let setup = screen.scene.setup();
         let fingers = setup.hand.fingers.get();
         let budget = setup.search.budget;
+        if screen.sites.are_paired() {
+            return Ok(jaws(screen, budget));
+        }
         let sets = choose(screen.sites.len() as u128, fingers as u128);
         if sets <= u128::from(budget) {
             return Ok(Self { parcels: everything(screen, fingers), total: sets as u64, complete: true });
         }
-        let stretches = screen.sites.stretch_count() as u128;
+        let stretches = screen.sites.group_count() as u128;
         let families = choose(stretches + fingers as u128 - 1, fingers as u128);
         let parcels = if families <= u128::from(budget.min(MOST_FAMILIES)) {
             strata(screen, fingers, budget)?
@@ -127,15 +132,32 @@ impl Parcel {
                 let mut random = random(screen, index);
                 screen.sample(family, strata.clone(), *of, &mut || unit(&mut random), tally)
             }
+            Work::Jaws { family, take } => screen.jaws(family, *take, tally),
             Work::Draws { strata, of } => draw(strata.clone(), *of, &mut random(screen, index), screen, tally),
         }
     }
 }
 
+/// All placements of parallel jaws, run after run; above the budget a share of each run, evenly along it.
+fn jaws(screen: &Screen, budget: u64) -> Plan {
+    let sites = screen.sites;
+    let runs = sites.group_count() / 2;
+    let all = (sites.len() / 2) as u64;
+    let complete = all <= budget;
+    let parcel = |run: usize| {
+        let here = sites.on(2 * run).len();
+        let take = if complete { here } else { (here as u64 * budget / all).max(1) as usize };
+        let family = Family::new(&[2 * run as u32, 2 * run as u32 + 1]);
+        Parcel { sets: take as u64, work: Work::Jaws { family, take } }
+    };
+    let parcels: Vec<Parcel> = (0..runs).map(parcel).collect();
+    Plan { total: parcels.iter().map(|parcel| parcel.sets).sum(), parcels, complete }
+}
+
 /// All sets, cut by the first two stretches and, where those alone are too much, by sites of the first finger.
 fn everything(screen: &Screen, fingers: usize) -> Vec<Parcel> {
     let sites = screen.sites;
-    let stretches = sites.stretch_count();
+    let stretches = sites.group_count();
     let k = fingers as u128;
     // Sites on a stretch and those after it.
     let from: Vec<u128> = (0..=stretches).map(|s| (sites.len() - sites.on_or_end(s)) as u128).collect();
@@ -165,7 +187,7 @@ fn everything(screen: &Screen, fingers: usize) -> Vec<Parcel> {
 
 /// A part of each family that may close: one set each, and the rest of the budget by size.
 fn strata(screen: &Screen, fingers: usize, budget: u64) -> Result<Vec<Parcel>, Cancelled> {
-    let stretches = screen.sites.stretch_count() as u32;
+    let stretches = screen.sites.group_count() as u32;
     let parts: Vec<Result<Vec<Family>, Cancelled>> = (0..stretches)
         .into_par_iter()
         .map(|a| {

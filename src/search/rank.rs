@@ -41,11 +41,13 @@ pub struct Ranking {
     pub closed: u64,
     /// Closed sets hidden because they fall below a floor.
     pub below_floors: u64,
+    /// Closed sets that came in question for the list but do not hold every load within the limit.
+    pub not_held: u64,
     /// Grasps whose two ways of scoring disagree; they are left out of the list.
     pub inconclusive: u64,
     /// False when the budget made it a sample, or the ranking is not done yet.
     pub complete: bool,
-    /// Families with at least one closed grasp above the floors.
+    /// Families with at least one closed grasp above the floors; of those in the list every load is held too.
     pub families: usize,
     /// The list, best first.
     pub grasps: Vec<Listed>,
@@ -138,7 +140,7 @@ fn listed(screen: &Screen, tally: &Tally, most: usize, complete: bool) -> Rankin
         let sites = &candidate.sites[..fingers];
         let spots: Vec<_> = sites.iter().map(|&site| screen.sites.spot(screen.scene, site)).collect();
         let grasp = screen.scene.grasp(&spots).ok()?;
-        let (assessment, doubts) = screen.scene.assess(&grasp);
+        let (assessment, doubts) = screen.scene.assess_for_list(&grasp);
         let family = sites.iter().map(|&site| screen.sites.get(site).stretch as usize).collect();
         (doubts.is_empty() && assessment.verdict == Verdict::Closed).then_some(Listed { grasp, family, assessment })
     };
@@ -147,6 +149,7 @@ fn listed(screen: &Screen, tally: &Tally, most: usize, complete: bool) -> Rankin
         examined: tally.examined,
         closed: tally.closed,
         below_floors: tally.below_floors,
+        not_held: tally.not_held,
         inconclusive: 0,
         complete,
         families: tally.families(),

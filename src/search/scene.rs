@@ -2,10 +2,11 @@
 
 use super::setup::{Setup, SetupFault};
 use super::sites;
-use crate::hand::{self, Bearing, Stretch, Tip};
+use crate::hand::{self, Bearing, Closing, Drive, JawFault, JawRun, Jaws, Stretch, Tip};
 use crate::mechanics::assess::{self, Doubt};
+use crate::mechanics::holding;
 use crate::mechanics::load::Body;
-use crate::mechanics::spatial::{Hold, Pyramid};
+use crate::mechanics::spatial::{Hold, Pyramid, Wrench};
 use crate::mechanics::{Assessment, Case, Contact, Frame, Holding, Limit, LimitedBy, LoadCase, Verdict, Wrenches};
 use crate::part::{Edge, EdgeId, Part};
 use std::sync::Arc;
@@ -38,6 +39,9 @@ pub enum PlaceFault {
     /// Too few or too many fingers.
     #[error("a grasp has two to six fingers, not {0}")]
     FingerCount(usize),
+    /// Parallel jaws are two.
+    #[error("parallel jaws are two fingers, not {0}")]
+    JawCount(usize),
 }
 
 /// Fingers placed on the part, ready to be assessed.
@@ -53,12 +57,15 @@ pub struct Grasp {
     pub rooms_mm: Vec<f64>,
     /// Pairs of fingers that stand nearer to each other than the hand's gap allows.
     pub too_near: Vec<(usize, usize)>,
+    /// With parallel closing: how the jaws stand, or why jaws cannot stand so.
+    pub jaws: Option<Result<Jaws, JawFault>>,
 }
 
 impl Grasp {
-    /// True when every finger stands on a stretch and keeps its distance.
+    /// True when every finger stands on a stretch and keeps its distance, and parallel jaws face each other.
     pub fn fits(&self) -> bool {
-        self.too_near.is_empty() && self.rooms_mm.iter().all(|&room| room >= 0.0)
+        let jaws = self.jaws.as_ref().is_none_or(Result::is_ok);
+        jaws && self.too_near.is_empty() && self.rooms_mm.iter().all(|&room| room >= 0.0)
     }
 }
 
@@ -72,6 +79,7 @@ pub struct Scene {
     setup: Setup,
     frame: Frame,
     stretches: Vec<Stretch>,
+    jaw_runs: Vec<JawRun>,
     cases: Vec<Case>,
     pyramid: Pyramid,
     /// Half the bite over the torque scale; 0 for a part without a thickness.
@@ -90,9 +98,18 @@ impl Scene {
         let frame = Frame { about: part.com(), scale_mm: setup.search.torque_scale.mm(&part) };
         let stretches = hand::stretches(&part, &setup.hand);
         let spacing_mm = setup.search.spacing_for(&part);
-        let sites: f64 = stretches.iter().map(|stretch| sites::count_on(stretch, spacing_mm)).sum();
+        let jaw_runs = match setup.hand.closing {
+            Closing::Free => Vec::new(),
+            Closing::Parallel => hand::jaw_runs(&part, &setup.hand, &stretches),
+        };
+        let lengths: Vec<f64> = match setup.hand.closing {
+            Closing::Free => stretches.iter().map(Stretch::length_mm).collect(),
+            // A site for each of two fingers.
+            Closing::Parallel => jaw_runs.iter().flat_map(|run| [run.length_mm(); 2]).collect(),
+        };
+        let sites: f64 = lengths.iter().map(|&length_mm| sites::count_on(length_mm, spacing_mm)).sum();
         if sites > MOST_SITES {
-            let least = stretches.iter().map(Stretch::length_mm).sum::<f64>() / MOST_SITES;
+            let least = lengths.iter().sum::<f64>() / MOST_SITES;
             return Err(SetupFault {
                 key: "search.spacing_mm".to_owned(),
                 value: spacing_mm.to_string(),
@@ -114,7 +131,7 @@ impl Scene {
         let pyramid = Pyramid::new(setup.search.cone_sides).filter(|_| in_space).unwrap_or_else(Pyramid::planar);
         let bite_mm = if in_space { setup.hand.bite_for(part.thickness_mm()) } else { 0.0 };
         let half_height = bite_mm / 2.0 / frame.scale_mm;
-        Ok(Self { part, setup, frame, stretches, cases, pyramid, half_height })
+        Ok(Self { part, setup, frame, stretches, jaw_runs, cases, pyramid, half_height })
     }
 
     /// The part.
@@ -137,6 +154,11 @@ impl Scene {
         &self.stretches
     }
 
+    /// With parallel closing: every placement of the two jaws, as one-parameter sets.
+    pub fn jaw_runs(&self) -> &[JawRun] {
+        &self.jaw_runs
+    }
+
     /// Places fingers.
     ///
     /// # Errors
@@ -145,6 +167,10 @@ impl Scene {
     pub fn grasp(&self, spots: &[Spot]) -> Result<Grasp, PlaceFault> {
         if hand::FingerCount::new(spots.len()).is_none() {
             return Err(PlaceFault::FingerCount(spots.len()));
+        }
+        let parallel = self.setup.hand.closing == Closing::Parallel;
+        if parallel && spots.len() != 2 {
+            return Err(PlaceFault::JawCount(spots.len()));
         }
         let mut contacts = Vec::with_capacity(spots.len());
         let mut curvatures = Vec::with_capacity(spots.len());
@@ -170,7 +196,11 @@ impl Scene {
                 }
             }
         }
-        Ok(Grasp { spots: spots.to_vec(), contacts, curvatures, rooms_mm, too_near })
+        let jaws = match &contacts[..] {
+            [a, b] if parallel => Some(hand::jaws_at(&self.setup.hand, (a.point, a.normal), (b.point, b.normal))),
+            _ => None,
+        };
+        Ok(Grasp { spots: spots.to_vec(), contacts, curvatures, rooms_mm, too_near, jaws })
     }
 
     /// The contact a finger makes at a place on an edge. A pad lies flush on a straight edge; on an arc it touches at one
@@ -200,16 +230,28 @@ impl Scene {
         Hold::of(wrenches, self.half_height, &self.pyramid, self.setup.hand.drive)
     }
 
+    /// What fingers in space are made with: pyramid, half the bite over the torque scale, drive.
+    pub(super) fn in_space(&self) -> (&Pyramid, f64, Drive) {
+        (&self.pyramid, self.half_height, self.setup.hand.drive)
+    }
+
     /// What carries the squeeze of a finger that makes this contact.
     pub fn bearing(&self, contact: &Contact) -> Bearing {
         self.setup.hand.bearing(contact.half_width_mm > 0.0, self.part.thickness_mm())
     }
 
-    /// What the squeeze may not exceed for fingers on these edges: the hand's limit, or less where an edge would be marked.
-    pub fn limit<'e>(&self, on: impl Iterator<Item = (EdgeId, &'e Contact)>) -> Option<Limit> {
+    /// What the squeeze of a grasp may not exceed: the hand's limit, or less where an edge would be marked.
+    pub fn limit(&self, grasp: &Grasp) -> Option<Limit> {
+        let flush = grasp.contacts.iter().map(|contact| contact.half_width_mm > 0.0);
+        self.limit_on(grasp.spots.iter().map(|spot| spot.edge).zip(flush))
+    }
+
+    /// The same for fingers on these edges, each lying flush or not.
+    pub(super) fn limit_on(&self, edges: impl Iterator<Item = (EdgeId, bool)>) -> Option<Limit> {
         let hand = self.setup.hand.force_limit_n.map(|squeeze_n| Limit { squeeze_n, by: LimitedBy::Hand });
-        let edges = on.enumerate().filter_map(|(finger, (edge, contact))| {
-            let squeeze_n = self.bearing(contact).most_n(self.part.limit_on(edge)?)?;
+        let edges = edges.enumerate().filter_map(|(finger, (edge, flush))| {
+            let bearing = self.setup.hand.bearing(flush, self.part.thickness_mm());
+            let squeeze_n = bearing.most_n(self.part.limit_on(edge)?)?;
             Some(Limit { squeeze_n, by: LimitedBy::Edge { finger } })
         });
         hand.into_iter()
@@ -222,21 +264,57 @@ impl Scene {
         if self.cases.is_empty() {
             return None;
         }
-        let on = grasp.spots.iter().map(|spot| spot.edge).zip(&grasp.contacts);
-        Some(Holding::of(&self.hold(wrenches), &self.cases, self.limit(on)))
+        Some(Holding::of(&self.hold(wrenches), &self.cases, self.limit(grasp)))
     }
 
     /// Reads a grasp and confirms the reading by the second way.
     pub fn assess(&self, grasp: &Grasp) -> (Assessment, Vec<Doubt>) {
         let wrenches = self.wrenches(grasp);
-        let mu = self.setup.friction.mu;
-        let mut assessment = Assessment::of(&wrenches, &self.frame, mu, &grasp.rooms_mm);
-        let mut doubts = assessment.doubts(&wrenches, &self.frame, mu);
+        let (mut assessment, mut doubts) = self.assess_in_plane(grasp, &wrenches);
         if let Some(holding) = self.holding(grasp, &wrenches) {
             doubts.extend(holding.doubts(&self.hold(&wrenches), &self.cases));
-            assessment.hold(holding, &wrenches, mu);
+            assessment.hold(holding, &wrenches, self.setup.friction.mu);
         }
         (assessment, doubts)
+    }
+
+    /// The same for a row of a list: of the load cases only the governing one, which the row shows, is confirmed by the
+    /// linear program; every other squeeze carries the batch solver's own proof.
+    pub fn assess_for_list(&self, grasp: &Grasp) -> (Assessment, Vec<Doubt>) {
+        let wrenches = self.wrenches(grasp);
+        let (mut assessment, mut doubts) = self.assess_in_plane(grasp, &wrenches);
+        if let Some(holding) = self.holding(grasp, &wrenches) {
+            doubts.extend(holding.doubt_of_governing(&self.hold(&wrenches), &self.cases));
+            assessment.hold(holding, &wrenches, self.setup.friction.mu);
+        }
+        (assessment, doubts)
+    }
+
+    fn assess_in_plane(&self, grasp: &Grasp, wrenches: &Wrenches) -> (Assessment, Vec<Doubt>) {
+        let mu = self.setup.friction.mu;
+        let assessment = Assessment::of(wrenches, &self.frame, mu, &grasp.rooms_mm);
+        let doubts = assessment.doubts(wrenches, &self.frame, mu);
+        (assessment, doubts)
+    }
+
+    /// The acceleration envelope of a grasp: for even directions in the plane, degrees from +x, the largest acceleration in
+    /// m/s2 that is held at the limit on top of the weight. Gravity and safety factor are those of the first load case, or
+    /// those of a part that lies flat. Nothing without a limit, without a mass, or when not even the weight is held;
+    /// infinite where no acceleration breaks the hold.
+    pub fn envelope(&self, grasp: &Grasp, directions: usize) -> Option<Vec<(f64, f64)>> {
+        let mass_kg = self.part.mass()?.kg;
+        let first = self.setup.loads.first().cloned().unwrap_or_default();
+        let weight = LoadCase { gravity: first.gravity, safety: first.safety, ..LoadCase::default() };
+        if self.part.thickness_mm().is_none() && weight.out_of_plane().is_some() {
+            return None;
+        }
+        let body = Body { mass_kg, polar_kg_m2: 0.0, com_mm: [0.0; 2] };
+        let fixed = weight.loads(&body, self.frame.scale_mm).first()?.wrench;
+        let push = mass_kg * first.safety;
+        let per_unit = [Wrench::new(-push, 0.0, 0.0, 0.0, 0.0, 0.0), Wrench::new(0.0, -push, 0.0, 0.0, 0.0, 0.0)];
+        let wrenches = self.wrenches(grasp);
+        let limit_n = self.limit(grasp)?.squeeze_n;
+        holding::envelope(&self.hold(&wrenches), &fixed, &per_unit, limit_n, directions)
     }
 
     /// How a grasp stands at another friction of the band: `mu` in place of the setup's.

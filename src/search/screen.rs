@@ -6,15 +6,20 @@
 //! - forces that do not positively span the plane: no member closes, and no torque is looked at;
 //! - ties on the key (plateaus are common) are settled by closure tests at the incumbent's friction needed, one kernel
 //!   call each; the root finder runs only for a candidate that takes the lead.
+//!
+//! With load cases a family is gone through twice. First in the plane, where it is cheap: loads only take candidates away
+//! and only raise the friction needed, so the first best is a bound. Only where that bound would enter the list are the
+//! family's closed members put under the loads, best key first ([`LoadCheck`]), until one holds.
 
 use super::families::Family;
 use super::family_forces::{FamilyForces, NO_LEVER, polygon_of};
+use super::load_check::LoadCheck;
 use super::order::{self, Candidate, FRICTION_QUANTUM, Key, SiteSet, Top};
 use super::plan::TRIES;
 use super::rank::{Cancel, Cancelled, Listing};
 use super::scene::Scene;
 use super::sites::{Site, Sites};
-use crate::hand::FingerCount;
+use crate::hand::{self, FingerCount, Tip};
 use crate::mechanics::force_polygon::{ForcePolygon, PlanarScore};
 use crate::mechanics::friction::UnitForces;
 use crate::mechanics::placement::OnArcs;
@@ -45,17 +50,27 @@ pub(super) struct Tally {
     pub closed: u64,
     /// Those among them that fall below a floor.
     pub below_floors: u64,
-    /// Families with a grasp to list, other than those in `spread`.
+    /// Closed sets that came in question for the list and were turned away because a load is not held.
+    pub not_held: u64,
+    /// Families with a closed grasp above the floors, other than those in `spread`; loads are not asked.
     families: usize,
-    /// Families with a grasp to list whose sets are spread over several parcels, by their hash: a million families
+    /// Families with such a grasp whose sets are spread over several parcels, by their hash: a million families
     /// fit in a few megabytes, and two of them collide once in ten million rankings.
     spread: HashSet<u64>,
-    top: Top,
+    pub(super) top: Top,
 }
 
 impl Tally {
     pub(super) fn new(most: usize) -> Self {
-        Self { examined: 0, closed: 0, below_floors: 0, families: 0, spread: HashSet::new(), top: Top::new(most) }
+        Self {
+            examined: 0,
+            closed: 0,
+            below_floors: 0,
+            not_held: 0,
+            families: 0,
+            spread: HashSet::new(),
+            top: Top::new(most),
+        }
     }
 
     /// An empty tally for a thread to fill, that need not keep what this one would not.
@@ -72,13 +87,14 @@ impl Tally {
             examined: self.examined + other.examined,
             closed: self.closed + other.closed,
             below_floors: self.below_floors + other.below_floors,
+            not_held: self.not_held + other.not_held,
             families: self.families + other.families,
             spread: self.spread,
             top: self.top.merge(other.top),
         }
     }
 
-    /// Families with a grasp to list.
+    /// Families with a closed grasp above the floors.
     pub(super) fn families(&self) -> usize {
         self.families + self.spread.len()
     }
@@ -89,6 +105,8 @@ impl Tally {
     }
 }
 
+/// Friction factor of a grasp that no friction makes hold its loads: behind all others.
+const NO_FRICTION_HOLDS: f64 = 1e9;
 /// Quanta of a placement on arcs that nobody has asked for yet.
 const UNKNOWN: i64 = i64::MIN;
 /// Sets looked at between two questions whether to stop.
@@ -103,8 +121,27 @@ impl<'a> Screen<'a> {
     }
 
     fn apart(&self, a: u32, b: u32) -> bool {
-        let (a, b) = (self.sites.get(a).centre, self.sites.get(b).centre);
-        (a - b).norm_squared() >= self.least_apart_square
+        let (a, b) = (self.sites.get(a), self.sites.get(b));
+        let hand = &self.scene.setup().hand;
+        match hand.tip {
+            Tip::Pin => (a.centre - b.centre).norm_squared() >= self.least_apart_square,
+            Tip::Pad => hand::apart(hand, (a.point, a.lever.normal), (b.point, b.lever.normal)),
+        }
+    }
+
+    /// True when fingers may stand as near to one another as they like.
+    fn any_distance(&self) -> bool {
+        self.scene.setup().hand.tip == Tip::Pin && self.least_apart_square <= 0.0
+    }
+
+    /// The loads as a family meets them: all its members press on the same edges, which may limit the squeeze.
+    fn load_check(&self, family: &Family) -> Option<LoadCheck<'a>> {
+        let on = |&stretch: &u32| {
+            let first = self.sites.get(self.sites.on(stretch as usize).start as u32);
+            (self.scene.stretches()[first.stretch as usize].edge, first.lever.spread > 0.0)
+        };
+        let limit = self.scene.limit_on(family.stretches().iter().map(on));
+        LoadCheck::new(self.scene, limit.map_or(f64::INFINITY, |limit| limit.squeeze_n))
     }
 
     /// True when all fingers of a set keep the hand's gap.
@@ -121,7 +158,7 @@ impl<'a> Screen<'a> {
     pub(super) fn every(&self, family: &Family, first: Range<usize>, tally: &mut Tally) -> Result<(), Cancelled> {
         let whole = self.sites.on(family.stretches()[0] as usize) == first;
         let mut run = Run::new(self, family, tally);
-        if !run.forces.may_close() && self.least_apart_square <= 0.0 && whole {
+        if !run.forces.may_close() && self.any_distance() && whole {
             run.tally.examined += u64::try_from(family.count(self.sites)).unwrap_or(u64::MAX);
             return Ok(());
         }
@@ -161,6 +198,20 @@ impl<'a> Screen<'a> {
         Ok(())
     }
 
+    /// Screens so many pairs of parallel jaws on a run, evenly along it.
+    pub(super) fn jaws(&self, family: &Family, take: usize, tally: &mut Tally) -> Result<(), Cancelled> {
+        let mut run = Run::new(self, family, tally);
+        let [first, second] = [0, 1].map(|finger| self.sites.on(family.stretches()[finger] as usize));
+        for i in 0..take {
+            // All of them, or else the middles of even pieces.
+            let at = if take == first.len() { i } else { (2 * i + 1) * first.len() / (2 * take) };
+            run.set[..2].copy_from_slice(&[(first.start + at) as u32, (second.start + at) as u32]);
+            run.look()?;
+        }
+        run.finish(true);
+        Ok(())
+    }
+
     /// Screens one candidate set by itself.
     pub(super) fn one(&self, family: &Family, set: SiteSet, tally: &mut Tally) -> Result<(), Cancelled> {
         let mut run = Run::new(self, family, tally);
@@ -174,23 +225,29 @@ impl<'a> Screen<'a> {
 }
 
 /// The screening of one family.
-struct Run<'a, 'b> {
-    screen: &'a Screen<'a>,
+pub(super) struct Run<'a, 'b> {
+    pub(super) screen: &'a Screen<'a>,
     family: &'a Family,
-    k: usize,
-    forces: FamilyForces,
+    pub(super) k: usize,
+    pub(super) forces: FamilyForces,
     /// Least friction margin asked for, and the polygon at the friction it leaves.
     margin_floor: Option<(f64, ForcePolygon)>,
     /// The last factor a closure test was made at, and its polygon.
     at_factor: Option<(f64, ForcePolygon)>,
     /// The candidate set being looked at.
-    set: SiteSet,
+    pub(super) set: SiteSet,
     best: Option<Candidate>,
     lead_is_settled: bool,
     /// Direction in which the family's best grasp is weakest under a limit on each finger.
     weak_per_finger: Option<Vector3<f64>>,
     looked: u64,
-    tally: &'b mut Tally,
+    /// The loads, where the setup has any.
+    pub(super) loads: Option<LoadCheck<'a>>,
+    /// With loads: the closed members above the floors, to be gone through again.
+    pub(super) members: Vec<Candidate>,
+    /// The loads count in the friction needed.
+    pub(super) under_load: bool,
+    pub(super) tally: &'b mut Tally,
 }
 
 impl<'a, 'b> Run<'a, 'b> {
@@ -207,6 +264,9 @@ impl<'a, 'b> Run<'a, 'b> {
             lead_is_settled: false,
             weak_per_finger: None,
             looked: 0,
+            loads: screen.load_check(family),
+            members: Vec::new(),
+            under_load: false,
             tally,
         }
     }
@@ -221,13 +281,20 @@ impl<'a, 'b> Run<'a, 'b> {
             self.family.hash(&mut hasher);
             self.tally.spread.insert(hasher.finish());
         }
-        if !self.lead_is_settled {
+        // By squeeze nothing is known yet that could be compared.
+        let to_compare = (self.loads.is_some() || !self.lead_is_settled) && self.screen.key != Key::Squeeze;
+        if to_compare {
             self.set = best.sites;
             if let Some(worst) = self.tally.top.worst().copied()
                 && !self.comes_before(&mut best, &worst)
             {
                 return;
             }
+        }
+        if self.loads.is_some() {
+            let Some(held) = self.best_under_load(best) else { return };
+            best = held;
+        } else if !self.lead_is_settled {
             self.settle(&mut best);
         }
         self.tally.top.offer(best, self.family.group());
@@ -243,8 +310,7 @@ impl<'a, 'b> Run<'a, 'b> {
         let same = next == Some(self.family.stretches()[finger]);
         for site in on {
             self.set[finger] = site as u32;
-            if self.screen.least_apart_square > 0.0
-                && !(0..finger).all(|other| self.screen.apart(self.set[other], site as u32))
+            if !self.screen.any_distance() && !(0..finger).all(|other| self.screen.apart(self.set[other], site as u32))
             {
                 continue;
             }
@@ -291,10 +357,7 @@ impl<'a, 'b> Run<'a, 'b> {
             // worked out for ties, and by placement only for who passes one question at the tolerance in front.
             placement = UNKNOWN;
             if self.screen.key == Key::Placement {
-                let front = match self.screen.listing {
-                    Listing::Families => self.best,
-                    Listing::Members => self.tally.top.worst().copied(),
-                };
+                let front = self.front();
                 if let Some(front) = front
                     && (key < front.key || !self.keeps_placement(order::below(front.key) * self.screen.scale_mm))
                 {
@@ -307,19 +370,46 @@ impl<'a, 'b> Run<'a, 'b> {
         let mut candidate = Candidate { key, friction: 0, placement, room, sites: self.set };
         match self.screen.listing {
             Listing::Families => {
-                if self.takes_lead(&mut candidate) {
+                if self.loads.is_some() {
+                    self.members.push(candidate);
+                }
+                // By squeeze the second round alone decides.
+                let decided_later = self.screen.key == Key::Squeeze && self.best.is_some();
+                if !decided_later && self.takes_lead(&mut candidate) {
                     self.best = Some(candidate);
                 }
             }
             Listing::Members => {
                 let worst = self.tally.top.worst().copied();
-                if worst.is_none_or(|worst| self.comes_before(&mut candidate, &worst)) {
+                self.under_load = false;
+                let in_question = match worst {
+                    Some(worst) if self.screen.key != Key::Squeeze => self.comes_before(&mut candidate, &worst),
+                    _ => true,
+                };
+                self.under_load = true;
+                if in_question {
+                    match self.key_under_load(None) {
+                        None => return Ok(()),
+                        Some(None) => {}
+                        Some(Some(key)) => candidate.key = key,
+                    }
+                }
+                if in_question && (self.loads.is_none() || self.stands(&mut candidate, worst.as_ref())) {
                     self.settle(&mut candidate);
                     self.tally.top.offer(candidate, candidate.sites);
                 }
             }
         }
         Ok(())
+    }
+
+    /// What a candidate has to beat to be of interest; nothing where all members are wanted, to be put under the loads.
+    fn front(&self) -> Option<Candidate> {
+        match self.screen.listing {
+            Listing::Families if self.loads.is_some() => None,
+            Listing::Families => self.best,
+            Listing::Members => self.tally.top.worst().copied(),
+        }
     }
 
     /// Calls `ask` with the current contacts as the guarantee on arcs sees them.
@@ -343,8 +433,8 @@ impl<'a, 'b> Run<'a, 'b> {
             Key::Quality => order::quanta(score.signed_quality),
             Key::Placement => placement,
             Key::QualityPerFinger => order::quanta(self.per_finger()?),
-            // Decided with the friction tie-break.
-            Key::Friction => 0,
+            // Decided with the friction tie-break, or under load.
+            Key::Friction | Key::Squeeze => 0,
         })
     }
 
@@ -355,7 +445,7 @@ impl<'a, 'b> Run<'a, 'b> {
     }
 
     /// Finds what the tie-breaks ask of a candidate and is not known yet.
-    fn settle(&mut self, candidate: &mut Candidate) {
+    pub(super) fn settle(&mut self, candidate: &mut Candidate) {
         candidate.friction = self.friction_quanta(&candidate.sites);
         self.settle_placement(candidate);
     }
@@ -454,43 +544,43 @@ impl<'a, 'b> Run<'a, 'b> {
     }
 
     /// Whether the current set comes before a candidate whose friction is known. Its own friction is set when equal.
-    fn comes_before(&mut self, candidate: &mut Candidate, other: &Candidate) -> bool {
-        let order = other.key.cmp(&candidate.key).then_with(|| self.friction_against(other.friction));
-        match order {
-            Ordering::Less => {
-                candidate.friction = i64::MIN;
-                true
-            }
-            Ordering::Greater => false,
+    pub(super) fn comes_before(&mut self, candidate: &mut Candidate, other: &Candidate) -> bool {
+        match other.key.cmp(&candidate.key) {
+            Ordering::Less => {}
+            Ordering::Greater => return false,
             Ordering::Equal => {
-                self.settle_placement(candidate);
-                candidate.friction = other.friction;
-                *candidate < *other
+                // Less friction, as much, or more: by tests half a quantum to either side.
+                let half = FRICTION_QUANTUM / 2.0;
+                let at = other.friction as f64 * FRICTION_QUANTUM;
+                if !(other.friction > 0 && self.closes_at(at - half) && self.holds_at(at - half)) {
+                    if !self.closes_at(at + half) {
+                        return false;
+                    }
+                    // At best a tie, which the rest decides. On plateaus most candidates end here, before the loads are
+                    // asked once more.
+                    self.settle_placement(candidate);
+                    candidate.friction = other.friction;
+                    return *candidate < *other && self.holds_at(at + half);
+                }
             }
         }
+        candidate.friction = i64::MIN;
+        true
     }
 
-    /// Less when the current set needs less friction than so many quanta, by closure tests half a quantum to either side.
-    fn friction_against(&mut self, quanta: i64) -> Ordering {
-        let half = FRICTION_QUANTUM / 2.0;
-        let at = quanta as f64 * FRICTION_QUANTUM;
-        if quanta > 0 && self.closes_at(at - half) {
-            Ordering::Less
-        } else if self.closes_at(at + half) {
-            Ordering::Equal
-        } else {
-            Ordering::Greater
-        }
-    }
-
-    /// Friction needed by a set of this family, in quanta.
+    /// Friction needed by a set of this family, in quanta; under load the larger of that for closure and that for holding.
     fn friction_quanta(&self, set: &SiteSet) -> i64 {
         let levers = set.map(|site| self.screen.sites.get(site).lever);
-        let factor = friction::factor_needed(&levers[..self.k], &self.forces.mus[..self.k]);
-        order::friction_quanta(factor.unwrap_or(0.0))
+        let (levers, mus) = (&levers[..self.k], &self.forces.mus[..self.k]);
+        let closing = friction::factor_needed(levers, mus).unwrap_or(0.0);
+        let needed = match &self.loads {
+            Some(loads) if self.under_load => loads.factor_needed(levers, mus, closing).unwrap_or(NO_FRICTION_HOLDS),
+            _ => closing,
+        };
+        order::friction_quanta(needed)
     }
 
-    fn levers(&self) -> [Lever; FingerCount::MOST] {
+    pub(super) fn levers(&self) -> [Lever; FingerCount::MOST] {
         let mut levers = [NO_LEVER; FingerCount::MOST];
         for (finger, lever) in levers[..self.k].iter_mut().enumerate() {
             *lever = self.site(finger).lever;
@@ -547,11 +637,7 @@ impl<'a, 'b> Run<'a, 'b> {
     fn per_finger(&mut self) -> Option<f64> {
         let levers = self.levers();
         let (levers, mus) = (&levers[..self.k], &self.forces.mus[..self.k]);
-        let least = match self.screen.listing {
-            Listing::Families => self.best,
-            Listing::Members => self.tally.top.worst().copied(),
-        };
-        if let (Some(least), Some(u)) = (least, self.weak_per_finger)
+        if let (Some(least), Some(u)) = (self.front(), self.weak_per_finger)
             && order::quanta(quality::reach_per_finger(levers, mus, &u)) < least.key
         {
             return None;

@@ -1,7 +1,7 @@
 //! Sites: the positions on the stretches that candidate sets are made of.
 
 use super::scene::{Scene, Spot};
-use crate::hand::Stretch;
+use crate::hand::Closing;
 use crate::mechanics::Lever;
 use nalgebra::Point2;
 use std::ops::Range;
@@ -23,77 +23,107 @@ pub(super) struct Site {
     pub lever: Lever,
     /// Least and largest torque over l of the two cone edges at `mu`.
     pub torques: [[f64; 2]; 2],
-    /// Axis of the pin, local frame, mm.
+    /// Contact, local frame, mm.
+    pub point: Point2<f64>,
+    /// Axis of a pin there, local frame, mm.
     pub centre: Point2<f64>,
 }
 
-/// All sites, stretch after stretch.
+/// All sites, group after group.
+///
+/// Fingers that close freely have one group for each stretch, and any site of one goes with any of another. Parallel
+/// jaws have two groups for each run of theirs, 2 r and 2 r + 1, and the n-th site of the one goes with the n-th of the other.
 pub(super) struct Sites {
     all: Vec<Site>,
-    /// First site of each stretch, and the total at the end.
+    /// First site of each group, and the total at the end.
     starts: Vec<usize>,
+    paired: bool,
 }
 
-/// Number of [`positions`] on a stretch, as a float: it may be beyond any integer.
-pub(super) fn count_on(stretch: &Stretch, spacing_mm: f64) -> f64 {
-    2.0 * (stretch.length_mm() / (2.0 * spacing_mm)).ceil() + 1.0
+/// Number of [`positions`] on a length, as a float: it may be beyond any integer.
+pub(super) fn count_on(length_mm: f64, spacing_mm: f64) -> f64 {
+    2.0 * (length_mm / (2.0 * spacing_mm)).ceil() + 1.0
 }
 
 /// Positions at most `spacing` apart, both ends and the middle included.
-pub(super) fn positions(stretch: &Stretch, spacing_mm: f64) -> impl Iterator<Item = f64> {
+pub(super) fn positions(from_mm: f64, to_mm: f64, spacing_mm: f64) -> impl Iterator<Item = f64> {
+    let length_mm = to_mm - from_mm;
     // A scene has no more sites than memory holds.
-    let steps = count_on(stretch, spacing_mm) as usize - 1;
-    let (from, length, to) = (stretch.from_mm, stretch.length_mm(), stretch.to_mm);
+    let steps = count_on(length_mm, spacing_mm) as usize - 1;
     (0..=steps).map(move |i| match i {
-        0 => from,
-        i if i == steps => to,
-        i => from + length * (i as f64 / steps as f64),
+        0 => from_mm,
+        i if i == steps => to_mm,
+        i => from_mm + length_mm * (i as f64 / steps as f64),
     })
 }
 
 impl Sites {
     pub(super) fn of(scene: &Scene) -> Self {
         let spacing_mm = scene.setup().search.spacing_for(scene.part());
-        let mut all = Vec::new();
-        let mut starts = Vec::with_capacity(scene.stretches().len() + 1);
-        for (number, stretch) in scene.stretches().iter().enumerate() {
-            starts.push(all.len());
-            let Some(edge) = scene.part().outline().edge(stretch.edge) else { continue };
-            for along_mm in positions(stretch, spacing_mm) {
-                let contact = scene.contact(edge, along_mm);
-                let (mu, lever) = (contact.mu, Lever::of(&contact, scene.frame()));
-                all.push(Site {
-                    stretch: number as u32,
-                    along_mm,
-                    room_mm: stretch.room_mm(along_mm),
-                    mu,
-                    curvature: edge.curvature(),
-                    lever,
-                    torques: [lever.torques(mu), lever.torques(-mu)],
-                    centre: contact.point - contact.normal * scene.setup().hand.pin_radius_mm,
-                });
+        let mut sites = Self { all: Vec::new(), starts: Vec::new(), paired: false };
+        match scene.setup().hand.closing {
+            Closing::Free => {
+                for (number, stretch) in scene.stretches().iter().enumerate() {
+                    sites.add(scene, number, positions(stretch.from_mm, stretch.to_mm, spacing_mm));
+                }
+            }
+            Closing::Parallel => {
+                sites.paired = true;
+                for run in scene.jaw_runs() {
+                    for finger in [0, 1] {
+                        let along = positions(0.0, run.length_mm(), spacing_mm).map(|u| run.along_mm(u)[finger]);
+                        sites.add(scene, run.stretches[finger], along);
+                    }
+                }
             }
         }
-        starts.push(all.len());
-        Self { all, starts }
+        sites.starts.push(sites.all.len());
+        sites
+    }
+
+    /// Adds a group on a stretch.
+    fn add(&mut self, scene: &Scene, number: usize, along: impl Iterator<Item = f64>) {
+        self.starts.push(self.all.len());
+        let stretch = &scene.stretches()[number];
+        let Some(edge) = scene.part().outline().edge(stretch.edge) else { return };
+        for along_mm in along {
+            let contact = scene.contact(edge, along_mm);
+            let (mu, lever) = (contact.mu, Lever::of(&contact, scene.frame()));
+            self.all.push(Site {
+                stretch: number as u32,
+                along_mm,
+                room_mm: stretch.room_mm(along_mm).max(0.0),
+                mu,
+                curvature: edge.curvature(),
+                lever,
+                torques: [lever.torques(mu), lever.torques(-mu)],
+                point: contact.point,
+                centre: contact.point - contact.normal * scene.setup().hand.pin_radius_mm,
+            });
+        }
+    }
+
+    /// True when sites go together in pairs, as those of parallel jaws do.
+    pub(super) fn are_paired(&self) -> bool {
+        self.paired
     }
 
     pub(super) fn len(&self) -> usize {
         self.all.len()
     }
 
-    pub(super) fn stretch_count(&self) -> usize {
+    pub(super) fn group_count(&self) -> usize {
         self.starts.len() - 1
     }
 
-    /// Numbers of the sites on a stretch.
-    pub(super) fn on(&self, stretch: usize) -> Range<usize> {
-        self.starts[stretch]..self.starts[stretch + 1]
+    /// Numbers of the sites of a group.
+    pub(super) fn on(&self, group: usize) -> Range<usize> {
+        self.starts[group]..self.starts[group + 1]
     }
 
-    /// First site of a stretch; the number of sites for one past the last stretch.
-    pub(super) fn on_or_end(&self, stretch: usize) -> usize {
-        self.starts[stretch]
+    /// First site of a group; the number of sites for one past the last group.
+    pub(super) fn on_or_end(&self, group: usize) -> usize {
+        self.starts[group]
     }
 
     pub(super) fn get(&self, site: u32) -> &Site {
