@@ -9,7 +9,7 @@ use desk::{Desk, hinge, setup, setup_with_loads, steel_hinge, thick_hinge};
 use holdwright::hand::{Closing, Drive, Tip};
 use holdwright::mechanics::{Holding, LoadCase};
 use holdwright::part::{EdgeId, EdgeLimit, Part, PartDescription};
-use holdwright::search::Setup;
+use holdwright::search::{Key as SortKey, Setup};
 use holdwright::workbench::state::{Layer, State};
 
 /// m/s2 (ISO 80000-3).
@@ -352,4 +352,57 @@ fn marks_keep_the_loads_they_were_read_under() {
     let kept: &Setup = &desk.saved[0].setup;
     assert_eq!(kept.loads, setup_with_loads().loads);
     assert_eq!(desk.saved[0].assessment.holding.as_ref().unwrap().cases.len(), 3);
+}
+
+/// No grasp holds 0.5 kg and more with 1 N: two closed pins bring up at most 2 x 2 x 0.2 N along their faces (Coulomb).
+#[test]
+fn a_list_emptied_by_the_loads_says_by_which_and_what_to_try() {
+    let mut desk = bar();
+    desk.keys("N1<cr>");
+    assert_eq!(desk.state.rows(), 0);
+    let screen = desk.screen(100, 30);
+    for word in ["none holds every", "\"lift\" asks 64.0 N each", "force limit (u)"] {
+        assert!(screen.contains(word), "{word}\n{screen}");
+    }
+    desk.keys("N65<cr>");
+    assert!(desk.state.rows() > 0);
+}
+
+#[test]
+fn the_squeeze_is_a_key_where_there_are_loads_and_is_left_out_where_there_are_none() {
+    let words = |desk: &mut Desk| -> Vec<&str> {
+        (0..SortKey::ALL.len())
+            .map(|_| {
+                desk.keys("o");
+                desk.state.order.key.word()
+            })
+            .collect()
+    };
+    let mut desk = Desk::loaded();
+    assert_eq!(words(&mut desk), ["quality_per_finger", "friction", "placement", "squeeze", "quality"]);
+    assert_eq!(words(&mut Desk::hinge())[3..], ["quality", "quality_per_finger"]);
+    // By squeeze the first row needs least, and its column is there on a narrow screen.
+    desk.keys("oooo");
+    let rows = &desk.state.shown.as_ref().unwrap().ranking.grasps;
+    let needed: Vec<f64> =
+        rows.iter().map(|row| row.assessment.holding.as_ref().unwrap().squeeze_n().unwrap()).collect();
+    assert!(needed.is_sorted_by(|a, b| *a <= b * (1.0 + 1e-6)), "{needed:?}");
+    assert!(desk.screen(60, 16).contains("squeeze"));
+    // The last load taken out, the list is one by quality.
+    desk.keys("LxjxjxL");
+    assert_eq!(desk.state.order.key, SortKey::Quality);
+}
+
+#[test]
+fn parallel_jaws_say_where_they_stand() {
+    let page = bar().keys("<cr>").screen(100, 60);
+    assert!(
+        page.contains("jaws       20.0 mm open   pressing inward, axis toward 90 deg, centre (40.00, 10.00)"),
+        "{page}"
+    );
+    let mut wide = bar().state.setup().clone();
+    wide.hand.opening_mm = [25.0, 30.0];
+    let desk = Desk::new((**bar().state.order.scene.part()).clone(), wide);
+    let screen = desk.screen(100, 30);
+    assert!(screen.contains("Nowhere do two pads fit"), "{screen}");
 }

@@ -261,6 +261,10 @@ fn any_row(state: &State) -> bool {
     state.rows() > 0
 }
 
+fn any_reading(state: &State) -> bool {
+    state.reading.is_some()
+}
+
 fn any_mark(state: &State) -> bool {
     !state.marks.is_empty()
 }
@@ -287,7 +291,7 @@ pub static TABLE: &[Row] = &[
     row(A::Quit, S::Bench, &[C('q')], "quit", "leave; asks when marks are unsaved", always),
     row(A::Down, S::Bench, &[C('j'), Key::Down], "down", "next grasp", any_row),
     row(A::Up, S::Bench, &[C('k'), Key::Up], "up", "grasp before", any_row),
-    row(A::OpenReading, S::Bench, &[Key::Enter], "read", "the whole reading of the grasp", any_row),
+    row(A::OpenReading, S::Bench, &[Key::Enter], "read", "the whole reading of the grasp", any_reading),
     row(A::Mark, S::Bench, &[C('m'), C(' ')], "mark", "mark the grasp, or take its mark away", any_row),
     row(A::Save, S::Bench, &[C('s')], "save", "save unsaved marks to the grasp file", any_unsaved),
     row(A::MuUp, S::Bench, &[C('l'), Key::Right, C('+')], "mu+", "mu up by 0.01", always),

@@ -116,6 +116,9 @@ impl Page<'_> {
         for (a, b) in &reading.grasp.too_near {
             self.tell("fit", &format!("fingers {} and {} are too near", a + 1, b + 1), bad, "");
         }
+        if let Some(Err(fault)) = &reading.grasp.jaws {
+            self.tell("fit", "no jaws so:", bad, &fault.to_string());
+        }
         for doubt in &reading.doubts {
             self.tell("in doubt", "two ways disagree:", bad, &doubt.to_string());
         }
@@ -290,6 +293,7 @@ impl Page<'_> {
                 );
                 self.tell(if finger == 0 { "fingers" } else { "" }, text, self.state.look.plain(), &meaning);
             }
+            self.jaws(reading);
             return;
         }
         // As many side by side as fit.
@@ -299,6 +303,20 @@ impl Page<'_> {
             let text: String = group.iter().map(|text| format!("{text:<widest$}")).collect();
             self.tell(if i == 0 { "fingers" } else { "" }, "", self.state.look.plain(), text.trim_end());
         }
+    }
+
+    /// Where parallel jaws stand.
+    fn jaws(&mut self, reading: &Reading) {
+        let Some(Ok(jaws)) = &reading.grasp.jaws else { return };
+        let centre = self.state.order.scene.part().file_point(jaws.centre);
+        let how = if jaws.inside { "pressing outward" } else { "pressing inward" };
+        let meaning = format!(
+            "{how}, axis toward {} deg, centre ({}, {})",
+            number::degrees(jaws.angle_rad.to_degrees()),
+            number::at(centre.x),
+            number::at(centre.y)
+        );
+        self.tell("jaws", &format!("{} mm open", number::mm(jaws.opening_mm)), self.state.look.plain(), &meaning);
     }
 
     fn assumed(&mut self, state: &State) {

@@ -2,7 +2,7 @@
 
 use super::super::state::{Job, Shown, State};
 use super::{bars, number, put, titled, wrapped};
-use crate::hand::{Hand, Tip};
+use crate::hand::{Closing, Drive, Hand, Tip};
 use crate::mechanics::{Assessment, Holding};
 use crate::search::{Key, Listed, Listing, Setup, Spot};
 use ratatui::buffer::Buffer;
@@ -95,7 +95,7 @@ fn columns(key: Key, loads: bool) -> Vec<Column> {
         let load = |a: &Assessment| {
             a.holding.as_ref().map_or(String::new(), |holding| number::load(holding.load_margin(), holding.held()))
         };
-        columns.push(column("squeeze", 8, squeeze, key.word() == "squeeze"));
+        columns.push(column("squeeze", 8, squeeze, key == Key::Squeeze));
         columns.push(column("load", 9, load, false));
     }
     columns
@@ -215,6 +215,13 @@ fn nothing(state: &State) -> Vec<String> {
             ),
         ];
     }
+    if setup.hand.closing == Closing::Parallel && scene.jaw_runs().is_empty() {
+        let [least, most] = setup.hand.opening_mm.map(number::given);
+        return vec![
+            "Nowhere do two pads fit that face each other.".to_owned(),
+            format!("{} open {least} to {most} mm; P goes back to fingers of their own.", tips(&setup.hand)),
+        ];
+    }
     let Some(shown) = state.shown.as_ref().filter(|_| !state.is_old()) else {
         return vec!["Ranking ...".to_owned()];
     };
@@ -229,17 +236,45 @@ fn nothing(state: &State) -> Vec<String> {
             "Try more friction (l), one finger more (f), or finer sites (.).".to_owned(),
         ];
     }
-    let mut lines = vec![format!(
-        "{} closed, none listed.",
-        number::count(ranking.closed, "candidate set is", "candidate sets are")
-    )];
+    let mut lines = Vec::new();
+    if ranking.not_held == 0 || ranking.below_floors > 0 {
+        let closed = number::count(ranking.closed, "candidate set is", "candidate sets are");
+        lines.push(format!("{closed} closed, none listed."));
+    }
     let floors = floors(setup);
     if !floors.is_empty() {
         lines.push(format!("The floors ask for {}.", floors.join(", ")));
         lines.push("Try a lower floor in the setup, more friction (l) or one finger more (f).".to_owned());
     }
+    if ranking.not_held > 0 {
+        lines.extend(not_held(state, ranking.not_held));
+    }
     if ranking.inconclusive > 0 {
         lines.push(format!("{} left out: the two ways to the score disagree.", ranking.inconclusive));
+    }
+    lines
+}
+
+/// That sets which came in question do not hold the loads, by which case where that is known, and what to try.
+fn not_held(state: &State, sets: u64) -> Vec<String> {
+    let hand = &state.setup().hand;
+    let sets = if sets == 1 { "1 closed set came".to_owned() } else { format!("{sets} closed sets came") };
+    let limit = match hand.force_limit_n {
+        Some(limit) => format!(" within {} N each", number::given(limit)),
+        None => String::new(),
+    };
+    let drive = if hand.drive == Drive::Equal { " or forces of their own (e)" } else { "" };
+    let mut lines = vec![
+        format!("{sets} in question, none holds every load{limit}."),
+        format!("Try a higher force limit (u), more friction (l), one finger more (f), smaller loads (L){drive}."),
+    ];
+    let holding = state.reading.as_ref().and_then(|reading| reading.assessment.holding.as_ref());
+    if let Some(case) = holding.map(Holding::governing_case) {
+        let asks = match case.squeeze_n {
+            Some(n) => format!("asks {} N each", number::mm(n)),
+            None => "is held by no squeeze".to_owned(),
+        };
+        lines.insert(1, format!("\"{}\" {asks} of the grasp last selected.", crate::file::shown(&case.name)));
     }
     lines
 }
