@@ -293,17 +293,20 @@ fn a_sound_setup_is_read() {
     assert_eq!(f.condition, Some(Condition::Dry));
     assert_eq!(f.source.as_deref(), Some("own tilt test, 3 Nov"));
     let h = &setup.hand;
-    assert_eq!((h.fingers.get(), h.tip, h.closing, h.drive), (4, Tip::Pad, Closing::Parallel, Drive::Equal));
-    assert_eq!([h.pin_radius_mm, h.pad_width_mm, h.pad_depth_mm, h.bite_mm], [3.0, 10.0, 7.0, 5.0]);
+    assert_eq!((h.fingers.get(), h.tip, h.closing, h.drive), (2, Tip::Pad, Closing::Parallel, Drive::Equal));
+    assert_eq!([h.pin_radius_mm, h.pad_width_mm, h.pad_depth_mm], [3.0, 10.0, 7.0]);
+    assert_eq!(h.bite_mm, Some(5.0));
     assert_eq!((h.opening_mm, h.corner_clearance_mm, h.gap_mm, h.force_limit_n), ([5.0, 110.0], 1.5, 0.5, Some(60.0)));
     let s = &setup.search;
     assert_eq!((s.spacing_mm, s.budget, s.seed, s.torque_scale), (Some(2.5), 12345, 7, TorqueScale::Mm(40.0)));
+    assert_eq!(s.cone_sides, 12);
     let l = &setup.floors;
     assert_eq!([l.quality, l.friction_margin, l.placement_mm, l.load_margin], [0.01, 1.2, 0.3, 1.5]);
     assert_eq!(setup.loads.len(), 3);
     assert_eq!((setup.loads[0].acceleration_m_s2, setup.loads[0].safety), ([0.0, 0.0, 3.0], 2.0));
     assert_eq!((setup.loads[1].name.as_str(), setup.loads[1].any_direction_m_s2), ("emergency stop", 8.0));
     assert_eq!((setup.loads[2].force_n, setup.loads[2].at_mm), ([0.0, -6.0, 0.0], [40.0, 0.0, 0.0]));
+    assert_eq!(setup.loads.iter().map(|load| load.squeeze_left).collect::<Vec<_>>(), [1.0, 1.0, 0.5]);
 }
 
 #[test]
@@ -354,7 +357,7 @@ fn a_torque_scale_by_name() {
 #[test]
 fn setup_values_out_of_range_have_their_line() {
     one_setup_fault("mu = 0.20", "mu = 11.0", "mu = 11", "`friction.mu` is 11");
-    one_setup_fault("fingers = 4", "fingers = 7", "fingers", "`hand.fingers` is 7; give a number from 2 to 6");
+    one_setup_fault("fingers = 2", "fingers = 7", "fingers", "`hand.fingers` is 7; give a number from 2 to 6");
     one_setup_fault("sliding = 0.15", "sliding = 0.3", "sliding", "never above `mu`");
     one_setup_fault("high = 0.40", "high = 0.10", "high", "must rise");
     one_setup_fault("[5.0, 110.0]", "[110.0, 5.0]", "opening_mm", "`hand.opening_mm` is [110, 5]");
@@ -365,10 +368,54 @@ fn setup_values_out_of_range_have_their_line() {
     one_setup_fault("placement_mm = 0.3", "placement_mm = -1", "placement_mm", "`floors.placement_mm`");
 }
 
+/// Every number a load or a hand cannot have is named with its key, its value and what to give instead.
+#[test]
+fn hands_and_loads_that_cannot_be() {
+    let faults = setup_faults("schema = 1\n[friction]\nmu = -0.2\n");
+    let said = (faults.len(), faults[0].line, faults[0].text.as_str());
+    assert_eq!(said, (1, Some(3), "`friction.mu` is -0.2: give a number from 0 to 10"));
+    one_setup_fault("bite_mm = 5.0", "bite_mm = 0.0", "bite_mm", "`hand.bite_mm` is 0: give a number above 0");
+    one_setup_fault("force_limit_n = 60.0", "force_limit_n = 0", "force_limit_n", "`hand.force_limit_n` is 0: give");
+    one_setup_fault("squeeze_left = 0.5", "squeeze_left = 0", "squeeze_left", "`load.2.squeeze_left` is 0: give");
+    one_setup_fault("squeeze_left = 0.5", "squeeze_left = 2", "squeeze_left", "above 0 (at most 1)");
+    one_setup_fault("cone_sides = 12", "cone_sides = 7", "cone_sides", "is 7: give an even number from 4");
+    one_setup_fault("tip = \"pad\"", "tip = \"pin\"", "tip", "parallel closing takes pads: set it to \"pad\"");
+    one_setup_fault("fingers = 2", "fingers = 3", "fingers", "parallel closing takes two pads: set it to 2");
+    one_setup_fault("drive = \"equal\"", "drive = \"shared\"", "drive", "give \"adjustable\" or \"equal\"");
+}
+
+/// What only the part makes impossible: found when the two meet, with the key as in the setup file.
+#[test]
+fn a_setup_the_part_does_not_allow() {
+    let setup = setup_from_text(Path::new("cell.toml"), CELL).unwrap();
+    let faults = |part: &str, setup: &Setup| {
+        let (part, _) = part_from_text(Path::new("leaf.toml"), part).unwrap();
+        setup.faults_with(&part).into_iter().map(|fault| fault.to_string()).collect::<Vec<_>>()
+    };
+    assert!(faults(HINGE, &setup).is_empty());
+    let mut deep = setup.clone();
+    deep.hand.bite_mm = Some(6.5);
+    let said = faults(HINGE, &deep);
+    assert!(said.len() == 1 && said[0].starts_with("`hand.bite_mm` is 6.5: the part is 6 mm thick"), "{said:?}");
+    // Without a mass; the brush moves none, but the part's weight is on it too.
+    let said = faults(&broken(HINGE, "aluminium 5083", "driftwood"), &setup);
+    assert_eq!(said.len(), 3, "{said:?}");
+    assert!(said[0].starts_with("`load.0` is \"lift\"") && said[0].contains("give the part `mass_kg`"), "{said:?}");
+    // Without a thickness, weighed: all three loads have gravity across the plane.
+    let flat = broken(HINGE, "thickness = 6.0", "mass_kg = 0.05");
+    let said = faults(&flat, &setup);
+    assert_eq!(said.len(), 3, "{said:?}");
+    assert!(said[0].contains("`load.0.gravity` is [0.0, 0.0, -1.0]") && said[0].contains("`thickness`"), "{said:?}");
+    let mut level = setup;
+    level.loads.iter_mut().for_each(|load| load.gravity = [0.0, -1.0, 0.0]);
+    let said = faults(&flat, &level);
+    assert!(said.len() == 1 && said[0].starts_with("`load.0.acceleration_m_s2`"), "{said:?}");
+}
+
 #[test]
 fn setup_values_of_wrong_type_have_their_line() {
     one_setup_fault("mu = 0.20", "mu = \"0.2\"", "mu = \"", "`friction.mu` is the text \"0.2\"; give a finite number");
-    one_setup_fault("fingers = 4", "fingers = 4.0", "fingers", "`hand.fingers` is 4.0; give a whole number");
+    one_setup_fault("fingers = 2", "fingers = 2.5", "fingers", "`hand.fingers` is 2.5; give a whole number");
     one_setup_fault("seed = 7", "seed = -7", "seed", "`search.seed` is -7");
     one_setup_fault("seed = 7", "seed = 99999999999999999999", "seed", "`search.seed` is 99999999999999999999");
     one_setup_fault("tip = \"pad\"", "tip = \"ball\"", "tip", "give \"pin\" or \"pad\"");

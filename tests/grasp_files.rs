@@ -5,8 +5,8 @@
 mod sound;
 
 use holdwright::file::{
-    CAUTION, GraspFile, Keep, SaveFault, Scores, default_grasp_path, grasps_from_text, part_digest, part_from_text,
-    read_grasps, read_part, save, setup_from_text, shown, stamp,
+    CAUTION, GraspFile, Keep, KeptDensity, SCORES, SaveFault, Scores, default_grasp_path, grasps_from_text,
+    part_digest, part_from_text, read_grasps, read_part, save, setup_from_text, shown, stamp,
 };
 use holdwright::hand::{Closing, Drive, Tip};
 use holdwright::mechanics::{Condition, LoadCase};
@@ -26,7 +26,7 @@ fn keep(name: &str, setup: &Setup, spots: &[(usize, usize, f64)]) -> Keep {
     let spot = |&(ring, edge, along_mm)| Spot { edge: EdgeId { ring, edge }, along_mm };
     let grasp = scene.grasp(&spots.iter().map(spot).collect::<Vec<_>>()).unwrap();
     let (assessment, _) = scene.assess(&grasp);
-    Keep { name: name.to_owned(), note: String::new(), grasp, assessment, setup: setup.clone() }
+    Keep { name: name.to_owned(), note: String::new(), grasp, assessment, setup: setup.clone(), density: None }
 }
 
 /// Two fingers that close and two that do not.
@@ -83,11 +83,18 @@ fn a_saved_grasp_is_read_back_number_for_number() {
     for (kept, read) in [closed, open].iter().zip(&grasps) {
         assert_eq!((&read.name, &read.note), (&kept.name, &kept.note));
         assert_eq!(read.spots, kept.grasp.spots);
-        assert_eq!(read.scores, Scores::of(&kept.assessment, 40.0));
+        assert_eq!(read.scores, Scores::of(&kept.assessment, 40.0, 2));
         assert_eq!((&read.setup, read.own_setup), (&setup, false));
         let age = read.time.unwrap().duration_since(before).as_secs();
         assert!((-1..60).contains(&age), "{age}");
     }
+    // What the loads ask is there for every case, with a force for each finger of what is held.
+    assert_eq!(grasps[0].scores.loads.len(), 3);
+    assert!(grasps[0].scores.loads.iter().any(|load| load.finger_forces_n.len() == 2));
+    assert_eq!(grasps[0].scores.loads[1].name, "emergency stop");
+    assert!(grasps[0].scores.loads[1].direction_deg.is_some() && grasps[0].scores.held.is_some());
+    assert!(text.contains("friction cones in space as pyramids of 12 sides; mass from the part file"), "{text}");
+    assert!(text.contains("all fingers press with the same force"), "{text}");
     assert_eq!(grasps[0].scores.scores[0], Some(keep("", &setup, &FACING).assessment.quality));
     assert_eq!(names_in(folder.path()), ["leaf.grasps.toml", "leaf.toml"]);
 }
@@ -103,6 +110,64 @@ fn the_same_grasp_twice_gives_the_same_lines() {
     assert_eq!(lines_of_grasp(&text, 0), lines_of_grasp(&text, 1));
     let names: Vec<_> = read_grasps(&path).unwrap().grasps.into_iter().map(|grasp| grasp.name).collect();
     assert_eq!(names, ["a", "a (2)", "a (3)"]);
+}
+
+/// Two pads against each other hold the weight by friction alone, so F = m g / (2 mu) (Coulomb, statics).
+#[test]
+fn a_chosen_density_is_kept_with_its_grasp_and_taken_again() {
+    let (_folder, part_path, path) = bench();
+    let massless = broken(HINGE, "material = \"aluminium 5083\"\n", "");
+    let massless = broken(&massless, "com = [31.0, 18.5]", "com = [40.0, 20.0]");
+    std::fs::write(&part_path, &massless).unwrap();
+    let part = Arc::new(part_from_text(&part_path, &massless).unwrap().0);
+    assert!(part.mass().is_none());
+    let density = KeptDensity { of: "brass".to_owned(), kg_m3: 8500.0 };
+    let weighed = Arc::new(density.applied_to(&part).unwrap());
+    let mut setup = Setup { loads: vec![LoadCase::default()], ..Setup::default() };
+    setup.hand.tip = Tip::Pad;
+    let scene = Scene::new(weighed.clone(), setup.clone()).unwrap();
+    let spot = |edge| Spot { edge: EdgeId { ring: 0, edge }, along_mm: 40.0 };
+    let grasp = scene.grasp(&[spot(0), spot(2)]).unwrap();
+    let (assessment, doubts) = scene.assess(&grasp);
+    assert!(doubts.is_empty(), "{doubts:?}");
+    let keep = Keep { name: "a".into(), note: String::new(), grasp, assessment, setup, density: Some(density.clone()) };
+    save(&path, &part_path, &part, &[keep], None).unwrap();
+    let text = std::fs::read_to_string(&path).unwrap();
+    assert!(text.contains("density_kg_m3 = 8500.0\ndensity_of = \"brass\"\n"), "{text}");
+    assert!(text.contains("mass from the density of brass, chosen"), "{text}");
+    let read = read_grasps(&path).unwrap();
+    let own = &read.grasps[0];
+    assert_eq!(own.density, Some(density));
+    let mass = own.part(&part).mass().unwrap().kg;
+    assert_eq!(mass, weighed.mass().unwrap().kg);
+    assert!(text.contains(&format!("mass_kg = {mass:?}\n")), "{text}");
+    let squeeze_n = own.scores.loads[0].squeeze_n.unwrap();
+    let by_hand = mass * 9.80665 / (2.0 * 0.2);
+    assert!((squeeze_n - by_hand).abs() < 1e-6 * by_hand, "{squeeze_n} {by_hand}");
+    let at = |name: &str| own.scores.scores[SCORES.iter().position(|score| *score == name).unwrap()];
+    assert_eq!((at("squeeze_n"), at("squeeze_total_n")), (Some(squeeze_n), Some(2.0 * squeeze_n)));
+    // A part with a mass of its own needs no density.
+    assert_eq!(own.part(&hinge()).mass(), hinge().mass());
+}
+
+/// Files from before loads were scored have none of their keys.
+#[test]
+fn a_file_without_the_keys_of_loads_is_read() {
+    let (_folder, part_path, path) = bench();
+    let setup = Setup { loads: vec![LoadCase::default()], ..Setup::default() };
+    save(&path, &part_path, &hinge(), &[keep("a", &setup, &FACING)], None).unwrap();
+    let text = std::fs::read_to_string(&path).unwrap();
+    let (before, after) = text.split_once("loads = [\n").unwrap();
+    let new = ["friction_needed_holding", "squeeze", "load_margin = ", "held", "governing_load", "mass_kg"];
+    let old: String = format!("{before}{}", after.split_once("]\n").unwrap().1)
+        .split_inclusive('\n')
+        .filter(|line| line.starts_with("load_margin = 1.0") || !new.iter().any(|key| line.starts_with(key)))
+        .collect();
+    assert!(old.len() + 200 < text.len(), "{old}");
+    let file = grasps_from_text(&path, &old).unwrap();
+    let scores = &file.grasps[0].scores;
+    assert!((scores.held, scores.loads.len(), &scores.governing_load) == (None, 0, &None));
+    assert_eq!(scores.scores[0], read_grasps(&path).unwrap().grasps[0].scores.scores[0]);
 }
 
 #[test]
@@ -264,6 +329,11 @@ fn grasp_files_broken_in_one_place() {
     one("time = ", "time = \"today\" # ", "time = \"today\"", "`grasp.0.time`");
     one("fingers = 3", "fingers = 9", "fingers = 9", "`setup.hand.fingers` is 9");
     one("name = \"a\"\n", "", "[[grasp]]", "`grasp.0.name` is missing");
+    one("mass_kg", "density_kg_m3 = 0.0\ndensity_of = \"x\"\nmass_kg", "density_kg_m3", "`grasp.0.density_kg_m3` is 0");
+    one("mass_kg", "density_of = \"x\"\nmass_kg", "[[grasp]]", "`grasp.0.density_kg_m3` is missing");
+    one("mass_kg", "held = 1\nmass_kg", "held", "`grasp.0.held` is 1; give true or false");
+    let loads = "loads = [{ name = \"lift\", held = true, finger_forces_n = [[1.0, 2.0]] }]\nmass_kg";
+    one("mass_kg", loads, "loads", "`grasp.0.loads.0.finger_forces_n` is a list of 1 entry; give a list of lists of 3");
 }
 
 /// However many save at once, whoever is refused may try again, and in the end everything is there once.
@@ -319,7 +389,7 @@ prop_compose! {
         mu in 0.0..1.0_f64,
         high in prop::option::of(1.0..2.0_f64),
         source in prop::option::of(any::<String>()),
-        (radius, bite, gap) in (0.0..1e3_f64, 1e-9..1e3_f64, 0.0..1e-3_f64),
+        (radius, bite, gap) in (0.0..1e3_f64, prop::option::of(1e-3..6.0_f64), 0.0..1e-3_f64),
         limit in prop::option::of(1e-3..1e6_f64),
         drive in prop::sample::select(&[Drive::Adjustable, Drive::Equal][..]),
         condition in prop::option::of(prop::sample::select(&[Condition::Dry, Condition::Oily, Condition::Wet][..])),

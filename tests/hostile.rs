@@ -70,7 +70,7 @@ const OTHERS: [&str; 12] = [
     "{ ring = 0, edge = 0, along_mm = 1 }",
     "\"\\u0000\"",
 ];
-const KEYS: [&str; 34] = [
+const KEYS: [&str; 45] = [
     "schema",
     "name",
     "units",
@@ -105,8 +105,19 @@ const KEYS: [&str; 34] = [
     "time",
     "part_digest",
     "weakest",
+    "squeeze_left",
+    "cone_sides",
+    "force_limit_n",
+    "face_mpa",
+    "line_n_per_mm",
+    "held",
+    "loads",
+    "finger_forces_n",
+    "density_of",
+    "squeeze_n",
+    "governing_load",
 ];
-const HEADS: [&str; 14] = [
+const HEADS: [&str; 17] = [
     "[[keep_out]]",
     "[[edge_friction]]",
     "[friction]",
@@ -120,6 +131,9 @@ const HEADS: [&str; 14] = [
     "[[grasp]]",
     "[grasp.setup.friction]",
     "[grasp.escape]",
+    "[[grasp.loads]]",
+    "[[grasp.setup.load]]",
+    "[[edge_limit]]",
     "[nobody]",
 ];
 
@@ -284,7 +298,7 @@ fn bar() -> (Arc<Part>, Keep) {
     let spot = |edge, along_mm| Spot { edge: EdgeId { ring: 0, edge }, along_mm };
     let grasp = scene.grasp(&[spot(0, 40.0), spot(2, 40.0)]).unwrap();
     let (assessment, _) = scene.assess(&grasp);
-    (part, Keep { name: "a".into(), note: String::new(), grasp, assessment, setup: Setup::default() })
+    (part, Keep { name: "a".into(), note: String::new(), grasp, assessment, setup: Setup::default(), density: None })
 }
 
 fn entries(folder: &Path) -> Vec<PathBuf> {

@@ -7,8 +7,8 @@ mod common;
 use common::assert_close;
 use holdwright::file;
 use holdwright::mechanics::Verdict;
-use holdwright::part::Part;
-use holdwright::search::{Cancel, Key, Listing, Ranking, Scene, Setup, rank};
+use holdwright::part::{EdgeId, Part};
+use holdwright::search::{Cancel, Key, Listing, Ranking, Scene, Setup, Spot, rank};
 use std::path::{Path, PathBuf};
 use std::sync::Arc;
 
@@ -71,11 +71,65 @@ fn every_part_can_be_gripped() {
                 assert!(listed.grasp.fits());
                 assert_eq!(listed.assessment.verdict, Verdict::Closed);
                 assert!(listed.assessment.quality > setup.floors.quality);
-                assert!(listed.assessment.friction_margin.is_none_or(|m| m >= setup.floors.friction_margin));
+                let needed = listed.assessment.friction_needed_closure.unwrap_or(0.0);
+                assert!(setup.friction.mu >= needed * setup.floors.friction_margin);
                 assert!(listed.assessment.placement.mm >= setup.floors.placement_mm);
             }
         }
     }
+}
+
+/// A demo setup, parts it is for, and one grasp of the first of them: edges of the outer ring and places along them.
+type Use = (&'static str, [&'static str; 2], &'static [(usize, f64)]);
+
+/// Pins that all press alike hold only where their normals nearly cancel, as on what is round.
+const USES: [Use; 4] = [
+    ("deck_cell", ["hinge_leaf", "cleat_base"], &[(1, 9.0), (1, 29.0), (11, 19.0)]),
+    ("plate_hand", ["strainer_plate", "angle_bracket"], &[(6, 65.7), (13, 34.7), (20, 60.2), (27, 7.9)]),
+    ("three_pin", ["mast_collar_flange", "pintle_washer"], &[(0, 3.4), (16, 3.4), (32, 3.4)]),
+    ("two_jaw", ["hinge_leaf", "cleat_base"], &[(0, 40.0), (6, 8.0)]),
+];
+
+/// Every demo setup reads, has its load set, finds grasps on its parts, and holds its loads with the grasp above.
+#[test]
+fn every_setup_works_with_its_parts() {
+    let setup_files = std::fs::read_dir(folder()).unwrap().map(|entry| entry.unwrap().path());
+    assert_eq!(setup_files.filter(|path| path.to_string_lossy().ends_with(".setup.toml")).count(), USES.len());
+    let mut left = Vec::new();
+    for (setup_name, parts, places) in USES {
+        let path = folder().join(format!("{setup_name}.setup.toml"));
+        let mut setup = file::read_setup(&path).unwrap_or_else(|faults| panic!("{:?}", faults.lines()));
+        assert!(setup.loads.len() >= 3 && setup.hand.force_limit_n.is_some(), "{setup_name}");
+        left.extend(setup.loads.iter().map(|load| load.squeeze_left));
+        setup.search.budget = 20_000;
+        for (number, part_name) in parts.into_iter().enumerate() {
+            let part = Arc::new(read(&format!("{part_name}.toml")));
+            let ranking = ranked(&part, &setup);
+            assert!(!ranking.grasps.is_empty(), "{part_name} under {setup_name}: {ranking:?}");
+            for listed in &ranking.grasps {
+                let holding = listed.assessment.holding.as_ref().expect("there are loads");
+                assert_eq!((holding.cases.len(), holding.drive), (setup.loads.len(), setup.hand.drive));
+            }
+            if number == 0 {
+                let scene = Scene::new(part, setup.clone()).unwrap();
+                let spot = |&(edge, along_mm): &(usize, f64)| Spot { edge: EdgeId { ring: 0, edge }, along_mm };
+                let grasp = scene.grasp(&places.iter().map(spot).collect::<Vec<_>>()).unwrap();
+                let (assessment, doubts) = scene.assess(&grasp);
+                assert!(grasp.fits() && doubts.is_empty(), "{setup_name}: {grasp:?} {doubts:?}");
+                let holding = assessment.holding.unwrap();
+                assert!(assessment.verdict == Verdict::Closed && holding.held(), "{setup_name}: {holding:?}");
+            }
+        }
+    }
+    assert!(left.iter().any(|part| *part < 1.0), "no setup loses a part of its squeeze");
+}
+
+/// The strips of the fender block are rubber: they tear before the timber is marked.
+#[test]
+fn an_edge_may_bear_less_than_the_hand_gives() {
+    let fender = read("fender_block.toml");
+    let strips: Vec<_> = fender.edge_limits().iter().map(|limit| (limit.edge.edge, limit.face_mpa)).collect();
+    assert_eq!(strips, [(0, Some(0.8)), (2, Some(0.8))]);
 }
 
 /// Area of a regular n-gon of circumradius r: n/2 r^2 sin(2 pi / n) (elementary geometry); vertices are written to

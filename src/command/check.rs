@@ -2,9 +2,9 @@
 
 use super::knobs::{self, Knobs};
 use super::output::{self, Answer, Stop};
-use super::reading::{Reading, misfits};
-use crate::file::{self, GraspFile, SCORES, SavedGrasp, Scores, shown};
-use crate::mechanics::Verdict;
+use super::reading::{Reading, misfits, newtons};
+use crate::file::{self, GraspFile, KeptDensity, SCORES, SavedGrasp, Scores, shown};
+use crate::mechanics::{CaseHolding, Holding, Verdict};
 use crate::part::Part;
 use crate::search::{Scene, Setup};
 use clap::Args;
@@ -34,10 +34,14 @@ pub(super) struct CheckArgs {
 #[derive(Debug, Clone, Copy, PartialEq, Eq, Serialize)]
 #[serde(rename_all = "snake_case")]
 enum Outcome {
-    /// Closed, with the scores it was saved with, or with other scores where an option asked for them.
+    /// Closed and every load held, with the scores it was saved with, or with other scores where an option asked for them.
     Holds,
-    /// Closed, but not with the scores it was saved with.
+    /// Closed and every load held, but not with the scores it was saved with.
     ScoreChanged,
+    /// Closed, but a load case that was held is not any more.
+    LoadsNoLongerHeld,
+    /// Closed, but a load case is not held, and was not known to be when it was saved.
+    LoadsNotHeld,
     /// Not closed any more.
     NoLongerClosed,
     /// Not closed, and saved so.
@@ -53,6 +57,8 @@ impl Outcome {
         match self {
             Self::Holds => "holds",
             Self::ScoreChanged => "score changed",
+            Self::LoadsNoLongerHeld => "loads no longer held",
+            Self::LoadsNotHeld => "loads not held",
             Self::NoLongerClosed => "no longer closed",
             Self::NeverClosed => "not closed when it was saved, nor now",
             Self::NoLongerFits => "no longer fits",
@@ -74,6 +80,7 @@ struct Checked<'a> {
     name: &'a str,
     outcome: Outcome,
     verdict: Option<&'static str>,
+    held: Option<bool>,
     reasons: Vec<String>,
     changes: Vec<Change>,
 }
@@ -110,17 +117,18 @@ fn check<'a>(saved: &'a GraspFile, part: &Arc<Part>, knobs: &Knobs) -> Result<Ch
         None => None,
     };
     let asked = given.is_some() || knobs.change_scores();
-    let mut scenes: Vec<(Setup, Scene)> = Vec::new();
+    let mut scenes: Vec<(Setup, Option<KeptDensity>, Scene)> = Vec::new();
     let mut grasps = Vec::with_capacity(saved.grasps.len());
     for grasp in &saved.grasps {
         let setup = knobs.over(given.as_ref().unwrap_or(&grasp.setup).clone())?;
         // Few setups stand in one file; the stretches of each are worked out once.
-        let known = scenes.iter().position(|(other, _)| *other == setup);
+        let known = scenes.iter().position(|(other, density, _)| *other == setup && *density == grasp.density);
         let index = known.unwrap_or(scenes.len());
         if known.is_none() {
-            scenes.push((setup.clone(), knobs::scene(Arc::clone(part), setup)?));
+            let scene = knobs.scene(grasp.part(part), setup.clone())?;
+            scenes.push((setup, grasp.density.clone(), scene));
         }
-        grasps.push(check_one(grasp, &scenes[index].1, asked));
+        grasps.push(check_one(grasp, &scenes[index].2, asked));
     }
     Ok(CheckReport {
         schema: 1,
@@ -136,6 +144,7 @@ fn check_one<'a>(saved: &'a SavedGrasp, scene: &Scene, asked: bool) -> Checked<'
         name: &saved.name,
         outcome: Outcome::NoLongerFits,
         verdict: None,
+        held: None,
         reasons: Vec::new(),
         changes: Vec::new(),
     };
@@ -147,8 +156,9 @@ fn check_one<'a>(saved: &'a SavedGrasp, scene: &Scene, asked: bool) -> Checked<'
         }
     };
     let reading = Reading::of(scene, grasp);
-    let now = Scores::of(&reading.assessment, scene.frame().scale_mm);
+    let now = Scores::of(&reading.assessment, scene.frame().scale_mm, reading.grasp.spots.len());
     checked.verdict = Some(reading.verdict());
+    checked.held = now.held;
     checked.changes = changes(&saved.scores, &now);
     checked.reasons = misfits(&reading.grasp);
     checked.reasons.extend(reading.doubts.iter().map(|doubt| format!("two ways of scoring disagree: {doubt}")));
@@ -157,18 +167,38 @@ fn check_one<'a>(saved: &'a SavedGrasp, scene: &Scene, asked: bool) -> Checked<'
         let (was, now) = (saved.scores.verdict.word(), reading.assessment.verdict.word());
         checked.reasons.push(format!("saved as {was}, now {now}"));
     }
+    checked.reasons.extend(reading.assessment.holding.iter().flat_map(not_held));
     checked.outcome = if !reading.grasp.fits() {
         Outcome::NoLongerFits
     } else if !reading.doubts.is_empty() {
         Outcome::Inconclusive
     } else if !reading.is_closed() {
         if was_closed { Outcome::NoLongerClosed } else { Outcome::NeverClosed }
+    } else if now.held == Some(false) {
+        if saved.scores.held == Some(true) { Outcome::LoadsNoLongerHeld } else { Outcome::LoadsNotHeld }
     } else if asked || (checked.changes.is_empty() && was_closed) {
         Outcome::Holds
     } else {
         Outcome::ScoreChanged
     };
     checked
+}
+
+/// Every load case that is not held, and why.
+fn not_held(holding: &Holding) -> Vec<String> {
+    let why = |case: &CaseHolding| match (case.squeeze_n, &holding.limit) {
+        (Some(n), Some(limit)) => {
+            format!(
+                "\"{}\" takes {} N per finger, the limit is {}",
+                shown(&case.name),
+                newtons(n),
+                newtons(limit.squeeze_n)
+            )
+        }
+        _ if case.unsure => format!("\"{}\": no squeeze could be proved", shown(&case.name)),
+        _ => format!("no squeeze holds \"{}\"", shown(&case.name)),
+    };
+    holding.cases.iter().filter(|case| !case.held).map(why).collect()
 }
 
 /// Scores that differ; one that was not saved is not compared, nor is the weakest direction, which may be one of several.

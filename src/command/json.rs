@@ -1,11 +1,14 @@
 //! The JSON report of `rank` and `score`: one object, numbers in full precision, null for what has no value.
 
+mod loads;
+
 use super::reading::{Reading, sense_word};
-use crate::file::{DRIVES, word_for};
+use crate::file::{CLOSINGS, DRIVES, TIPS, word_for};
 use crate::mechanics::Assessment;
 use crate::mechanics::escape::Escape;
 use crate::part::Part;
 use crate::search::{Grasp, Scene};
+use loads::{HoldingReport, StandingReport};
 use nalgebra::{Point2, Vector2};
 use serde::Serialize;
 
@@ -14,7 +17,7 @@ use serde::Serialize;
 pub(super) struct Report<'a> {
     schema: u32,
     part: PartReport<'a>,
-    setup: SetupReport,
+    setup: SetupReport<'a>,
     pub(super) examined: u64,
     pub(super) closed: u64,
     pub(super) inconclusive: u64,
@@ -34,12 +37,17 @@ struct PartReport<'a> {
 }
 
 #[derive(Debug, Serialize)]
-struct SetupReport {
+struct SetupReport<'a> {
     mu: f64,
     fingers: usize,
+    tip: &'static str,
+    closing: &'static str,
     torque_scale_mm: f64,
     seed: u64,
     drive: &'static str,
+    force_limit_n: Option<f64>,
+    cone_sides: usize,
+    loads: Vec<&'a str>,
 }
 
 /// One grasp.
@@ -60,9 +68,12 @@ pub(super) struct GraspReport {
     placement_torque_mm: f64,
     weakest: Option<WeakestReport>,
     escape: Option<EscapeReport>,
-    squeeze_n: Option<f64>,
-    load_margin: Option<f64>,
-    loads: [(); 0],
+    #[serde(flatten)]
+    holding: HoldingReport,
+    /// Where a pair of parallel jaws stands; hands whose fingers close freely have none.
+    jaws: Option<()>,
+    /// At the other frictions of the band; given contacts only.
+    standing: Option<Vec<StandingReport>>,
 }
 
 #[derive(Debug, Serialize)]
@@ -99,9 +110,14 @@ impl<'a> Report<'a> {
             setup: SetupReport {
                 mu: setup.friction.mu,
                 fingers: setup.hand.fingers.get(),
+                tip: word_for(&TIPS, setup.hand.tip),
+                closing: word_for(&CLOSINGS, setup.hand.closing),
                 torque_scale_mm: scene.frame().scale_mm,
                 seed: setup.search.seed,
                 drive: word_for(&DRIVES, setup.hand.drive),
+                force_limit_n: setup.hand.force_limit_n,
+                cone_sides: setup.search.cone_sides,
+                loads: setup.loads.iter().map(|load| load.name.as_str()).collect(),
             },
             examined: 0,
             closed: 0,
@@ -111,14 +127,21 @@ impl<'a> Report<'a> {
         }
     }
 
-    /// Adds a reading below those that are there.
+    /// Adds a reading below those that are there, with how it stands at the other frictions of the band.
     pub(super) fn add(&mut self, scene: &Scene, reading: &Reading) {
-        self.add_scores(scene, &reading.grasp, &reading.assessment, reading.verdict());
+        let mut own = self.scores(scene, &reading.grasp, &reading.assessment, reading.verdict());
+        own.standing = Some(loads::standing(scene, &reading.grasp));
+        self.grasps.push(own);
     }
 
     /// Adds a grasp with its scores below those that are there.
-    pub(super) fn add_scores(&mut self, scene: &Scene, grasp: &Grasp, a: &Assessment, verdict: &'static str) {
-        self.grasps.push(GraspReport {
+    pub(super) fn add_scores(&mut self, scene: &Scene, grasp: &Grasp, a: &Assessment) {
+        let own = self.scores(scene, grasp, a, a.verdict.word());
+        self.grasps.push(own);
+    }
+
+    fn scores(&self, scene: &Scene, grasp: &Grasp, a: &Assessment, verdict: &'static str) -> GraspReport {
+        GraspReport {
             rank: self.grasps.len() + 1,
             contacts: contacts(scene.part(), grasp),
             verdict,
@@ -142,10 +165,10 @@ impl<'a> Report<'a> {
                     EscapeReport::Turn { about_mm: point(scene.part().file_point(about)), sense: sense_word(sense) }
                 }
             }),
-            squeeze_n: None,
-            load_margin: None,
-            loads: [],
-        });
+            holding: HoldingReport::of(scene, grasp, a),
+            jaws: None,
+            standing: None,
+        }
     }
 }
 

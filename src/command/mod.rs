@@ -1,10 +1,12 @@
 //! What is asked: the command line, its exit codes, one file for each command.
 
 mod check;
+mod columns;
 mod drawing;
 mod import;
 mod json;
 mod knobs;
+mod loads;
 mod materials;
 mod output;
 mod progress;

@@ -1,18 +1,21 @@
 //! `rank`: the best grasps of a part as a table or JSON.
 
+use super::columns::{self, Column};
 use super::json::Report;
 use super::knobs::{self, Knobs};
 use super::output::{self, Answer, Stop};
 use super::progress::ProgressLine;
-use super::reading::{decimals, fingers, length, ratio, short};
-use crate::file::{CAUTION, shown};
+use super::reading::{LINE, decimals, drive, fingers, hand, length, newtons, ratio, short, wrapped};
+use crate::file::{CAUTION, DRIVES, shown, word_for};
+use crate::hand::Tip;
+use crate::mechanics::{Assessment, Holding};
 use crate::search::{self, Cancel, Key, Listed, Listing, Ranking, Scene, TorqueScale};
 use clap::Args;
 use clap::builder::PossibleValuesParser;
 use std::fmt::Write;
 use std::path::PathBuf;
 
-/// The one sort key that cannot be served yet.
+/// The key that asks for load cases.
 const SQUEEZE: &str = "squeeze";
 
 #[derive(Debug, Args)]
@@ -36,19 +39,21 @@ pub(super) struct RankArgs {
 }
 
 fn keys() -> PossibleValuesParser {
-    PossibleValuesParser::new(Key::ALL.into_iter().map(Key::word).chain([SQUEEZE]))
+    PossibleValuesParser::new(Key::ALL.into_iter().map(Key::word))
 }
 
 pub(super) fn run(args: &RankArgs) -> Result<Answer, Stop> {
     let Some(key) = Key::from_word(&args.sort) else {
-        let others = Key::ALL.map(Key::word).join(", ");
-        return Err(Stop::bad(format!(
-            "--sort {}: squeeze needs load cases, which are not scored yet; sort by one of {others}",
-            args.sort
-        )));
+        return Err(Stop::bad(format!("--sort {}: there is no such key", args.sort)));
     };
     let part = knobs::part(&args.part)?;
-    let scene = knobs::scene(part, args.knobs.setup()?)?;
+    let scene = args.knobs.scene(part, args.knobs.setup()?)?;
+    if key.word() == SQUEEZE && scene.cases().is_empty() {
+        return Err(Stop::bad(
+            "--sort squeeze needs loads: give [[load]] in a setup file (--setup FILE); `holdwright setup` prints one to \
+             start from",
+        ));
+    }
     let listing = if args.members { Listing::Members } else { Listing::Families };
     let line = ProgressLine::new();
     let observe = |progress: search::Progress| line.tell(progress.done, progress.total);
@@ -64,7 +69,7 @@ pub(super) fn run(args: &RankArgs) -> Result<Answer, Stop> {
         report.inconclusive = ranking.inconclusive;
         report.complete = ranking.complete;
         for listed in &ranking.grasps {
-            report.add_scores(&scene, &listed.grasp, &listed.assessment, listed.assessment.verdict.word());
+            report.add_scores(&scene, &listed.grasp, &listed.assessment);
         }
         if ranking.grasps.is_empty() {
             output::note(&why_empty(&scene, &ranking));
@@ -85,7 +90,7 @@ fn table(scene: &Scene, key: Key, listing: Listing, ranking: &Ranking) -> String
     } else {
         rows(&mut text, scene, key, listing, ranking)
     };
-    let _ = writeln!(text, "\n{}", wrapped(CAUTION));
+    let _ = writeln!(text, "\n{}", wrapped(CAUTION, 0, 0));
     text
 }
 
@@ -98,13 +103,15 @@ fn head(text: &mut String, scene: &Scene, ranking: &Ranking) -> std::fmt::Result
     };
     writeln!(
         text,
-        "{}: {} pins of radius {} mm, mu {} ({:.1} deg)",
+        "{}: {}, mu {} ({:.1} deg)",
         shown(scene.part().name()),
-        setup.hand.fingers.get(),
-        setup.hand.pin_radius_mm,
+        hand(&setup.hand),
         setup.friction.mu,
         setup.friction.mu.atan().to_degrees()
     )?;
+    let limit = setup.hand.force_limit_n.map_or("no force limit".to_owned(), |n| format!("at most {n} N per finger"));
+    let drive_word = word_for(&DRIVES, setup.hand.drive);
+    writeln!(text, "{}", wrapped(&format!("drive {drive_word}: {}; {limit}", drive(setup.hand.drive)), 0, 4))?;
     writeln!(text, "torque scale {} mm ({scale}), seed {}", length(scene.frame().scale_mm), search.seed)?;
     writeln!(
         text,
@@ -126,53 +133,111 @@ fn rows(text: &mut String, scene: &Scene, key: Key, listing: Listing, ranking: &
         }
         Listing::Members => writeln!(text, "\nBest {count} grasps, by {}:", key.word())?,
     }
-    let decimals = decimals(scene.part().reach_mm());
-    let places: Vec<_> = ranking.grasps.iter().map(|listed| fingers(&listed.grasp.spots, decimals)).collect();
-    let width = places.iter().map(String::len).max().unwrap_or(0).max("ring:edge@mm".len());
-    // Two qualities beside each other would not fit; the one sorted by is shown.
-    let per_finger = key == Key::QualityPerFinger;
-    let quality = if per_finger { "qual/f" } else { "quality" };
-    writeln!(text, "rank  {:width$} {quality:>7} margin needed place mm", "ring:edge@mm")?;
-    for (number, (Listed { assessment: a, .. }, place)) in ranking.grasps.iter().zip(&places).enumerate() {
-        writeln!(
-            text,
-            "{:4}  {place:width$} {:>7} {:>6} {:>6} {:>8}",
-            number + 1,
-            short(if per_finger { a.quality_per_finger } else { a.quality }),
-            a.friction_margin.map_or("-".to_owned(), ratio),
-            a.friction_needed.map_or("-".to_owned(), ratio),
-            length(a.placement.mm)
-        )?;
-    }
+    let columns = columns::fitted(columns_of(scene, key, ranking), LINE);
+    text.push_str(&columns::lines(&columns));
     text.push_str("\nring:edge@mm  ring 0 is the outer one; mm count from the edge's first vertex\n");
-    text.push_str(if per_finger { QUALITY_PER_FINGER } else { QUALITY });
-    text.push_str(LEGEND);
+    for column in &columns {
+        text.push_str(legend(column.head));
+    }
+    if !scene.cases().is_empty() {
+        writeln!(text, "N are per finger; times {} fingers in all", scene.setup().hand.fingers.get())?;
+    }
     Ok(())
 }
 
-const QUALITY: &str = "\
+/// Every column there is, the ones to be left out first with the least [`Column::keep`].
+fn columns_of(scene: &Scene, key: Key, ranking: &Ranking) -> Vec<Column> {
+    let decimals = decimals(scene.part().reach_mm());
+    let rows = |cell: &dyn Fn(&Listed) -> String| ranking.grasps.iter().map(cell).collect::<Vec<_>>();
+    let scores = |cell: &dyn Fn(&Assessment) -> String| rows(&|listed| cell(&listed.assessment));
+    // Two qualities beside each other would not fit; the one sorted by is shown.
+    let quality = if key == Key::QualityPerFinger {
+        Column::new(PER_FINGER, 7, scores(&|a| short(a.quality_per_finger)))
+    } else {
+        Column::new(QUALITY, 7, scores(&|a| short(a.quality)))
+    };
+    let mut columns = vec![
+        Column::new("rank", 4, (1..=ranking.grasps.len()).map(|number| number.to_string()).collect()),
+        Column::new("ring:edge@mm", 13, rows(&|listed| fingers(&listed.grasp.spots, decimals))).left(),
+        quality,
+        Column::new(MARGIN, 6, scores(&|a| a.friction_margin.map_or("-".to_owned(), ratio))).keep(4),
+        Column::new(NEEDED, 6, scores(&|a| a.friction_needed.map_or("-".to_owned(), ratio)))
+            .keep(if key == Key::Friction { 5 } else { 1 }),
+        Column::new(PLACE, 8, scores(&|a| length(a.placement.mm))).keep(if key == Key::Placement { 5 } else { 2 }),
+    ];
+    if !scene.cases().is_empty() {
+        let asked = |a: &Assessment, cell: &dyn Fn(&Holding) -> String| a.holding.as_ref().map_or("-".to_owned(), cell);
+        let squeeze = |holding: &Holding| holding.squeeze_n().map_or("none".to_owned(), newtons);
+        let load_margin = |holding: &Holding| holding.load_margin().map_or("-".to_owned(), ratio);
+        let case = |holding: &Holding| shown(&holding.governing_case().name);
+        columns.push(Column::new(SQUEEZE_N, 9, scores(&|a| asked(a, &squeeze))));
+        columns.push(Column::new(LOAD_MARGIN, 6, scores(&|a| asked(a, &load_margin))));
+        columns.push(Column::new(CASE, 4, scores(&|a| asked(a, &case))).left().cut_to(4).keep(3));
+    }
+    columns
+}
+
+const QUALITY: &str = "quality";
+const PER_FINGER: &str = "qual/f";
+const MARGIN: &str = "margin";
+const NEEDED: &str = "needed";
+const PLACE: &str = "place mm";
+const SQUEEZE_N: &str = "squeeze N";
+const LOAD_MARGIN: &str = "load x";
+const CASE: &str = "case";
+
+/// What a column means; nothing for those that need no words.
+fn legend(head: &str) -> &'static str {
+    match head {
+        QUALITY => {
+            "\
 quality   a disturbance of size 1 (force, or torque over the torque scale) in
           any direction is held with a total finger force of 1 / quality
-";
-const QUALITY_PER_FINGER: &str = "\
+"
+        }
+        PER_FINGER => {
+            "\
 qual/f    quality per finger: a disturbance of size 1 (force, or torque over the
           torque scale) in any direction is held with at most 1 / (qual/f) from
           each finger
-";
-const LEGEND: &str = "\
-margin    mu over the friction needed; - where any friction at all will do
-needed    least mu at which the grasp closes; as an angle, its arc tangent
-place mm  how far every finger may be off along its edge, all at once
-";
+"
+        }
+        MARGIN => "margin    mu over the friction needed; - where any friction at all will do\n",
+        NEEDED => {
+            "\
+needed    least mu at which the grasp closes, and holds every load within the
+          force limit where both are set; as an angle, its arc tangent
+"
+        }
+        PLACE => "place mm  how far every finger may be off along its edge, all at once\n",
+        SQUEEZE_N => {
+            "\
+squeeze N the least squeeze of each finger that holds every load case; none
+          where no squeeze does
+"
+        }
+        LOAD_MARGIN => {
+            "\
+load x    largest multiple of every load that is held within the limit of the
+          hand and of the edges; below 1 not held, - without a limit
+"
+        }
+        CASE => "case      the load case that asks most, its name cut to fit\n",
+        _ => "",
+    }
+}
 
 /// Why a list is empty and what to try.
 fn why_empty(scene: &Scene, ranking: &Ranking) -> String {
     let (hand, floors) = (&scene.setup().hand, &scene.setup().floors);
     if scene.stretches().is_empty() {
+        let size = match hand.tip {
+            Tip::Pin => format!("pins (now of radius {} mm)", hand.pin_radius_mm),
+            Tip::Pad => format!("pads (now {} x {} mm)", hand.pad_width_mm, hand.pad_depth_mm),
+        };
         return format!(
-            "No finger fits on any edge: try a smaller pin radius (now {} mm) or corner clearance (now {} mm),\n\
-             or fewer keep-outs.",
-            hand.pin_radius_mm, hand.corner_clearance_mm
+            "No finger fits on any edge: try smaller {size} or corner clearance (now {} mm),\nor fewer keep-outs.",
+            hand.corner_clearance_mm
         );
     }
     if ranking.examined == 0 {
@@ -196,27 +261,11 @@ fn why_empty(scene: &Scene, ranking: &Ranking) -> String {
             ranking.closed, ranking.inconclusive
         );
     }
+    let load_margin =
+        if scene.cases().is_empty() { String::new() } else { format!(", load margin {}", floors.load_margin) };
     format!(
-        "{} sets close, but none is above the floors (quality {}, friction margin {}, placement {} mm):\n\
+        "{} sets close, but none is above the floors (quality {}, friction margin {}, placement {} mm{load_margin}):\n\
          lower them in the setup.",
         ranking.closed, floors.quality, floors.friction_margin, floors.placement_mm
     )
-}
-
-/// A text broken into lines of at most 80 characters.
-fn wrapped(text: &str) -> String {
-    let mut lines = String::new();
-    let mut width = 0;
-    for word in text.split_whitespace() {
-        if width > 0 && width + 1 + word.len() > 80 {
-            lines.push('\n');
-            width = 0;
-        } else if width > 0 {
-            lines.push(' ');
-            width += 1;
-        }
-        lines.push_str(word);
-        width += word.len();
-    }
-    lines
 }

@@ -1,9 +1,11 @@
 //! One grasp as commands read it, and its numbers in words.
 
+use crate::file::shown;
+use crate::hand::{Closing, Drive, Hand, Tip};
 use crate::mechanics::assess::{Doubt, Placement};
 use crate::mechanics::escape::{Escape, Sense};
 use crate::mechanics::placement::Governor;
-use crate::mechanics::{Assessment, Verdict};
+use crate::mechanics::{Assessment, FrictionBand, Verdict};
 use crate::search::{Grasp, Scene, Spot};
 
 /// A grasp, its scores, and what speaks against the scores.
@@ -59,6 +61,71 @@ pub(super) fn ratio(value: f64) -> String {
 /// A length in few characters, mm.
 pub(super) fn length(value: f64) -> String {
     if value != 0.0 && value.abs() < 1e-2 { format!("{value:.1e}") } else { format!("{value:.3}") }
+}
+
+/// A force in few characters, N.
+pub(super) fn newtons(value: f64) -> String {
+    // Rounded first, so that a small negative number is not shown as minus nought.
+    if value.abs() >= 1e5 { format!("{value:.2e}") } else { format!("{:.2}", (value * 100.0).round() / 100.0 + 0.0) }
+}
+
+/// The hand: how many tips of what size.
+pub(super) fn hand(hand: &Hand) -> String {
+    let tips = match hand.tip {
+        Tip::Pin => format!("{} pins of radius {} mm", hand.fingers.get(), hand.pin_radius_mm),
+        Tip::Pad => format!("{} pads {} x {} mm", hand.fingers.get(), hand.pad_width_mm, hand.pad_depth_mm),
+    };
+    match hand.closing {
+        Closing::Free => tips,
+        Closing::Parallel => format!("{tips}, parallel"),
+    }
+}
+
+/// What is assumed of how the fingers share the squeeze; stands wherever a squeeze is printed.
+pub(super) fn drive(drive: Drive) -> &'static str {
+    match drive {
+        Drive::Adjustable => "fingers are assumed able to set their force",
+        Drive::Equal => "all fingers press alike",
+    }
+}
+
+/// The other frictions of the band that are stated, each with its name.
+pub(super) fn band(friction: &FrictionBand) -> impl Iterator<Item = (&'static str, f64)> + use<> {
+    let band =
+        [("low", friction.low), ("nominal", friction.nominal), ("high", friction.high), ("sliding", friction.sliding)];
+    band.into_iter().filter_map(|(name, mu)| Some((name, mu?)))
+}
+
+/// A text with control characters removed and cut to so many characters, a dot in the place of what is lost.
+pub(super) fn cut(text: &str, width: usize) -> String {
+    let text = shown(text);
+    if text.chars().count() <= width {
+        return text;
+    }
+    text.chars().take(width.saturating_sub(1)).chain(std::iter::once('.')).collect()
+}
+
+/// Characters in a line of text.
+pub(super) const LINE: usize = 80;
+
+/// A text broken into lines of at most [`LINE`] characters, the first set in by so many blanks and the others by so many.
+pub(super) fn wrapped(text: &str, first: usize, others: usize) -> String {
+    let mut lines = " ".repeat(first);
+    let mut width = first;
+    for (number, word) in text.split_whitespace().enumerate() {
+        let length = word.chars().count();
+        if number > 0 && width + 1 + length > LINE {
+            lines.push('\n');
+            lines.push_str(&" ".repeat(others));
+            width = others;
+        } else if number > 0 {
+            lines.push(' ');
+            width += 1;
+        }
+        lines.push_str(word);
+        width += length;
+    }
+    lines
 }
 
 /// How the part gets out.

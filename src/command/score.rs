@@ -2,8 +2,9 @@
 
 use super::json::Report;
 use super::knobs::{self, Knobs};
+use super::loads;
 use super::output::{self, Answer, Stop};
-use super::reading::{Reading, decimals, escape, fingers, governor, length, misfits, ratio, short};
+use super::reading::{Reading, decimals, escape, fingers, governor, length, misfits, ratio, short, wrapped};
 use crate::mechanics::Verdict;
 use crate::part::EdgeId;
 use crate::search::{Scene, Spot};
@@ -51,7 +52,7 @@ fn spot(written: &str) -> Result<Spot, String> {
 
 pub(super) fn run(args: &ScoreArgs) -> Result<Answer, Stop> {
     let part = knobs::part(&args.part)?;
-    let scene = knobs::scene(part, args.knobs.setup()?)?;
+    let scene = args.knobs.scene(part, args.knobs.setup()?)?;
     let mut readings = Vec::with_capacity(args.at.len());
     let mut faults = Vec::new();
     for at in &args.at {
@@ -87,37 +88,33 @@ pub(super) fn run(args: &ScoreArgs) -> Result<Answer, Stop> {
     Ok(Answer::Done)
 }
 
-/// One line of scores, then a line for each reason behind them.
+/// The scores, then a line for each reason behind them, then what the loads ask.
 fn describe(text: &mut String, scene: &Scene, number: usize, reading: &Reading) -> std::fmt::Result {
     let a = &reading.assessment;
     let mu = scene.setup().friction.mu;
-    write!(
-        text,
-        "{number} {}: {}",
-        fingers(&reading.grasp.spots, decimals(scene.part().reach_mm())),
-        reading.verdict()
-    )?;
+    let mut line =
+        format!("{number} {}: {}", fingers(&reading.grasp.spots, decimals(scene.part().reach_mm())), reading.verdict());
     if a.verdict == Verdict::Closed {
         write!(
-            text,
+            line,
             ", quality {}, per finger {}, friction needed {}",
             short(a.quality),
             short(a.quality_per_finger),
             a.friction_needed.map_or("-".to_owned(), ratio)
         )?;
         match (a.friction_margin, a.friction_margin_deg) {
-            (Some(margin), Some(deg)) => write!(text, ", margin {} ({deg:.1} deg)", ratio(margin))?,
-            _ => write!(text, ", margin - (any friction at all will do)")?,
+            (Some(margin), Some(deg)) => write!(line, ", margin {} ({deg:.1} deg)", ratio(margin))?,
+            (Some(margin), None) => write!(line, ", margin {} (no friction will do)", ratio(margin))?,
+            (None, _) => write!(line, ", margin - (any friction at all will do)")?,
         }
-        writeln!(text, ", placement {} mm", length(a.placement.mm))?;
-    } else {
-        writeln!(text)?;
+        write!(line, ", placement {} mm", length(a.placement.mm))?;
     }
+    writeln!(text, "{}", wrapped(&line, 0, 4))?;
     for doubt in &reading.doubts {
-        writeln!(text, "    two ways of scoring disagree: {doubt}")?;
+        writeln!(text, "{}", wrapped(&format!("two ways of scoring disagree: {doubt}"), 4, 6))?;
     }
     for reason in misfits(&reading.grasp) {
-        writeln!(text, "    {reason}")?;
+        writeln!(text, "{}", wrapped(&reason, 4, 6))?;
     }
     if let Some(weakest) = &a.weakest {
         let share = weakest.torque();
@@ -131,7 +128,7 @@ fn describe(text: &mut String, scene: &Scene, number: usize, reading: &Reading) 
         writeln!(text, "    the part {}", escape(scene, way))?;
     }
     if a.verdict != Verdict::Closed {
-        match a.friction_needed {
+        match a.friction_needed_closure {
             Some(needed) => writeln!(text, "    closes above mu {}; mu is {mu}", ratio(needed))?,
             None => match a.friction_margin {
                 // Only edges of their own have friction, and the setup's mu of 0 names no scale.
@@ -146,5 +143,5 @@ fn describe(text: &mut String, scene: &Scene, number: usize, reading: &Reading) 
             },
         }
     }
-    Ok(())
+    loads::describe(text, scene, reading)
 }

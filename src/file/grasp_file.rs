@@ -7,14 +7,15 @@ use super::saving::Stamp;
 use super::setup_file::{DRIVES, setup_of};
 use super::toml_reader::{self, Table};
 use super::writing::folder_of;
-use crate::mechanics::{Assessment, Verdict};
-use crate::part::EdgeId;
+use crate::mechanics::{Assessment, CaseHolding, Holding, Verdict};
+use crate::part::{EdgeId, Part};
 use crate::search::{Setup, Spot};
 use std::path::{Path, PathBuf};
+use std::sync::Arc;
 
 /// Names of the scores kept with a grasp, in the order they are written. Those of the weakest direction stand in a
 /// table of their own.
-pub const SCORES: [&str; 9] = [
+pub const SCORES: [&str; SCORE_COUNT] = [
     "quality",
     "quality_per_finger",
     "friction_needed_closure",
@@ -24,25 +25,84 @@ pub const SCORES: [&str; 9] = [
     "placement_mm",
     "placement_torque_mm",
     "torque_scale_mm",
+    "friction_needed_holding",
+    "squeeze_n",
+    "squeeze_total_n",
+    "load_margin",
 ];
+const SCORE_COUNT: usize = 13;
 /// Names of the numbers that give the weakest direction.
 pub const WEAKEST: [&str; 3] = ["force_deg", "force", "torque"];
 
 /// The scores kept with a grasp; nothing where one has no value.
-#[derive(Debug, Clone, Copy, PartialEq)]
+#[derive(Debug, Clone, PartialEq)]
 pub struct Scores {
     /// Closed, open or marginal.
     pub verdict: Verdict,
     /// In the order of [`SCORES`].
-    pub scores: [Option<f64>; 9],
+    pub scores: [Option<f64>; SCORE_COUNT],
     /// In the order of [`WEAKEST`].
     pub weakest: [Option<f64>; 3],
+    /// Every load case held; nothing when there were none.
+    pub held: Option<bool>,
+    /// Name of the load case that asks most.
+    pub governing_load: Option<String>,
+    /// What each load case asks, in the setup's order.
+    pub loads: Vec<SavedLoad>,
+}
+
+/// What one load case asks, as kept with a grasp.
+#[derive(Debug, Clone, PartialEq)]
+pub struct SavedLoad {
+    /// Name of the case.
+    pub name: String,
+    /// Least squeeze, N per finger; nothing when none holds it.
+    pub squeeze_n: Option<f64>,
+    /// Held within the limit.
+    pub held: bool,
+    /// Largest multiple of the load that is held; nothing without a limit.
+    pub margin: Option<f64>,
+    /// Worst direction of the acceleration, degrees from +x.
+    pub direction_deg: Option<f64>,
+    /// For each finger its force, N: into the material, along the edge, toward the viewer. One set of many.
+    pub finger_forces_n: Vec<[f64; 3]>,
+}
+
+impl SavedLoad {
+    fn of(case: &CaseHolding) -> Self {
+        Self {
+            name: case.name.clone(),
+            squeeze_n: case.squeeze_n.filter(|n| n.is_finite()),
+            held: case.held,
+            margin: case.margin.filter(|margin| margin.is_finite()),
+            direction_deg: case.direction_deg,
+            finger_forces_n: case.forces.iter().map(|f| [f.normal_n, f.along_n, f.up_n]).collect(),
+        }
+    }
+}
+
+/// A density chosen for a part whose file gives no mass.
+#[derive(Debug, Clone, PartialEq)]
+pub struct KeptDensity {
+    /// The material.
+    pub of: String,
+    /// Its density, kg/m3.
+    pub kg_m3: f64,
+}
+
+impl KeptDensity {
+    /// The part with the mass this density gives it; nothing where the part has a mass of its own, or no thickness.
+    pub fn applied_to(&self, part: &Part) -> Option<Part> {
+        if part.mass().is_some() { None } else { part.with_density(&self.of, self.kg_m3) }
+    }
 }
 
 impl Scores {
-    /// The scores of a reading taken with a torque scale in mm.
-    pub fn of(a: &Assessment, torque_scale_mm: f64) -> Self {
+    /// The scores of a reading of so many fingers taken with a torque scale in mm.
+    pub fn of(a: &Assessment, torque_scale_mm: f64, fingers: usize) -> Self {
         let weakest = a.weakest;
+        let holding = a.holding.as_ref();
+        let squeeze_n = holding.and_then(Holding::squeeze_n);
         Self {
             verdict: a.verdict,
             scores: [
@@ -55,9 +115,16 @@ impl Scores {
                 Some(a.placement.mm),
                 Some(a.placement.torque_mm),
                 Some(torque_scale_mm),
+                a.friction_needed_holding,
+                squeeze_n,
+                squeeze_n.map(|n| n * fingers as f64),
+                holding.and_then(Holding::load_margin),
             ]
             .map(|score| score.filter(|value| value.is_finite())),
             weakest: [weakest.and_then(|w| w.force_deg()), weakest.map(|w| w.force()), weakest.map(|w| w.torque())],
+            held: holding.map(Holding::held),
+            governing_load: holding.map(|holding| holding.governing_case().name.clone()),
+            loads: holding.map_or(Vec::new(), |holding| holding.cases.iter().map(SavedLoad::of).collect()),
         }
     }
 }
@@ -79,6 +146,15 @@ pub struct SavedGrasp {
     pub setup: Setup,
     /// True when that setup stands with the grasp itself.
     pub own_setup: bool,
+    /// The density it was kept under, where one was chosen.
+    pub density: Option<KeptDensity>,
+}
+
+impl SavedGrasp {
+    /// The part as the grasp was scored on it: with the chosen density, where the part file still gives no mass.
+    pub fn part(&self, part: &Arc<Part>) -> Arc<Part> {
+        self.density.as_ref().and_then(|density| density.applied_to(part)).map_or_else(|| Arc::clone(part), Arc::new)
+    }
 }
 
 /// A grasp file.
@@ -173,7 +249,11 @@ fn grasp_of(table: &Table<'_>, file_setup: &Setup) -> Option<SavedGrasp> {
         inner.text("sense");
         inner.finish();
     }
+    let (held, governing_load) = (table.flag("held"), table.text("governing_load"));
+    let loads = table.tables("loads").into_iter().filter_map(load_of).collect();
+    let density = density_of(table);
     // Written for whoever reads the file; the setup says the same to the program.
+    table.number("mass_kg");
     table.word("drive", &DRIVES);
     table.get("torque_scale");
     table.text("assumed");
@@ -189,10 +269,40 @@ fn grasp_of(table: &Table<'_>, file_setup: &Setup) -> Option<SavedGrasp> {
         note: note.unwrap_or_default(),
         time,
         spots: spots?,
-        scores: Scores { verdict: verdict?, scores, weakest },
+        scores: Scores { verdict: verdict?, scores, weakest, held, governing_load, loads },
         setup,
         own_setup,
+        density,
     })
+}
+
+fn load_of(table: Table<'_>) -> Option<SavedLoad> {
+    table.require("name", "it is the load case of the setup");
+    table.require("held", "true or false");
+    let (name, held) = (table.text("name"), table.flag("held"));
+    let [squeeze_n, margin, direction_deg] = ["squeeze_n", "margin", "direction_deg"].map(|key| table.number(key));
+    let finger_forces_n = table.rows("finger_forces_n").unwrap_or_default();
+    table.finish();
+    Some(SavedLoad { name: name?, squeeze_n, held: held?, margin, direction_deg, finger_forces_n })
+}
+
+fn density_of(table: &Table<'_>) -> Option<KeptDensity> {
+    const BOTH: &str = "a chosen density has a number and the material it is of";
+    for (key, other) in [("density_kg_m3", "density_of"), ("density_of", "density_kg_m3")] {
+        if table.has(key) {
+            table.require(other, BOTH);
+        }
+    }
+    let (kg_m3, of) = (table.number("density_kg_m3"), table.text("density_of"));
+    let kg_m3 = kg_m3.filter(|&kg_m3| {
+        let sound = kg_m3 > 0.0;
+        if !sound {
+            let named = table.named("density_kg_m3");
+            table.fault("density_kg_m3", format!("{named} is {kg_m3}; give a number above 0"));
+        }
+        sound
+    });
+    Some(KeptDensity { of: of?, kg_m3: kg_m3? })
 }
 
 fn spot_of(table: Table<'_>) -> Option<Spot> {

@@ -1,7 +1,7 @@
 //! Grasp files as they are written: the header, then one table for each grasp, the same lines for the same grasp.
 
 use super::digest::part_digest;
-use super::grasp_file::{SCORES, Scores, WEAKEST};
+use super::grasp_file::{KeptDensity, SCORES, SavedLoad, Scores, WEAKEST};
 use super::saving::Keep;
 use super::setup_file::{DRIVES, setup_tables, torque_scale_word, word_for};
 use super::writing::{folder_of, number, quoted};
@@ -65,13 +65,14 @@ fn write_grasp(text: &mut String, keep: &Keep, name: &str, part: &Part, time: ji
         )?;
     }
     writeln!(text, "]")?;
-    let scores = Scores::of(&keep.assessment, keep.setup.search.torque_scale.mm(part));
+    let scores = Scores::of(&keep.assessment, keep.setup.search.torque_scale.mm(part), keep.grasp.spots.len());
     writeln!(text, "verdict = \"{}\"", scores.verdict.word())?;
     for (name, score) in SCORES.iter().zip(scores.scores) {
         if let Some(score) = score {
             writeln!(text, "{name} = {}", number(score))?;
         }
     }
+    write_loads(text, &scores)?;
     let weakest: Vec<_> = WEAKEST
         .iter()
         .zip(scores.weakest)
@@ -94,14 +95,55 @@ fn write_grasp(text: &mut String, keep: &Keep, name: &str, part: &Part, time: ji
     let drive = keep.setup.hand.drive;
     writeln!(text, "drive = \"{}\"", word_for(&DRIVES, drive))?;
     writeln!(text, "torque_scale = {}", torque_scale_word(keep.setup.search.torque_scale))?;
-    writeln!(
-        text,
-        "assumed = \"rigid bodies, dry friction, first-order statics; {}\"",
-        match drive {
-            Drive::Adjustable => "each finger's force can be set by itself",
-            Drive::Equal => "all fingers press with the same force",
+    // A density says nothing where the part has a mass of its own.
+    let chosen = keep.density.as_ref().and_then(|density| Some((density, density.applied_to(part)?)));
+    let kg = chosen.as_ref().map_or(part, |(_, part)| part).mass().map(|mass| mass.kg);
+    if let Some(kg) = kg {
+        writeln!(text, "mass_kg = {}", number(kg))?;
+    }
+    if let Some((KeptDensity { of, kg_m3 }, _)) = &chosen {
+        writeln!(text, "density_kg_m3 = {}\ndensity_of = {}", number(*kg_m3), quoted(&shown(of)))?;
+    }
+    let shares = match drive {
+        Drive::Adjustable => "each finger's force can be set by itself",
+        Drive::Equal => "all fingers press with the same force",
+    };
+    let cones = match part.thickness_mm() {
+        Some(_) => format!("friction cones in space as pyramids of {} sides", keep.setup.search.cone_sides),
+        None => "everything in the plane".to_owned(),
+    };
+    let mass = match (kg, &chosen) {
+        (None, _) => "no mass known".to_owned(),
+        (Some(_), None) => "mass from the part file".to_owned(),
+        (Some(_), Some((KeptDensity { of, .. }, _))) => format!("mass from the density of {}, chosen", shown(of)),
+    };
+    let assumed = format!("rigid bodies, dry friction, first-order statics; {shares}; {cones}; {mass}");
+    writeln!(text, "assumed = {}", quoted(&assumed))
+}
+
+/// What the load cases ask; nothing when there are none.
+fn write_loads(text: &mut String, scores: &Scores) -> Result {
+    if let Some(held) = scores.held {
+        writeln!(text, "held = {held}")?;
+    }
+    if let Some(name) = &scores.governing_load {
+        writeln!(text, "governing_load = {}", quoted(name))?;
+    }
+    if scores.loads.is_empty() {
+        return Ok(());
+    }
+    writeln!(text, "loads = [")?;
+    for SavedLoad { name, squeeze_n, held, margin, direction_deg, finger_forces_n } in &scores.loads {
+        write!(text, "  {{ name = {}, held = {held}", quoted(name))?;
+        for (key, value) in [("squeeze_n", squeeze_n), ("margin", margin), ("direction_deg", direction_deg)] {
+            if let Some(value) = value {
+                write!(text, ", {key} = {}", number(*value))?;
+            }
         }
-    )
+        let forces: Vec<_> = finger_forces_n.iter().map(|f| format!("[{}]", f.map(number).join(", "))).collect();
+        writeln!(text, ", finger_forces_n = [{}] }},", forces.join(", "))?;
+    }
+    writeln!(text, "]")
 }
 
 fn pair(x: f64, y: f64) -> String {

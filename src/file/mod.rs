@@ -12,7 +12,9 @@ mod toml_reader;
 mod writing;
 
 pub use digest::part_digest;
-pub use grasp_file::{GraspFile, SCORES, SavedGrasp, Scores, WEAKEST, grasps_from_text, read_grasps};
+pub use grasp_file::{
+    GraspFile, KeptDensity, SCORES, SavedGrasp, SavedLoad, Scores, WEAKEST, grasps_from_text, read_grasps,
+};
 pub use part_file::{part_from_text, read_part, read_part_with_notes};
 pub use saving::{Keep, SaveFault, Stamp, save, stamp};
 pub use setup_file::{CLOSINGS, CONDITIONS, DRIVES, TIPS, default_setup_text, read_setup, setup_from_text, word_for};

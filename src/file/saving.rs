@@ -1,7 +1,7 @@
 //! Saving grasps: appended to what is there, byte for byte, and never over someone else's change.
 
 use super::digest;
-use super::grasp_file::grasps_from_text;
+use super::grasp_file::{KeptDensity, grasps_from_text};
 use super::{FileFaults, grasp_text, writing};
 use crate::mechanics::Assessment;
 use crate::part::Part;
@@ -33,6 +33,8 @@ pub struct Keep {
     pub assessment: Assessment,
     /// The setup they were scored under.
     pub setup: Setup,
+    /// The density they were scored under, where the part file gives no mass and one was chosen.
+    pub density: Option<KeptDensity>,
 }
 
 /// Why nothing was saved. The old file is untouched in every case.

@@ -257,6 +257,18 @@ impl<'a> Table<'a> {
         self.typed(key, &format!("a list of {N} finite numbers"), |value| numbers(value.as_array()?))
     }
 
+    /// Yes or no.
+    pub(super) fn flag(&self, key: &'static str) -> Option<bool> {
+        self.typed(key, "true or false", DeValue::as_bool)
+    }
+
+    /// A list of lists of so many finite numbers.
+    pub(super) fn rows<const N: usize>(&self, key: &'static str) -> Option<Vec<[f64; N]>> {
+        self.typed(key, &format!("a list of lists of {N} finite numbers"), |value| {
+            value.as_array()?.iter().map(|row| numbers(row.get_ref().as_array()?)).collect()
+        })
+    }
+
     /// One of a few words.
     pub(super) fn word<T: Copy>(&self, key: &'static str, words: &[(&str, T)]) -> Option<T> {
         let wanted = words.iter().map(|(word, _)| format!("\"{word}\"")).collect::<Vec<_>>().join(" or ");

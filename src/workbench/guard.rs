@@ -181,7 +181,7 @@ mod tests {
             &part,
         );
         let raft = Raft::default();
-        raft.load(vec![Keep { name: "a".into(), note: String::new(), grasp, assessment, setup }]);
+        raft.load(vec![Keep { name: "a".into(), note: String::new(), grasp, assessment, setup, density: None }]);
         let ended = guarded(|| {
             // A worker's panic is silent.
             let _ = thread::spawn(|| panic!("worker broke")).join();

@@ -45,7 +45,8 @@ pub(super) fn suggested_name(spots: &[Spot]) -> String {
 pub(super) fn mark(state: &mut State, reading: Reading) {
     let name = suggested_name(&reading.grasp.spots);
     let setup = state.setup().clone();
-    let keep = Keep { name, note: String::new(), grasp: reading.grasp, assessment: reading.assessment, setup };
+    let keep =
+        Keep { name, note: String::new(), grasp: reading.grasp, assessment: reading.assessment, setup, density: None };
     add(state, keep);
 }
 

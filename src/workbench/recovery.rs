@@ -60,11 +60,11 @@ impl Recovery {
             return Err(vec![format!("{path}: holds marks of another part, or of this part before it changed")]);
         }
         let keep = |saved: &file::SavedGrasp| {
-            let scene = Scene::new(Arc::clone(&self.part), saved.setup.clone()).map_err(|fault| fault.to_string())?;
+            let scene = Scene::new(saved.part(&self.part), saved.setup.clone()).map_err(|fault| fault.to_string())?;
             let grasp = scene.grasp(&saved.spots).map_err(|fault| fault.to_string())?;
             let (assessment, _) = scene.assess(&grasp);
             let (name, note, setup) = (saved.name.clone(), saved.note.clone(), saved.setup.clone());
-            Ok(Keep { name, note, grasp, assessment, setup })
+            Ok(Keep { name, note, grasp, assessment, setup, density: saved.density.clone() })
         };
         let keeps: Result<Vec<Keep>, String> = saved.grasps.iter().map(keep).collect();
         keeps.map_err(|fault| vec![format!("{path}: {fault}")])

@@ -43,7 +43,7 @@ condition = "dry"
 source = "own tilt test, 3 Nov"
 
 [hand]
-fingers = 4
+fingers = 2
 tip = "pad"
 closing = "parallel"
 pin_radius_mm = 3.0
@@ -61,6 +61,7 @@ spacing_mm = 2.5
 budget = 12345
 seed = 7
 torque_scale = 40
+cone_sides = 12
 
 [floors]
 quality = 0.01
@@ -80,6 +81,7 @@ any_direction_m_s2 = 8.0
 name = "brush"
 force_n = [0.0, -6.0, 0.0]
 at_mm = [40.0, 0, 0.0]
+squeeze_left = 0.5
 "#;
 
 /// The sound text with one thing put in the place of another.
