@@ -313,7 +313,7 @@ fn a_pair_taken_on_the_bench_sets_the_band_and_ranks_again() {
     let shown = desk.state.shown.as_ref().unwrap();
     assert_eq!(shown.order.scene.setup().friction.mu.to_bits(), 0.15f64.to_bits());
     let band: Vec<_> =
-        desk.state.reading.as_ref().unwrap().band.iter().map(|(name, _, verdict)| (*name, *verdict)).collect();
+        desk.state.reading.as_ref().unwrap().band.iter().map(|(name, standing)| (*name, standing.verdict)).collect();
     assert_eq!(band, [("low", Verdict::Closed), ("nominal", Verdict::Closed), ("high", Verdict::Closed)]);
     // What is kept says where mu is from.
     desk.keys("ms");
@@ -349,6 +349,12 @@ fn a_density_taken_on_the_bench_gives_the_part_a_mass_until_it_is_taken_back() {
     assert_close(mass, 0.08 * 0.04 * 0.005 * 7850.0, 1e-12, 0.0);
     assert_eq!(desk.spots(), before);
     assert!(desk.state.opened.part.mass().is_none());
+    // What is kept says under which density it was read.
+    desk.keys("m");
+    let kept = desk.state.marks[0].keep.density.clone().unwrap();
+    assert_eq!((kept.of.as_str(), kept.kg_m3.to_bits()), ("steel", 7850.0_f64.to_bits()));
+    desk.keys("m");
+    assert!(desk.state.marks.is_empty());
     desk.keys("<cr>G");
     let reading = desk.screen(100, 40);
     assert!(reading.contains("126 g") && reading.contains("7850 kg/m3 of steel, chosen here (Gere"), "{reading}");

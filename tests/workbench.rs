@@ -25,6 +25,43 @@ fn the_bench_at_the_sizes_people_have() {
 }
 
 #[test]
+fn the_bench_with_loads_at_the_sizes_people_have() {
+    let mut desk = Desk::loaded();
+    insta::assert_snapshot!("loaded_80x24", desk.resized(80, 24));
+    insta::assert_snapshot!("loaded_120x40", desk.resized(120, 40));
+    insta::assert_snapshot!("loaded_60x16", desk.resized(60, 16));
+    insta::assert_snapshot!("loaded_40x20", desk.resized(40, 20));
+    desk.resized(80, 24);
+    desk.keys("<cr>");
+    insta::assert_snapshot!("loaded_reading_80x64", desk.resized(80, 64));
+    insta::assert_snapshot!("loaded_reading_120x40", desk.resized(120, 40));
+    desk.keys("<esc>L");
+    insta::assert_snapshot!("loads_80x24", desk.resized(80, 24));
+    insta::assert_snapshot!("loads_120x40", desk.resized(120, 40));
+    insta::assert_snapshot!("loads_40x20", desk.resized(40, 20));
+    desk.resized(80, 24);
+    desk.keys("jjx<cr>0<cr>");
+    insta::assert_snapshot!("load_size_refused_80x24", desk.screen(80, 24));
+}
+
+#[test]
+fn a_grasp_that_does_not_hold_its_loads_says_by_which_case() {
+    let mut desk = Desk::loaded();
+    desk.keys("jN4<cr>");
+    insta::assert_snapshot!("not_held_80x24", desk.screen(80, 24));
+}
+
+#[test]
+fn pads_are_drawn_at_their_width() {
+    let mut desk = Desk::loaded();
+    desk.keys("PN500<cr>");
+    insta::assert_snapshot!("pads_80x24", desk.screen(80, 24));
+    insta::assert_snapshot!("pads_120x40", desk.resized(120, 40));
+    desk.keys("<cr>");
+    insta::assert_snapshot!("pads_reading_80x64", desk.resized(80, 64));
+}
+
+#[test]
 fn the_outline_with_each_marker_and_with_cones() {
     let mut desk = Desk::hinge();
     desk.keys("jjc");

@@ -399,6 +399,7 @@ fn every_action_of_the_table_can_be_done_in_its_scope_without_a_panic() {
                 Scope::Marks => drop(desk.keys("M")),
                 Scope::Pairs => drop(desk.keys("t")),
                 Scope::Materials => drop(desk.keys("d")),
+                Scope::Loads => drop(desk.keys("Ln")),
                 Scope::Entry => drop(desk.keys("=")),
                 Scope::AskQuit => desk.state.layers.push(Layer::Ask(Question::Quit)),
                 Scope::AskReload => desk.state.layers.push(Layer::Ask(Question::Reload)),

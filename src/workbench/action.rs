@@ -77,6 +77,8 @@ pub enum Scope {
     Pairs,
     /// The table of densities.
     Materials,
+    /// The list of load cases.
+    Loads,
     /// A line of text being typed.
     Entry,
     /// Unsaved marks at the end.
@@ -98,6 +100,7 @@ impl Scope {
             Some(Layer::Marks { .. }) => Self::Marks,
             Some(Layer::Pairs { .. }) => Self::Pairs,
             Some(Layer::Materials { .. }) => Self::Materials,
+            Some(Layer::Loads { .. }) => Self::Loads,
             Some(Layer::Entry(_)) => Self::Entry,
             Some(Layer::Ask(Question::Quit)) => Self::AskQuit,
             Some(Layer::Ask(Question::Reload)) => Self::AskReload,
@@ -135,6 +138,18 @@ pub enum Action {
     FingersMore,
     /// One finger fewer.
     FingersFewer,
+    /// Force limit up a step.
+    LimitUp,
+    /// Force limit down a step.
+    LimitDown,
+    /// Type the force limit.
+    LimitEnter,
+    /// Pins or pads.
+    OtherTip,
+    /// Each finger on its own, or two pads facing each other.
+    OtherClosing,
+    /// Each finger's force set, or all alike.
+    OtherDrive,
     /// Next sort key.
     SortNext,
     /// Sites closer together.
@@ -165,6 +180,18 @@ pub enum Action {
     OpenPairs,
     /// The table of densities.
     OpenMaterials,
+    /// The list of load cases.
+    OpenLoads,
+    /// A larger load.
+    Larger,
+    /// A smaller load.
+    Smaller,
+    /// Type the safety factor of a load case.
+    Safety,
+    /// One load case more.
+    NewCase,
+    /// Take a load case out, or bring it back.
+    TakeOut,
     /// Dry or oily, in the table of pairs.
     OtherCondition,
     /// Save unsaved marks.
@@ -234,8 +261,16 @@ fn any_row(state: &State) -> bool {
     state.rows() > 0
 }
 
+fn any_reading(state: &State) -> bool {
+    state.reading.is_some()
+}
+
 fn any_mark(state: &State) -> bool {
     !state.marks.is_empty()
+}
+
+fn any_load(state: &State) -> bool {
+    !state.loads.is_empty()
 }
 
 fn no_mass_in_the_file(state: &State) -> bool {
@@ -256,13 +291,16 @@ pub static TABLE: &[Row] = &[
     row(A::Quit, S::Bench, &[C('q')], "quit", "leave; asks when marks are unsaved", always),
     row(A::Down, S::Bench, &[C('j'), Key::Down], "down", "next grasp", any_row),
     row(A::Up, S::Bench, &[C('k'), Key::Up], "up", "grasp before", any_row),
-    row(A::OpenReading, S::Bench, &[Key::Enter], "read", "the whole reading of the grasp", any_row),
+    row(A::OpenReading, S::Bench, &[Key::Enter], "read", "the whole reading of the grasp", any_reading),
     row(A::Mark, S::Bench, &[C('m'), C(' ')], "mark", "mark the grasp, or take its mark away", any_row),
     row(A::Save, S::Bench, &[C('s')], "save", "save unsaved marks to the grasp file", any_unsaved),
     row(A::MuUp, S::Bench, &[C('l'), Key::Right, C('+')], "mu+", "mu up by 0.01", always),
     row(A::MuDown, S::Bench, &[C('h'), Key::Left, C('-')], "mu-", "mu down by 0.01", always),
+    row(A::OpenLoads, S::Bench, &[C('L')], "loads", "list the load cases: make them larger, smaller, add some", always),
     row(A::FingersMore, S::Bench, &[C('f')], "finger+", "one finger more", always),
     row(A::FingersFewer, S::Bench, &[C('F')], "finger-", "one finger fewer", always),
+    row(A::LimitUp, S::Bench, &[C('u')], "limit+", "force limit up a step (about 12 %)", always),
+    row(A::LimitDown, S::Bench, &[C('U')], "limit-", "force limit down a step", always),
     row(A::SortNext, S::Bench, &[C('o')], "order", "sort by the next key", always),
     row(A::Listing, S::Bench, &[C('v')], "members", "list families' best grasps, or every grasp", always),
     row(A::Cones, S::Bench, &[C('c')], "cones", "friction cones on the outline", always),
@@ -270,6 +308,17 @@ pub static TABLE: &[Row] = &[
     row(A::Note, S::Bench, &[C('w')], "why", "mark the grasp and note why", any_row),
     row(A::OpenMarks, S::Bench, &[C('M')], "marks", "list the marks, also those no longer ranked", any_mark),
     row(A::MuEnter, S::Bench, &[C('=')], "set mu", "type mu", always),
+    row(A::LimitEnter, S::Bench, &[C('N')], "set limit", "type the force limit, N per finger", always),
+    row(A::OtherTip, S::Bench, &[C('T')], "tip", "pins or pads", always),
+    row(
+        A::OtherClosing,
+        S::Bench,
+        &[C('P')],
+        "closing",
+        "two parallel pads facing each other, or fingers of their own",
+        always,
+    ),
+    row(A::OtherDrive, S::Bench, &[C('e')], "drive", "each finger's force can be set, or all press alike", always),
     row(A::OpenPairs, S::Bench, &[C('t')], "pairs", "take mu from the table of friction pairs", always),
     row(
         A::OpenMaterials,
@@ -321,6 +370,15 @@ pub static TABLE: &[Row] = &[
     row(A::PageUp, S::Materials, &[C('K'), Key::PageUp], "", "", always),
     row(A::First, S::Materials, &[C('g'), Key::Home], "first", "", always),
     row(A::Last, S::Materials, &[C('G'), Key::End], "last", "", always),
+    row(A::Larger, S::Loads, &[C('+'), C('l'), Key::Right], "larger", "", any_load),
+    row(A::Smaller, S::Loads, &[C('-'), C('h'), Key::Left], "smaller", "", any_load),
+    row(A::Accept, S::Loads, &[Key::Enter], "set size", "", any_load),
+    row(A::Safety, S::Loads, &[C('s')], "safety factor", "", any_load),
+    row(A::NewCase, S::Loads, &[C('n')], "new", "", always),
+    row(A::TakeOut, S::Loads, &[C('x')], "out or back", "", any_load),
+    row(A::Close, S::Loads, &[Key::Esc, C('q'), C('L')], "close", "", always),
+    row(A::Down, S::Loads, &[C('j'), Key::Down], "down", "", any_load),
+    row(A::Up, S::Loads, &[C('k'), Key::Up], "up", "", any_load),
     row(A::Accept, S::Entry, &[Key::Enter], "take", "", always),
     row(A::Close, S::Entry, &[Key::Esc], "leave", "", always),
     row(A::Backspace, S::Entry, &[Key::Backspace, Ctrl('h')], "", "", always),

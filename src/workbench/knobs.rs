@@ -1,9 +1,11 @@
 //! The knobs: each takes a changed setup, reads the selected grasp under it at once and asks for a new ranking.
 
+use super::loads;
 use super::look::Marker;
 use super::state::{Job, State};
 use super::update::Effect;
-use crate::hand::FingerCount;
+use crate::hand::{Closing, Drive, FingerCount, Tip};
+use crate::mechanics::Holding;
 use crate::part::Part;
 use crate::search::{Key, Listing, Scene, Setup};
 use std::sync::Arc;
@@ -11,6 +13,9 @@ use std::sync::Arc;
 /// Asks for a ranking by the knobs as they stand.
 pub(super) fn rank(state: &mut State) -> Vec<Effect> {
     state.job = Job::Running(None);
+    if state.order.key == Key::Squeeze && state.setup().loads.is_empty() {
+        state.order.key = Key::Quality;
+    }
     // Until the new number is known no ranking on the screen counts as that of the new knobs.
     state.asked = None;
     vec![Effect::Rank(state.order.request())]
@@ -35,12 +40,14 @@ pub(super) fn turn(state: &mut State, change: impl FnOnce(&mut Setup)) -> Result
     Ok(rank(state))
 }
 
-/// Takes another part in place of the present one, of the same outline, and ranks again.
+/// Takes another part in place of the present one, of the same outline, puts the loads it lacks something for aside, brings
+/// back those it has all for, and ranks again.
 ///
 /// # Errors
 /// What is wrong with the setup for this part; everything stays as it was.
 pub(super) fn take_part(state: &mut State, part: Arc<Part>) -> Result<Vec<Effect>, String> {
-    let scene = Scene::new(part, state.setup().clone()).map_err(|fault| fault.to_string())?;
+    let setup = Setup { loads: loads::in_force(&state.loads, &part), ..state.setup().clone() };
+    let scene = Scene::new(part, setup).map_err(|fault| fault.to_string())?;
     state.order.scene = Arc::new(scene);
     state.read();
     Ok(rank(state))
@@ -53,6 +60,20 @@ fn turn_or_say(state: &mut State, change: impl FnOnce(&mut Setup)) -> Vec<Effect
     })
 }
 
+/// Takes a changed setup and says what it is now, or why it was refused.
+fn turn_and_say(state: &mut State, told: String, change: impl FnOnce(&mut Setup)) -> Vec<Effect> {
+    match turn(state, change) {
+        Ok(effects) => {
+            state.message = Some(told);
+            effects
+        }
+        Err(fault) => {
+            state.message = Some(fault);
+            Vec::new()
+        }
+    }
+}
+
 /// Moves mu to the next multiple of `1 / per_unit` above or below.
 pub(super) fn step_mu(state: &mut State, per_unit: f64, way: f64) -> Vec<Effect> {
     let mu = state.setup().friction.mu * per_unit;
@@ -63,6 +84,9 @@ pub(super) fn step_mu(state: &mut State, per_unit: f64, way: f64) -> Vec<Effect>
 }
 
 pub(super) fn step_fingers(state: &mut State, way: isize) -> Vec<Effect> {
+    if state.setup().hand.closing == Closing::Parallel {
+        return parallel_holds(state);
+    }
     let now = state.setup().hand.fingers.get();
     match now.checked_add_signed(way).and_then(FingerCount::new) {
         Some(count) => turn_or_say(state, |setup| setup.hand.fingers = count),
@@ -71,6 +95,91 @@ pub(super) fn step_fingers(state: &mut State, way: isize) -> Vec<Effect> {
             Vec::new()
         }
     }
+}
+
+/// What parallel closing does not leave open.
+fn parallel_holds(state: &mut State) -> Vec<Effect> {
+    state.message = Some("parallel closing is two pads; P goes back to fingers of their own".to_owned());
+    Vec::new()
+}
+
+/// Pins for pads, pads for pins.
+pub(super) fn other_tip(state: &mut State) -> Vec<Effect> {
+    if state.setup().hand.closing == Closing::Parallel {
+        return parallel_holds(state);
+    }
+    let hand = &state.setup().hand;
+    let (tip, told) = match hand.tip {
+        Tip::Pin => (Tip::Pad, format!("pads {} mm wide, {} mm deep", hand.pad_width_mm, hand.pad_depth_mm)),
+        Tip::Pad => (Tip::Pin, format!("pins of {} mm radius", hand.pin_radius_mm)),
+    };
+    turn_and_say(state, told, |setup| setup.hand.tip = tip)
+}
+
+/// Two pads facing each other, or back to the fingers there were before.
+pub(super) fn other_closing(state: &mut State) -> Vec<Effect> {
+    let hand = state.setup().hand;
+    if hand.closing == Closing::Parallel {
+        let (fingers, tip) = state.before_parallel.unwrap_or((hand.fingers, hand.tip));
+        return turn_and_say(state, "fingers close each on its own".to_owned(), |setup| {
+            setup.hand.closing = Closing::Free;
+            setup.hand.fingers = fingers;
+            setup.hand.tip = tip;
+        });
+    }
+    let Some(two) = FingerCount::new(2) else { return Vec::new() };
+    let [least, most] = hand.opening_mm;
+    let effects = turn_and_say(state, format!("two pads facing each other, {least} to {most} mm apart"), |setup| {
+        setup.hand.closing = Closing::Parallel;
+        setup.hand.fingers = two;
+        setup.hand.tip = Tip::Pad;
+    });
+    if state.setup().hand.closing == Closing::Parallel {
+        state.before_parallel = Some((hand.fingers, hand.tip));
+    }
+    effects
+}
+
+/// Each finger's force set, or all alike.
+pub(super) fn other_drive(state: &mut State) -> Vec<Effect> {
+    let (drive, told) = match state.setup().hand.drive {
+        Drive::Adjustable => (Drive::Equal, "all fingers press alike"),
+        Drive::Equal => (Drive::Adjustable, "each finger's force can be set"),
+    };
+    turn_and_say(state, told.to_owned(), |setup| setup.hand.drive = drive)
+}
+
+/// Preferred numbers of a decade, about 12 % apart (ISO 3:1973, series R20).
+const R20: [f64; 20] =
+    [1.0, 1.12, 1.25, 1.4, 1.6, 1.8, 2.0, 2.24, 2.5, 2.8, 3.15, 3.55, 4.0, 4.5, 5.0, 5.6, 6.3, 7.1, 8.0, 9.0];
+
+/// The preferred number above or below a value above 0.
+pub(super) fn preferred(value: f64, up: bool) -> f64 {
+    let decade = 10_f64.powf(value.log10().floor());
+    let share = value / decade;
+    // A hair is left so that 1.1199999999999999 counts as 1.12.
+    let next = if up {
+        R20.iter().find(|own| **own > share * (1.0 + 1e-6)).map_or(10.0, |own| *own)
+    } else {
+        R20.iter().rev().find(|own| **own < share * (1.0 - 1e-6)).map_or(0.9, |own| *own)
+    };
+    // Read back from three figures, so that no more are kept than are meant.
+    format!("{:.2e}", next * decade).parse().unwrap_or(next * decade)
+}
+
+/// A force limit to start from where nothing is known of what is needed, N (common practice, no source).
+const FIRST_LIMIT_N: f64 = 100.0;
+
+/// Moves the force limit to the next preferred number; where there is none, to the first above what the selected grasp needs.
+pub(super) fn step_limit(state: &mut State, up: bool) -> Vec<Effect> {
+    let holding = state.reading.as_ref().and_then(|reading| reading.assessment.holding.as_ref());
+    let needed = holding.and_then(Holding::squeeze_n).filter(|n| *n > 0.0);
+    let next = match (state.setup().hand.force_limit_n, needed) {
+        (Some(now), _) => preferred(now, up),
+        (None, Some(needed)) => preferred(needed, true),
+        (None, None) => FIRST_LIMIT_N,
+    };
+    turn_and_say(state, format!("at most {next} N per finger"), |setup| setup.hand.force_limit_n = Some(next))
 }
 
 /// Sites are never set closer than this part of the perimeter, nor wider than the other.
@@ -108,10 +217,14 @@ pub(super) fn next_cell_shape(state: &mut State) {
     state.message = Some(format!("cells taken as {} times as high as wide", state.look.aspect));
 }
 
-/// Sorts by the key that follows.
+/// Sorts by the key that follows; the squeeze is left out where there are no loads.
 pub(super) fn next_key(state: &mut State) -> Vec<Effect> {
     let at = Key::ALL.iter().position(|key| *key == state.order.key).unwrap_or(0);
-    state.order.key = Key::ALL[(at + 1) % Key::ALL.len()];
+    let loads = !state.setup().loads.is_empty();
+    let mut following = Key::ALL.iter().cycle().skip(at + 1).take(Key::ALL.len());
+    if let Some(key) = following.find(|key| loads || **key != Key::Squeeze) {
+        state.order.key = *key;
+    }
     rank(state)
 }
 

@@ -3,7 +3,7 @@
 use super::action::Action;
 use super::state::{Layer, Mark, Reading, State};
 use super::update::Effect;
-use crate::file::Keep;
+use crate::file::{Keep, KeptDensity};
 use crate::mechanics::Verdict;
 use crate::search::Spot;
 
@@ -45,8 +45,8 @@ pub(super) fn suggested_name(spots: &[Spot]) -> String {
 pub(super) fn mark(state: &mut State, reading: Reading) {
     let name = suggested_name(&reading.grasp.spots);
     let setup = state.setup().clone();
-    let keep =
-        Keep { name, note: String::new(), grasp: reading.grasp, assessment: reading.assessment, setup, density: None };
+    let density = state.density.map(|row| KeptDensity { of: row.name.to_owned(), kg_m3: row.kg_m3 });
+    let keep = Keep { name, note: String::new(), grasp: reading.grasp, assessment: reading.assessment, setup, density };
     add(state, keep);
 }
 

@@ -7,6 +7,7 @@ pub mod action;
 mod entry;
 mod guard;
 mod knobs;
+pub mod loads;
 mod look;
 mod marks;
 mod recovery;

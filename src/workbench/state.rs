@@ -1,10 +1,11 @@
 //! What the workbench knows: the scene, the ranking shown, the selection, the marks and the open layers. No I/O.
 
+use super::loads::{self, LoadRow};
 use super::look::{ColorChoice, Look, Marker};
 use crate::file::Keep;
-use crate::hand::Stretch;
+use crate::hand::{FingerCount, Stretch, Tip};
 use crate::mechanics::assess::Doubt;
-use crate::mechanics::{Assessment, Condition, FrictionBand};
+use crate::mechanics::{Assessment, Condition, FrictionBand, Holding};
 use crate::part::Part;
 use crate::part::material::Density;
 use crate::search::job::Request;
@@ -41,7 +42,8 @@ pub struct Shown {
     pub order: Order,
     /// Its number.
     pub generation: u64,
-    /// For each row: no other row is better on one of quality, friction margin and placement and as good on the rest.
+    /// For each row: no other row is better on one of quality, friction margin, placement, load margin and squeeze and as
+    /// good on the rest.
     pub unbeaten: Vec<bool>,
 }
 
@@ -114,6 +116,18 @@ pub enum EntryKind {
     Name,
     /// Why a grasp is kept.
     Note,
+    /// The force limit.
+    Limit,
+    /// The size of a load case's motion.
+    Size {
+        /// Row of the list of loads.
+        row: usize,
+    },
+    /// The safety factor of a load case.
+    Safety {
+        /// Row of the list of loads.
+        row: usize,
+    },
 }
 
 /// A line of text being typed.
@@ -186,6 +200,11 @@ pub enum Layer {
         /// Selected row; the first is the part as its file has it.
         at: usize,
     },
+    /// The list of load cases.
+    Loads {
+        /// Selected row.
+        at: usize,
+    },
     /// A line of text being typed.
     Entry(Entry),
     /// A question.
@@ -245,6 +264,10 @@ pub struct State {
     pub opened: Opened,
     /// The row of the table that stands in for the density the part file does not give.
     pub density: Option<&'static Density>,
+    /// The load cases, also those taken out or put aside. The setup as the knobs stand has those in force.
+    pub loads: Vec<LoadRow>,
+    /// Fingers and tip to go back to from parallel closing.
+    pub(super) before_parallel: Option<(FingerCount, Tip)>,
     /// Where marks are saved.
     pub grasp_path: PathBuf,
     pub(super) quit_when_saved: bool,
@@ -256,13 +279,14 @@ pub struct State {
 }
 
 impl State {
-    /// A workbench with nothing ranked yet.
+    /// A workbench with nothing ranked yet. Loads the part lacks something for are put aside.
     ///
     /// # Errors
-    /// A setup that asks for something not built yet.
+    /// A setup the part does not allow.
     pub fn new(options: &super::Options) -> Result<Self, String> {
-        let scene =
-            Arc::new(Scene::new(Arc::clone(&options.part), options.setup.clone()).map_err(|fault| fault.to_string())?);
+        let loads: Vec<LoadRow> = options.setup.loads.iter().cloned().map(LoadRow::new).collect();
+        let setup = Setup { loads: loads::in_force(&loads, &options.part), ..options.setup.clone() };
+        let scene = Arc::new(Scene::new(Arc::clone(&options.part), setup).map_err(|fault| fault.to_string())?);
         Ok(Self {
             order: Order { scene, key: Key::Quality, listing: Listing::Families },
             shown: None,
@@ -274,7 +298,7 @@ impl State {
             marks: Vec::new(),
             next_mark: 1,
             layers: Vec::new(),
-            message: None,
+            message: loads::told_aside(&loads, &options.part),
             cones: false,
             panel: Panel::Table,
             look: Look {
@@ -285,6 +309,8 @@ impl State {
             },
             opened: Opened { part: Arc::clone(&options.part), friction: options.setup.friction.clone() },
             density: None,
+            loads,
+            before_parallel: None,
             grasp_path: options.grasp_path.clone(),
             quit_when_saved: false,
             draft: None,
@@ -371,18 +397,21 @@ fn family_of(spots: &[Spot], stretches: &[Stretch]) -> Option<Vec<usize>> {
     Some(family)
 }
 
-/// For each grasp: true when no other is better on one of quality, friction margin and placement and no worse on the
-/// others. Differences within rounding count for nothing.
+/// For each grasp: true when no other is better on one of quality, friction margin, placement, load margin and squeeze and
+/// no worse on the others. Differences within rounding count for nothing.
 pub(super) fn unbeaten(rows: &[Listed]) -> Vec<bool> {
-    let keys: Vec<[f64; 3]> = rows
+    let keys: Vec<[f64; 5]> = rows
         .iter()
         .map(|row| {
             let a = &row.assessment;
-            [a.quality, a.friction_margin.unwrap_or(f64::INFINITY), a.placement.mm]
+            // Without loads all are alike in these.
+            let load_margin = a.holding.as_ref().and_then(Holding::load_margin).unwrap_or(f64::INFINITY);
+            let squeeze_n = a.holding.as_ref().map_or(0.0, |holding| holding.squeeze_n().unwrap_or(f64::INFINITY));
+            [a.quality, a.friction_margin.unwrap_or(f64::INFINITY), a.placement.mm, load_margin, -squeeze_n]
         })
         .collect();
     let above = |a: f64, b: f64| a > b && (a.is_infinite() || a - b > 1e-9 * (1.0 + a.abs()));
-    let beats = |a: &[f64; 3], b: &[f64; 3]| {
+    let beats = |a: &[f64; 5], b: &[f64; 5]| {
         a.iter().zip(b).any(|(a, b)| above(*a, *b)) && !a.iter().zip(b).any(|(a, b)| above(*b, *a))
     };
     keys.iter().map(|own| !keys.iter().any(|other| beats(other, own))).collect()

@@ -2,6 +2,7 @@
 
 use super::action::{self, Action};
 use super::knobs;
+use super::loads;
 use super::state::{Layer, State};
 use super::update::Effect;
 use crate::mechanics::pair::{PAIRS, Pair};
@@ -102,9 +103,17 @@ fn take_density(state: &mut State, at: usize) -> Result<Vec<Effect>, String> {
             (Arc::new(part), format!("{} at {} kg/m3, until the workbench is left", row.name, row.kg_m3))
         }
     };
+    let before = loads::aside(&state.loads, state.order.scene.part());
     let effects = knobs::take_part(state, part)?;
     state.density = row;
-    state.message = Some(told);
+    let part = state.order.scene.part();
+    let back = before.saturating_sub(loads::aside(&state.loads, part));
+    let with_loads = match loads::told_aside(&state.loads, part) {
+        Some(aside) => format!("; {aside}"),
+        None if back > 0 => format!("; {back} {} back", if back == 1 { "load is" } else { "loads are" }),
+        None => String::new(),
+    };
+    state.message = Some(told + &with_loads);
     Ok(effects)
 }
 
@@ -123,7 +132,9 @@ pub(super) fn missing(state: &State) -> Vec<String> {
         missing.push(format!("mu has no source, {} lists pairs", action::key_of(Action::OpenPairs)));
     }
     let part = state.order.scene.part();
-    if part.mass().is_none() {
+    if let Some(aside) = loads::told_aside(&state.loads, part) {
+        missing.push(aside);
+    } else if part.mass().is_none() {
         missing.push(if part.thickness_mm().is_some() {
             format!("no mass, {} lists densities", action::key_of(Action::OpenMaterials))
         } else {

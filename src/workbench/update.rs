@@ -3,6 +3,7 @@
 use super::action::{self, Action, Key};
 use super::entry;
 use super::knobs;
+use super::loads;
 use super::marks;
 use super::state::{Entry, EntryKind, Job, Layer, Panel, Question, Reading, State};
 use super::tables;
@@ -176,6 +177,7 @@ fn act(state: &mut State, action: Action) -> Vec<Effect> {
         }
         Some(Layer::Marks { .. }) => marks::act(state, action),
         Some(Layer::Pairs { .. } | Layer::Materials { .. }) => tables::act(state, action),
+        Some(Layer::Loads { .. }) => loads::act(state, action),
         Some(Layer::Entry(_)) => typing(state, action),
         Some(&Layer::Ask(question)) => answer(state, question, action),
     }
@@ -197,6 +199,11 @@ fn bench(state: &mut State, action: Action) -> Vec<Effect> {
         Action::MuDownCoarse => return knobs::step_mu(state, 20.0, -1.0),
         Action::FingersMore => return knobs::step_fingers(state, 1),
         Action::FingersFewer => return knobs::step_fingers(state, -1),
+        Action::LimitUp => return knobs::step_limit(state, true),
+        Action::LimitDown => return knobs::step_limit(state, false),
+        Action::OtherTip => return knobs::other_tip(state),
+        Action::OtherClosing => return knobs::other_closing(state),
+        Action::OtherDrive => return knobs::other_drive(state),
         Action::SpacingFiner => return knobs::step_spacing(state, 0.8),
         Action::SpacingWider => return knobs::step_spacing(state, 1.25),
         Action::SortNext => return knobs::next_key(state),
@@ -216,10 +223,12 @@ fn bench(state: &mut State, action: Action) -> Vec<Effect> {
         Action::OpenMarks => state.layers.push(Layer::Marks { at: 0 }),
         Action::OpenPairs => tables::open_pairs(state),
         Action::OpenMaterials => tables::open_materials(state),
+        Action::OpenLoads => loads::open(state),
         Action::Mark => marks::toggle(state),
         Action::Name => open_entry(state, EntryKind::Name),
         Action::Note => open_entry(state, EntryKind::Note),
         Action::MuEnter => open_entry(state, EntryKind::Mu),
+        Action::LimitEnter => open_entry(state, EntryKind::Limit),
         Action::Save => return marks::save(state, false),
         Action::Quit => return quit(state),
         _ => {}
@@ -269,12 +278,8 @@ fn typing(state: &mut State, action: Action) -> Vec<Effect> {
 fn accept(state: &mut State) -> Vec<Effect> {
     let Some(Layer::Entry(entry)) = state.layers.last().cloned() else { return Vec::new() };
     match entry.kind {
-        EntryKind::Mu => {
-            let taken = match entry.text.trim().replace(',', ".").parse::<f64>() {
-                Ok(mu) => knobs::turn(state, |setup| setup.friction.mu = mu),
-                Err(_) => Err("give a number, for example 0.15".to_owned()),
-            };
-            match taken {
+        EntryKind::Mu | EntryKind::Limit | EntryKind::Size { .. } | EntryKind::Safety { .. } => {
+            match take_number(state, entry.kind, entry.text.trim()) {
                 Ok(effects) => {
                     state.layers.pop();
                     effects
@@ -307,16 +312,39 @@ fn accept(state: &mut State) -> Vec<Effect> {
     }
 }
 
-fn open_entry(state: &mut State, kind: EntryKind) {
+/// Takes a number that was typed.
+fn take_number(state: &mut State, kind: EntryKind, text: &str) -> Result<Vec<Effect>, String> {
+    if kind == EntryKind::Limit && text == NO_LIMIT {
+        return knobs::turn(state, |setup| setup.hand.force_limit_n = None);
+    }
+    let example = match kind {
+        EntryKind::Mu => "0.15",
+        EntryKind::Limit => "60, or none",
+        _ => "2.5",
+    };
+    let number: f64 = text.replace(',', ".").parse().map_err(|_| format!("give a number, for example {example}"))?;
+    match kind {
+        EntryKind::Mu => knobs::turn(state, |setup| setup.friction.mu = number),
+        EntryKind::Limit => knobs::turn(state, |setup| setup.hand.force_limit_n = Some(number)),
+        EntryKind::Size { row } => loads::resize(state, row, number),
+        EntryKind::Safety { row } => loads::set_safety(state, row, number),
+        EntryKind::Name | EntryKind::Note => Ok(Vec::new()),
+    }
+}
+
+/// What is typed to have no force limit.
+const NO_LIMIT: &str = "none";
+
+pub(super) fn open_entry(state: &mut State, kind: EntryKind) {
     let spots = match kind {
-        EntryKind::Mu => Vec::new(),
+        EntryKind::Mu | EntryKind::Limit | EntryKind::Size { .. } | EntryKind::Safety { .. } => Vec::new(),
         EntryKind::Name | EntryKind::Note => match state.row() {
             Some(row) => row.grasp.spots.clone(),
             None => return,
         },
     };
     let text = match kind {
-        EntryKind::Mu => String::new(),
+        EntryKind::Mu | EntryKind::Limit | EntryKind::Size { .. } | EntryKind::Safety { .. } => String::new(),
         EntryKind::Name => state.mark_on(&spots).map(|mark| mark.keep.name.clone()).unwrap_or_default(),
         EntryKind::Note => state.mark_on(&spots).map(|mark| mark.keep.note.clone()).unwrap_or_default(),
     };

@@ -3,6 +3,7 @@
 #![allow(dead_code, unreachable_pub, reason = "each test file uses its own part of this")]
 
 use holdwright::file::Keep;
+use holdwright::mechanics::LoadCase;
 use holdwright::part::{KeepOutDescription, Part, PartDescription};
 use holdwright::search::job::{News, Request, What};
 use holdwright::search::{Cancel, Ranking, SearchSettings, Setup, Spot, rank};
@@ -12,7 +13,22 @@ use ratatui::backend::TestBackend;
 use ratatui::buffer::Buffer;
 use std::path::PathBuf;
 use std::sync::Arc;
+
 pub fn hinge() -> Part {
+    Part::new(hinge_description()).unwrap()
+}
+
+/// The same, 5 mm thick; it says nothing of its mass.
+pub fn thick_hinge() -> Part {
+    Part::new(PartDescription { thickness: Some(5.0), ..hinge_description() }).unwrap()
+}
+
+/// The same of steel: 7850 kg/m3 (Gere, Table H-1).
+pub fn steel_hinge() -> Part {
+    thick_hinge().with_density("steel", 7850.0).unwrap()
+}
+
+fn hinge_description() -> PartDescription {
     let outer = vec![[0.0, 0.0], [80.0, 0.0], [80.0, 24.0], [52.0, 40.0], [0.0, 40.0]];
     let hole = vec![[12.0, 10.0], [28.0, 10.0], [28.0, 26.0], [12.0, 26.0]];
     let mut described = PartDescription::bare("hinge leaf", vec![outer, hole]);
@@ -23,7 +39,7 @@ pub fn hinge() -> Part {
         to: Some(44.0),
         reason: "sealing face".into(),
     });
-    Part::new(described).unwrap()
+    described
 }
 
 /// Pins of 3 mm, a friction band, sites far apart so that the tests stay quick.
@@ -36,6 +52,20 @@ pub fn setup() -> Setup {
     setup.hand.corner_clearance_mm = 1.0;
     setup.hand.gap_mm = 1.0;
     setup.search = SearchSettings { spacing_mm: Some(8.0), ..SearchSettings::default() };
+    setup
+}
+
+/// A lift, a stop in any direction, a brush that pushes at a corner; 60 N per finger at most.
+pub fn setup_with_loads() -> Setup {
+    let mut setup = setup();
+    setup.hand.force_limit_n = Some(60.0);
+    setup.friction.sliding = Some(0.15);
+    let case = |name: &str| LoadCase { name: name.to_owned(), ..LoadCase::default() };
+    setup.loads = vec![
+        LoadCase { acceleration_m_s2: [0.0, 0.0, 3.0], safety: 2.0, ..case("lift") },
+        LoadCase { any_direction_m_s2: 8.0, safety: 1.5, ..case("emergency stop") },
+        LoadCase { force_n: [0.0, -6.0, 0.0], at_mm: [80.0, 20.0, 0.0], ..case("brush") },
+    ];
     setup
 }
 
@@ -72,6 +102,10 @@ impl Desk {
 
     pub fn hinge() -> Self {
         Self::new(hinge(), setup())
+    }
+
+    pub fn loaded() -> Self {
+        Self::new(steel_hinge(), setup_with_loads())
     }
 
     pub fn input(&mut self, input: Input) {

@@ -5,6 +5,7 @@ use super::super::state::{Job, State};
 use super::super::tables;
 use super::{number, put, shifted};
 use crate::file::shown;
+use crate::hand::{Closing, Drive, Hand, Tip};
 use crate::search::Listing;
 use ratatui::buffer::Buffer;
 use ratatui::layout::Rect;
@@ -22,15 +23,17 @@ pub(super) fn header(state: &State, area: Rect, buf: &mut Buffer) {
         Listing::Members => "every grasp",
     };
     // Knobs that do not fit leave from the right, none is cut.
+    let limit = setup.hand.force_limit_n.map_or(String::new(), |limit| format!("{} N", number::given(limit)));
     let mut knobs = String::new();
     for knob in [
         format!("mu {}", number::mu(setup.friction.mu)),
-        format!("{} fingers", setup.hand.fingers.get()),
+        fingers(&setup.hand),
+        limit,
         format!("by {}", state.order.key.word().replace('_', " ")),
         listing.to_owned(),
         format!("sites {} mm", number::mm(setup.search.spacing_for(part))),
     ] {
-        let gap = if knobs.is_empty() { "" } else { "  " };
+        let gap = if knobs.is_empty() || knob.is_empty() { "" } else { "  " };
         if knobs.len() + gap.len() + knob.len() > usize::from(left.width) {
             break;
         }
@@ -45,6 +48,17 @@ pub(super) fn header(state: &State, area: Rect, buf: &mut Buffer) {
     put(buf, left, &name, state.look.title());
     put(buf, shifted(left, used), &knobs, state.look.plain());
     put(buf, shifted(area, area.width.saturating_sub(job_width)), &job, state.look.title());
+}
+
+/// The hand in few words.
+pub(super) fn fingers(hand: &Hand) -> String {
+    let tip = match hand.tip {
+        Tip::Pin => "pins",
+        Tip::Pad => "pads",
+    };
+    let closing = if hand.closing == Closing::Parallel { ", parallel" } else { "" };
+    let drive = if hand.drive == Drive::Equal { ", alike" } else { "" };
+    format!("{} {tip}{closing}{drive}", hand.fingers.get())
 }
 
 /// Columns a text takes on the screen.

@@ -1,5 +1,6 @@
 //! What lies on top of the bench: a line being typed, questions, the list of marks, faults.
 
+use super::super::loads;
 use super::super::state::{Entry, EntryKind, Question, State};
 use super::{bars, number, put, shifted, split_rows, table, titled, wrapped};
 use crate::file::shown;
@@ -24,18 +25,20 @@ fn strip(area: Rect, rows: u16, buf: &mut Buffer) -> (Rect, Rect) {
 pub(super) fn entry(state: &State, area: Rect, entry: &Entry, buf: &mut Buffer) -> Position {
     let (strip, footer) = strip(area, 3, buf);
     let title = match entry.kind {
-        EntryKind::Mu => "mu, the friction coefficient",
-        EntryKind::Name => "name of the grasp",
-        EntryKind::Note => "why it is kept",
+        EntryKind::Mu => "mu, the friction coefficient".to_owned(),
+        EntryKind::Name => "name of the grasp".to_owned(),
+        EntryKind::Note => "why it is kept".to_owned(),
+        EntryKind::Limit => "force limit, N per finger".to_owned(),
+        EntryKind::Size { row } => format!("size of {}", case_name(state, row)),
+        EntryKind::Safety { row } => format!("safety factor on {}", case_name(state, row)),
     };
-    let mut inside = titled(state, strip, title, "", buf);
+    let mut inside = titled(state, strip, &title, "", buf);
     if let Some(fault) = &entry.fault {
         put(buf, shifted(Rect { y: inside.y + 1, height: 1, ..inside }, 2), &shown(fault), state.look.bad());
     } else if entry.suggested {
         let how = "typing replaces it; the arrow keys keep it";
         put(buf, shifted(Rect { y: inside.y + 1, height: 1, ..inside }, 2), how, state.look.dim());
-    } else if entry.kind == EntryKind::Mu {
-        let now = format!("now {}", number::mu(state.setup().friction.mu));
+    } else if let Some(now) = now(state, entry.kind) {
         put(buf, shifted(Rect { y: inside.y + 1, height: 1, ..inside }, 2), &now, state.look.dim());
     }
     inside.height = 1;
@@ -50,6 +53,29 @@ pub(super) fn entry(state: &State, area: Rect, entry: &Entry, buf: &mut Buffer) 
     bars::footer(state, footer, buf);
     let cursor = Line::raw(before).width().min(usize::from(line.width.saturating_sub(1))) as u16;
     Position { x: line.x.saturating_add(cursor).min(area.right() - 1), y: line.y }
+}
+
+/// Name of a load case, short enough for a title.
+fn case_name(state: &State, row: usize) -> String {
+    state.loads.get(row).map_or(String::new(), |own| format!("\"{}\"", bars::cut(&shown(&own.case.name), 24)))
+}
+
+/// The value that is about to be typed over.
+fn now(state: &State, kind: EntryKind) -> Option<String> {
+    let value = match kind {
+        EntryKind::Name | EntryKind::Note => return None,
+        EntryKind::Mu => number::mu(state.setup().friction.mu),
+        EntryKind::Limit => match state.setup().hand.force_limit_n {
+            Some(limit) => format!("{} N; none takes it away", number::given(limit)),
+            None => "none".to_owned(),
+        },
+        EntryKind::Size { row } => {
+            let (size, unit) = loads::size_of(state, row)?;
+            format!("{} {unit}", number::given(size))
+        }
+        EntryKind::Safety { row } => number::given(state.loads.get(row)?.case.safety),
+    };
+    Some(format!("now {value}"))
 }
 
 /// Draws a question.
@@ -96,13 +122,17 @@ pub(super) fn marks(state: &State, area: Rect, at: usize, buf: &mut Buffer) {
             None => "-".to_owned(),
         };
         let text = format!(
-            "{}{} {rank:>4} {}  {}  quality {}  margin {}  at mu {}  {}",
+            "{}{} {rank:>4} {}  {}  quality {}  margin {}{}  at mu {}  {}",
             if i == at { '>' } else { ' ' },
             if mark.saved { "saved" } else { "NEW  " },
             shown(&keep.name),
             table::edges(&keep.grasp.spots),
             number::quality(keep.assessment.quality),
             number::margin(keep.assessment.friction_margin),
+            keep.assessment.holding.as_ref().map_or(String::new(), |holding| format!(
+                "  load {}",
+                number::load(holding.load_margin(), holding.held())
+            )),
             number::mu(keep.setup.friction.mu),
             shown(&keep.note),
         );

@@ -7,7 +7,7 @@ use crate::file::CAUTION;
 use ratatui::text::{Line, Span};
 
 /// What each number means.
-const NUMBERS: [(&str, &str); 9] = [
+const NUMBERS: [(&str, &str); 13] = [
     ("mu", "friction coefficient of the finger tips on the part, as entered; every score uses it"),
     ("closed", "every push and turn in the part plane can be balanced by pressing hard enough; open: one cannot"),
     (
@@ -15,10 +15,29 @@ const NUMBERS: [(&str, &str); 9] = [
         "the largest load held in every direction by 1 N of total squeeze; a torque counts as tau over the reach",
     ),
     ("per finger", "the same with 1 N allowed to each finger; /finger in the list when sorted by it"),
-    ("margin", "mu over the friction needed; below 1 the grasp is not closed, \"any\": any friction will do"),
+    (
+        "margin",
+        "mu over the friction needed to close and to hold the loads; below 1 one of them fails, \"any\": any friction will do",
+    ),
     ("place", "mm every finger may be off along its edge, all at once, before closure or the stretch is lost"),
     ("weakest", "the push and turn against which this grasp gives least"),
-    ("^", "no row of the list is better on one of quality, margin and place and as good on the others"),
+    (
+        "squeeze",
+        "N of normal force per finger that hold every load case, with the forces shared as the drive allows; x fingers in all",
+    ),
+    (
+        "load",
+        "load margin: the force limit over the squeeze; the largest multiple of every load that is held; below 1: not held",
+    ),
+    (
+        "held",
+        "some finger forces within the limit hold the load; fingers locked in place may not reach them by themselves",
+    ),
+    ("S", "safety factor: the whole load of the case is taken so many times"),
+    (
+        "^",
+        "no row is better on one of quality, margin, place and, with loads, squeeze and load, and as good on the others",
+    ),
     (
         "edges",
         "numbers of the outer ring's edges in the part file, a hole's as ring:edge; @ is mm from the edge's first vertex",

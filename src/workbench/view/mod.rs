@@ -11,6 +11,8 @@
 mod bars;
 mod dialog;
 mod help;
+mod holding;
+mod loads;
 mod number;
 mod outline;
 mod reading;
@@ -49,7 +51,7 @@ pub fn render(state: &State, area: Rect, buf: &mut Buffer) -> Option<Position> {
         put(buf, Rect { height: 1, ..area }, &text, state.look.plain());
         return None;
     }
-    let layout = Layout::of(area, state.panel);
+    let layout = Layout::of(area, state.panel, !state.setup().loads.is_empty());
     match state.layers.last() {
         Some(Layer::Help { top }) => page(state, area, "help", &help::lines(state, area.width), *top, buf),
         Some(Layer::Reading { top }) => {
@@ -61,8 +63,12 @@ pub fn render(state: &State, area: Rect, buf: &mut Buffer) -> Option<Position> {
         Some(Layer::Marks { at }) => dialog::marks(state, area, *at, buf),
         Some(Layer::Pairs { at, condition }) => tables::pairs(state, area, *at, *condition, buf),
         Some(Layer::Materials { at }) => tables::materials(state, area, *at, buf),
+        Some(Layer::Loads { at }) => loads::list(state, area, *at, buf),
         top @ (None | Some(Layer::Entry(_) | Layer::Ask(_))) => {
-            bench(state, &layout, buf);
+            match state.layers.iter().rev().nth(1) {
+                Some(Layer::Loads { at }) => loads::list(state, area, *at, buf),
+                _ => bench(state, &layout, buf),
+            }
             return match top {
                 Some(Layer::Entry(entry)) => Some(dialog::entry(state, area, entry, buf)),
                 Some(Layer::Ask(question)) => {
@@ -102,7 +108,7 @@ struct Layout {
 impl Layout {
     /// Panels leave in a fixed order as the screen shrinks: the reading, then the outline, last the table; the panel
     /// brought in by hand takes the place of the one that would leave next.
-    fn of(area: Rect, chosen: Panel) -> Self {
+    fn of(area: Rect, chosen: Panel, loads: bool) -> Self {
         let line = |y: u16| Rect { y, height: 1, ..area };
         let told = area.height >= 10;
         let below = 1 + u16::from(told);
@@ -119,14 +125,15 @@ impl Layout {
         let (wide, high) = (area.width >= FULL.0, area.height >= FULL.1);
         match (wide, high) {
             (true, true) => {
-                let rows = (body.height * 9 / 20).clamp(5, 12);
+                // What the loads ask takes two lines more.
+                let rows = (body.height * 9 / 20).clamp(5, 12) + 2 * u16::from(loads && body.height > 18);
                 let (upper, lower) = split_rows(body, body.height - rows);
                 layout.reading = Some(lower);
-                layout.beside(upper, Panel::Outline);
+                layout.beside(upper, Panel::Outline, loads);
             }
             (true, false) => {
                 let left = if chosen == Panel::Reading { Panel::Reading } else { Panel::Outline };
-                layout.beside(body, left);
+                layout.beside(body, left, loads);
             }
             (false, true) => {
                 let (upper, lower) = split_rows(body, body.height / 2);
@@ -145,9 +152,11 @@ impl Layout {
         layout
     }
 
-    fn beside(&mut self, area: Rect, left: Panel) {
-        // The table needs about forty columns for three fingers; what is more goes to the picture first.
-        let table_width = (area.width * 9 / 20).clamp(40, 62).min(area.width / 2 + 8);
+    fn beside(&mut self, area: Rect, left: Panel, loads: bool) {
+        // The table needs about forty columns for three fingers, more for what the loads ask; what is more goes to the
+        // picture first.
+        let (least, most, more) = if loads { (48, 70, 8) } else { (40, 62, 0) };
+        let table_width = (area.width * 9 / 20 + more).clamp(least, most).min(area.width / 2 + 8);
         let left_area = Rect { width: area.width - table_width - 1, ..area };
         self.divider = Some(Rect { x: left_area.right(), width: 1, ..area });
         self.table = Some(Rect { x: left_area.right() + 1, width: table_width, ..area });

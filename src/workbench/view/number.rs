@@ -15,6 +15,27 @@ pub(super) fn margin(value: Option<f64>) -> String {
     }
 }
 
+/// Load margin: limit over the squeeze needed, or in words.
+pub(super) fn load(margin: Option<f64>, held: bool) -> String {
+    match margin {
+        _ if !held => "not held".to_owned(),
+        None => "held".to_owned(),
+        Some(_) => times(margin),
+    }
+}
+
+/// A multiple of the load.
+pub(super) fn times(value: Option<f64>) -> String {
+    format!("x{}", margin(value))
+}
+
+/// A value as someone gave it: no more decimals than it has, at most four.
+pub(super) fn given(value: f64) -> String {
+    let text = format!("{value:.4}");
+    let text = text.trim_end_matches('0').trim_end_matches('.');
+    if text == "-0" { "0".to_owned() } else { text.to_owned() }
+}
+
 /// Friction coefficient: at least two decimals, at most four.
 pub(super) fn mu(value: f64) -> String {
     let text = format!("{value:.4}");
@@ -44,7 +65,7 @@ pub(super) fn kg(value: f64) -> String {
     if value >= 0.9995 { format!("{} kg", mm(value)) } else { format!("{} g", mm(value * 1e3)) }
 }
 
-/// Position in mm: two decimals, without a minus before zero.
+/// Position in mm, or a signed force in N: two decimals, without a minus before zero.
 pub(super) fn at(value: f64) -> String {
     let text = format!("{value:.2}");
     if text == "-0.00" { "0.00".to_owned() } else { text }

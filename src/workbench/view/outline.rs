@@ -5,11 +5,13 @@ use super::super::state::State;
 use super::sheet::{Depth, Fit, Sheet, slope};
 use crate::file::shown;
 use crate::hand::Stretch;
+use crate::mechanics::Contact;
 use crate::part::{Edge, KeepOut};
 use crate::search::{Grasp, Scene};
 use nalgebra::Vector2;
 use ratatui::buffer::Buffer;
 use ratatui::layout::Rect;
+use ratatui::style::Style;
 
 /// Columns and rows left free around the part, for the fingers that stand outside.
 const FREE: (u16, u16) = (4, 2);
@@ -33,12 +35,13 @@ pub(super) fn render(state: &State, area: Rect, buf: &mut Buffer) {
     let free = (FREE.0.min(picture.width / 6), FREE.1.min(picture.height / 5));
     let fit = Fit::new(low, high, (picture.width, picture.height), free, state.look.aspect);
     let mut pen = Pen { sheet: Sheet::new(picture.width, picture.height), fit, look: state.look };
-    let signs = pen.part(scene);
+    let mut signs = pen.part(scene);
     if let Some(reading) = &state.reading {
         if state.cones {
             pen.cones(&reading.grasp, scene);
         }
         pen.fingers(&reading.grasp);
+        signs.pads = reading.grasp.contacts.iter().any(|contact| contact.half_width_mm > 0.0);
     }
     pen.sheet.render(picture, buf);
     if keyed {
@@ -52,12 +55,16 @@ pub(super) fn render(state: &State, area: Rect, buf: &mut Buffer) {
 struct Signs {
     keep_out: bool,
     unreachable: bool,
+    pads: bool,
 }
 
 impl Signs {
     /// As many explanations as fit, none cut.
     fn text(&self, state: &State, width: usize) -> String {
         let mut parts = vec!["@ centre of mass"];
+        if self.pads {
+            parts.push("# pad");
+        }
         let reasons = reasons(state);
         let keep_out = format!("x keep-out: {reasons}");
         if self.keep_out {
@@ -259,6 +266,7 @@ impl Pen {
                 ((column + k * dx).round() as i32, (row + k * dy).round() as i32)
             };
             let level = dx.abs() >= dy.abs();
+            self.pad_face(contact, style);
             let own = at(0);
             self.sheet.put(own.0, own.1, 'o', Depth::Finger, style);
             let free = |sheet: &Sheet, k: i32| {
@@ -280,6 +288,21 @@ impl Pen {
                 let ink = if k == first { head(contact.normal) } else { slope(contact.normal, false) };
                 self.sheet.put(x, y, ink, Depth::Finger, style);
             }
+        }
+    }
+
+    /// The face of a pad that lies flush, at its true width; nothing for a pin.
+    fn pad_face(&mut self, contact: &Contact, style: Style) {
+        let tangent = Vector2::new(contact.normal.y, -contact.normal.x);
+        let [a, b] = [-1.0, 1.0].map(|side| self.fit.cell(contact.point + tangent * (side * contact.half_width_mm)));
+        if contact.half_width_mm <= 0.0 {
+            return;
+        }
+        let steps = (b.0 - a.0).abs().max((b.1 - a.1).abs()).ceil().clamp(1.0, 65_536.0);
+        for k in 0..=steps as u32 {
+            let t = f64::from(k) / steps;
+            let (column, row) = (a.0 + t * (b.0 - a.0), a.1 + t * (b.1 - a.1));
+            self.sheet.put(column.round() as i32, row.round() as i32, '#', Depth::Finger, style);
         }
     }
 

@@ -1,7 +1,7 @@
 //! The reading of the selected grasp: every score with its meaning in one line.
 
 use super::super::state::{Job, Reading, State};
-use super::{number, table, wrapped};
+use super::{holding, number, table, wrapped};
 use crate::mechanics::assess::Assessment;
 use crate::mechanics::escape::{Escape, Sense};
 use crate::mechanics::placement::Governor;
@@ -30,6 +30,7 @@ pub(super) fn lines(state: &State, width: u16, full: bool) -> Vec<Line<'static>>
     }
     page.doubts(reading);
     page.verdict(reading);
+    page.loads_in_short(reading);
     page.friction(reading);
     let closed = reading.assessment.verdict == Verdict::Closed;
     if closed {
@@ -44,21 +45,22 @@ pub(super) fn lines(state: &State, width: u16, full: bool) -> Vec<Line<'static>>
         page.per_finger(&reading.assessment);
     }
     if full {
+        page.loads(reading);
         page.assumed(state);
     }
     page.lines
 }
 
-struct Page<'a> {
+pub(super) struct Page<'a> {
     width: usize,
-    full: bool,
-    state: &'a State,
+    pub(super) full: bool,
+    pub(super) state: &'a State,
     lines: Vec<Line<'static>>,
 }
 
 impl Page<'_> {
     /// A name, a value and what it means; on the full page what does not fit goes to further lines.
-    fn tell(&mut self, name: &str, value: &str, style: Style, meaning: &str) {
+    pub(super) fn tell(&mut self, name: &str, value: &str, style: Style, meaning: &str) {
         let look = self.state.look;
         // Values line up where there is room for it.
         let value = if value.is_empty() || self.width < 60 { value.to_owned() } else { format!("{value:<VALUES$}") };
@@ -114,6 +116,9 @@ impl Page<'_> {
         for (a, b) in &reading.grasp.too_near {
             self.tell("fit", &format!("fingers {} and {} are too near", a + 1, b + 1), bad, "");
         }
+        if let Some(Err(fault)) = &reading.grasp.jaws {
+            self.tell("fit", "no jaws so:", bad, &fault.to_string());
+        }
         for doubt in &reading.doubts {
             self.tell("in doubt", "two ways disagree:", bad, &doubt.to_string());
         }
@@ -161,7 +166,13 @@ impl Page<'_> {
                 let margin = number::margin(a.friction_margin);
                 self.tell("friction", &format!("margin {margin}"), look.title(), "by the edges' own friction; mu is 0");
             }
-            None => self.tell("friction", "no mu", look.bad(), "closes this grasp"),
+            None => match a.friction_needed_closure {
+                Some(closure) => {
+                    let meaning = format!("holds the loads within the limit; {} it", holding::closes_at(closure));
+                    self.tell("friction", "no mu", look.bad(), &meaning);
+                }
+                None => self.tell("friction", "no mu", look.bad(), "closes this grasp"),
+            },
             Some(needed) => {
                 let none = needed < 5e-5;
                 let value = match (a.verdict, none) {
@@ -171,6 +182,11 @@ impl Page<'_> {
                     _ => format!("{} needed", number::mu(needed)),
                 };
                 let meaning = match (a.verdict, a.friction_margin_deg) {
+                    _ if for_loads(a) => {
+                        let closure = a.friction_needed_closure.map_or(String::new(), holding::closes_at);
+                        let margin = number::margin(a.friction_margin);
+                        format!("margin {margin} of mu {mu}, for the loads; {closure}")
+                    }
                     (Verdict::Closed, Some(degrees)) => format!(
                         "of mu {mu}: margin {}, normals may be off {degrees:.1} deg",
                         number::margin(a.friction_margin)
@@ -184,15 +200,16 @@ impl Page<'_> {
         if !reading.band.is_empty() {
             let mut meaning = String::new();
             let mut last = None;
-            for (name, Standing { mu, verdict, .. }) in &reading.band {
-                if last == Some(*verdict) {
+            for (name, standing) in &reading.band {
+                let word = standing_word(standing);
+                if last == Some(word) {
                     meaning.push_str(", ");
                 } else {
                     let gap = if last.is_some() { "; " } else { "" };
-                    meaning.push_str(&format!("{gap}{} at ", verdict.word()));
+                    meaning.push_str(&format!("{gap}{word} at "));
                 }
-                meaning.push_str(&format!("{name} {}", number::mu(*mu)));
-                last = Some(*verdict);
+                meaning.push_str(&format!("{name} {}", number::mu(standing.mu)));
+                last = Some(word);
             }
             let friction = &self.state.setup().friction;
             if let Some(condition) = friction.condition {
@@ -276,6 +293,7 @@ impl Page<'_> {
                 );
                 self.tell(if finger == 0 { "fingers" } else { "" }, text, self.state.look.plain(), &meaning);
             }
+            self.jaws(reading);
             return;
         }
         // As many side by side as fit.
@@ -285,6 +303,20 @@ impl Page<'_> {
             let text: String = group.iter().map(|text| format!("{text:<widest$}")).collect();
             self.tell(if i == 0 { "fingers" } else { "" }, "", self.state.look.plain(), text.trim_end());
         }
+    }
+
+    /// Where parallel jaws stand.
+    fn jaws(&mut self, reading: &Reading) {
+        let Some(Ok(jaws)) = &reading.grasp.jaws else { return };
+        let centre = self.state.order.scene.part().file_point(jaws.centre);
+        let how = if jaws.inside { "pressing outward" } else { "pressing inward" };
+        let meaning = format!(
+            "{how}, axis toward {} deg, centre ({}, {})",
+            number::degrees(jaws.angle_rad.to_degrees()),
+            number::at(centre.x),
+            number::at(centre.y)
+        );
+        self.tell("jaws", &format!("{} mm open", number::mm(jaws.opening_mm)), self.state.look.plain(), &meaning);
     }
 
     fn assumed(&mut self, state: &State) {
@@ -299,6 +331,24 @@ impl Page<'_> {
             let how = format!("by {} kg/m3 of {}, chosen here ({})", row.kg_m3, row.name, row.source);
             self.tell("mass", &number::kg(mass.kg), state.look.plain(), &how);
         }
+    }
+}
+
+/// The friction needed is that for the loads, not that for closure.
+fn for_loads(a: &Assessment) -> bool {
+    match (a.friction_needed_closure, a.friction_needed_holding) {
+        (Some(closure), Some(holding)) => holding > closure,
+        _ => false,
+    }
+}
+
+/// How a grasp stands at some friction, in a word or two: whether it holds the loads where there are any, whether it
+/// closes where there are none.
+fn standing_word(standing: &Standing) -> &'static str {
+    match (&standing.holding, standing.verdict) {
+        (Some(holding), Verdict::Closed) if holding.held() => "held",
+        (Some(_), Verdict::Closed) => "not held",
+        (_, verdict) => verdict.word(),
     }
 }
 

@@ -1,8 +1,10 @@
 //! The ranked table, and what is said when it is empty.
 
 use super::super::state::{Job, Shown, State};
-use super::{number, put, titled, wrapped};
-use crate::search::{Floors, Key, Listed, Listing, Spot};
+use super::{bars, number, put, titled, wrapped};
+use crate::hand::{Closing, Drive, Hand, Tip};
+use crate::mechanics::{Assessment, Holding};
+use crate::search::{Key, Listed, Listing, Setup, Spot};
 use ratatui::buffer::Buffer;
 use ratatui::layout::Rect;
 
@@ -34,8 +36,8 @@ fn title(state: &State) -> (String, String) {
     let Some(shown) = &state.shown else { return ("grasps".to_owned(), String::new()) };
     if state.is_old() {
         let mu = number::mu(shown.order.scene.setup().friction.mu);
-        let fingers = shown.order.scene.setup().hand.fingers.get();
-        return (format!("OLD: mu {mu}, {fingers} fingers"), shown.order.key.word().replace('_', " "));
+        let fingers = bars::fingers(&shown.order.scene.setup().hand);
+        return (format!("OLD: mu {mu}, {fingers}"), shown.order.key.word().replace('_', " "));
     }
     let ranking = &shown.ranking;
     let sample = match (&state.job, ranking.complete) {
@@ -49,7 +51,7 @@ fn title(state: &State) -> (String, String) {
     };
     let hidden = match ranking.below_floors {
         0 => String::new(),
-        _ if floors(&state.setup().floors).is_empty() => String::new(),
+        _ if floors(state.setup()).is_empty() => String::new(),
         _ if ranking.closed == ranking.below_floors => "floors hide all ".to_owned(),
         n => format!("floors hide {} % ", (n as u128 * 100).div_ceil(u128::from(ranking.closed)).min(99)),
     };
@@ -63,8 +65,51 @@ fn title(state: &State) -> (String, String) {
     (title, right)
 }
 
-/// Columns of numbers: heading and width.
-const COLUMNS: [(&str, usize); 3] = [("quality", 7), ("margin", 7), ("place", 6)];
+/// A column of numbers.
+struct Column {
+    name: &'static str,
+    width: usize,
+    value: fn(&Assessment) -> String,
+    /// The list is sorted by it: it stays when others leave.
+    sorted: bool,
+}
+
+/// The columns there are, the most wanted on the left.
+fn columns(key: Key, loads: bool) -> Vec<Column> {
+    let column = |name, width, value, sorted| Column { name, width, value, sorted };
+    // The quality shown is the one the list is sorted by.
+    let mut columns = vec![
+        if key == Key::QualityPerFinger {
+            column("/finger", 7, |a| number::quality(a.quality_per_finger), true)
+        } else {
+            column("quality", 7, |a| number::quality(a.quality), key == Key::Quality)
+        },
+        column("margin", 7, |a| number::margin(a.friction_margin), key == Key::Friction),
+        column("place", 6, |a| number::mm(a.placement.mm), key == Key::Placement),
+    ];
+    if loads {
+        let squeeze = |a: &Assessment| {
+            let needed = a.holding.as_ref().and_then(Holding::squeeze_n);
+            needed.map_or("none".to_owned(), number::mm)
+        };
+        let load = |a: &Assessment| {
+            a.holding.as_ref().map_or(String::new(), |holding| number::load(holding.load_margin(), holding.held()))
+        };
+        columns.push(column("squeeze", 8, squeeze, key == Key::Squeeze));
+        columns.push(column("load", 9, load, false));
+    }
+    columns
+}
+
+/// Drops columns from the right until the rest fits; the one the list is sorted by stays.
+fn fitting(mut columns: Vec<Column>, room: usize) -> Vec<Column> {
+    let width = |columns: &[Column]| columns.iter().map(|column| column.width).sum::<usize>();
+    while columns.len() > 1 && width(&columns) > room {
+        let Some(last) = columns.iter().rposition(|column| !column.sorted) else { break };
+        columns.remove(last);
+    }
+    columns
+}
 
 fn rows(state: &State, shown: &Shown, area: Rect, buf: &mut Buffer) {
     let width = usize::from(area.width);
@@ -78,17 +123,12 @@ fn rows(state: &State, shown: &Shown, area: Rect, buf: &mut Buffer) {
     };
     let longest = |row: &Listed| places(row).chars().count();
     let least_edges = shown.ranking.grasps.iter().map(longest).max().unwrap_or(0).clamp(6, 24);
-    let mut columns = COLUMNS.len();
-    let numbers = |columns: usize| COLUMNS[..columns].iter().map(|(_, width)| width).sum::<usize>();
-    while columns > 1 && lead + least_edges + numbers(columns) > width {
-        columns -= 1;
-    }
-    let edges_width = width.saturating_sub(lead + numbers(columns));
-    let per_finger = shown.order.key == Key::QualityPerFinger;
+    let loads = !shown.order.scene.cases().is_empty();
+    let columns = fitting(columns(shown.order.key, loads), width.saturating_sub(lead + least_edges));
+    let numbers: usize = columns.iter().map(|column| column.width).sum();
+    let edges_width = width.saturating_sub(lead + numbers);
     let mut head = format!("   {:>3} {:<edges_width$}", "#", "edges");
-    for (name, width) in &COLUMNS[..columns] {
-        // The quality shown is the one the list is sorted by.
-        let name = if per_finger && *name == "quality" { "/finger" } else { name };
+    for Column { name, width, .. } in &columns {
         head.push_str(&format!("{name:>width$}"));
     }
     put(buf, area, &head, state.look.dim());
@@ -97,7 +137,6 @@ fn rows(state: &State, shown: &Shown, area: Rect, buf: &mut Buffer) {
     let top = first_row(state.selected, height, grasps.len());
     for (i, row) in grasps.iter().enumerate().skip(top).take(height) {
         let selected = i == state.selected;
-        let a = &row.assessment;
         let mut text = format!(
             "{}{}{}{:>3} {}",
             if selected { '>' } else { ' ' },
@@ -106,10 +145,8 @@ fn rows(state: &State, shown: &Shown, area: Rect, buf: &mut Buffer) {
             i + 1,
             padded(&places(row), edges_width),
         );
-        let quality = if per_finger { a.quality_per_finger } else { a.quality };
-        let values = [number::quality(quality), number::margin(a.friction_margin), number::mm(a.placement.mm)];
-        for (value, (_, width)) in values.iter().zip(&COLUMNS[..columns]) {
-            text.push_str(&format!("{value:>width$}"));
+        for Column { value, width, .. } in &columns {
+            text.push_str(&format!("{:>width$}", value(&row.assessment)));
         }
         let line = Rect { y: area.y + 1 + (i - top) as u16, height: 1, ..area };
         let style = match (selected, state.is_old()) {
@@ -171,11 +208,18 @@ fn nothing(state: &State) -> Vec<String> {
         return vec![
             "No finger fits anywhere on this part.".to_owned(),
             format!(
-                "Pins of radius {} mm stay {} mm off corners and off every keep-out. Smaller ones, less clearance or \
-                 fewer keep-outs make room.",
-                number::mm(setup.hand.pin_radius_mm),
+                "{} stay {} mm off corners and off every keep-out. Smaller ones, less clearance or fewer keep-outs make \
+                 room.",
+                tips(&setup.hand),
                 number::mm(setup.hand.corner_clearance_mm),
             ),
+        ];
+    }
+    if setup.hand.closing == Closing::Parallel && scene.jaw_runs().is_empty() {
+        let [least, most] = setup.hand.opening_mm.map(number::given);
+        return vec![
+            "Nowhere do two pads fit that face each other.".to_owned(),
+            format!("{} open {least} to {most} mm; P goes back to fingers of their own.", tips(&setup.hand)),
         ];
     }
     let Some(shown) = state.shown.as_ref().filter(|_| !state.is_old()) else {
@@ -192,14 +236,18 @@ fn nothing(state: &State) -> Vec<String> {
             "Try more friction (l), one finger more (f), or finer sites (.).".to_owned(),
         ];
     }
-    let mut lines = vec![format!(
-        "{} closed, none listed.",
-        number::count(ranking.closed, "candidate set is", "candidate sets are")
-    )];
-    let floors = floors(&setup.floors);
+    let mut lines = Vec::new();
+    if ranking.not_held == 0 || ranking.below_floors > 0 {
+        let closed = number::count(ranking.closed, "candidate set is", "candidate sets are");
+        lines.push(format!("{closed} closed, none listed."));
+    }
+    let floors = floors(setup);
     if !floors.is_empty() {
         lines.push(format!("The floors ask for {}.", floors.join(", ")));
         lines.push("Try a lower floor in the setup, more friction (l) or one finger more (f).".to_owned());
+    }
+    if ranking.not_held > 0 {
+        lines.extend(not_held(state, ranking.not_held));
     }
     if ranking.inconclusive > 0 {
         lines.push(format!("{} left out: the two ways to the score disagree.", ranking.inconclusive));
@@ -207,8 +255,45 @@ fn nothing(state: &State) -> Vec<String> {
     lines
 }
 
+/// That sets which came in question do not hold the loads, by which case where that is known, and what to try.
+fn not_held(state: &State, sets: u64) -> Vec<String> {
+    let hand = &state.setup().hand;
+    let sets = if sets == 1 { "1 closed set came".to_owned() } else { format!("{sets} closed sets came") };
+    let limit = match hand.force_limit_n {
+        Some(limit) => format!(" within {} N each", number::given(limit)),
+        None => String::new(),
+    };
+    let drive = if hand.drive == Drive::Equal { " or forces of their own (e)" } else { "" };
+    let mut lines = vec![
+        format!("{sets} in question, none holds every load{limit}."),
+        format!("Try a higher force limit (u), more friction (l), one finger more (f), smaller loads (L){drive}."),
+    ];
+    let holding = state.reading.as_ref().and_then(|reading| reading.assessment.holding.as_ref());
+    if let Some(case) = holding.map(Holding::governing_case) {
+        let asks = match case.squeeze_n {
+            Some(n) => format!("asks {} N each", number::mm(n)),
+            None => "is held by no squeeze".to_owned(),
+        };
+        lines.insert(1, format!("\"{}\" {asks} of the grasp last selected.", crate::file::shown(&case.name)));
+    }
+    lines
+}
+
+/// The tips with their size.
+fn tips(hand: &Hand) -> String {
+    match hand.tip {
+        Tip::Pin => format!("Pins of radius {} mm", number::mm(hand.pin_radius_mm)),
+        Tip::Pad => {
+            let [width, depth] = [hand.pad_width_mm, hand.pad_depth_mm].map(number::mm);
+            format!("Pads {width} mm wide and {depth} mm deep")
+        }
+    }
+}
+
 /// The floors that ask for something, in words.
-pub(super) fn floors(floors: &Floors) -> Vec<String> {
+fn floors(setup: &Setup) -> Vec<String> {
+    let floors = &setup.floors;
+    let loads = !setup.loads.is_empty() && setup.hand.force_limit_n.is_some();
     let mut asked = Vec::new();
     if floors.quality > 0.0 {
         asked.push(format!("quality {}", number::quality(floors.quality)));
@@ -218,6 +303,9 @@ pub(super) fn floors(floors: &Floors) -> Vec<String> {
     }
     if floors.placement_mm > 0.0 {
         asked.push(format!("placement {} mm", number::mm(floors.placement_mm)));
+    }
+    if loads && floors.load_margin > 1.0 {
+        asked.push(format!("load margin {}", number::times(Some(floors.load_margin))));
     }
     asked
 }

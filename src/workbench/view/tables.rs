@@ -57,7 +57,13 @@ pub(super) fn pairs(state: &State, area: Rect, at: usize, condition: Condition, 
             told
         }
     };
-    list(state, area, "friction of a pair", &List { head, at, count: PAIRS.len() + 1, row: &row, told }, buf);
+    list(
+        state,
+        area,
+        "friction of a pair",
+        &List { head, at, count: PAIRS.len() + 1, row: &row, told, rest: REST },
+        buf,
+    );
 }
 
 /// Draws the list of densities over the whole screen.
@@ -84,7 +90,13 @@ pub(super) fn materials(state: &State, area: Rect, at: usize, buf: &mut Buffer) 
             ]
         }
     };
-    list(state, area, "density of the part", &List { head, at, count: DENSITIES.len() + 1, row: &row, told }, buf);
+    list(
+        state,
+        area,
+        "density of the part",
+        &List { head, at, count: DENSITIES.len() + 1, row: &row, told, rest: REST },
+        buf,
+    );
 }
 
 /// A band in words.
@@ -99,20 +111,31 @@ fn band_words(friction: &FrictionBand) -> String {
 }
 
 /// A list with what is said of its selected row.
-struct List<'a> {
-    head: String,
-    at: usize,
-    count: usize,
-    row: &'a dyn Fn(usize) -> String,
-    told: Vec<String>,
+pub(super) struct List<'a> {
+    /// Names of the columns.
+    pub(super) head: String,
+    /// The selected row.
+    pub(super) at: usize,
+    /// Rows in all.
+    pub(super) count: usize,
+    /// The text of a row.
+    pub(super) row: &'a dyn Fn(usize) -> String,
+    /// What is said of the selected row.
+    pub(super) told: Vec<String>,
+    /// Where the rest of it stands when not all of it fits.
+    pub(super) rest: &'a str,
 }
 
-fn list(state: &State, area: Rect, title: &str, list: &List<'_>, buf: &mut Buffer) {
+/// Where the rest of the sources stands.
+const REST: &str = "..  `holdwright materials` lists all of it";
+
+/// Draws a list over the whole screen.
+pub(super) fn list(state: &State, area: Rect, title: &str, list: &List<'_>, buf: &mut Buffer) {
     let (body, footer) = split_rows(area, area.height.saturating_sub(1));
     let (body, message) = split_rows(body, body.height.saturating_sub(1));
     // The part below keeps its height, so that the rows stay where they are while the selection moves.
     let (body, below) = split_rows(body, body.height - (body.height * 9 / 20).min(MOST_TOLD + 1));
-    let inside = titled(state, body, title, &format!("{} of {}", list.at + 1, list.count), buf);
+    let inside = titled(state, body, title, &format!("{} of {}", (list.at + 1).min(list.count), list.count), buf);
     let (head, rows) = split_rows(inside, 1);
     put(buf, head, &list.head, state.look.dim());
     let height = usize::from(rows.height);
@@ -130,7 +153,7 @@ fn list(state: &State, area: Rect, title: &str, list: &List<'_>, buf: &mut Buffe
         let room = usize::from(inside.height);
         for (i, (line, y)) in lines.iter().zip(inside.top()..inside.bottom()).enumerate() {
             let more = i + 1 == room && lines.len() > room;
-            let line = if more { "..  `holdwright materials` lists all of it" } else { line };
+            let line = if more { list.rest } else { line };
             put(buf, Rect { y, height: 1, ..inside }, line, state.look.plain());
         }
     }
