@@ -356,6 +356,10 @@ pub fn envelope(
     directions: usize,
 ) -> Option<Vec<(f64, f64)>> {
     let mut squeezer = Squeezer::new(*hold);
+    match least(&mut squeezer, hold, fixed) {
+        Answer::Held(held) if held.squeeze_n <= at_most(limit_n) => {}
+        _ => return None,
+    }
     let mut ends = Vec::with_capacity(directions);
     for i in 0..directions {
         let deg = 360.0 * i as f64 / directions as f64;

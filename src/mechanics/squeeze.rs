@@ -33,17 +33,21 @@ const HAIR: f64 = 1e-11;
 /// singular make long ones.
 const PRICE: f64 = 1e-11;
 /// Rounding of a reach, as a part of the direction's length.
-const ROUNDING: f64 = 1e-14;
+const ROUNDING: f64 = 1e-15;
 /// A direction falls short when it does by more than this.
 const DECIDED: f64 = 1e-10;
 /// What the two sides of a proof may differ by, relative.
 const GAP: f64 = 1e-9;
+/// The same where bases nearly singular leave no more digits.
+const WIDEST_GAP: f64 = 1e-6;
 /// Artificial weight below this is rounding.
 const NOTHING: f64 = 1e-12;
 /// Squeezes above this, for a load of 1, are called none: the fingers reach there by rounding alone.
-pub const BEYOND: f64 = 1e8;
+pub const BEYOND: f64 = 1e6;
 /// Pivots after which the method gives up.
 const MOST_PIVOTS: usize = 400;
+/// Pivots after which tiny ones are taken as they come: passing over them may go round in a circle.
+const PATIENT: usize = 60;
 /// Pivots without progress after which the load is nudged to break ties.
 const MOST_STALLED: usize = 12;
 
@@ -192,7 +196,7 @@ impl<'a> Squeezer<'a> {
         self.start(target);
         let mut stalled = 0;
         let mut renewed = false;
-        for _ in 0..MOST_PIVOTS {
+        for pivots in 0..MOST_PIVOTS {
             let artificial: f64 = (0..N).filter(|&r| self.columns[r].artificial).map(|r| self.x[r]).sum();
             let first_phase = artificial > NOTHING;
             if let Some(enough) = enough
@@ -208,9 +212,17 @@ impl<'a> Squeezer<'a> {
             {
                 return Ok(Decision::Short { direction: u });
             }
+            if first_phase && target.dot(&u) > BEYOND * reach {
+                return Err(self.proof(target, true));
+            }
             let gain = if first_phase { reach - PRICE * u.norm() } else { reach - 1.0 - PRICE - ROUNDING * u.norm() };
-            let entered =
-                gain > 0.0 && self.enter(Column { wrench, artificial: false, forces }, first_phase, &mut stalled);
+            let entered = gain > 0.0
+                && self.enter(
+                    Column { wrench, artificial: false, forces },
+                    first_phase,
+                    pivots < PATIENT,
+                    &mut stalled,
+                );
             if entered {
                 if stalled == MOST_STALLED {
                     self.nudge();
@@ -267,10 +279,12 @@ impl<'a> Squeezer<'a> {
     }
 
     /// Brings a column into the basis; false when nothing gives way for it.
-    fn enter(&mut self, column: Column, first_phase: bool, stalled: &mut usize) -> bool {
+    fn enter(&mut self, column: Column, first_phase: bool, patient: bool, stalled: &mut usize) -> bool {
         let d = self.inverse * column.wrench;
         // Tiny pivots ruin the inverse; they are taken only where there is no other.
-        let Some(r) = [GOOD_PIVOT, PIVOT].into_iter().find_map(|least| self.leaves(&d, first_phase, least)) else {
+        let Some(r) =
+            [GOOD_PIVOT, PIVOT][usize::from(!patient)..].iter().find_map(|least| self.leaves(&d, first_phase, *least))
+        else {
             return false;
         };
         let gone = !first_phase && self.columns[r].artificial;
@@ -386,7 +400,7 @@ impl<'a> Squeezer<'a> {
         if squeeze > BEYOND {
             return if least > BEYOND / 2.0 { Answer::Never { direction: u / u.norm() } } else { Answer::Unsure };
         }
-        let gap = GAP * (1.0 + squeeze) + ROUNDING * u.norm();
+        let gap = (GAP + ROUNDING * u.norm()).min(WIDEST_GAP) * (1.0 + squeeze);
         let agree = reach > 0.0 && (squeeze - least).abs() <= gap && residual_n <= gap;
         if agree {
             Answer::Held(Held { squeeze_n: squeeze, direction: u / reach, forces, residual_n })
