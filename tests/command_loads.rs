@@ -260,3 +260,55 @@ fn the_name_of_a_load_cannot_steer_the_terminal() {
         assert!(out(&output).contains("[2J") && !out(&output).contains('\u{1b}'), "{:?}", out(&output));
     }
 }
+
+/// Parallel jaws across a bar 40 mm high: opening, centre and axis by the drawing. Along the faces friction carries weight
+/// and push together, `S m sqrt(g^2 + a^2) = 2 mu F` for the exact cone (Coulomb), at most a pyramid's cos(pi / 8) less;
+/// across them the weight takes its share of friction first and what one jaw adds to the other holds the push,
+/// `S m a <= F` at the least (statics).
+#[test]
+fn score_says_how_jaws_stand_and_what_they_hold() {
+    let bench = Bench::new();
+    let cell = CELL.replace("fingers = 2\ntip = \"pad\"", "closing = \"parallel\"\nopening_mm = [30.0, 50.0]");
+    bench.write("jaws.toml", &cell.replace("force_limit_n = 10.0", "force_limit_n = 30.0"));
+    let at = ["score", "bar.toml", "--setup", "jaws.toml", "--at", "0:0:40,0:2:40"];
+    let report = json(&bench.run(&[&at[..], &["--json"]].concat()));
+    let grasp = &report["grasps"][0];
+    assert_eq!(grasp["fits"], true);
+    let jaws = &grasp["jaws"];
+    near(&jaws["opening_mm"], 40.0);
+    near(&jaws["angle_deg"], 90.0);
+    near(&jaws["centre_mm"][0], 40.0);
+    near(&jaws["centre_mm"][1], 20.0);
+    assert_eq!(jaws["inside"], false);
+    let envelope = grasp["envelope"].as_array().unwrap();
+    assert_eq!(envelope.len(), 36);
+    let toward = |deg: f64| {
+        let end = envelope.iter().find(|end| (end["direction_deg"].as_f64().unwrap() - deg).abs() < 1e-9).unwrap();
+        end["m_s2"].as_f64().unwrap()
+    };
+    let (mass, s, mu, limit) = (7850.0 * 80e-3 * 40e-3 * 5e-3, 2.0, 0.2, 30.0);
+    let along = |reach: f64| ((2.0 * mu * limit * reach / (s * mass)).powi(2) - 9.80665_f64.powi(2)).sqrt();
+    for deg in [0.0, 180.0] {
+        assert!(toward(deg) <= along(1.0) * (1.0 + 1e-9) && toward(deg) >= along((std::f64::consts::PI / 8.0).cos()));
+    }
+    // Across: one jaw at the limit, the other at what is left, and mu times both still bears the weight.
+    let others = s * mass * 9.80665 / mu - limit;
+    near(&serde_json::json!(toward(90.0)), (limit - others.max(0.0)) / (s * mass));
+    let output = bench.run(&at);
+    let text = out(&output);
+    assert!(
+        flowing(text).contains("jaws 40.000 mm open, centre (40.00, 20.00) mm, axis 90.00 deg, pressing inward"),
+        "{text}"
+    );
+    assert!(flowing(text).contains("on top of its weight (S 2.000) the limit holds"), "{text}");
+    assert!(text.lines().all(|line| line.chars().count() <= 80), "{text}");
+    // Two places that do not face each other, and an opening out of range.
+    let beside = bench.run(&["score", "bar.toml", "--setup", "jaws.toml", "--at", "0:0:40,0:2:30"]);
+    assert!(out(&beside).contains("no jaws so"), "{}", out(&beside));
+    let wide = bench.run(&["score", "bar.toml", "--setup", "jaws.toml", "--at", "0:1:20,0:3:20"]);
+    assert!(out(&wide).contains("no jaws so"), "{}", out(&wide));
+    let three = bench.run(&["score", "bar.toml", "--setup", "jaws.toml", "--at", "0:0:40,0:2:30,0:1:20"]);
+    assert!(err(&three).contains("parallel jaws are two fingers, not 3"), "{}", err(&three));
+    let ranked = json(&bench.run(&["rank", "bar.toml", "--setup", "jaws.toml", "--json"]));
+    assert!(ranked["grasps"].as_array().unwrap().iter().all(|grasp| grasp["jaws"]["opening_mm"].is_number()));
+}

@@ -86,6 +86,7 @@ fn rank_prints_the_promised_object() {
                 "loads",
                 "bearing",
                 "jaws",
+                "envelope",
                 "standing",
             ])
         );

@@ -71,9 +71,28 @@ pub(super) struct GraspReport {
     #[serde(flatten)]
     holding: HoldingReport,
     /// Where a pair of parallel jaws stands; hands whose fingers close freely have none.
-    jaws: Option<()>,
+    jaws: Option<JawsReport>,
     /// At the other frictions of the band; given contacts only.
     standing: Option<Vec<StandingReport>>,
+    /// Largest acceleration held in each of even directions of the plane; given contacts only, null where it has none.
+    envelope: Option<Vec<EnvelopeReport>>,
+}
+
+#[derive(Debug, Serialize)]
+struct JawsReport {
+    centre_mm: [f64; 2],
+    /// Of the axis from the first contact to the second.
+    angle_deg: f64,
+    opening_mm: f64,
+    /// The jaws stand between the faces and press outward.
+    inside: bool,
+}
+
+#[derive(Debug, Serialize)]
+struct EnvelopeReport {
+    direction_deg: f64,
+    /// Null where any acceleration is held.
+    m_s2: Option<f64>,
 }
 
 #[derive(Debug, Serialize)]
@@ -131,6 +150,11 @@ impl<'a> Report<'a> {
     pub(super) fn add(&mut self, scene: &Scene, reading: &Reading) {
         let mut own = self.scores(scene, &reading.grasp, &reading.assessment, reading.verdict());
         own.standing = Some(loads::standing(scene, &reading.grasp));
+        let end = |(direction_deg, m_s2): (f64, f64)| EnvelopeReport {
+            direction_deg,
+            m_s2: Some(m_s2).filter(|m_s2| m_s2.is_finite()),
+        };
+        own.envelope = super::loads::envelope(scene, &reading.grasp).map(|ends| ends.into_iter().map(end).collect());
         self.grasps.push(own);
     }
 
@@ -166,8 +190,14 @@ impl<'a> Report<'a> {
                 }
             }),
             holding: HoldingReport::of(scene, grasp, a),
-            jaws: None,
+            jaws: grasp.jaws.as_ref().and_then(|jaws| jaws.as_ref().ok()).map(|jaws| JawsReport {
+                centre_mm: point(scene.part().file_point(jaws.centre)),
+                angle_deg: jaws.angle_rad.to_degrees() + 0.0,
+                opening_mm: jaws.opening_mm,
+                inside: jaws.inside,
+            }),
             standing: None,
+            envelope: None,
         }
     }
 }

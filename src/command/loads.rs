@@ -68,8 +68,39 @@ pub(super) fn describe(text: &mut String, scene: &Scene, reading: &Reading) -> W
         forces(text, scene, &reading.grasp, holding)?;
         beside(text, scene, &reading.grasp, holding)?;
         bearing(text, scene, &reading.grasp, holding)?;
+        least_acceleration(text, scene, &reading.grasp)?;
     }
     standing(text, scene, &reading.grasp)
+}
+
+/// Directions the acceleration envelope is told in.
+const DIRECTIONS: usize = 36;
+
+/// The acceleration envelope of a grasp: degrees from +x and m/s2.
+pub(super) fn envelope(scene: &Scene, grasp: &Grasp) -> Option<Vec<(f64, f64)>> {
+    if scene.cases().is_empty() { None } else { scene.envelope(grasp, DIRECTIONS) }
+}
+
+fn least_acceleration(text: &mut String, scene: &Scene, grasp: &Grasp) -> Written {
+    let Some(least) =
+        envelope(scene, grasp).and_then(|ends| ends.into_iter().reduce(|a, b| if b.1 < a.1 { b } else { a }))
+    else {
+        return Ok(());
+    };
+    let first = scene.setup().loads.first().map_or(1.0, |load| load.safety);
+    let (deg, m_s2) = least;
+    if m_s2.is_infinite() {
+        return say(text, "any acceleration in the plane is held at the limit");
+    }
+    say(
+        text,
+        &format!(
+            "on top of its weight (S {}) the limit holds {} m/s2 in any of {DIRECTIONS} directions of the plane, least toward \
+             {deg:.0} deg",
+            ratio(first),
+            ratio(m_s2)
+        ),
+    )
 }
 
 fn say(text: &mut String, words: &str) -> Written {

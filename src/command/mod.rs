@@ -177,6 +177,6 @@ fn open(args: Open) -> Result<Answer, Stop> {
             MarkerWord::Braille => workbench::Marker::Braille,
         }),
     };
-    workbench::run(options).map_err(|error| Stop::bad(format!("the terminal: {error}")))?;
+    workbench::run(options).map_err(|stopped| Stop::bad(stopped.to_string()))?;
     Ok(Answer::Done)
 }

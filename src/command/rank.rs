@@ -260,6 +260,13 @@ fn why_empty(scene: &Scene, ranking: &Ranking) -> String {
             ranking.closed, ranking.inconclusive
         );
     }
+    if ranking.not_held > 0 {
+        return format!(
+            "{} sets close; {} of them came in question, and none holds every load: try a larger force limit, more\n\
+             friction, more fingers or pads, or a lower load margin under [floors]. `score` shows what each load asks.",
+            ranking.closed, ranking.not_held
+        );
+    }
     let load_margin =
         if scene.cases().is_empty() { String::new() } else { format!(", load margin {}", floors.load_margin) };
     format!(

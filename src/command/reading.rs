@@ -163,6 +163,7 @@ pub(super) fn misfits(grasp: &Grasp) -> Vec<String> {
             format!("finger {} does not fit there: a corner, a keep-out or another edge is in its way", finger + 1)
         })
         .collect();
+    reasons.extend(grasp.jaws.iter().filter_map(|jaws| Some(format!("no jaws so: {}", jaws.as_ref().err()?))));
     reasons.extend(
         grasp.too_near.iter().map(|(a, b)| format!("fingers {} and {} are nearer than the gap allows", a + 1, b + 1)),
     );

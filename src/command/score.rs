@@ -116,6 +116,18 @@ fn describe(text: &mut String, scene: &Scene, number: usize, reading: &Reading) 
     for reason in misfits(&reading.grasp) {
         writeln!(text, "{}", wrapped(&reason, 4, 6))?;
     }
+    if let Some(Ok(jaws)) = &reading.grasp.jaws {
+        let centre = scene.part().file_point(jaws.centre);
+        let words = format!(
+            "jaws {} mm open, centre ({:.2}, {:.2}) mm, axis {:.2} deg, pressing {}",
+            length(jaws.opening_mm),
+            centre.x + 0.0,
+            centre.y + 0.0,
+            jaws.angle_rad.to_degrees() + 0.0,
+            if jaws.inside { "outward" } else { "inward" }
+        );
+        writeln!(text, "{}", wrapped(&words, 4, 6))?;
+    }
     if let Some(weakest) = &a.weakest {
         let share = weakest.torque();
         match weakest.force_deg() {

@@ -249,6 +249,14 @@ fn grasp_of(table: &Table<'_>, file_setup: &Setup) -> Option<SavedGrasp> {
         inner.text("sense");
         inner.finish();
     }
+    // Written for whoever sets up the jaws; the contacts say the same to the program.
+    if let Some(inner) = table.table("jaws") {
+        inner.numbers::<2>("centre_mm");
+        inner.number("angle_deg");
+        inner.number("opening_mm");
+        inner.flag("inside");
+        inner.finish();
+    }
     let (held, governing_load) = (table.flag("held"), table.text("governing_load"));
     let loads = table.tables("loads").into_iter().filter_map(load_of).collect();
     let density = density_of(table);

@@ -92,6 +92,17 @@ fn write_grasp(text: &mut String, keep: &Keep, name: &str, part: &Part, time: ji
         }
         Some(Escape::Turn { .. }) | None => {}
     }
+    if let Some(Ok(jaws)) = &keep.grasp.jaws {
+        let centre = part.file_point(jaws.centre);
+        writeln!(
+            text,
+            "jaws = {{ centre_mm = {}, angle_deg = {}, opening_mm = {}, inside = {} }}",
+            pair(centre.x, centre.y),
+            number(jaws.angle_rad.to_degrees()),
+            number(jaws.opening_mm),
+            jaws.inside
+        )?;
+    }
     let drive = keep.setup.hand.drive;
     writeln!(text, "drive = \"{}\"", word_for(&DRIVES, drive))?;
     writeln!(text, "torque_scale = {}", torque_scale_word(keep.setup.search.torque_scale))?;

@@ -90,8 +90,8 @@ impl Holding {
         let mut squeezer = Squeezer::new(*hold);
         let answers: Vec<CaseHolding> = cases.iter().map(|case| on_one(&mut squeezer, hold, case, limit)).collect();
         let rank = |case: &CaseHolding| case.squeeze_n.unwrap_or(f64::INFINITY);
-        let governing =
-            (0..answers.len()).fold(0, |worst, i| if rank(&answers[i]) > rank(&answers[worst]) { i } else { worst });
+        let governing = (0..answers.len())
+            .fold(0, |worst, i| if rank(&answers[i]) > rank(&answers[worst]) * (1.0 + 1e-9) { i } else { worst });
         let friction_factor = match limit {
             Some(limit) => {
                 // Without any friction to scale, ask what common mu would do.
@@ -227,7 +227,8 @@ fn on_one(squeezer: &mut Squeezer<'_>, hold: &Hold<'_>, case: &Case, limit: Opti
             _ if at == 0 => true,
             (_, None) => false,
             (None, Some(_)) => true,
-            (Some(now), Some(before)) => now > before,
+            // Of directions that ask alike the first is named, whatever rounding says.
+            (Some(now), Some(before)) => now > before * (1.0 + 1e-9),
         };
         if asks_more {
             worst = CaseHolding { squeeze_n, direction_deg: load.direction_deg, forces, worst: at, ..worst };

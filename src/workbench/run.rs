@@ -35,12 +35,28 @@ enum Message {
 ///
 /// # Errors
 /// A setup that cannot be used, a terminal that cannot be taken or is lost, an internal fault.
-pub fn run(mut options: Options) -> io::Result<()> {
+pub fn run(mut options: Options) -> Result<(), Stopped> {
     let variable = |name: &str| std::env::var(name).ok();
     options.color = options.color.settled(variable("NO_COLOR").as_deref(), variable("TERM").as_deref());
     // The screen decides by itself; the library's own reading of NO_COLOR would also drop reversed rows.
     crossterm::style::force_color_output(true);
-    let mut state = State::new(&options).map_err(io::Error::other)?;
+    let state = State::new(&options).map_err(Stopped::Setup)?;
+    on_terminal(&options, state).map_err(Stopped::Terminal)
+}
+
+/// Why the workbench could not go on.
+#[derive(Debug, thiserror::Error)]
+pub enum Stopped {
+    /// The setup does not go with the part.
+    #[error("{0}")]
+    Setup(String),
+    /// The terminal cannot be taken or is lost, or an internal fault.
+    #[error("the terminal: {0}")]
+    Terminal(io::Error),
+}
+
+fn on_terminal(options: &Options, mut state: State) -> io::Result<()> {
+    let variable = |name: &str| std::env::var(name).ok();
     state.look.color = options.color == ColorChoice::Always;
     state.look.utf8 =
         is_utf8(variable("LC_ALL").as_deref(), variable("LC_CTYPE").as_deref(), variable("LANG").as_deref());
@@ -55,7 +71,7 @@ pub fn run(mut options: Options) -> io::Result<()> {
     let (sender, receiver) = mpsc::channel();
     let tell = sender.clone();
     watch_signals(move |signal| tell.send(Message::Signal(signal)).is_ok(), &raft, &recovery)?;
-    let ended = guarded(|| Bench::new(&options, &recovery, &raft, sender, receiver)?.work(&mut state));
+    let ended = guarded(|| Bench::new(options, &recovery, &raft, sender, receiver)?.work(&mut state));
     conclude(ended, &recovery, &raft)
 }
 
