@@ -4,6 +4,7 @@
 //! drive that shares its force in another way, reach those forces by themselves is not said.
 
 use super::assess::Doubt;
+use super::friction::LARGEST_MU;
 use super::load::Load;
 use super::program::{self, Solved};
 use super::root;
@@ -248,101 +249,52 @@ pub fn at_most(limit_n: f64) -> f64 {
     limit_n * (1.0 + 1e-9)
 }
 
-/// Friction factors beyond this are not looked at.
-const LARGEST_FACTOR: f64 = 1e6;
 /// Relative width of the final bracket on a factor.
-const WIDTH: f64 = 1e-12;
-/// Rounds after which a load is given up.
+const WIDTH: f64 = 1e-11;
+/// Rounds after which a point of the envelope is left to the linear program.
 const MOST_ROUNDS: usize = 60;
 
 /// Least factor on all friction, not below `from`, with which every load is held by a squeeze of at most `limit_n`, to
-/// about 1e-9; nothing when no friction does.
+/// about 1e-11; nothing when no friction does.
 ///
-/// Newton's method from below: where a load is not held, the direction that proves it names the least factor at which
-/// that direction reaches far enough, and the next look is taken there. Cones only grow with friction, so the factor only
-/// rises, and what is held at the end is held by the answer of the solver itself.
+/// Cones only grow with friction, so each load has one least factor, and the largest of them is wanted. Near its own a
+/// load's squeeze falls like a hyperbola, so limit over squeeze is what the root finder is given: nearly straight.
 pub fn factor_needed(hold: &Hold<'_>, loads: &[Asked], limit_n: f64, from: f64) -> Option<f64> {
+    let largest = hold.presses().iter().map(|press| press.mu).fold(0.0, f64::max);
+    let most = LARGEST_MU / largest;
     let mut factor = from;
-    let mut scaled = hold.with_friction_times(factor);
-    let mut squeezer = Squeezer::new(scaled);
+    let mut squeezer = Squeezer::new(hold.with_friction_times(factor));
     for (load, left) in loads {
-        let enough = at_most(limit_n * left);
-        let mut rounds = 0;
-        loop {
-            if squeezer.decide(load, limit_n * left) == Decision::Enough {
-                break;
-            }
-            let direction = match squeezer.squeeze(load) {
-                Answer::Held(held) if held.squeeze_n <= enough => break,
-                Answer::Held(held) => held.direction,
-                Answer::Never { direction } => direction,
-                Answer::Unsure => return by_halving(hold, loads, limit_n, from),
-            };
-            rounds += 1;
-            if rounds > MOST_ROUNDS {
-                return by_halving(hold, loads, limit_n, from);
-            }
-            // Aimed a hair below the limit, so that the next look is not stopped by rounding just above it.
-            let reach = -load.dot(&direction) / (limit_n * left);
-            factor = factor_that_reaches(hold, &direction, reach, factor)?;
-            scaled = hold.with_friction_times(factor);
-            squeezer = Squeezer::new(scaled);
+        let limit_n = at_most(limit_n * left);
+        if squeezer.decide(load, limit_n) == Decision::Enough {
+            continue;
         }
+        let spare = |factor: f64| {
+            let scaled = hold.with_friction_times(factor);
+            match least(&mut Squeezer::new(scaled), &scaled, load) {
+                Answer::Held(held) => (limit_n / held.squeeze_n - 1.0).min(1.0),
+                Answer::Never { .. } | Answer::Unsure => -1.0,
+            }
+        };
+        let mut low = (factor, spare(factor));
+        if low.1 >= 0.0 {
+            continue;
+        }
+        // Most ask with friction enough.
+        let mut high = if factor < 1.0 { 1.0 } else { 2.0 * factor };
+        let mut at_high = spare(high);
+        while !(at_high > 0.0) {
+            if !(high < most) {
+                return None;
+            }
+            low = (high, at_high);
+            high = (2.0 * high).min(most);
+            at_high = spare(high);
+        }
+        factor = root::bracket(spare, low, (high, at_high), WIDTH * (1.0 + high)).1;
+        squeezer = Squeezer::new(hold.with_friction_times(factor));
     }
     Some(factor)
-}
-
-/// Least factor above `from` at which the fingers reach so far in a direction; nothing when none does.
-fn factor_that_reaches(hold: &Hold<'_>, u: &Wrench, reach: f64, from: f64) -> Option<f64> {
-    let short = |factor: f64| hold.reach(u, factor) - reach;
-    let mut low = (from, short(from));
-    let mut high = ((2.0 * from).max(from + 0.5), 0.0);
-    loop {
-        high.1 = short(high.0);
-        if high.1 > 0.0 {
-            break;
-        }
-        if high.0 > LARGEST_FACTOR {
-            return None;
-        }
-        low = high;
-        high.0 *= 2.0;
-    }
-    if low.1 > 0.0 {
-        // Within rounding of the limit already.
-        return Some(from + WIDTH * (1.0 + from));
-    }
-    let scale = high.1;
-    let scaled = |factor: f64| short(factor) / scale;
-    let width = WIDTH * (1.0 + high.0);
-    Some(root::bracket(scaled, (low.0, low.1 / scale), (high.0, 1.0), width).1)
-}
-
-/// The same by halving the range, with the linear program where the batch solver gives up.
-fn by_halving(hold: &Hold<'_>, loads: &[Asked], limit_n: f64, from: f64) -> Option<f64> {
-    let held = |factor: f64| {
-        let scaled = hold.with_friction_times(factor);
-        let mut squeezer = Squeezer::new(scaled);
-        loads.iter().all(|(load, left)| match least(&mut squeezer, &scaled, load) {
-            Answer::Held(held) => held.squeeze_n <= at_most(limit_n * left),
-            Answer::Never { .. } | Answer::Unsure => false,
-        })
-    };
-    if held(from) {
-        return Some(from);
-    }
-    let (mut low, mut high) = (from, from.max(1.0));
-    while !held(high) {
-        if high > LARGEST_FACTOR {
-            return None;
-        }
-        (low, high) = (high, 2.0 * high);
-    }
-    while high - low > 1e-9 * (1.0 + high) {
-        let middle = low + (high - low) / 2.0;
-        if held(middle) { high = middle } else { low = middle }
-    }
-    Some(high)
 }
 
 /// The acceleration envelope: for each of `directions` even directions in the plane, from +x, the largest acceleration

@@ -9,7 +9,7 @@
 //!
 //! With load cases a family is gone through twice. First in the plane, where it is cheap: loads only take candidates away
 //! and only raise the friction needed, so the first best is a bound. Only where that bound would enter the list are the
-//! family's closed members put under the loads, best key first ([`LoadCheck`]), until one holds.
+//! family's closed members put under the loads ([`LoadCheck`]), best first, until one holds.
 
 use super::families::Family;
 use super::family_forces::{FamilyForces, NO_LEVER, polygon_of};
@@ -246,7 +246,7 @@ pub(super) struct Run<'a, 'b> {
     /// With loads: the closed members above the floors, to be gone through again.
     pub(super) members: Vec<Candidate>,
     /// The loads count in the friction needed.
-    pub(super) under_load: bool,
+    pub(super) friction_under_load: bool,
     pub(super) tally: &'b mut Tally,
 }
 
@@ -266,7 +266,7 @@ impl<'a, 'b> Run<'a, 'b> {
             looked: 0,
             loads: screen.load_check(family),
             members: Vec::new(),
-            under_load: false,
+            friction_under_load: false,
             tally,
         }
     }
@@ -381,12 +381,12 @@ impl<'a, 'b> Run<'a, 'b> {
             }
             Listing::Members => {
                 let worst = self.tally.top.worst().copied();
-                self.under_load = false;
+                self.friction_under_load = false;
                 let in_question = match worst {
                     Some(worst) if self.screen.key != Key::Squeeze => self.comes_before(&mut candidate, &worst),
                     _ => true,
                 };
-                self.under_load = true;
+                self.friction_under_load = self.screen.key == Key::Friction;
                 if in_question {
                     match self.key_under_load(None) {
                         None => return Ok(()),
@@ -568,13 +568,16 @@ impl<'a, 'b> Run<'a, 'b> {
         true
     }
 
-    /// Friction needed by a set of this family, in quanta; under load the larger of that for closure and that for holding.
+    /// Friction needed by a set of this family, in quanta; where friction is the key, under load the larger of that for
+    /// closure and that for holding. Ties on other keys are settled by that for closure alone, which costs a hundredth.
     fn friction_quanta(&self, set: &SiteSet) -> i64 {
         let levers = set.map(|site| self.screen.sites.get(site).lever);
         let (levers, mus) = (&levers[..self.k], &self.forces.mus[..self.k]);
         let closing = friction::factor_needed(levers, mus).unwrap_or(0.0);
         let needed = match &self.loads {
-            Some(loads) if self.under_load => loads.factor_needed(levers, mus, closing).unwrap_or(NO_FRICTION_HOLDS),
+            Some(loads) if self.friction_under_load => {
+                loads.factor_needed(levers, mus, closing).unwrap_or(NO_FRICTION_HOLDS)
+            }
             _ => closing,
         };
         order::friction_quanta(needed)

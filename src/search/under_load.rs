@@ -15,8 +15,19 @@ struct Lead {
 impl Run<'_, '_> {
     /// The best member that holds every load, if it enters the list. `first` is the best of them without the loads.
     pub(super) fn best_under_load(&mut self, first: Candidate) -> Option<Candidate> {
-        self.under_load = true;
+        self.friction_under_load = self.screen.key == Key::Friction;
+        let in_order = !matches!(self.screen.key, Key::Friction | Key::Squeeze);
+        if in_order {
+            // The loads change nothing in the order, so that if it holds no other can be better.
+            let mut best = first;
+            self.set = best.sites;
+            if self.stands(&mut best, None) {
+                self.settle(&mut best);
+                return Some(best);
+            }
+        }
         let mut members = std::mem::take(&mut self.members);
+        members.retain(|member| !in_order || member.sites != first.sites);
         // The best without the loads is likely the best with them, and then a hard one to beat.
         members.sort_by_key(|member| (Reverse(member.key), member.sites != first.sites));
         let mut lead = Lead::default();
@@ -93,11 +104,13 @@ impl Run<'_, '_> {
         held && at_margin
     }
 
-    /// Under load, whether the current set holds every load with all friction multiplied by a factor.
+    /// Where friction is the key, whether the current set holds every load with all friction multiplied by a factor.
     pub(super) fn holds_at(&mut self, factor: f64) -> bool {
         let levers = self.levers();
         match &mut self.loads {
-            Some(loads) if self.under_load => loads.holds(&levers[..self.k], &self.forces.mus[..self.k], factor),
+            Some(loads) if self.friction_under_load => {
+                loads.holds(&levers[..self.k], &self.forces.mus[..self.k], factor)
+            }
             _ => true,
         }
     }
