@@ -391,3 +391,28 @@ fn no_direction_is_weaker_than_the_quality() {
         }
     }
 }
+
+/// Two flat pads of half-width q across 2 a, torque scale l: quality = min(mu, (mu a + q) / sqrt(l^2 + a^2 (1 + mu^2))).
+/// Derived from the definition of Ferrari & Canny 1992: across the faces nothing gives more than mu; about the middle the
+/// two ends of each pad add q to what friction gives.
+#[test]
+fn two_flat_pads() {
+    let pads = |q: f64, mu: f64, a: f64| {
+        [touch(-a, 0.0, 0.0, mu), touch(a, 0.0, 180.0, mu)].map(|c| Contact { half_width_mm: q, ..c })
+    };
+    assert_close(read(&pads(0.05, 0.2, 1.0), &frame(0.0, 0.0, 1.0)).quality, 0.175035, 0.0, 5e-7);
+    for q in [0.08566, 0.2, 3.0] {
+        assert_close(read(&pads(q, 0.2, 1.0), &frame(0.0, 0.0, 1.0)).quality, 0.2, 1e-5, 0.0);
+    }
+    for (mu, a, l) in [(0.1, 10.0, 10.0), (0.3, 25.0, 40.0), (0.7, 8.0, 5.0), (1.0, 3.0, 30.0)] {
+        for q in [0.0, 0.02 * a, 0.3 * a, 2.0 * a] {
+            let by_hand = f64::min(mu, (mu * a + q) / f64::sqrt(l * l + a * a * (1.0 + mu * mu)));
+            let reading = read(&pads(q, mu, a), &frame(0.0, 0.0, l));
+            assert_close(reading.quality, by_hand, 1e-12, 0.0);
+            // About the middle both fingers together, each with all its force: twice what half of it each would give.
+            assert!(reading.quality_per_finger >= reading.quality && reading.quality_per_finger <= 2.0 * by_hand + 1e-12);
+            // The pure torque per newton: friction's arm and the pad's.
+            assert_close(reading.placement.torque_mm, mu * a + q, 1e-12, 0.0);
+        }
+    }
+}
