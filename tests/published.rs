@@ -410,7 +410,9 @@ fn two_flat_pads() {
             let reading = read(&pads(q, mu, a), &frame(0.0, 0.0, l));
             assert_close(reading.quality, by_hand, 1e-12, 0.0);
             // About the middle both fingers together, each with all its force: twice what half of it each would give.
-            assert!(reading.quality_per_finger >= reading.quality && reading.quality_per_finger <= 2.0 * by_hand + 1e-12);
+            assert!(
+                reading.quality_per_finger >= reading.quality && reading.quality_per_finger <= 2.0 * by_hand + 1e-12
+            );
             // The pure torque per newton: friction's arm and the pad's.
             assert_close(reading.placement.torque_mm, mu * a + q, 1e-12, 0.0);
         }

@@ -7,7 +7,7 @@ use super::output::{self, Answer, Stop};
 use super::progress::ProgressLine;
 use super::reading::{LINE, decimals, drive, fingers, hand, length, newtons, ratio, short, wrapped};
 use crate::file::{CAUTION, DRIVES, shown, word_for};
-use crate::hand::Tip;
+use crate::hand::{Closing, PARALLEL_RAD, Tip};
 use crate::mechanics::{Assessment, Holding};
 use crate::search::{self, Cancel, Key, Listed, Listing, Ranking, Scene, TorqueScale};
 use clap::Args;
@@ -237,6 +237,16 @@ fn why_empty(scene: &Scene, ranking: &Ranking) -> String {
         return format!(
             "No finger fits on any edge: try smaller {size} or corner clearance (now {} mm),\nor fewer keep-outs.",
             hand.corner_clearance_mm
+        );
+    }
+    if hand.closing == Closing::Parallel && scene.jaw_runs().is_empty() {
+        let [least, most] = hand.opening_mm;
+        return format!(
+            "No two edges take a pair of parallel jaws: they must face each other, parallel to within {:.1} deg and {least}\n\
+             to {most} mm apart, with room for pads of {} x {} mm. Try another opening, smaller pads, or closing = \"free\".",
+            PARALLEL_RAD.to_degrees(),
+            hand.pad_width_mm,
+            hand.pad_depth_mm
         );
     }
     if ranking.examined == 0 {
