@@ -4,7 +4,7 @@
 //! are plain lines before the screen is taken: they work on any terminal, and what was answered stays to be read.
 
 use crate::file::drawing::{self, Options, Refusal, UNIT_NAMES};
-use crate::file::shown;
+use crate::file::{shown, write_new};
 use std::io::{self, BufRead, Read, Write};
 use std::path::{Path, PathBuf};
 
@@ -49,7 +49,7 @@ pub(super) fn ask(path: &Path, input: &mut impl BufRead, out: &mut impl Write) -
                 for line in imported.report.lines() {
                     writeln!(out, "{}", shown(&line))?;
                 }
-                return Ok(match drawing::write_part(&target, &imported.text, force) {
+                return Ok(match write_new(&target, &imported.text, force) {
                     Ok(()) => {
                         writeln!(out, "written to {}", name(&target))?;
                         match question(out, input, "Enter opens it, q leaves: ")?.as_deref() {

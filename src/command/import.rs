@@ -3,7 +3,7 @@
 use super::output::{self, Answer, Stop};
 use super::progress::ProgressLine;
 use crate::file::drawing::{self, Options, Report, UNIT_NAMES, Unit};
-use crate::file::shown;
+use crate::file::{shown, write_new};
 use clap::{Args, ValueEnum};
 use std::io::{self, Write};
 use std::path::PathBuf;
@@ -107,7 +107,7 @@ pub(super) fn run(args: &ImportArgs) -> Result<Answer, Stop> {
         drawing::read_telling(path, &options, &mut tell).map_err(|refusal| Stop::Bad(refusal.lines(path)))?;
     drop(progress);
     if let Some(target) = &args.output {
-        drawing::write_part(target, &imported.text, args.force)?;
+        write_new(target, &imported.text, args.force)?;
     } else if !args.json {
         output::print(&imported.text)?;
     }

@@ -11,7 +11,7 @@ use std::path::{Path, PathBuf};
 use std::sync::Arc;
 
 /// Values that override the setup file, which overrides the defaults.
-#[derive(Debug, Clone, Args)]
+#[derive(Debug, Clone, Default, Args)]
 pub(super) struct Knobs {
     /// Setup file: friction, hand, search, floors, loads
     #[arg(long, value_name = "FILE")]

@@ -39,7 +39,7 @@ impl Beside {
 }
 
 /// Why a squeeze may not be larger.
-fn limited_by(limit: &Limit, grasp: &Grasp) -> String {
+pub(super) fn limited_by(limit: &Limit, grasp: &Grasp) -> String {
     match limit.by {
         LimitedBy::Hand => "the hand gives no more".to_owned(),
         LimitedBy::Edge { finger } => {
@@ -49,7 +49,8 @@ fn limited_by(limit: &Limit, grasp: &Grasp) -> String {
     }
 }
 
-fn held_word(case: &CaseHolding) -> &'static str {
+/// Whether a case is held, in a word or two.
+pub(super) fn held_word(case: &CaseHolding) -> &'static str {
     match (case.held, case.unsure) {
         (true, _) => "held",
         (false, true) => "in doubt",

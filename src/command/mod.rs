@@ -2,6 +2,7 @@
 
 mod check;
 mod columns;
+mod completions;
 mod drawing;
 mod import;
 mod json;
@@ -12,11 +13,13 @@ mod output;
 mod progress;
 mod rank;
 mod reading;
+mod recheck;
 mod score;
+mod sheet;
 
 use crate::file::{self, shown};
 use crate::workbench;
-use clap::{Args, Parser, Subcommand, ValueEnum};
+use clap::{Args, CommandFactory, Parser, Subcommand, ValueEnum};
 use knobs::Knobs;
 use output::{Answer, Stop};
 use std::io::{self, IsTerminal, Write};
@@ -27,11 +30,12 @@ use std::process::ExitCode;
 #[derive(Debug, Parser)]
 #[command(
     version,
+    long_version = completions::BUILD,
     args_conflicts_with_subcommands = true,
     subcommand_negates_reqs = true,
     arg_required_else_help = true,
     after_help = "Without a command the workbench opens on PART; a part named like a command is opened as ./NAME.\n\
-                  Exit codes: 0 done, 1 the answer is no (check), 2 bad usage or input, 3 internal fault."
+                  Exit codes: 0 done, 1 the answer is no (check, sheet), 2 bad usage or input, 3 internal fault."
 )]
 struct Cli {
     #[command(flatten)]
@@ -84,8 +88,14 @@ enum Command {
     Import(import::ImportArgs),
     /// List the built-in densities and friction pairs with their sources
     Materials(materials::MaterialsArgs),
+    /// Make a page to print of each saved grasp; exit code 1 when one no longer holds or the part changed
+    Sheet(sheet::SheetArgs),
     /// Print the default setup as a file to start from
     Setup,
+    /// Print the completions of a shell
+    Completions(completions::CompletionsArgs),
+    /// Print a page of the manual, as roff
+    Man(completions::ManArgs),
 }
 
 /// Runs the program on its command line.
@@ -131,6 +141,9 @@ fn run(cli: Cli) -> Result<Answer, Stop> {
         Some(Command::Check(args)) => check::run(&args),
         Some(Command::Import(args)) => import::run(&args),
         Some(Command::Materials(args)) => materials::run(&args),
+        Some(Command::Sheet(args)) => sheet::run(&args),
+        Some(Command::Completions(args)) => completions::completions(&args, Cli::command()),
+        Some(Command::Man(args)) => completions::man(&args, Cli::command()),
         Some(Command::Setup) => {
             output::print(&file::default_setup_text())?;
             Ok(Answer::Done)

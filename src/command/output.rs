@@ -46,8 +46,13 @@ impl From<io::Error> for Stop {
 
 /// Writes a result to standard output.
 pub(super) fn print(text: &str) -> Result<(), Stop> {
+    print_bytes(text.as_bytes())
+}
+
+/// Writes a result of another form to standard output.
+pub(super) fn print_bytes(bytes: &[u8]) -> Result<(), Stop> {
     let mut out = io::stdout().lock();
-    out.write_all(text.as_bytes())?;
+    out.write_all(bytes)?;
     out.flush()?;
     Ok(())
 }

@@ -18,6 +18,7 @@ pub use grasp_file::{
 pub use part_file::{part_from_text, read_part, read_part_with_notes};
 pub use saving::{Keep, SaveFault, Stamp, save, stamp};
 pub use setup_file::{CLOSINGS, CONDITIONS, DRIVES, TIPS, default_setup_text, read_setup, setup_from_text, word_for};
+pub use writing::write_new;
 
 use std::path::{Path, PathBuf};
 

@@ -1,5 +1,6 @@
 //! Values as TOML text, and careful writing: beside the old file, synced, renamed over it.
 
+use super::FileFaults;
 use std::fs::{self, File, OpenOptions, Permissions};
 use std::io::{self, ErrorKind, Write};
 use std::path::{Path, PathBuf};
@@ -79,4 +80,26 @@ pub(super) fn replace(
         let _ = folder.sync_all();
     }
     Ok(true)
+}
+
+/// Puts a text file where it belongs, whole or not at all. A file already there is only replaced with `force`.
+///
+/// # Errors
+/// One fault.
+pub fn write_new(path: &Path, text: &str, force: bool) -> Result<(), FileFaults> {
+    let fault = |error: io::Error| FileFaults::of_whole(path, &error.to_string());
+    let there = || FileFaults::of_whole(path, "is there already; name another file, or replace it with --force");
+    let target = target_of(path).map_err(fault)?;
+    let old = match fs::metadata(&target) {
+        Ok(_) if !force => return Err(there()),
+        Ok(data) if !data.is_file() => return Err(FileFaults::of_whole(path, "is not a file; name another")),
+        Ok(data) => Some(data.permissions()),
+        Err(error) if error.kind() == ErrorKind::NotFound => None,
+        Err(error) => return Err(fault(error)),
+    };
+    match replace(&target, text.as_bytes(), old, || true) {
+        Ok(true) => Ok(()),
+        Ok(false) => Err(there()),
+        Err(error) => Err(fault(error)),
+    }
 }

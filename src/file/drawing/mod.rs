@@ -38,7 +38,7 @@ mod units;
 pub use report::{CleanedReport, LayerReport, OpenReport, PartReport, Report, RingReport, SkippedReport, UnitsReport};
 pub use units::{UNIT_NAMES, Unit, unit_named};
 
-use super::{FileFaults, writing};
+use super::FileFaults;
 use crate::part::Part;
 use fault::fault;
 use std::fs::File;
@@ -183,28 +183,6 @@ pub fn list(
         let problems = FileFaults { path: path.to_owned(), faults: survey.problems }.lines();
         Ok((survey.report, problems))
     })
-}
-
-/// Puts a part file where it belongs, whole or not at all. A file already there is only replaced with `force`.
-///
-/// # Errors
-/// One fault.
-pub fn write_part(path: &Path, text: &str, force: bool) -> Result<(), FileFaults> {
-    let fault = |error: std::io::Error| FileFaults::of_whole(path, &error.to_string());
-    let there = || FileFaults::of_whole(path, "is there already; name another file, or replace it with --force");
-    let target = writing::target_of(path).map_err(fault)?;
-    let old = match std::fs::metadata(&target) {
-        Ok(_) if !force => return Err(there()),
-        Ok(data) if !data.is_file() => return Err(FileFaults::of_whole(path, "is not a file; name another")),
-        Ok(data) => Some(data.permissions()),
-        Err(error) if error.kind() == ErrorKind::NotFound => None,
-        Err(error) => return Err(fault(error)),
-    };
-    match writing::replace(&target, text.as_bytes(), old, || true) {
-        Ok(true) => Ok(()),
-        Ok(false) => Err(there()),
-        Err(error) => Err(fault(error)),
-    }
 }
 
 fn refused(path: &Path, faults: Vec<fault::Fault>) -> Refusal {
