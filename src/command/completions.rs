@@ -58,7 +58,8 @@ pub(super) fn man(args: &ManArgs, program: Command) -> Result<Answer, Stop> {
         }
     };
     let mut text = Vec::new();
-    Man::new(page).manual("User Commands").render(&mut text)?;
+    // The title line gives its words by place: an empty date would not be seen, and the version be taken for it.
+    Man::new(page).date(" ").manual("User Commands").render(&mut text)?;
     output::print_bytes(&text)?;
     Ok(Answer::Done)
 }

@@ -86,8 +86,9 @@ pub(super) fn ordinates(
             add(jaws.centre, Some("J".to_owned()));
         }
     }
+    // From the near sides, so that no line crosses the part.
     add(bounds.0, None);
-    add(bounds.1, None);
+    add(if axis == Axis::X { Point2::new(bounds.1.x, bounds.0.y) } else { Point2::new(bounds.0.x, bounds.1.y) }, None);
     all.sort_by(|a, b| a.mm.total_cmp(&b.mm));
     all
 }

@@ -44,13 +44,53 @@ const LINE: f64 = 3.4;
 /// Characters in a line of the legend for each mm of paper; lower-case text of the usual faces is about half as wide as
 /// high.
 const PER_MM: f64 = 1.0 / 1.19;
-/// Space of the scale bar, mm of paper.
-const BAR: f64 = 8.0;
+/// Height of the scale bar with its words, and width, mm of paper. It stands on the right of the legend.
+const BAR: f64 = 9.5;
+const BAR_WIDTH: f64 = 76.0;
+/// Width of legend and bar where they stand beside the drawing, mm of paper.
+const BESIDE: f64 = 60.0;
 /// Reasons for keep-outs that get a number of their own.
-pub(super) const MOST_REASONS: usize = 6;
+pub(super) const MOST_REASONS: usize = 4;
 /// Arcs that rise less than this above their chord, mm of paper, are drawn straight: no printer shows the difference, and
 /// their circles are too large for programs that draw SVG in single precision.
 const FLAT: f64 = 2e-3;
+
+/// Where the legend stands, and what that leaves to the drawing.
+struct Layout {
+    /// Width and height left to the part and its fingers, mm of paper.
+    room: (f64, f64),
+    scale: f64,
+    legend: Vec<String>,
+    /// The legend stands on the right of the drawing, not below.
+    beside: bool,
+}
+
+impl Layout {
+    /// The layout that lets the part be drawn largest in a room, mm of paper.
+    fn best(subject: &Subject<'_>, room: (f64, f64), size: Vector2<f64>) -> Self {
+        let of = |beside: bool| {
+            let width = if beside { BESIDE } else { room.0 - BAR_WIDTH };
+            let mut own = Self { room, scale: 0.0, legend: legend(subject, width), beside };
+            own.room.0 = (own.room.0 - if beside { BESIDE } else { 0.0 }).max(10.0);
+            own.room.1 = (own.room.1 - own.below()).max(10.0);
+            let (wide, tall) = (own.room.0 / size.x, own.room.1 / size.y);
+            own.scale = scale_below(wide.min(tall));
+            own
+        };
+        let (below, beside) = (of(false), of(true));
+        if beside.scale > below.scale && beside.high() <= room.1 { beside } else { below }
+    }
+
+    /// Height of legend and scale bar where they stand beside the drawing, mm of paper.
+    fn high(&self) -> f64 {
+        LINE * self.legend.len() as f64 + BAR
+    }
+
+    /// Height they take below it.
+    fn below(&self) -> f64 {
+        if self.beside { 0.0 } else { BAR.max(LINE * self.legend.len() as f64 + 1.5) }
+    }
+}
 
 impl Drawing {
     /// Draws into at most so much paper, mm. `warning` stands over the drawing in large letters.
@@ -62,20 +102,18 @@ impl Drawing {
         let [x, y] = [Axis::X, Axis::Y].map(|axis| dimensions::ordinates(axis, subject.datum, outline, subject.grasp));
         let (below, least_wide) = dimensions::room(&x, decimals);
         let (left, least_high) = dimensions::room(&y, decimals);
-        let legend = legend(subject, most.0);
-        let over = if warning.is_some() { 12.0 } else { 0.0 };
-        let under = below + BAR + LINE * legend.len() as f64 + 1.0;
+        let over = BORDER + if warning.is_some() { 12.0 } else { 0.0 };
         let size = high - low;
-        let wide = (most.0 - left - BORDER).max(10.0);
-        let tall = (most.1 - over - BORDER - under).max(10.0);
-        let scale = scale_below((wide / size.x.max(f64::MIN_POSITIVE)).min(tall / size.y.max(f64::MIN_POSITIVE)));
+        let layout = Layout::best(subject, (most.0 - left - BORDER, most.1 - over - below), size);
+        let Layout { room: (wide, tall), scale, legend, beside } = &layout;
+        let (wide, tall, scale) = (*wide, *tall, *scale);
         let content = (size * scale).sup(&Vector2::new(least_wide.min(wide), least_high.min(tall)));
         // In the middle of what its width leaves.
         let from = left + (wide - content.x).max(0.0) / 2.0 + (content.x - size.x * scale) / 2.0;
-        let paper = Paper::new(scale, Point2::new(low.x, high.y), Vector2::new(from, over + BORDER));
+        let paper = Paper::new(scale, Point2::new(low.x, high.y), Vector2::new(from, over));
         let mut body = String::new();
         let corners = (paper.at(Point2::new(low.x, high.y)), paper.at(Point2::new(high.x, low.y)));
-        let border = (corners.0, Point2::new(corners.1.x, over + BORDER + content.y.max(size.y * scale)));
+        let border = (corners.0, Point2::new(corners.1.x, over + content.y.max(size.y * scale)));
         // Writing to a String cannot fail.
         let _ = (|| -> Written {
             if let Some(warning) = warning {
@@ -86,15 +124,22 @@ impl Drawing {
             dimensions::draw(&mut body, Axis::Y, &y, &paper, border, decimals)?;
             let mut marks = Marks { svg: &mut body, paper: &paper, subject, taken: Taken::default() };
             marks.all()?;
-            let foot = border.1.y + below;
-            scale_bar(&mut body, &paper, Point2::new(left, foot + 4.5), most.0)?;
+            // Beside the drawing the bar stands under the words, below it on their right.
+            let (at, bar) = if *beside {
+                let at = Point2::new(most.0 - BESIDE, over);
+                (at, at + Vector2::new(0.0, LINE * legend.len() as f64 + 5.0))
+            } else {
+                let foot = border.1.y + below;
+                (Point2::new(1.0, foot), Point2::new(most.0 - BAR_WIDTH, foot + 4.5))
+            };
+            scale_bar(&mut body, &paper, bar)?;
             for (i, line) in legend.iter().enumerate() {
-                let at = Point2::new(left, foot + BAR + LINE * (i as f64 + 0.7));
-                put(&mut body, "small", at, "", &escaped(line))?;
+                put(&mut body, "small", at + Vector2::new(0.0, LINE * (i as f64 + 0.8)), "", &escaped(line))?;
             }
             Ok(())
         })();
-        Self { body, width: most.0, height: border.1.y + under }
+        let height = (border.1.y + below + layout.below()).max(if layout.beside { over + layout.high() } else { 0.0 });
+        Self { body, width: most.0, height }
     }
 
     /// As an element of a page.
@@ -183,8 +228,8 @@ pub(super) fn step(svg: &mut String, edge: &Edge, paper: &Paper, end: Point2<f64
     }
 }
 
-fn scale_bar(svg: &mut String, paper: &Paper, at: Point2<f64>, width: f64) -> Written {
-    let mm = round_length((width - at.x).min(50.0) / paper.length(1.0));
+fn scale_bar(svg: &mut String, paper: &Paper, at: Point2<f64>) -> Written {
+    let mm = round_length(45.0 / paper.length(1.0));
     let half = paper.length(mm) / 2.0;
     let (x, y) = (at.x, at.y);
     writeln!(
@@ -197,9 +242,8 @@ fn scale_bar(svg: &mut String, paper: &Paper, at: Point2<f64>, width: f64) -> Wr
     )?;
     put(svg, "small", Point2::new(x, y - 2.0), "", "0")?;
     put(svg, "scale-bar small", Point2::new(x + 2.0 * half, y - 2.0), "middle", &format!("{mm} mm"))?;
-    let words =
-        format!("scale {} when printed at 100 %: check it on the bar; lengths in mm", scale_word(paper.length(1.0)));
-    put(svg, "small", Point2::new(x + 2.0 * half + 6.0, y), "", &words)
+    let scale = scale_word(paper.length(1.0));
+    put(svg, "small", Point2::new(x, y + 3.4), "", &format!("lengths in mm; scale {scale} when printed at 100 %"))
 }
 
 /// Different reasons for keep-outs, in file order.
@@ -237,11 +281,11 @@ fn legend(subject: &Subject<'_>, width: f64) -> Vec<String> {
     let reasons = reasons(part);
     for (number, reason) in reasons.iter().enumerate().take(MOST_REASONS) {
         let reason = if reason.trim().is_empty() { "no reason given" } else { reason };
-        words.push(format!("K{}: no finger may touch: {}", number + 1, cut(reason, 90)));
+        words.push(format!("K{}: no finger may touch: {}", number + 1, cut(reason, 50)));
     }
     if reasons.len() > MOST_REASONS {
         words.push(format!("K: no finger may touch; {} more reasons in the part file", reasons.len() - MOST_REASONS));
     }
-    let most = ((width - 25.0) * PER_MM) as usize;
+    let most = ((width - 3.0) * PER_MM) as usize;
     words.iter().flat_map(|words| lines(words, most)).collect()
 }

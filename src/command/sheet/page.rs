@@ -18,6 +18,10 @@ const WIDTH: f64 = 186.0;
 const HEIGHT: f64 = 256.0;
 /// Heights of what stands on every page: head, caution, foot, and what rounding may take, mm.
 const FIXED: f64 = 16.0 + 10.0 + 4.2 + 3.0;
+/// Load cases on a page, at most.
+const MOST_CASES: usize = 10;
+/// Height of the drawing that other things make room for, mm.
+const LEAST_DRAWING: f64 = 80.0;
 /// Lines of a note, and of the reasons for a warning, at most; characters in each.
 const MOST_LINES: usize = 4;
 const LINE_WIDTH: usize = 120;
@@ -54,11 +58,11 @@ impl Sheet<'_> {
     fn warning(&self) -> Option<String> {
         let mut said = Vec::new();
         if self.part_changed {
-            said.push("PART CHANGED SINCE SAVING");
+            said.push("PART CHANGED");
         }
         said.extend(match self.checked.outcome {
             Outcome::Holds => None,
-            Outcome::ScoreChanged => Some("SCORES CHANGED SINCE SAVING"),
+            Outcome::ScoreChanged => Some("SCORES CHANGED"),
             Outcome::LoadsNoLongerHeld => Some("LOADS NO LONGER HELD"),
             Outcome::LoadsNotHeld => Some("LOADS NOT HELD"),
             Outcome::NoLongerClosed => Some("NO LONGER CLOSED"),
@@ -98,15 +102,22 @@ impl Sheet<'_> {
     fn html(&self, origin: &Origin<'_>, number: usize, count: usize) -> String {
         let source =
             Source { saved: self.saved, scene: self.scene, reading: self.reading.as_ref(), datum: self.datum.0 };
-        let mut head = self.warning_box();
-        head.and(self.note());
-        let mut wide = tables::fingers(&source);
-        wide.and(tables::loads(&source));
         let scores = tables::scores(&source);
         let mut beside = tables::friction_band(&source).unwrap_or(Piece { html: String::new(), height: 0.0 });
         beside.and(tables::assumed(&source));
-        let columns = scores.height.max(beside.height);
-        let left = HEIGHT - FIXED - head.height - wide.height - columns;
+        let columns = FIXED + scores.height.max(beside.height);
+        let filled = |(cases, lines): (usize, usize)| {
+            let mut head = self.warning_box();
+            head.and(self.note(lines));
+            let mut wide = tables::fingers(&source);
+            wide.and(tables::loads(&source, cases));
+            let left = HEIGHT - columns - head.height - wide.height;
+            (head, wide, left)
+        };
+        // On a full page the drawing gets its room from the load cases that ask least, then from the note.
+        let tries = (2..=MOST_CASES).rev().map(|cases| (cases, MOST_LINES)).chain([(2, 1), (1, 1)]);
+        let fitting = tries.map(filled).find(|(_, _, left)| *left >= LEAST_DRAWING);
+        let (head, wide, left) = fitting.unwrap_or_else(|| filled((1, 1)));
         let drawing = Drawing::of(&self.subject(), (WIDTH, left), None);
         format!(
             "<section class=\"page\">\n{}{}<div class=\"figure\">{}</div>\n{}<div class=\"columns\"><div>{}</div><div>{}</div></div>\n\
@@ -148,7 +159,7 @@ impl Sheet<'_> {
             format!("{} {} -> {}", change.score, value(change.was), value(change.now))
         });
         let why = self.checked.reasons.iter().cloned().chain(changes).collect::<Vec<_>>().join("; ");
-        let told = limited(&why);
+        let told = limited(&why, MOST_LINES);
         let html = format!(
             "<div class=\"warning-box\"><strong>{warning}</strong>Everything below is of the part as it is now. {}</div>\n",
             told.join("<br/>")
@@ -156,8 +167,8 @@ impl Sheet<'_> {
         Piece { html, height: 2.0 + 2.4 + 2.4 + 8.0 + 3.4 * (told.len() + 1) as f64 }
     }
 
-    fn note(&self) -> Piece {
-        let told = limited(&self.saved.note);
+    fn note(&self, most: usize) -> Piece {
+        let told = limited(&self.saved.note, most);
         if told.is_empty() {
             return Piece { html: String::new(), height: 0.0 };
         }
@@ -179,14 +190,17 @@ impl Sheet<'_> {
     }
 }
 
+/// Stands where a text is cut.
+const MORE: &str = " ... (more of it in the grasp file, or by the command check)";
+
 /// Lines of a text as they are printed, with a word where not all of it is.
-fn limited(text: &str) -> Vec<String> {
+fn limited(text: &str, most: usize) -> Vec<String> {
     let mut all: Vec<String> = text.lines().flat_map(|line| lines(&shown(line), LINE_WIDTH)).collect();
-    if all.len() > MOST_LINES {
-        all.truncate(MOST_LINES - 1);
-        all.push(
-            "\u{2026} cut here; the grasp file has all of it, and the command check tells every reason".to_owned(),
-        );
+    if all.len() > most {
+        all.truncate(most);
+        if let Some(last) = all.last_mut() {
+            *last = format!("{}{MORE}", last.chars().take(LINE_WIDTH - MORE.len()).collect::<String>());
+        }
     }
     all.iter().map(|line| escaped(line)).collect()
 }

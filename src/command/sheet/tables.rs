@@ -14,11 +14,9 @@ use nalgebra::Point2;
 /// Height of a row and of a further line in it, mm.
 pub(super) const ROW: f64 = 4.1;
 pub(super) const LINE: f64 = 3.2;
-/// Load cases a page has room for.
-const MOST_CASES: usize = 8;
 /// Characters of a load case in one line, of a meaning, and of a line of the narrow column.
-const CASE_WIDTH: usize = 54;
-const MEANING_WIDTH: usize = 46;
+const CASE_WIDTH: usize = 64;
+const MEANING_WIDTH: usize = 57;
 pub(super) const NARROW: usize = 54;
 
 /// A piece of a page and its height on paper, mm.
@@ -175,15 +173,15 @@ fn jaws(source: &Source<'_>, decimals: usize) -> Option<Piece> {
     Some(Piece { html, height: LINE + 2.0 })
 }
 
-/// Every load case; of very many those that are not held and those that ask most.
-pub(super) fn loads(source: &Source<'_>) -> Piece {
+/// Every load case; of more than so many those that are not held and those that ask most.
+pub(super) fn loads(source: &Source<'_>, most: usize) -> Piece {
     let Some((reading, holding)) =
         source.reading.and_then(|reading| Some((reading, reading.assessment.holding.as_ref()?)))
     else {
         return remark("remark", "No load case: what the fingers must press with is not known.", 150);
     };
     let mut order: Vec<usize> = (0..holding.cases.len()).collect();
-    let more = order.len().saturating_sub(MOST_CASES);
+    let more = order.len().saturating_sub(most);
     if more > 0 {
         let asks = |i: &usize| holding.cases[*i].squeeze_n.unwrap_or(f64::INFINITY);
         order.sort_by(|a, b| {
@@ -193,7 +191,7 @@ pub(super) fn loads(source: &Source<'_>) -> Piece {
     }
     let mut extra = 0;
     let mut rows = Vec::new();
-    for &i in order.iter().take(MOST_CASES) {
+    for &i in order.iter().take(most) {
         let case = &holding.cases[i];
         let what = source.scene.setup().loads.get(i).map_or(String::new(), words::load);
         let what = lines(&what, CASE_WIDTH);
@@ -227,7 +225,7 @@ pub(super) fn loads(source: &Source<'_>) -> Piece {
     let caption = format!("Loads <small>squeeze of one finger and of all; * asks most; {}</small>", escaped(&limit));
     let mut piece = table("loads", &caption, &[heads], &rows, extra);
     if more > 0 {
-        let hidden = order.iter().skip(MOST_CASES);
+        let hidden = order.iter().skip(most);
         let unheld = hidden.filter(|i| !holding.cases[**i].held).count();
         let text = format!(
             "{more} more cases ask less{}; the command check tells of all.",
@@ -250,7 +248,7 @@ pub(super) fn scores(source: &Source<'_>) -> Piece {
     let mut all: Vec<Score> = Vec::new();
     all.push(("verdict", format!("<b>{}</b>", reading.verdict()), verdict(source, reading)));
     if a.verdict == Verdict::Closed {
-        closed(source, a, &mut all);
+        closed(a, &mut all);
     }
     all.extend(friction(a));
     if let Some(holding) = &a.holding {
@@ -274,27 +272,27 @@ fn verdict(source: &Source<'_>, reading: &Reading) -> String {
     match (&a.escape, a.verdict) {
         _ if !reading.doubts.is_empty() => "two ways of scoring disagree: not to be relied on".to_owned(),
         (Some(way), _) => format!("the part {}", escape(source.scene, way)),
-        (None, Verdict::Closed) => "any push or turn can be balanced by pressing enough".to_owned(),
+        (None, Verdict::Closed) => "pressing enough balances any push or turn".to_owned(),
         (None, Verdict::Marginal) => "on the very edge of closing: not to be relied on".to_owned(),
         (None, Verdict::Open) => "some push cannot be balanced, however hard one presses".to_owned(),
     }
 }
 
-fn closed(source: &Source<'_>, a: &Assessment, all: &mut Vec<Score>) {
+fn closed(a: &Assessment, all: &mut Vec<Score>) {
     all.push((
         "quality",
         datum("quality", a.quality, &short(a.quality)),
-        format!("any 1 N of load is held with {} N of total squeeze", ratio(1.0 / a.quality)),
+        format!("1 N of any load takes {} N of total squeeze", ratio(1.0 / a.quality)),
     ));
     all.push((
         "per finger",
         datum("quality_per_finger", a.quality_per_finger, &short(a.quality_per_finger)),
-        format!("any 1 N of load is held with {} N per finger", ratio(1.0 / a.quality_per_finger)),
+        format!("1 N of any load takes {} N per finger", ratio(1.0 / a.quality_per_finger)),
     ));
     all.push((
         "placement",
         format!("{} mm", datum("placement_mm", a.placement.mm, &length(a.placement.mm))),
-        format!("each finger may be off so far along its edge, all at once; limited by {}", governor(&a.placement)),
+        format!("all fingers may be off so far; limited by {}", governor(&a.placement)),
     ));
     if let Some(weakest) = &a.weakest {
         let share = fixed(weakest.torque(), 2);
@@ -306,10 +304,6 @@ fn closed(source: &Source<'_>, a: &Assessment, all: &mut Vec<Score>) {
         };
         all.push(("weakest", value, meaning));
     }
-    let scale = source.scene.frame().scale_mm;
-    if let Some(last) = all.iter_mut().find(|score| score.0 == "quality") {
-        last.2.push_str(&format!("; a torque counts as its force at {} mm", fixed(scale, 2)));
-    }
 }
 
 fn friction(a: &Assessment) -> Vec<Score> {
@@ -317,7 +311,7 @@ fn friction(a: &Assessment) -> Vec<Score> {
     let value = |mu: Option<f64>| mu.map_or("none".to_owned(), ratio);
     let of = match &a.holding {
         Some(holding) if holding.limit.is_some() => format!(
-            "least mu: {} to close, {} to hold the loads",
+            "mu {} to close, {} to hold the loads",
             value(a.friction_needed_closure),
             value(a.friction_needed_holding)
         ),
@@ -327,8 +321,11 @@ fn friction(a: &Assessment) -> Vec<Score> {
         Some(margin) => datum("friction_margin", margin, &ratio(margin)),
         None => "any".to_owned(),
     };
-    let deg = a.friction_margin_deg.map_or(String::new(), |deg| format!("; normals may be off {deg:.1} deg"));
-    vec![("friction needed", needed, of), ("friction margin", margin, format!("mu over the friction needed{deg}"))]
+    let deg = a
+        .friction_margin_deg
+        .filter(|deg| *deg > 0.0)
+        .map_or(String::new(), |deg| format!("; normals may be off {deg:.1} deg"));
+    vec![("friction needed", needed, of), ("friction margin", margin, format!("mu over that{deg}"))]
 }
 
 fn holding_scores(source: &Source<'_>, reading: &Reading, holding: &Holding, all: &mut Vec<Score>) {
@@ -389,7 +386,7 @@ pub(super) fn friction_band(source: &Source<'_>) -> Option<Piece> {
 pub(super) fn assumed(source: &Source<'_>) -> Piece {
     let all = words::assumed(source.scene, source.saved.density.as_ref());
     // Sources and materials may be of any length; the page is not.
-    let all: Vec<_> = all.iter().map(|words| cut(words, 4 * NARROW)).collect();
+    let all: Vec<_> = all.iter().map(|words| cut(words, 2 * NARROW)).collect();
     let count: usize = all.iter().map(|words| lines(words, NARROW).len()).sum();
     let items: String = all.iter().map(|words| format!("<li>{}</li>", escaped(words))).collect();
     let html = format!("<h2>Assumed</h2>\n<ul class=\"assumed\">{items}</ul>\n");
