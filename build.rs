@@ -1,5 +1,4 @@
 //! What a build is made of, for `--version`: compiler, target, profile, and the commit where there is one.
-#![expect(clippy::print_stdout, reason = "a build script speaks to cargo on standard output")]
 
 use std::env;
 use std::path::Path;

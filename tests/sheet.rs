@@ -529,6 +529,10 @@ fn prints_one_page_for_each_grasp() {
         }
     }
     all.push_str("</body></html>");
+    // For a look at all of them.
+    if let Ok(keep) = std::env::var("HOLDWRIGHT_PAGES") {
+        std::fs::write(keep, &all).unwrap();
+    }
     for (size, points) in [("A4", [595.0, 842.0]), ("Letter", [612.0, 792.0])] {
         let (pages, paper, console) = printed(folder.path(), &all, size);
         assert_eq!((pages, console.as_str()), (count, ""), "{size}");

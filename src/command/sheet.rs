@@ -86,7 +86,10 @@ pub(super) fn run(args: &SheetArgs) -> Result<Answer, Stop> {
         [only] if args.svg => only.svg(),
         all => {
             let digest = file::part_digest(&opened.part);
-            page::document(all, &Origin { grasps: &args.grasps, part: part_path, digest: &digest })
+            page::document(
+                all,
+                &Origin { grasps: &args.grasps, part: part_path, digests: [&digest, &opened.saved.part_digest] },
+            )
         }
     };
     let answer = if sheets.iter().all(Sheet::is_sound) { Answer::Done } else { Answer::No };

@@ -40,7 +40,7 @@ pub(super) struct Drawing {
 /// Free border on the right and at the top, mm of paper.
 const BORDER: f64 = 9.0;
 /// Height of a line of the legend, mm of paper.
-const LINE: f64 = 3.4;
+const LINE: f64 = 3.1;
 /// Characters in a line of the legend for each mm of paper; lower-case text of the usual faces is about half as wide as
 /// high.
 const PER_MM: f64 = 1.0 / 1.19;
@@ -50,9 +50,9 @@ const BAR_WIDTH: f64 = 76.0;
 /// Width of legend and bar where they stand beside the drawing, mm of paper.
 const BESIDE: f64 = 60.0;
 /// Reasons for keep-outs that get a number of their own.
-pub(super) const MOST_REASONS: usize = 4;
-/// Arcs that rise less than this above their chord, mm of paper, are drawn straight: no printer shows the difference, and
-/// their circles are too large for programs that draw SVG in single precision.
+pub(super) const MOST_REASONS: usize = 3;
+/// Arcs that rise less than this above their chord, mm of paper, are drawn straight: no printer shows the difference,
+/// and their circles are too large for programs that draw SVG in single precision.
 const FLAT: f64 = 2e-3;
 
 /// Where the legend stands, and what that leaves to the drawing.
@@ -66,10 +66,11 @@ struct Layout {
 }
 
 impl Layout {
-    /// The layout that lets the part be drawn largest in a room, mm of paper.
-    fn best(subject: &Subject<'_>, room: (f64, f64), size: Vector2<f64>) -> Self {
+    /// The layout that lets the part be drawn largest in a room, mm of paper. The whole drawing is so wide, and
+    /// has dimensions of such a height below.
+    fn best(subject: &Subject<'_>, room: (f64, f64), whole: (f64, f64), size: Vector2<f64>) -> Self {
         let of = |beside: bool| {
-            let width = if beside { BESIDE } else { room.0 - BAR_WIDTH };
+            let width = if beside { BESIDE } else { whole.0 - BAR_WIDTH };
             let mut own = Self { room, scale: 0.0, legend: legend(subject, width), beside };
             own.room.0 = (own.room.0 - if beside { BESIDE } else { 0.0 }).max(10.0);
             own.room.1 = (own.room.1 - own.below()).max(10.0);
@@ -78,7 +79,7 @@ impl Layout {
             own
         };
         let (below, beside) = (of(false), of(true));
-        if beside.scale > below.scale && beside.high() <= room.1 { beside } else { below }
+        if beside.scale > below.scale && beside.high() <= room.1 + whole.1 { beside } else { below }
     }
 
     /// Height of legend and scale bar where they stand beside the drawing, mm of paper.
@@ -104,7 +105,7 @@ impl Drawing {
         let (left, least_high) = dimensions::room(&y, decimals);
         let over = BORDER + if warning.is_some() { 12.0 } else { 0.0 };
         let size = high - low;
-        let layout = Layout::best(subject, (most.0 - left - BORDER, most.1 - over - below), size);
+        let layout = Layout::best(subject, (most.0 - left - BORDER, most.1 - over - below), (most.0, below), size);
         let Layout { room: (wide, tall), scale, legend, beside } = &layout;
         let (wide, tall, scale) = (*wide, *tall, *scale);
         let content = (size * scale).sup(&Vector2::new(least_wide.min(wide), least_high.min(tall)));
@@ -275,16 +276,17 @@ fn legend(subject: &Subject<'_>, width: f64) -> Vec<String> {
             ""
         };
         words.push(format!(
-            "1, 2: fingers at true size; arrow: normal into the part; wedge: friction cone; quartered circle: centre of mass{jaws}"
+            "1, 2: fingers at true size; arrow: normal into the part; wedge: friction cone; \
+             quartered circle: centre of mass{jaws}"
         ));
     }
     let reasons = reasons(part);
     for (number, reason) in reasons.iter().enumerate().take(MOST_REASONS) {
         let reason = if reason.trim().is_empty() { "no reason given" } else { reason };
-        words.push(format!("K{}: no finger may touch: {}", number + 1, cut(reason, 50)));
+        words.push(format!("K{}: no finger: {}", number + 1, cut(reason, 32)));
     }
     if reasons.len() > MOST_REASONS {
-        words.push(format!("K: no finger may touch; {} more reasons in the part file", reasons.len() - MOST_REASONS));
+        words.push(format!("K: no finger; {} more reasons in the part file", reasons.len() - MOST_REASONS));
     }
     let most = ((width - 3.0) * PER_MM) as usize;
     words.iter().flat_map(|words| lines(words, most)).collect()

@@ -247,7 +247,8 @@ impl Marks<'_> {
         writeln!(
             self.svg,
             "<circle class=\"mark com\" cx=\"{x:.3}\" cy=\"{y:.3}\" r=\"{R}\"/>\
-             <path class=\"black\" d=\"M{x:.3} {y:.3}v-{R}a{R} {R} 0 0 1 {R} {R}zM{x:.3} {y:.3}v{R}a{R} {R} 0 0 1 -{R} -{R}z\"/>"
+             <path class=\"black\" d=\"M{x:.3} {y:.3}v-{R}a{R} {R} 0 0 1 {R} {R}z\
+             M{x:.3} {y:.3}v{R}a{R} {R} 0 0 1 -{R} -{R}z\"/>"
         )
     }
 

@@ -2,8 +2,8 @@
 
 use crate::file::shown;
 
-/// Text from a file as it may stand between tags or in a quoted attribute: nothing in it is markup, and nothing in it is
-/// a character that XML 1.0 does not allow.
+/// Text from a file as it may stand between tags or in a quoted attribute: nothing in it is markup, and nothing in it
+/// is a character that XML 1.0 does not allow.
 pub(super) fn escaped(text: &str) -> String {
     let mut safe = String::with_capacity(text.len());
     for c in shown(text).chars() {

@@ -44,8 +44,8 @@ pub(super) struct Origin<'a> {
     pub(super) grasps: &'a Path,
     /// The part file.
     pub(super) part: &'a Path,
-    /// Digest of the part as it is.
-    pub(super) digest: &'a str,
+    /// Digest of the part as it is, and of the one the file was begun for.
+    pub(super) digests: [&'a str; 2],
 }
 
 impl Sheet<'_> {
@@ -120,7 +120,8 @@ impl Sheet<'_> {
         let (head, wide, left) = fitting.unwrap_or_else(|| filled((1, 1)));
         let drawing = Drawing::of(&self.subject(), (WIDTH, left), None);
         format!(
-            "<section class=\"page\">\n{}{}<div class=\"figure\">{}</div>\n{}<div class=\"columns\"><div>{}</div><div>{}</div></div>\n\
+            "<section class=\"page\">\n{}{}<div class=\"figure\">{}</div>\n{}\
+             <div class=\"columns\"><div>{}</div><div>{}</div></div>\n\
              <p class=\"caution\">{}</p>\n{}</section>\n",
             self.header(),
             head.html,
@@ -145,7 +146,8 @@ impl Sheet<'_> {
             (false, _) => ("SEE BELOW", "not to be used as it is"),
         };
         format!(
-            "<header><div><h1>{}</h1>\n<p><b>{}</b>: {}</p>\n<p>saved {saved}</p></div>\n<div class=\"stamp\"><b>{first}</b>{second}</div></header>\n",
+            "<header><div><h1>{}</h1>\n<p><b>{}</b>: {}</p>\n<p>saved {saved}</p></div>\n\
+             <div class=\"stamp\"><b>{first}</b>{second}</div></header>\n",
             escaped(&cut(&shown(&self.saved.name), 52)),
             escaped(&cut(part.name(), 40)),
             escaped(&cut(&words::part(part), 60))
@@ -159,9 +161,10 @@ impl Sheet<'_> {
             format!("{} {} -> {}", change.score, value(change.was), value(change.now))
         });
         let why = self.checked.reasons.iter().cloned().chain(changes).collect::<Vec<_>>().join("; ");
-        let told = limited(&why, MOST_LINES);
+        let told = limited(&why, MOST_LINES - 1);
         let html = format!(
-            "<div class=\"warning-box\"><strong>{warning}</strong>Everything below is of the part as it is now. {}</div>\n",
+            "<div class=\"warning-box\"><strong>{warning}</strong>\
+             Everything below is of the part as it is now.<br/>{}</div>\n",
             told.join("<br/>")
         );
         Piece { html, height: 2.0 + 2.4 + 2.4 + 8.0 + 3.4 * (told.len() + 1) as f64 }
@@ -180,11 +183,13 @@ impl Sheet<'_> {
             let name = path.file_name().map_or(String::new(), |name| name.to_string_lossy().into_owned());
             escaped(&cut(&name, 34))
         };
+        let [now, saved] = origin.digests.map(|digest| escaped(digest.get(..12).unwrap_or_default()));
+        let digest = if self.part_changed { format!("{now} (saved for {saved})") } else { now };
         format!(
             "<footer><span>{}, part {}, digest {}</span><span>{}</span><span>{number} / {count}</span></footer>\n",
             name(origin.grasps),
             name(origin.part),
-            origin.digest.get(..12).unwrap_or_default(),
+            digest,
             concat!("holdwright ", env!("CARGO_PKG_VERSION"))
         )
     }
@@ -210,7 +215,8 @@ pub(super) fn document(sheets: &[Sheet<'_>], origin: &Origin<'_>) -> String {
     let pages: String = sheets.iter().enumerate().map(|(i, sheet)| sheet.html(origin, i + 1, sheets.len())).collect();
     let title = sheets.first().map_or(String::new(), |sheet| escaped(sheet.scene.part().name()));
     format!(
-        "<!DOCTYPE html>\n<html xmlns=\"http://www.w3.org/1999/xhtml\" lang=\"en\">\n<head>\n<meta charset=\"utf-8\"/>\n\
+        "<!DOCTYPE html>\n<html xmlns=\"http://www.w3.org/1999/xhtml\" lang=\"en\">\n\
+         <head>\n<meta charset=\"utf-8\"/>\n\
          <meta http-equiv=\"Content-Security-Policy\" content=\"default-src 'none'; style-src 'unsafe-inline'\"/>\n\
          <title>{title}: grasps</title>\n<style>\n{STYLE}{LOOK}</style>\n</head>\n<body>\n{pages}</body>\n</html>\n"
     )

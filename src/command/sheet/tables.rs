@@ -137,7 +137,8 @@ pub(super) fn fingers(source: &Source<'_>) -> Piece {
                    from +x; bears: at the squeeze asked for</small>";
     let mut piece = table("fingers numbers", caption, &[groups, heads], &rows, 0);
     if holding.is_some_and(|holding| !holding.governing_case().forces.is_empty()) {
-        let text = "Forces: into the part; along the edge, the material on its left; up out of the plane. Often one set of many.";
+        let text = "Forces: into the part; along the edge, the material on its left; up out of the plane. \
+                    Often one set of many.";
         piece.and(remark("remark", text, 150));
     }
     if let Some(jaws) = jaws(source, decimals) {
@@ -228,7 +229,7 @@ pub(super) fn loads(source: &Source<'_>, most: usize) -> Piece {
         let hidden = order.iter().skip(most);
         let unheld = hidden.filter(|i| !holding.cases[**i].held).count();
         let text = format!(
-            "{more} more cases ask less{}; the command check tells of all.",
+            "{more} more cases ask no more{}; the command score tells of all.",
             if unheld > 0 { format!(", {unheld} of them NOT HELD") } else { ", all held".to_owned() }
         );
         piece.and(remark("remark", &text, 150));
@@ -384,7 +385,7 @@ pub(super) fn friction_band(source: &Source<'_>) -> Option<Piece> {
 
 /// What was assumed, as a list.
 pub(super) fn assumed(source: &Source<'_>) -> Piece {
-    let all = words::assumed(source.scene, source.saved.density.as_ref());
+    let all = words::assumed(source.scene, source.saved.spots.len(), source.saved.density.as_ref());
     // Sources and materials may be of any length; the page is not.
     let all: Vec<_> = all.iter().map(|words| cut(words, 2 * NARROW)).collect();
     let count: usize = all.iter().map(|words| lines(words, NARROW).len()).sum();

@@ -2,6 +2,7 @@
 
 use crate::command::reading::{drive, hand, ratio};
 use crate::file::KeptDensity;
+use crate::hand::{FingerCount, Hand};
 use crate::mechanics::LoadCase;
 use crate::part::{Part, material};
 use crate::search::{Scene, TorqueScale};
@@ -109,9 +110,11 @@ pub(super) fn mass(part: &Part, chosen: Option<&KeptDensity>) -> String {
     }
 }
 
-/// Everything assumed, a line each.
-pub(super) fn assumed(scene: &Scene, chosen: Option<&KeptDensity>) -> Vec<String> {
+/// Everything assumed of a grasp of so many fingers, a line each.
+pub(super) fn assumed(scene: &Scene, fingers: usize, chosen: Option<&KeptDensity>) -> Vec<String> {
     let setup = scene.setup();
+    // A grasp may have been made of fewer or more fingers than the setup goes on to rank.
+    let own = Hand { fingers: FingerCount::new(fingers).unwrap_or(setup.hand.fingers), ..setup.hand };
     let scale = match setup.search.torque_scale {
         TorqueScale::Reach => "reach, to the farthest point of the outline",
         TorqueScale::Gyration => "radius of gyration",
@@ -133,7 +136,7 @@ pub(super) fn assumed(scene: &Scene, chosen: Option<&KeptDensity>) -> Vec<String
     let limit = setup.hand.force_limit_n.map_or("no force limit".to_owned(), |n| format!("limit {} N each", given(n)));
     vec![
         "rigid bodies, dry friction, first-order statics".to_owned(),
-        format!("{}; {limit}; {}", hand(&setup.hand), drive(setup.hand.drive)),
+        format!("{}; {limit}; {}", hand(&own), drive(setup.hand.drive)),
         cones,
         format!("torque counts over {:.2} mm ({scale})", scene.frame().scale_mm),
         mass(scene.part(), chosen),
