@@ -87,6 +87,7 @@ pub(super) fn fingers(source: &Source<'_>) -> Piece {
         let number = |class: &str, value: Option<f64>, decimals: usize| {
             value.map_or("-".to_owned(), |value| datum(class, value, &fixed(value, decimals)))
         };
+        let newtons_of = |class: &str, n: Option<f64>| n.map_or("-".to_owned(), |n| datum(class, n, &newtons(n)));
         let contact = reading.and_then(|reading| reading.grasp.contacts.get(finger));
         let at = contact.map(|contact| source.scene.part().file_point(contact.point));
         let from = contact.map(|contact| contact.point - source.datum);
@@ -106,9 +107,9 @@ pub(super) fn fingers(source: &Source<'_>) -> Piece {
             number("from_datum_y_mm", from.map(|from| from.y), decimals),
             number("normal_deg", contact.map(|contact| angle_deg(contact.normal)), 2),
             contact.map_or("-".to_owned(), |contact| datum("mu", contact.mu, &ratio(contact.mu))),
-            number("normal_n", force.map(|force| force.normal_n), 2),
-            number("force_along_n", force.map(|force| force.along_n), 2),
-            number("up_n", force.map(|force| force.up_n), 2),
+            newtons_of("normal_n", force.map(|force| force.normal_n)),
+            newtons_of("force_along_n", force.map(|force| force.along_n)),
+            newtons_of("up_n", force.map(|force| force.up_n)),
             bears,
         ]);
     }
