@@ -13,10 +13,11 @@ use common::{Dice, assert_close, frame, touch};
 use holdwright::hand::Drive;
 use holdwright::mechanics::holding::{self, Asked};
 use holdwright::mechanics::jaw_formula::{self, Lies, NoFormula};
+use holdwright::mechanics::load::Load;
 use holdwright::mechanics::program::{self, Solved};
 use holdwright::mechanics::spatial::{Hold, Pyramid, Wrench};
 use holdwright::mechanics::squeeze::{Answer, BEYOND, Squeezer};
-use holdwright::mechanics::{Contact, Frame, Wrenches};
+use holdwright::mechanics::{Case, Contact, Frame, Holding, Limit, LimitedBy, Wrenches};
 use nalgebra::{Point2, Rotation2, Vector2};
 
 const TABLE: &str = include_str!("reference/squeeze.csv");
@@ -641,4 +642,65 @@ fn the_ell_plate_under_load() {
     let asked: [Asked; 1] = [(load([-w, 0.0, 0.0], [0.0; 3], &grip.frame), 1.0)];
     let factor = holding::factor_needed(&grip.hold(), &asked, 60.0, 0.0).unwrap();
     assert_close(factor * mu, 0.112946, 0.0, 1e-6);
+}
+
+/// The largest squeeze that still holds a load when all fingers are pressed alike, against a linear program of its own; the
+/// least never exceeds it.
+#[test]
+fn pressed_alike_a_squeeze_may_be_too_hard() {
+    let mut dice = Dice::seeded(77);
+    let (mut bounded, mut unbounded) = (0, 0);
+    for _ in 0..600 {
+        let grip = Grip { drive: Drive::Equal, ..toss(&mut dice) };
+        let hold = grip.hold();
+        let load = any_load(&mut dice, grip.in_plane());
+        let least = grip.squeeze(&load);
+        if least.is_infinite() {
+            continue;
+        }
+        let most = Squeezer::new(hold).most(&load).expect("a held load has a largest squeeze");
+        assert!(most >= least * (1.0 - 1e-8), "{most} is below {least}");
+        let Solved::Answer(other) = program::most_squeeze(&hold, &load, 1e5 * load.norm()) else { continue };
+        assert_eq!(most.is_infinite(), other.is_infinite(), "{most} {other}");
+        if most.is_finite() {
+            assert_close(most, other, 1e-6, 0.0);
+            bounded += 1;
+        } else {
+            unbounded += 1;
+        }
+    }
+    assert!(bounded > 15 && unbounded > 100, "{bounded} {unbounded}");
+}
+
+/// Two pins below a plate and one above press alike: their own forces leave F upward, so a push of 30 N down takes exactly
+/// 30 N each and one of 3 N exactly 3 N. No one squeeze holds both. Statics, derived.
+#[test]
+fn one_squeeze_has_to_hold_every_case() {
+    let mu = 0.2;
+    let grip = Grip {
+        contacts: vec![touch(-20.0, -20.0, 90.0, mu), touch(20.0, -20.0, 90.0, mu), touch(0.0, 20.0, 270.0, mu)],
+        frame: frame(0.0, 0.0, 40.0),
+        half_height_mm: 0.0,
+        pyramid: Pyramid::planar(),
+        drive: Drive::Equal,
+    };
+    let push = |n: f64| Case {
+        name: format!("{n} N down"),
+        loads: vec![Load { wrench: load([0.0, -n, 0.0], [0.0; 3], &grip.frame), direction_deg: None }],
+        squeeze_left: 1.0,
+    };
+    let limit = Some(Limit { squeeze_n: 100.0, by: LimitedBy::Hand });
+    let hold = grip.hold();
+    let alone = Holding::of(&hold, &[push(3.0)], limit);
+    assert!(alone.held());
+    assert_close(alone.squeeze_n().unwrap(), 3.0, 1e-9, 0.0);
+    let cases = [push(30.0), push(3.0)];
+    let both = Holding::of(&hold, &cases, limit);
+    assert!(!both.held() && both.cases[0].held && !both.cases[1].held);
+    assert_close(both.cases[1].lets_go_above_n.unwrap(), 3.0, 1e-9, 0.0);
+    assert_eq!(both.load_margin(), Some(0.0));
+    assert_eq!(both.doubts(&hold, &cases), []);
+    // Each finger by itself holds both.
+    let free = Grip { drive: Drive::Adjustable, ..grip.clone() };
+    assert!(Holding::of(&free.hold(), &cases, limit).held());
 }

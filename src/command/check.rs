@@ -198,7 +198,11 @@ fn not_held(holding: &Holding) -> Vec<String> {
         _ if case.unsure => format!("\"{}\": no squeeze could be proved", shown(&case.name)),
         _ => format!("no squeeze holds \"{}\"", shown(&case.name)),
     };
-    holding.cases.iter().filter(|case| !case.held).map(why).collect()
+    let lets_go = |case: &CaseHolding| {
+        let n = newtons(case.lets_go_above_n?);
+        Some(format!("no one squeeze holds all: \"{}\" lets go above {n} N per finger", shown(&case.name)))
+    };
+    holding.cases.iter().filter(|case| !case.held).map(|case| lets_go(case).unwrap_or_else(|| why(case))).collect()
 }
 
 /// Scores that differ; one that was not saved is not compared, nor is the weakest direction, which may be one of several.
