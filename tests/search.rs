@@ -6,7 +6,7 @@ use holdwright::hand::{Closing, Drive, FingerCount, Tip};
 use holdwright::mechanics::holding;
 use holdwright::mechanics::load::Load;
 use holdwright::mechanics::program::{self, Solved};
-use holdwright::mechanics::{Case, Holding, LoadCase, Verdict, Wrenches, closure, quality};
+use holdwright::mechanics::{Holding, LoadCase, Verdict, Wrenches, closure, quality};
 use holdwright::part::{ArcDescription, EdgeId, EdgeLimit, KeepOutDescription, Part, PartDescription};
 use holdwright::search::{Cancel, Cancelled, Key, Listing, Ranking, Scene, Setup, Spot, rank};
 use std::collections::{BTreeMap, BTreeSet};
