@@ -168,6 +168,10 @@ fn check_one<'a>(saved: &'a SavedGrasp, scene: &Scene, asked: bool) -> Checked<'
         checked.reasons.push(format!("saved as {was}, now {now}"));
     }
     checked.reasons.extend(reading.assessment.holding.iter().flat_map(not_held));
+    let held_now = saved.scores.held == Some(false) && now.held == Some(true);
+    if held_now {
+        checked.reasons.push("its loads were not held when it was saved, now they are".to_owned());
+    }
     checked.outcome = if !reading.grasp.fits() {
         Outcome::NoLongerFits
     } else if !reading.doubts.is_empty() {
@@ -176,7 +180,7 @@ fn check_one<'a>(saved: &'a SavedGrasp, scene: &Scene, asked: bool) -> Checked<'
         if was_closed { Outcome::NoLongerClosed } else { Outcome::NeverClosed }
     } else if now.held == Some(false) {
         if saved.scores.held == Some(true) { Outcome::LoadsNoLongerHeld } else { Outcome::LoadsNotHeld }
-    } else if asked || (checked.changes.is_empty() && was_closed) {
+    } else if asked || (checked.changes.is_empty() && was_closed && !held_now) {
         Outcome::Holds
     } else {
         Outcome::ScoreChanged
