@@ -724,7 +724,7 @@ fn a_load_case_becomes_wrenches() {
     assert_eq!(loads.len(), 1);
     let w = &loads[0].wrench;
     let (m, g, s) = (0.628, 9.80665, 1.5);
-    assert_close(w[0], s * m * -1.0, 1e-12, 0.0);
+    assert_close(w[0], -(s * m), 1e-12, 0.0);
     assert_close(w[1], s * (m * (0.6 * g + 2.0) - 6.0), 1e-12, 0.0);
     assert_close(w[2], s * (m * (-0.8 * g - 0.5) + 2.0), 1e-12, 0.0);
     // r = (10, -4, 3) mm: r x f = (-4 * 2 - 3 * -6, -10 * 2, 10 * -6) N mm; J alpha = 145.3611 N mm against the turning.

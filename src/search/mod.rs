@@ -11,6 +11,7 @@ mod scene;
 mod screen;
 mod setup;
 mod sites;
+mod tally;
 mod under_load;
 
 pub use order::Key;
