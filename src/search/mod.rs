@@ -1,5 +1,6 @@
 //! Which grasps are good: sites on the stretches, candidate sets, their scores, families, order, the background job.
 
+mod best;
 mod families;
 mod family_forces;
 pub mod job;
@@ -13,6 +14,7 @@ mod setup;
 mod sites;
 mod under_load;
 
+pub use best::{Proved, ProvedGrasp, Proving, prove};
 pub use order::Key;
 pub use rank::{Cancel, Cancelled, Listed, Listing, Progress, Ranking, rank};
 pub use scene::{Grasp, PlaceFault, Scene, Spot, Standing};
