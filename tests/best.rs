@@ -234,7 +234,20 @@ fn nothing_beats(key: Key, seeds: std::ops::Range<u64>, budget: u64, least_prove
         check_rows(&scene, key, &proved, gap);
         let mut attack = Attack { scene: &scene, key, proved: &proved, tried: 0 };
         attack.run(&mut dice, 250, 4);
-        eprintln!("SEED {seed} {} fingers {fingers} pads {pads} stretches {} mu {:.2} proved {} gap {:.4} boxes {} fam {} opened {} rows {:?} best {:?} rest {:?}", seed % 5, scene.stretches().len(), scene.setup().friction.mu, proved.proved, proved.gap, proved.boxes, proved.families, proved.opened, proved.grasps.iter().map(|g| (g.value, g.bound)).collect::<Vec<_>>(), proved.best_bound, proved.rest_bound);
+        eprintln!(
+            "SEED {seed} {} fingers {fingers} pads {pads} stretches {} mu {:.2} proved {} gap {:.4} boxes {} fam {} opened {} rows {:?} best {:?} rest {:?}",
+            seed % 5,
+            scene.stretches().len(),
+            scene.setup().friction.mu,
+            proved.proved,
+            proved.gap,
+            proved.boxes,
+            proved.families,
+            proved.opened,
+            proved.grasps.iter().map(|g| (g.value, g.bound)).collect::<Vec<_>>(),
+            proved.best_bound,
+            proved.rest_bound
+        );
         tried += attack.tried;
         ended += usize::from(proved.proved);
         count += 1;
@@ -371,7 +384,8 @@ fn the_best_at_stretch_ends() {
 #[test]
 fn a_disc_and_a_polygon_like_one() {
     let (radius, mu) = (30.0, 0.4);
-    let on = |i: usize, n: usize, r: f64| [r * (i as f64 / n as f64 * TAU).cos(), r * (i as f64 / n as f64 * TAU).sin()];
+    let on =
+        |i: usize, n: usize, r: f64| [r * (i as f64 / n as f64 * TAU).cos(), r * (i as f64 / n as f64 * TAU).sin()];
     let mut disc = PartDescription::bare("disc", vec![(0..3).map(|i| on(i, 3, radius)).collect()]);
     disc.arcs = (0..3).map(|edge| ArcDescription { ring: 0, edge, bulge: (TAU / 12.0).tan() }).collect();
     let of = |described: PartDescription| {
@@ -450,8 +464,7 @@ fn never_below_the_sampler() {
                 let gap = 0.02;
                 let found = proved(&scene, key, 6, gap, 40_000);
                 check_rows(&scene, key, &found, gap);
-                let sampled =
-                    rank(&scene, key, Listing::Families, 10_000, &Cancel::default(), &|_| ()).unwrap();
+                let sampled = rank(&scene, key, Listing::Families, 10_000, &Cancel::default(), &|_| ()).unwrap();
                 let value = |assessment: &Assessment| match key {
                     Key::Quality => assessment.quality,
                     Key::QualityPerFinger => assessment.quality_per_finger,
@@ -460,7 +473,24 @@ fn never_below_the_sampler() {
                 };
                 for listed in &sampled.grasps {
                     let row = found.grasps.iter().find(|row| row.listed.family == listed.family);
-                    let bound = row.map_or(found.rest_bound.unwrap(), |row| row.bound);
+                    let bound = row.map_or_else(
+                        || {
+                            found.rest_bound.unwrap_or_else(|| {
+                                panic!(
+                                    "{key:?} {fingers} {mixed} {:?} {:?} {:?} found {:?}",
+                                    listed.family,
+                                    listed.assessment,
+                                    listed.grasp.spots,
+                                    found
+                                        .grasps
+                                        .iter()
+                                        .map(|g| (g.listed.family.clone(), g.value, g.bound))
+                                        .collect::<Vec<_>>()
+                                )
+                            })
+                        },
+                        |row| row.bound,
+                    );
                     let own = merit(key, value(&listed.assessment));
                     assert!(own <= merit(key, bound) + 1e-8, "{key:?} {own} {bound}");
                 }
@@ -474,7 +504,11 @@ fn never_below_the_sampler() {
                     }
                 }
                 let best = (&found.grasps[0], &sampled.grasps[0]);
-                assert!(merit(key, best.0.value) >= merit(key, value(&best.1.assessment)) - 1e-7 || !found.proved || gap > 0.0);
+                assert!(
+                    merit(key, best.0.value) >= merit(key, value(&best.1.assessment)) - 1e-7
+                        || !found.proved
+                        || gap > 0.0
+                );
             }
         }
     }

@@ -228,7 +228,8 @@ impl<'a> Search<'a> {
     fn first_looks(&mut self, observe: &(dyn Fn(Proving) + Sync)) -> Result<(), Cancelled> {
         let setting = self.setting;
         if setting.scene.setup().hand.closing == Closing::Parallel {
-            let families: Vec<Family> = (0..setting.scene.jaw_runs().len() as u32).map(|run| Family::new(&[run])).collect();
+            let families: Vec<Family> =
+                (0..setting.scene.jaw_runs().len() as u32).map(|run| Family::new(&[run])).collect();
             self.families = families.len() as u64;
             return self.look_at(&families, f64::NEG_INFINITY);
         }
@@ -459,11 +460,8 @@ impl<'a> Search<'a> {
         };
         let gap = own.chain(first).fold(behind, f64::max);
         let told = |merit: f64| (merit > f64::NEG_INFINITY).then(|| goal.told(merit));
-        let grasp = |row: Row| ProvedGrasp {
-            value: goal.told(row.merit),
-            bound: goal.told(row.bound),
-            listed: row.listed,
-        };
+        let grasp =
+            |row: Row| ProvedGrasp { value: goal.told(row.merit), bound: goal.told(row.bound), listed: row.listed };
         Proved {
             grasps: rows.into_iter().map(grasp).collect(),
             best_bound: told(best_bound),
@@ -494,15 +492,10 @@ fn row(setting: &Setting<'_>, family: &Family, lead: Lead, bound: f64) -> Option
     let lead = improve::to_the_middle(&mut plot, lead);
     let at = plot.spots(&lead.at);
     let rails = &plot.gauge.rails[..plot.gauge.k];
-    let spots: Vec<Spot> =
-        rails.iter().zip(at).map(|(rail, along_mm)| Spot { edge: rail.edge(), along_mm }).collect();
+    let spots: Vec<Spot> = rails.iter().zip(at).map(|(rail, along_mm)| Spot { edge: rail.edge(), along_mm }).collect();
     let grasp = setting.scene.grasp(&spots).ok()?;
     let (assessment, doubts) = setting.scene.assess_for_list(&grasp);
     let sure = doubts.is_empty() && assessment.verdict == Verdict::Closed;
     let family = rails.iter().map(|rail| rail.stretch).collect();
-    sure.then(|| Row {
-        listed: Listed { grasp, family, assessment },
-        merit: lead.merit,
-        bound: bound.max(lead.merit),
-    })
+    sure.then(|| Row { listed: Listed { grasp, family, assessment }, merit: lead.merit, bound: bound.max(lead.merit) })
 }

@@ -80,8 +80,7 @@ impl Cover {
             }
             bits
         };
-        let tracks: Vec<Option<Bits>> =
-            setting.rails.iter().map(|rail| usable(rail).then(|| bits(rail))).collect();
+        let tracks: Vec<Option<Bits>> = setting.rails.iter().map(|rail| usable(rail).then(|| bits(rail))).collect();
         let mut from = vec![[0; WORDS]; tracks.len() + 1];
         for i in (0..tracks.len()).rev() {
             from[i] = tracks[i].map_or(from[i + 1], |bits| or(&from[i + 1], &bits));

@@ -12,7 +12,7 @@ use super::super::order::Key;
 use super::Setting;
 use super::goal::Goal;
 use super::loads::Loads;
-use super::rail::{Contacts, Gaps, Rail, Span, contacts_over, half_mm};
+use super::rail::{Contacts, Gaps, Rail, Span, contacts_over, half_mm, score_over};
 use crate::hand::FingerCount;
 use crate::mechanics::force_polygon::{CERTAIN, ForcePolygon, PlanarScore};
 use crate::mechanics::friction::{self, CLOSED, UnitForces};
@@ -121,7 +121,9 @@ impl<'a> Gauge<'a> {
         let Some(contacts) = contacts_over(self.rails(), spans, |rail| rail.mu) else {
             return Bound { merit: self.most(room_mm), cut: longest };
         };
-        let score = self.planar(&contacts);
+        let score =
+            if self.curved { score_over(self.rails(), spans, |rail| rail.mu) } else { Some(self.planar(&contacts)) };
+        let Some(score) = score else { return Bound { merit: self.most(room_mm), cut: longest } };
         let floors = &self.setting.scene.setup().floors;
         if !(score.signed_quality > MARGINAL.max(floors.quality)) {
             return NOTHING;
@@ -131,7 +133,8 @@ impl<'a> Gauge<'a> {
             return NOTHING;
         }
         let bound = match goal.key {
-            Key::Quality => Bound { merit: score.signed_quality, cut: self.touching(&contacts, &score, spans) },
+            Key::Quality if self.curved => Bound { merit: score.signed_quality, cut: longest },
+            Key::Quality => Bound { merit: score.signed_quality, cut: touching(&contacts, &score, spans) },
             Key::QualityPerFinger => self.per_finger(&contacts, &score, spans, level),
             Key::Placement if room_mm < torque_mm => {
                 let beside = BESIDE * half_mm(spans[longest]) > half_mm(spans[nearest]);
@@ -205,22 +208,6 @@ impl<'a> Gauge<'a> {
         (score.torque_up.min(score.torque_down) + PLACEMENT_HAIR) * self.setting.scene.frame().scale_mm
     }
 
-    /// The finger with the longest interval, one that touches the weakest facet counting more: cutting another does not
-    /// move that facet, but may let a weaker one come forward.
-    fn touching(&self, contacts: &Contacts, score: &PlanarScore, spans: &[Span]) -> usize {
-        let u = &score.direction;
-        let mut best = (0.0, widest(spans));
-        for ((finger, lever), mu) in contacts.levers().iter().enumerate().zip(contacts.mus()) {
-            let reach = contacts.longer[finger] * farthest(lever, *mu, u);
-            let touches = reach >= score.signed_quality - 1e-9 && u.z.abs() > UPRIGHT;
-            let half = half_mm(spans[finger]) * if touches { 1.0 } else { BESIDE };
-            if half > best.0 {
-                best = (half, finger);
-            }
-        }
-        best.1
-    }
-
     fn per_finger(&self, contacts: &Contacts, score: &PlanarScore, spans: &[Span], level: f64) -> Bound {
         let most = self.k as f64 * score.signed_quality;
         if most <= level {
@@ -251,8 +238,7 @@ impl<'a> Gauge<'a> {
                     change = change.max((turn.sin() + (1.0 - turn.cos()) * left_on(rail)) / rail.bend);
                 }
             }
-            let Some(contacts) = contacts_over(self.rails(), spans, left_on) else { return f64::INFINITY };
-            let score = contacts.by_definition();
+            let Some(score) = score_over(self.rails(), spans, left_on) else { return f64::INFINITY };
             score.torque_up.min(score.torque_down) - change / scale_mm
         };
         let point = spans.iter().all(|span| half_mm(*span) <= 0.0);
@@ -278,8 +264,7 @@ impl<'a> Gauge<'a> {
         if !self.curved {
             return friction::signed_quality_at(contacts.levers(), contacts.mus(), factor) > CLOSED;
         }
-        let Some(wider) = contacts_over(self.rails(), spans, |rail| rail.mu * factor) else { return true };
-        friction::signed_quality_at(wider.levers(), wider.mus(), 1.0) > CLOSED
+        score_over(self.rails(), spans, |rail| rail.mu * factor).is_none_or(|score| score.signed_quality > CLOSED)
     }
 
     /// A friction factor below which nothing in a box closes; infinite when nothing does with all the friction there is.
@@ -420,4 +405,20 @@ pub(super) fn farthest(lever: &Lever, mu: f64, u: &Vector3<f64>) -> f64 {
     let normal = u.x * n.x + u.y * n.y + u.z * lever.normal_torque;
     let along = u.x * t.x + u.y * t.y + u.z * lever.tangent_torque;
     normal + mu * along.abs() + lever.spread * u.z.abs()
+}
+
+/// The finger with the longest interval, one that touches the weakest facet counting more: cutting another does not
+/// move that facet, but may let a weaker one come forward.
+fn touching(contacts: &Contacts, score: &PlanarScore, spans: &[Span]) -> usize {
+    let u = &score.direction;
+    let mut best = (0.0, widest(spans));
+    for ((finger, lever), mu) in contacts.levers().iter().enumerate().zip(contacts.mus()) {
+        let reach = farthest(lever, *mu, u);
+        let touches = reach >= score.signed_quality - 1e-9 && u.z.abs() > UPRIGHT;
+        let half = half_mm(spans[finger]) * if touches { 1.0 } else { BESIDE };
+        if half > best.0 {
+            best = (half, finger);
+        }
+    }
+    best.1
 }

@@ -104,7 +104,15 @@ fn directions(dims: usize) -> Vec<Spots> {
     }
     if dims > 2 {
         for signs in 0..1_u32 << dims {
-            let way = |dim: usize| if dim >= dims { 0.0 } else if signs >> dim & 1 == 0 { 1.0 } else { -1.0 };
+            let way = |dim: usize| {
+                if dim >= dims {
+                    0.0
+                } else if signs >> dim & 1 == 0 {
+                    1.0
+                } else {
+                    -1.0
+                }
+            };
             all.push(std::array::from_fn(way));
         }
     }

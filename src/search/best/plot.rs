@@ -161,7 +161,6 @@ impl<'a> Plot<'a> {
         if self.run.is_some() { Bound { cut: 0, ..bound } } else { bound }
     }
 
-
     /// Cuts boxes, the largest bound first, until none is above `level` nor above what is good enough beside the family's
     /// own best, or so many have been looked at. `level` is what excludes the family from the list. Returns how many boxes
     /// were looked at.

@@ -9,12 +9,20 @@
 //! from that of the same force at the middle by at most fn (R sin phi + R (1 - cos phi) mu'): a pad with friction mu' of that
 //! half width covers the arc, once its forces are made longer by the largest normal part a cone edge can have,
 //! cos(psi - phi) / cos psi (1 / cos psi when phi > psi). All of it shrinks to the contact itself as the piece gets shorter.
+//!
+//! That error is as long as the piece; where the generators are few enough, a cover with an error of the second order takes its
+//! place. A cone edge turned by theta has its torque about the arc's centre o unchanged, k, so its generator is
+//! (f, ((o - c) x f + k) / l): linear in the force f, which runs along a circle. The chord between the forces at the two ends,
+//! both made longer by 1 / cos phi, passes outside that circle; on it lie the points (f / cos theta,
+//! ((o - c) x f / cos theta + k') / l) for every k' from k to k / cos phi once both ends have both torques, and one of them is
+//! the generator itself made longer by 1 / cos theta. A hull that holds 0, as every hull of a closed grasp does, holds
+//! with it the generator.
 
 use super::super::scene::Scene;
 use crate::hand::{self, FingerCount, Hand, Tip};
+use crate::mechanics::force_polygon::PlanarScore;
 use crate::mechanics::wrench::{MOST_GENERATORS, cross};
 use crate::mechanics::{Lever, quality};
-use crate::mechanics::force_polygon::PlanarScore;
 use crate::part::Edge;
 use nalgebra::{Point2, Vector2, Vector3};
 
@@ -35,6 +43,9 @@ pub(super) fn middle(span: Span) -> f64 {
 
 /// Angles of the common cone and the turn together beyond this cover half the plane: nothing is said there.
 const WIDEST_RAD: f64 = 1.5;
+
+/// Largest half turn of a piece of an arc that is covered by its ends.
+const WIDEST_TURN_RAD: f64 = 1.2;
 
 /// A stretch as the search sees it.
 pub(super) struct Rail<'a> {
@@ -167,6 +178,35 @@ impl<'a> Rail<'a> {
         Some((lever, wider, (angle - turn).max(0.0).cos() / angle.cos()))
     }
 
+    /// Generators whose hull, with 0 in it, holds those of every contact with friction `mu` on a piece of an arc; nothing
+    /// where the piece turns too far.
+    fn turned_generators(&self, span: Span, mu: f64, add: &mut impl FnMut(Vector3<f64>)) -> bool {
+        let turn = self.half_turn(span);
+        if turn > WIDEST_TURN_RAD {
+            return false;
+        }
+        let longer = 1.0 / turn.cos();
+        let about_centre = mu / self.edge.curvature() / self.scene.frame().scale_mm;
+        for end in span {
+            let lever = self.at_middle([end, end]);
+            for (m, k) in [(mu, about_centre), (-mu, -about_centre)] {
+                let force = (lever.normal + lever.tangent * m) * longer;
+                let torque = (lever.normal_torque + m * lever.tangent_torque) * longer;
+                add(Vector3::new(force.x, force.y, torque));
+                if turn > 0.0 && mu > 0.0 {
+                    add(Vector3::new(force.x, force.y, torque - k * (longer - 1.0)));
+                }
+                if mu <= 0.0 {
+                    break;
+                }
+            }
+            if turn <= 0.0 {
+                break;
+            }
+        }
+        true
+    }
+
     /// How far the wrench of a unit normal force moves, at most, from the middle of a piece of an arc to anywhere on it,
     /// for forces applied up to `half_height` (over l) above or below the plane; 0 on a straight edge, whose spread says it.
     pub(super) fn wander(&self, span: Span, half_height: f64) -> f64 {
@@ -208,6 +248,33 @@ pub(super) fn contacts_over(rails: &[&Rail<'_>], spans: &[Span], mu_of: impl Fn(
     Some(contacts)
 }
 
+/// Closure, quality and placement over a box with fingers on arcs, by the plain definition: no number is below that of any
+/// placement in the box, where that is closed. Nothing where an arc turns too far.
+pub(super) fn score_over(rails: &[&Rail<'_>], spans: &[Span], mu_of: impl Fn(&Rail<'_>) -> f64) -> Option<PlanarScore> {
+    let most: usize = rails.iter().map(|rail| if rail.bend > 0.0 { 8 } else { 4 }).sum();
+    if most > MOST_GENERATORS {
+        return Some(contacts_over(rails, spans, mu_of)?.by_definition());
+    }
+    let mut generators = [Vector3::zeros(); MOST_GENERATORS];
+    let mut n = 0;
+    let mut add = |generator| {
+        generators[n] = generator;
+        n += 1;
+    };
+    for (rail, span) in rails.iter().zip(spans) {
+        let mu = mu_of(rail);
+        if rail.bend > 0.0 {
+            if !rail.turned_generators(*span, mu, &mut add) {
+                return None;
+            }
+        } else {
+            let (lever, mu, _) = rail.over(*span, mu)?;
+            lever.generators(mu).iter().copied().for_each(&mut add);
+        }
+    }
+    Some(quality::by_definition(&generators[..n]))
+}
+
 /// Whether fingers keep their gaps, and when they cannot.
 pub(super) struct Gaps<'a> {
     hand: &'a Hand,
@@ -232,7 +299,8 @@ impl<'a> Gaps<'a> {
     /// True when two fingers come too near wherever they stand in the box: they do in the middle of it even when both are
     /// made smaller, or the gap less, by as much as they can move.
     pub(super) fn never_kept(&self, rails: &[&Rail<'_>], spans: &[Span]) -> bool {
-        !self.any && (1..spans.len()).any(|i| (0..i).any(|j| self.never_apart([rails[i], rails[j]], [spans[i], spans[j]])))
+        !self.any
+            && (1..spans.len()).any(|i| (0..i).any(|j| self.never_apart([rails[i], rails[j]], [spans[i], spans[j]])))
     }
 
     fn never_apart(&self, rails: [&Rail<'_>; 2], spans: [Span; 2]) -> bool {
