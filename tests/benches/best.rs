@@ -38,9 +38,9 @@ fn scene(edges: usize, pins: usize) -> Scene {
     Scene::new(Arc::new(part), setup).unwrap()
 }
 
-fn proved(scene: &Scene, want: usize) -> (Proved, f64) {
+fn proved(scene: &Scene, key: Key, want: usize) -> (Proved, f64) {
     let start = Instant::now();
-    let proved = prove(scene, Key::Quality, want, GAP, BUDGET, &Cancel::default(), &|_| {}).unwrap();
+    let proved = prove(scene, key, want, GAP, BUDGET, &Cancel::default(), &|_| {}).unwrap();
     (proved, start.elapsed().as_secs_f64())
 }
 
@@ -54,10 +54,10 @@ fn sets(scene: &Scene, quality: f64, pins: usize) -> f64 {
 fn run(edges: usize, pins: usize, rounds: usize) {
     let scene = scene(edges, pins);
     let (mut times, mut ratios) = (Vec::new(), Vec::new());
-    let (first, _) = proved(&scene, 1);
+    let (first, _) = proved(&scene, Key::Quality, 1);
     let count = sets(&scene, first.grasps[0].value, pins);
     for _ in 0..rounds {
-        let (again, time) = proved(&scene, 1);
+        let (again, time) = proved(&scene, Key::Quality, 1);
         assert_eq!(first, again);
         let start = Instant::now();
         let sampled = rank(&scene, Key::Quality, Listing::Families, 1, &Cancel::default(), &|_| {}).unwrap();
@@ -84,17 +84,37 @@ fn run(edges: usize, pins: usize, rounds: usize) {
     );
 }
 
+/// A whole list, by each key: no grid to compare with, since only the quality has a bound for one.
+fn list(edges: usize, pins: usize, want: usize) {
+    let scene = scene(edges, pins);
+    for key in [Key::Quality, Key::QualityPerFinger, Key::Friction, Key::Placement] {
+        let (found, time) = proved(&scene, key, want);
+        println!(
+            "{pins} pins on {edges} edges by {}, the best {want} families: {:.1} ms, {} boxes, {} opened, proved {}",
+            key.word(),
+            1e3 * time,
+            found.boxes,
+            found.opened,
+            found.proved,
+        );
+    }
+}
+
 fn main() {
     // `cargo test --benches` runs this too: once round, on the small ones.
     let timed = std::env::args().any(|argument| argument == "--bench");
-    let only: Option<(usize, usize)> = std::env::var("ONLY").ok().and_then(|only| {
-        let (pins, edges) = only.split_once('x')?;
-        Some((pins.parse().ok()?, edges.parse().ok()?))
-    });
-    let all = [(3, 60), (3, 200), (3, 400), (4, 20), (4, 60), (5, 20)];
-    for (pins, edges) in all {
-        if only.is_none_or(|only| only == (pins, edges)) && (timed || edges <= 20) {
+    // `ONLY=3x60` runs one case, for a profiler.
+    let only = std::env::var("ONLY").ok();
+    let wanted = |pins: usize, edges: usize| only.as_ref().is_none_or(|only| *only == format!("{pins}x{edges}"));
+    let all = [(3, 60), (3, 200), (3, 400), (4, 20), (4, 60), (5, 20), (2, 2000), (6, 20)];
+    for (pins, edges) in all.into_iter().filter(|&(pins, edges)| wanted(pins, edges)) {
+        if timed || edges <= 20 && pins < 5 {
             run(edges, pins, if timed { 5 } else { 1 });
+        }
+    }
+    for (pins, edges) in [(3, 60), (4, 20)].into_iter().filter(|_| timed && only.is_none()) {
+        for want in [1, 20] {
+            list(edges, pins, want);
         }
     }
 }

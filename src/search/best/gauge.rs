@@ -39,7 +39,7 @@ const PLACEMENT_HAIR: f64 = 1e-10;
 /// Rounding that a friction factor may be off by.
 const FACTOR_HAIR: f64 = 1e-9;
 /// Halvings of a bracket on the placement of a grasp on arcs, and on that of a box of them.
-const HALVINGS: [u32; 2] = [44, 12];
+const HALVINGS: [u32; 2] = [44, 16];
 
 /// Scores boxes and placements of one family.
 pub(super) struct Gauge<'a> {

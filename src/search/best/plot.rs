@@ -238,7 +238,7 @@ impl<'a> Plot<'a> {
     }
 
     /// True when two fingers come too near wherever they stand in a box.
-    fn is_crowded(&self, spans: &Spans) -> bool {
+    pub(super) fn is_crowded(&self, spans: &Spans) -> bool {
         let fingers = self.fingers(spans);
         let (rails, k) = (&self.gauge.rails, self.gauge.k);
         self.gauge.gaps().never_kept(&rails[..k], &fingers[..k])
