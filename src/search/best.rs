@@ -41,7 +41,7 @@ mod tests;
 use super::families::Family;
 use super::order::Key;
 use super::rank::{Cancel, Cancelled, Listed};
-use super::scene::Scene;
+use super::scene::{Scene, Spot};
 use crate::hand::{Closing, JawRun};
 use goal::Goal;
 use rail::{Gaps, Rail};
@@ -121,9 +121,24 @@ impl<'a> Setting<'a> {
     }
 }
 
-/// Finds the best placement of each of the best `want` families, and proves it to a relative `gap`, looking at no more than
-/// `budget` boxes. `observe` is called from time to time, from the calling thread. Runs on rayon's current pool; results do
-/// not depend on the number of threads.
+/// What is asked of a search.
+#[derive(Debug, Clone, Copy)]
+pub struct Ask<'a> {
+    /// What grasps are sorted by.
+    pub key: Key,
+    /// Families in the list, at least one.
+    pub want: usize,
+    /// How much better than its row a family may be in the end, as a part of its score.
+    pub gap: f64,
+    /// Boxes looked at, at most.
+    pub budget: u64,
+    /// Placements known already: a sampler's best, or the list at another setting. The search begins with those that are grasps
+    /// here, so it never ends below the best of them.
+    pub known: &'a [Vec<Spot>],
+}
+
+/// Finds the best placement of each of the best families, and proves it. `observe` is called from time to time, from the
+/// calling thread. Runs on rayon's current pool; results do not depend on the number of threads.
 ///
 /// A placement counts when a ranking would list it: closed, gaps kept, no floor undercut, every load held. Where a score
 /// is near 0 no relative gap can be reached; there the gap is told as a part of a small score instead (1e-4 for qualities,
@@ -133,16 +148,13 @@ impl<'a> Setting<'a> {
 /// [`Cancelled`] when told to stop.
 pub fn prove(
     scene: &Scene,
-    key: Key,
-    want: usize,
-    gap: f64,
-    budget: u64,
+    ask: &Ask<'_>,
     cancel: &Cancel,
     observe: &(dyn Fn(Proving) + Sync),
 ) -> Result<Proved, Cancelled> {
-    let setting = Setting::new(scene, key, gap);
-    let mut search = Search::new(&setting, want.max(1), budget, cancel);
-    search.start()?;
+    let setting = Setting::new(scene, ask.key, ask.gap);
+    let mut search = Search::new(&setting, ask.want.max(1), ask.budget, cancel);
+    search.start(ask.known)?;
     search.first_looks(observe)?;
     search.settle(observe)?;
     search.finish()

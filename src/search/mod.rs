@@ -14,7 +14,7 @@ mod setup;
 mod sites;
 mod under_load;
 
-pub use best::{Proved, ProvedGrasp, Proving, prove};
+pub use best::{Ask, Proved, ProvedGrasp, Proving, prove};
 pub use order::Key;
 pub use rank::{Cancel, Cancelled, Listed, Listing, Progress, Ranking, rank};
 pub use scene::{Grasp, PlaceFault, Scene, Spot, Standing};

@@ -12,7 +12,7 @@ mod common;
 
 use common::Dice;
 use holdwright::hand::FingerCount;
-use holdwright::search::{Cancel, Key, Listing, Proved, Scene, Setup, prove, rank};
+use holdwright::search::{Ask, Cancel, Key, Listing, Proved, Scene, Setup, prove, rank};
 use std::sync::Arc;
 use std::time::Instant;
 
@@ -40,7 +40,8 @@ fn scene(edges: usize, pins: usize) -> Scene {
 
 fn proved(scene: &Scene, key: Key, want: usize) -> (Proved, f64) {
     let start = Instant::now();
-    let proved = prove(scene, key, want, GAP, BUDGET, &Cancel::default(), &|_| {}).unwrap();
+    let proved =
+        prove(scene, &Ask { key, want, gap: GAP, budget: BUDGET, known: &[] }, &Cancel::default(), &|_| {}).unwrap();
     (proved, start.elapsed().as_secs_f64())
 }
 

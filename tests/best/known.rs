@@ -116,7 +116,8 @@ fn bracket() -> PartDescription {
     described
 }
 
-/// The proved best of a family is never below the best the sampler finds in it by more than the gap, and no family the
+/// The proved best is never below the best of the sampler it began with, nor a row of the list below the sampler's by more
+/// than the gap, and no family the
 /// sampler finds beats the bound that goes for it; at the top of the list, by quality, neither is above the other by more
 /// than a grid can miss: half the spacing over l (Pokorny & Kragic 2013).
 #[test]
@@ -153,9 +154,11 @@ fn never_below_the_sampler() {
             });
             for key in [Key::Quality, Key::QualityPerFinger, Key::Friction, Key::Placement] {
                 let gap = 0.02;
-                let found = proved(&scene, key, 6, gap, 40_000);
-                check_rows(&scene, key, &found, gap);
                 let sampled = rank(&scene, key, Listing::Families, 10_000, &Cancel::default(), &|_| ()).unwrap();
+                let known: Vec<Vec<Spot>> = sampled.grasps.iter().take(3).map(|row| row.grasp.spots.clone()).collect();
+                let ask = Ask { key, want: 6, gap, budget: 40_000, known: &known };
+                let found = prove(&scene, &ask, &Cancel::default(), &|_| ()).unwrap();
+                check_rows(&scene, key, &found, gap);
                 let value = |assessment: &Assessment| match key {
                     Key::Quality => assessment.quality,
                     Key::QualityPerFinger => assessment.quality_per_finger,
@@ -168,6 +171,8 @@ fn never_below_the_sampler() {
                     let own = merit(key, value(&listed.assessment));
                     assert!(own <= merit(key, bound) + 1e-8, "{key:?} {own} {bound}");
                 }
+                let best = merit(key, value(&sampled.grasps[0].assessment));
+                assert!(merit(key, found.grasps[0].value) >= best - 1e-8 * (1.0 + best.abs()), "{key:?} {best}");
                 for (row, listed) in found.grasps.iter().zip(&sampled.grasps) {
                     let own = value(&listed.assessment);
                     let slack = gap * own.abs().max(0.01) + 1e-7;
@@ -211,6 +216,12 @@ fn parallel_jaws() {
         for &key in keys {
             let found = proved(&jaws, key, 20, 0.001, 50_000);
             check_rows(&jaws, key, &found, 0.001);
+            // Begun with what it found, and with no budget, it still knows it.
+            let known: Vec<Vec<Spot>> = found.grasps.iter().map(|row| row.listed.grasp.spots.clone()).collect();
+            let ask = Ask { key, want: 20, gap: 0.001, budget: 0, known: &known };
+            let again = prove(&jaws, &ask, &Cancel::default(), &|_| ()).unwrap();
+            assert!(!again.proved);
+            assert_close(again.grasps[0].value, found.grasps[0].value, 1e-6, 1e-6);
             let mut families = 0;
             for run in jaws.jaw_runs() {
                 let mut best: Option<f64> = None;
@@ -270,12 +281,13 @@ fn any_number_of_threads_finds_the_same() {
 #[test]
 fn a_cancelled_search_stops() {
     let scene = scene(bracket(), 4, |_| ());
+    let ask = Ask { key: Key::Quality, want: 1, gap: 0.0, budget: 1_000_000, known: &[] };
     let cancel = Cancel::default();
     cancel.cancel();
-    assert_eq!(prove(&scene, Key::Quality, 1, 0.0, 1_000_000, &cancel, &|_| ()).err(), Some(Cancelled));
+    assert_eq!(prove(&scene, &ask, &cancel, &|_| ()).err(), Some(Cancelled));
     let cancel = Cancel::default();
     let stop = |_| cancel.cancel();
-    assert_eq!(prove(&scene, Key::Quality, 1, 0.0, 1_000_000, &cancel, &stop).err(), Some(Cancelled));
+    assert_eq!(prove(&scene, &ask, &cancel, &stop).err(), Some(Cancelled));
 }
 
 /// Fewer than four frictionless contacts never close (Reuleaux 1876; Somov 1897): proved without a search.

@@ -11,7 +11,7 @@ use common::{Dice, assert_close};
 use holdwright::hand::{Closing, FingerCount, Stretch, Tip};
 use holdwright::mechanics::{Assessment, Holding, LoadCase, MARGINAL, Verdict, quality};
 use holdwright::part::{ArcDescription, KeepOutDescription, Part, PartDescription};
-use holdwright::search::{Cancel, Cancelled, Key, Listing, Proved, Scene, Setup, Spot, TorqueScale, prove, rank};
+use holdwright::search::{Ask, Cancel, Cancelled, Key, Listing, Proved, Scene, Setup, Spot, TorqueScale, prove, rank};
 use std::f64::consts::TAU;
 use std::sync::Arc;
 
@@ -23,7 +23,7 @@ fn scene(described: PartDescription, fingers: usize, change: impl FnOnce(&mut Se
 }
 
 fn proved(scene: &Scene, key: Key, want: usize, gap: f64, budget: u64) -> Proved {
-    prove(scene, key, want, gap, budget, &Cancel::default(), &|_| ()).unwrap()
+    prove(scene, &Ask { key, want, gap, budget, known: &[] }, &Cancel::default(), &|_| ()).unwrap()
 }
 
 /// Larger is better, whatever the key.

@@ -136,11 +136,11 @@ impl<'a> Gauge<'a> {
             Key::Quality if self.curved => Bound { merit: score.signed_quality, cut: longest },
             Key::Quality => Bound { merit: score.signed_quality, cut: touching(&contacts, &score, spans) },
             Key::QualityPerFinger => self.per_finger(&contacts, &score, spans, level),
-            Key::Placement if room_mm < torque_mm => {
-                let beside = BESIDE * half_mm(spans[longest]) > half_mm(spans[nearest]);
-                Bound { merit: room_mm, cut: if beside { longest } else { nearest } }
+            Key::Placement => {
+                let beside = room_mm > torque_mm || BESIDE * half_mm(spans[longest]) > half_mm(spans[nearest]);
+                let (_, merit) = self.placement(spans, torque_mm.min(room_mm), level);
+                Bound { merit, cut: if beside { longest } else { nearest } }
             }
-            Key::Placement => Bound { merit: self.placement(spans, torque_mm, level).1.min(room_mm), cut: longest },
             Key::Friction => Bound { merit: -self.least_factor(spans, &contacts, level), cut: longest },
             Key::Squeeze => Bound { merit: 0.0, cut: longest },
         };
@@ -218,7 +218,8 @@ impl<'a> Gauge<'a> {
     }
 
     /// Placement tolerance of the placements in a box as far as closure limits it, mm: two bounds of it, equal but for the
-    /// bracket where a finger stands on an arc. The lower one counts for a single placement, the upper for a box.
+    /// bracket where a finger stands on an arc. The lower one counts for a single placement, the upper for a box. `straight_mm`
+    /// is what it would be on straight edges, or any other upper bound.
     fn placement(&self, spans: &[Span], straight_mm: f64, level: f64) -> (f64, f64) {
         if !self.curved {
             return (straight_mm, straight_mm);

@@ -78,7 +78,13 @@ impl<'a> Search<'a> {
     }
 
     /// Good placements to begin with, so that most families never have to be opened.
-    pub(super) fn start(&mut self) -> Result<(), Cancelled> {
+    pub(super) fn start(&mut self, known: &[Vec<Spot>]) -> Result<(), Cancelled> {
+        for spots in known {
+            self.stop()?;
+            for (family, lead) in start::known(self.setting, spots) {
+                self.offer(family, lead);
+            }
+        }
         if self.setting.scene.setup().hand.closing == Closing::Free {
             for (family, lead) in start::leads(self.setting, self.want, self.cancel)? {
                 self.offer(family, lead);

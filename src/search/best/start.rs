@@ -2,11 +2,13 @@
 
 use super::super::families::Family;
 use super::super::rank::{Cancel, Cancelled};
+use super::super::scene::Spot;
 use super::Setting;
+use super::gauge::Spots;
 use super::improve;
 use super::plot::{Lead, Plot};
-use super::rail::middle;
-use crate::hand::Tip;
+use super::rail::{Rail, middle};
+use crate::hand::{Closing, FingerCount, Tip};
 use rand_chacha::ChaCha8Rng;
 use rand_chacha::rand_core::{Rng, SeedableRng};
 use rayon::prelude::*;
@@ -41,6 +43,51 @@ pub(super) fn leads(setting: &Setting<'_>, want: usize, cancel: &Cancel) -> Resu
         Ok(all)
     })
 }
+
+/// A placement known already, as leads of the families it belongs to; none where it is no grasp here. Jaws may stand so on
+/// more than one run.
+pub(super) fn known(setting: &Setting<'_>, spots: &[Spot]) -> Vec<(Family, Lead)> {
+    let on = |spot: &Spot| {
+        let stands = |rail: &&Rail<'_>| {
+            rail.edge() == spot.edge
+                && rail.whole[0] - AT_END_MM <= spot.along_mm
+                && spot.along_mm <= rail.whole[1] + AT_END_MM
+        };
+        let rail = setting.rails.iter().find(stands)?;
+        Some((rail.stretch, spot.along_mm.clamp(rail.whole[0], rail.whole[1])))
+    };
+    let Some(mut placed) = spots.iter().map(on).collect::<Option<Vec<_>>>() else { return Vec::new() };
+    if placed.len() != setting.fingers {
+        return Vec::new();
+    }
+    placed.sort_by(|a, b| a.0.cmp(&b.0).then(a.1.total_cmp(&b.1)));
+    let mut at = [0.0; FingerCount::MOST];
+    let mut candidates = Vec::new();
+    if setting.scene.setup().hand.closing == Closing::Parallel {
+        for (number, run) in setting.scene.jaw_runs().iter().enumerate() {
+            let (from, to) = (run.along_mm(0.0), run.along_mm(run.length_mm()));
+            if run.stretches == [placed[0].0, placed[1].0] {
+                // The finger that moves farther tells the parameter best.
+                let finger = usize::from((to[1] - from[1]).abs() > (to[0] - from[0]).abs());
+                let way = to[finger] - from[finger];
+                at[0] = ((placed[finger].1 - from[finger]) * way.signum()).clamp(0.0, run.length_mm());
+                candidates.push((Family::new(&[number as u32]), at));
+            }
+        }
+    } else {
+        at.iter_mut().zip(&placed).for_each(|(at, (_, along_mm))| *at = *along_mm);
+        let on: Vec<u32> = placed.iter().map(|(stretch, _)| *stretch as u32).collect();
+        candidates.push((Family::new(&on), at));
+    }
+    let lead = |(family, at): (Family, Spots)| {
+        let merit = Plot::new(setting, &family).value(&at, f64::NEG_INFINITY)?;
+        Some((family, Lead { merit, at }))
+    };
+    candidates.into_iter().filter_map(lead).collect()
+}
+
+/// How far outside its stretch a position may lie that went through a file, mm.
+const AT_END_MM: f64 = 1e-6;
 
 struct Start<'a> {
     setting: &'a Setting<'a>,
