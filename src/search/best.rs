@@ -68,8 +68,9 @@ pub struct Proved {
     pub best_bound: Option<f64>,
     /// No placement of a family that is not in the list scores better than this; nothing where all that are grasps are in it.
     pub rest_bound: Option<f64>,
-    /// How much better than its row says a family in the list can be, at most, as a part of its score; for the first row, than any
-    /// family. Infinite when nothing was found and something may be there.
+    /// How much better than its row a family in the list can be, at most, as a part of its score; than the first row, any
+    /// family; than the last row of a full list, any family that is not in it. Infinite when the list is not full and
+    /// something may be missing.
     pub gap: f64,
     /// The gap is no wider than was asked for.
     pub proved: bool,

@@ -297,3 +297,19 @@ fn where_nothing_closes_that_is_proved() {
     let none = proved(&scene, Key::Quality, 5, 0.01, 1000);
     assert!(none.proved && none.grasps.is_empty() && none.best_bound.is_none());
 }
+
+/// Without load cases every closed grasp needs no squeeze; without a place for a finger, and with a gap that is no number, a
+/// search still ends.
+#[test]
+fn nothing_to_ask_and_nowhere_to_stand() {
+    let without_loads = scene(bracket(), 3, |_| ());
+    let found = proved(&without_loads, Key::Squeeze, 2, 0.01, 1000);
+    assert!(found.proved && found.grasps.len() == 2);
+    assert!(found.grasps.iter().all(|row| row.value.abs() <= 0.0));
+    let nowhere = scene(bracket(), 3, |setup| setup.hand.corner_clearance_mm = 500.0);
+    assert!(nowhere.stretches().is_empty());
+    for key in Key::ALL {
+        let found = proved(&nowhere, key, 0, f64::NAN, 1000);
+        assert!(found.grasps.is_empty() && found.boxes == 0 && found.proved, "{key:?} {found:?}");
+    }
+}
