@@ -497,8 +497,8 @@ fn rank_proves_its_list_on_request() {
     let report = json(&bench.run(&at));
     assert_eq!(report["proved"], true);
     let (best, bound) = (report["grasps"][0]["quality"].as_f64().unwrap(), report["best_bound"].as_f64().unwrap());
-    assert!(bound >= best && bound <= best * 1.001 + 1e-12, "{best} {bound}");
-    assert!(report["gap"].as_f64().unwrap() <= 0.001);
+    assert!(bound >= best && bound <= best * 1.001 + 1e-8, "{best} {bound}");
+    assert!(report["gap"].as_f64().unwrap() <= 0.001 + 1e-7);
     let sampled = json(&bench.run(&["rank", "bar.toml", "--fingers", "2", "--top", "1", "--json"]));
     assert!(best >= sampled["grasps"][0]["quality"].as_f64().unwrap() - 1e-12);
     assert!(sampled.get("proved").is_none());
