@@ -59,6 +59,7 @@ fn score_says_what_the_loads_ask() {
             "squeeze_n",
             "held",
             "margin",
+            "lets_go_above_n",
             "direction_deg",
             "finger_forces_n",
             "lies",

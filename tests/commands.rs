@@ -487,3 +487,25 @@ fn check_notices_edited_scores() {
     assert!(out(&output).contains("askew: score changed: quality 0.9 -> 0."), "{}", out(&output));
     assert!(out(&output).starts_with("middle: holds\n"), "{}", out(&output));
 }
+
+/// Two facing pins give at most mu across the faces, wherever they stand (Ferrari & Canny 1992): the bound over the whole
+/// outline is that, and the list is proved down to it.
+#[test]
+fn rank_proves_its_list_on_request() {
+    let bench = Bench::new();
+    let at = ["rank", "bar.toml", "--fingers", "2", "--top", "1", "--gap", "0.001", "--json"];
+    let report = json(&bench.run(&at));
+    assert_eq!(report["proved"], true);
+    let (best, bound) = (report["grasps"][0]["quality"].as_f64().unwrap(), report["best_bound"].as_f64().unwrap());
+    assert!(bound >= best && bound <= best * 1.001 + 1e-8, "{best} {bound}");
+    assert!(report["gap"].as_f64().unwrap() <= 0.001 + 1e-7);
+    let sampled = json(&bench.run(&["rank", "bar.toml", "--fingers", "2", "--top", "1", "--json"]));
+    assert!(best >= sampled["grasps"][0]["quality"].as_f64().unwrap() - 1e-12);
+    assert!(sampled.get("proved").is_none());
+    let text = bench.run(&at[..at.len() - 1]);
+    assert!(out(&text).contains("proved: no placement anywhere on the outline is better than"), "{}", out(&text));
+    for wrong in ["-0.1", "1", "nan", "x"] {
+        let output = bench.run(&["rank", "bar.toml", "--gap", wrong]);
+        assert_eq!(output.status.code(), Some(2), "{wrong}");
+    }
+}

@@ -5,7 +5,7 @@
 mod common;
 
 use common::{Dice, assert_close, part, part_with_arcs};
-use holdwright::hand::{Hand, Stretch, Tip, apart, stretch_around, stretches};
+use holdwright::hand::{Hand, Tip, apart, stretch_around, stretches};
 use holdwright::part::{ArcDescription, Edge, EdgeId, KeepOutDescription, Part, PartDescription};
 use nalgebra::{Point2, Vector2};
 use std::f64::consts::TAU;
@@ -235,7 +235,7 @@ fn compare(arcs: bool, seed: u64, parts: usize, tries: usize) -> [usize; 4] {
         made += 1;
         let hand = any_pad(&mut dice);
         let found = stretches(&part, &hand);
-        check_shape(&part, &found);
+        common::check_shape(&part, &found);
         for edge in part.outline().edges() {
             let hollow = edge.arc().is_some_and(|arc| !arc.convex);
             for _ in 0..tries {
@@ -269,17 +269,6 @@ fn a_pad_fits_on_straight_edges_exactly_where_it_meets_no_other_edge() {
 fn a_pad_fits_among_arcs_exactly_where_it_meets_no_other_edge() {
     let seen = compare(true, 32, 150, 24);
     assert!(seen.iter().all(|&count| count > 300), "{seen:?}");
-}
-
-/// Stretches come in order, apart from one another, and on their edges.
-fn check_shape(part: &Part, found: &[Stretch]) {
-    for stretch in found {
-        let length = part.outline().edge(stretch.edge).map_or(0.0, Edge::length_mm);
-        assert!(0.0 <= stretch.from_mm && stretch.from_mm <= stretch.to_mm && stretch.to_mm <= length, "{stretch:?}");
-    }
-    for pair in found.windows(2) {
-        assert!((pair[0].edge, pair[0].to_mm) < (pair[1].edge, pair[1].from_mm), "{pair:?}");
-    }
 }
 
 /// A stretch ends at a corner, at a keep-out, or where the pad touches another edge.

@@ -3,9 +3,10 @@
 #![allow(clippy::unwrap_used, clippy::expect_used, reason = "a test that cannot go on has failed")]
 
 use holdwright::hand::{Closing, Drive, FingerCount, Tip};
+use holdwright::mechanics::holding;
 use holdwright::mechanics::load::Load;
 use holdwright::mechanics::program::{self, Solved};
-use holdwright::mechanics::{Case, Holding, LoadCase, Verdict, Wrenches, closure, quality};
+use holdwright::mechanics::{Holding, LoadCase, Verdict, Wrenches, closure, quality};
 use holdwright::part::{ArcDescription, EdgeId, EdgeLimit, KeepOutDescription, Part, PartDescription};
 use holdwright::search::{Cancel, Cancelled, Key, Listing, Ranking, Scene, Setup, Spot, rank};
 use std::collections::{BTreeMap, BTreeSet};
@@ -87,8 +88,15 @@ fn plain_squeeze(scene: &Scene, wrenches: &Wrenches) -> f64 {
         Solved::Infeasible => f64::INFINITY,
         Solved::Inconclusive(why) => panic!("{why}"),
     };
-    let of_case = |case: &Case| case.loads.iter().map(|load| one(load, case.squeeze_left)).fold(0.0, f64::max);
-    scene.cases().iter().map(of_case).fold(0.0, f64::max)
+    let loads = || scene.cases().iter().flat_map(|case| case.loads.iter().map(|load| (load, case.squeeze_left)));
+    let needed = loads().map(|(load, left)| one(load, left)).fold(0.0, f64::max);
+    // Where all fingers are pressed alike, one squeeze has to hold every load, and more is not always better.
+    let keeps = |load: &Load, left: f64| match program::most_squeeze(&hold, &load.wrench, 1e7) {
+        Solved::Answer(n) => n / left >= needed * (1.0 - 1e-7),
+        Solved::Infeasible | Solved::Inconclusive(_) => true,
+    };
+    let common = hold.drive() == Drive::Adjustable || loads().all(|(load, left)| keeps(load, left));
+    if common { needed } else { f64::INFINITY }
 }
 
 fn plain(scene: &Scene) -> Plain {
@@ -115,7 +123,9 @@ fn plain(scene: &Scene) -> Plain {
         let family: Vec<usize> = chosen.iter().map(|&i| positions[i].0).collect();
         plain.families.insert(family.clone());
         let squeeze = plain_squeeze(scene, &wrenches);
-        if squeeze > scene.limit(&grasp).map_or(f64::INFINITY, |limit| limit.squeeze_n) {
+        // Without a limit, a hundred thousand times the load is no squeeze any more.
+        let most = holding::any_squeeze_n(&holding::all_loads(scene.cases()));
+        if !(squeeze <= scene.limit(&grasp).map_or(most, |limit| limit.squeeze_n)) {
             return;
         }
         let best = plain.best.entry(family).or_insert([0.0, 0.0, f64::INFINITY, 0.0, f64::INFINITY]);
@@ -268,6 +278,20 @@ fn pads_under_loads() {
         setup.hand.pad_width_mm = 6.0;
         setup.hand.gap_mm = 2.0;
     }));
+}
+
+/// Pressed alike without a limit, three pins hold what they hold at one squeeze for all loads, or not at all.
+#[test]
+fn pins_pressed_alike() {
+    for limit_n in [None, Some(70.0)] {
+        check_against_plain(&scene(heavy(bracket()), 3, |setup| {
+            setup.search.spacing_mm = Some(15.0);
+            setup.friction.mu = 0.5;
+            setup.hand.drive = Drive::Equal;
+            setup.hand.force_limit_n = limit_n;
+            setup.loads = loads();
+        }));
+    }
 }
 
 /// Parallel jaws: every run gone through, the best of each listed, and each listed pair one that jaws can take.

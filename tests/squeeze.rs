@@ -13,10 +13,11 @@ use common::{Dice, assert_close, frame, touch};
 use holdwright::hand::Drive;
 use holdwright::mechanics::holding::{self, Asked};
 use holdwright::mechanics::jaw_formula::{self, Lies, NoFormula};
+use holdwright::mechanics::load::{Body, Load};
 use holdwright::mechanics::program::{self, Solved};
 use holdwright::mechanics::spatial::{Hold, Pyramid, Wrench};
 use holdwright::mechanics::squeeze::{Answer, BEYOND, Squeezer};
-use holdwright::mechanics::{Contact, Frame, Wrenches};
+use holdwright::mechanics::{Case, Contact, Frame, Holding, Limit, LimitedBy, LoadCase, Wrenches};
 use nalgebra::{Point2, Rotation2, Vector2};
 
 const TABLE: &str = include_str!("reference/squeeze.csv");
@@ -641,4 +642,108 @@ fn the_ell_plate_under_load() {
     let asked: [Asked; 1] = [(load([-w, 0.0, 0.0], [0.0; 3], &grip.frame), 1.0)];
     let factor = holding::factor_needed(&grip.hold(), &asked, 60.0, 0.0).unwrap();
     assert_close(factor * mu, 0.112946, 0.0, 1e-6);
+}
+
+/// The largest squeeze that still holds a load when all fingers are pressed alike, against a linear program of its own; the
+/// least never exceeds it.
+#[test]
+fn pressed_alike_a_squeeze_may_be_too_hard() {
+    let mut dice = Dice::seeded(77);
+    let (mut bounded, mut unbounded) = (0, 0);
+    for _ in 0..600 {
+        let grip = Grip { drive: Drive::Equal, ..toss(&mut dice) };
+        let hold = grip.hold();
+        let load = any_load(&mut dice, grip.in_plane());
+        let least = grip.squeeze(&load);
+        if least.is_infinite() {
+            continue;
+        }
+        let most = Squeezer::new(hold).most(&load).expect("a held load has a largest squeeze");
+        assert!(most >= least * (1.0 - 1e-8), "{most} is below {least}");
+        let Solved::Answer(other) = program::most_squeeze(&hold, &load, 1e5 * load.norm()) else { continue };
+        assert_eq!(most.is_infinite(), other.is_infinite(), "{most} {other}");
+        if most.is_finite() {
+            assert_close(most, other, 1e-6, 0.0);
+            bounded += 1;
+        } else {
+            unbounded += 1;
+        }
+    }
+    assert!(bounded > 15 && unbounded > 100, "{bounded} {unbounded}");
+}
+
+/// Two pins below a plate and one above press alike: their own forces leave F upward, so a push of 30 N down takes exactly
+/// 30 N each and one of 3 N exactly 3 N. No one squeeze holds both. Statics, derived.
+#[test]
+fn one_squeeze_has_to_hold_every_case() {
+    let mu = 0.2;
+    let grip = Grip {
+        contacts: vec![touch(-20.0, -20.0, 90.0, mu), touch(20.0, -20.0, 90.0, mu), touch(0.0, 20.0, 270.0, mu)],
+        frame: frame(0.0, 0.0, 40.0),
+        half_height_mm: 0.0,
+        pyramid: Pyramid::planar(),
+        drive: Drive::Equal,
+    };
+    let push = |n: f64| Case {
+        name: format!("{n} N down"),
+        loads: vec![Load { wrench: load([0.0, -n, 0.0], [0.0; 3], &grip.frame), direction_deg: None }],
+        squeeze_left: 1.0,
+    };
+    let limit = Some(Limit { squeeze_n: 100.0, by: LimitedBy::Hand });
+    let hold = grip.hold();
+    let alone = Holding::of(&hold, &[push(3.0)], limit);
+    assert!(alone.held());
+    assert_close(alone.squeeze_n().unwrap(), 3.0, 1e-9, 0.0);
+    let cases = [push(30.0), push(3.0)];
+    let both = Holding::of(&hold, &cases, limit);
+    assert!(!both.held() && both.cases[0].held && !both.cases[1].held);
+    assert_close(both.cases[1].lets_go_above_n.unwrap(), 3.0, 1e-9, 0.0);
+    assert_eq!(both.load_margin(), Some(0.0));
+    assert_eq!(both.doubts(&hold, &cases), []);
+    // Each finger by itself holds both.
+    let free = Grip { drive: Drive::Adjustable, ..grip.clone() };
+    assert!(Holding::of(&free.hold(), &cases, limit).held());
+}
+
+/// Newton and Euler by hand: `f = m (g ghat - a) + f_ext`, `m_z = -J alpha` plus the moment of f_ext about the centre of
+/// mass, all times the safety factor; J of the L-plate above is 1.453611e-3 kg m2, its centre of mass at (44, 44).
+#[test]
+fn a_load_case_becomes_wrenches() {
+    let body = Body { mass_kg: 0.628, polar_kg_m2: 1.453611e-3, com_mm: [44.0, 44.0] };
+    let scale = 50.0;
+    let case = LoadCase {
+        gravity: [0.0, 3.0, -4.0],
+        acceleration_m_s2: [1.0, -2.0, 0.5],
+        angular_acceleration_rad_s2: 100.0,
+        force_n: [0.0, -6.0, 2.0],
+        at_mm: [54.0, 40.0, 3.0],
+        safety: 1.5,
+        ..LoadCase::default()
+    };
+    let loads = case.loads(&body, scale);
+    assert_eq!(loads.len(), 1);
+    let w = &loads[0].wrench;
+    let (m, g, s) = (0.628, 9.80665, 1.5);
+    assert_close(w[0], -(s * m), 1e-12, 0.0);
+    assert_close(w[1], s * (m * (0.6 * g + 2.0) - 6.0), 1e-12, 0.0);
+    assert_close(w[2], s * (m * (-0.8 * g - 0.5) + 2.0), 1e-12, 0.0);
+    // r = (10, -4, 3) mm: r x f = (-4 * 2 - 3 * -6, -10 * 2, 10 * -6) N mm; J alpha = 145.3611 N mm against the turning.
+    assert_close(w[3] * scale, s * 10.0, 1e-12, 0.0);
+    assert_close(w[4] * scale, s * -20.0, 1e-12, 0.0);
+    assert_close(w[5] * scale, s * (-60.0 - 145.3611), 1e-9, 0.0);
+    assert!(case.needs_mass() && case.out_of_plane() == Some("gravity"));
+
+    // Any direction: sixteen corners of the polygon about the circle, so that the middle of each side is at 8 m/s2.
+    let stop = LoadCase { gravity: [0.0; 3], any_direction_m_s2: 8.0, ..LoadCase::default() };
+    let corners: Vec<_> = stop.loads(&body, scale).iter().map(|load| load.wrench).collect();
+    assert_eq!(corners.len(), 16);
+    for (i, a) in corners.iter().enumerate() {
+        let middle = (a + corners[(i + 1) % 16]) / 2.0;
+        assert_close(middle.norm(), m * 8.0, 1e-12, 0.0);
+        assert!(a.norm() > m * 8.0);
+    }
+    // It pushes the part the other way than it is accelerated.
+    assert!(corners[0][0] < 0.0 && corners[4][1] < 0.0);
+    let push = LoadCase { gravity: [0.0; 3], force_n: [1.0, 0.0, 0.0], ..LoadCase::default() };
+    assert!(!push.needs_mass() && push.out_of_plane().is_none());
 }

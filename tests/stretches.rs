@@ -3,7 +3,7 @@
 mod common;
 
 use common::Dice;
-use holdwright::hand::{Hand, Stretch, apart, stretch_around, stretches};
+use holdwright::hand::{Hand, apart, stretch_around, stretches};
 use holdwright::part::{Edge, EdgeId, Part, PartDescription};
 use nalgebra::Point2;
 
@@ -66,20 +66,9 @@ fn a_pin_fits_exactly_where_it_meets_no_other_edge() {
                 assert_eq!(stands, expected, "{:?} at {along}: room {room}, radius {}", edge.id(), hand.pin_radius_mm);
             }
         }
-        check_shape(&part, &found);
+        common::check_shape(&part, &found);
     }
     assert!(free > 20_000 && blocked > 20_000, "{free} {blocked}");
-}
-
-/// Stretches come in order, apart from one another, on their edges, and end only where something stops the pin.
-fn check_shape(part: &Part, found: &[Stretch]) {
-    for stretch in found {
-        let length = part.outline().edge(stretch.edge).map_or(0.0, Edge::length_mm);
-        assert!(0.0 <= stretch.from_mm && stretch.from_mm <= stretch.to_mm && stretch.to_mm <= length, "{stretch:?}");
-    }
-    for pair in found.windows(2) {
-        assert!((pair[0].edge, pair[0].to_mm) < (pair[1].edge, pair[1].from_mm), "{pair:?}");
-    }
 }
 
 /// A stretch ends at a corner, at a keep-out, or where the pin touches another edge.

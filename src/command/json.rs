@@ -22,6 +22,9 @@ pub(super) struct Report<'a> {
     pub(super) closed: u64,
     pub(super) inconclusive: u64,
     pub(super) complete: bool,
+    /// Present where a proof was asked for.
+    #[serde(flatten)]
+    pub(super) proof: Option<super::rank::Proof>,
     pub(super) grasps: Vec<GraspReport>,
 }
 
@@ -142,6 +145,7 @@ impl<'a> Report<'a> {
             closed: 0,
             inconclusive: 0,
             complete: true,
+            proof: None,
             grasps: Vec::new(),
         }
     }

@@ -128,6 +128,9 @@ fn cases(text: &mut String, grasp: &Grasp, holding: &Holding) -> Written {
             Some(deg) => writeln!(text, ", toward {:.1} deg", deg + 0.0)?,
             None => writeln!(text)?,
         }
+        if let Some(n) = case.lets_go_above_n {
+            writeln!(text, "        pressed alike with more than {} N each, the fingers let go", newtons(n))?;
+        }
     }
     let mut legend = vec!["* asks most"];
     if holding.cases.iter().any(|case| case.direction_deg.is_some()) {

@@ -12,6 +12,7 @@ use crate::mechanics::{Assessment, Holding};
 use crate::search::{self, Cancel, Key, Listed, Listing, Ranking, Scene, TorqueScale};
 use clap::Args;
 use clap::builder::{PossibleValuesParser, TypedValueParser};
+use serde::Serialize;
 use std::fmt::Write;
 use std::path::PathBuf;
 
@@ -33,9 +34,17 @@ pub(super) struct RankArgs {
     /// List single grasps instead of the best of each family
     #[arg(long)]
     members: bool,
+    /// Go on from the sites to every placement on the outline, and prove the list to within GAP, a part of the score
+    #[arg(long, value_name = "GAP", conflicts_with = "members", value_parser = gap)]
+    gap: Option<f64>,
     /// Print JSON
     #[arg(long)]
     json: bool,
+}
+
+fn gap(word: &str) -> Result<f64, String> {
+    let gap = word.parse().ok().filter(|gap| (0.0..1.0).contains(gap));
+    gap.ok_or_else(|| "give a number from 0 to below 1, such as 0.01 for one percent".to_owned())
 }
 
 fn keys() -> impl TypedValueParser<Value = Key> {
@@ -60,9 +69,14 @@ pub(super) fn run(args: &RankArgs) -> Result<Answer, Stop> {
         .knobs
         .on_threads(|| search::rank(&scene, key, listing, args.top as usize, &Cancel::default(), &observe))?;
     drop(line);
-    let ranking = ranked.map_err(|stopped| Stop::bad(stopped.to_string()))?;
+    let mut ranking = ranked.map_err(|stopped| Stop::bad(stopped.to_string()))?;
+    let proof = match args.gap {
+        Some(gap) => Some(args.knobs.on_threads(|| prove(&scene, key, args.top as usize, gap, &mut ranking))??),
+        None => None,
+    };
     if args.json {
         let mut report = Report::new(&scene);
+        report.proof = proof;
         report.examined = ranking.examined;
         report.closed = ranking.closed;
         report.inconclusive = ranking.inconclusive;
@@ -75,15 +89,55 @@ pub(super) fn run(args: &RankArgs) -> Result<Answer, Stop> {
         }
         output::print_json(&report)?;
     } else {
-        output::print(&table(&scene, key, listing, &ranking))?;
+        output::print(&table(&scene, key, listing, &ranking, proof.as_ref()))?;
     }
     Ok(Answer::Done)
 }
 
-fn table(scene: &Scene, key: Key, listing: Listing, ranking: &Ranking) -> String {
+/// How good the list is beside every placement on the outline.
+#[derive(Debug, Clone, Copy, Serialize)]
+pub(super) struct Proof {
+    /// No placement scores better than this on the key; null where none is a grasp at all, or nothing is known.
+    best_bound: Option<f64>,
+    /// How much better than its row a family can be, as a part of its score; null where something may be missing.
+    gap: Option<f64>,
+    /// The gap is no wider than was asked for.
+    proved: bool,
+}
+
+/// Goes on from the best of the sites to every placement, and puts the proved list in the place of the sampled one.
+fn prove(scene: &Scene, key: Key, want: usize, gap: f64, ranking: &mut Ranking) -> Result<Proof, Stop> {
+    let known: Vec<_> = ranking.grasps.iter().map(|listed| listed.grasp.spots.clone()).collect();
+    let ask = search::Ask { key, want, gap, budget: scene.setup().search.budget, known: &known };
+    let line = ProgressLine::new();
+    let observe = |proving: search::Proving| line.tell(proving.boxes, proving.budget);
+    let proved = search::prove(scene, &ask, &Cancel::default(), &observe);
+    drop(line);
+    let proved = proved.map_err(|stopped| Stop::bad(stopped.to_string()))?;
+    ranking.inconclusive += proved.inconclusive;
+    ranking.grasps = proved.grasps.into_iter().map(|grasp| grasp.listed).collect();
+    Ok(Proof {
+        best_bound: proved.best_bound.filter(|bound| bound.is_finite()),
+        gap: Some(proved.gap).filter(|gap| gap.is_finite()),
+        proved: proved.proved,
+    })
+}
+
+/// What a proof says, in a line.
+fn proved(proof: &Proof) -> String {
+    let bound = proof.best_bound.map_or("-".to_owned(), short);
+    let gap = proof.gap.map_or("open".to_owned(), |gap| format!("{:.2} %", 100.0 * gap));
+    let word = if proof.proved { "proved" } else { "not proved to the gap asked for (raise --budget)" };
+    format!("{word}: no placement anywhere on the outline is better than {bound}; gap {gap}")
+}
+
+fn table(scene: &Scene, key: Key, listing: Listing, ranking: &Ranking, proof: Option<&Proof>) -> String {
     let mut text = String::new();
     // Writing to a String cannot fail.
     let _ = head(&mut text, scene, ranking);
+    if let Some(proof) = proof {
+        let _ = writeln!(text, "{}", wrapped(&proved(proof), 0, 4));
+    }
     let _ = if ranking.grasps.is_empty() {
         writeln!(text, "\n{}", why_empty(scene, ranking))
     } else {

@@ -154,6 +154,10 @@ pub(super) fn check_one<'a>(saved: &'a SavedGrasp, scene: &Scene, asked: bool) -
         checked.reasons.push(format!("saved as {was}, now {now}"));
     }
     checked.reasons.extend(reading.assessment.holding.iter().flat_map(not_held));
+    let held_now = saved.scores.held == Some(false) && now.held == Some(true);
+    if held_now {
+        checked.reasons.push("its loads were not held when it was saved, now they are".to_owned());
+    }
     checked.outcome = if !reading.grasp.fits() {
         Outcome::NoLongerFits
     } else if !reading.doubts.is_empty() {
@@ -162,7 +166,7 @@ pub(super) fn check_one<'a>(saved: &'a SavedGrasp, scene: &Scene, asked: bool) -
         if was_closed { Outcome::NoLongerClosed } else { Outcome::NeverClosed }
     } else if now.held == Some(false) {
         if saved.scores.held == Some(true) { Outcome::LoadsNoLongerHeld } else { Outcome::LoadsNotHeld }
-    } else if asked || (checked.changes.is_empty() && was_closed) {
+    } else if asked || (checked.changes.is_empty() && was_closed && !held_now) {
         Outcome::Holds
     } else {
         Outcome::ScoreChanged
@@ -184,7 +188,11 @@ fn not_held(holding: &Holding) -> Vec<String> {
         _ if case.unsure => format!("\"{}\": no squeeze could be proved", shown(&case.name)),
         _ => format!("no squeeze holds \"{}\"", shown(&case.name)),
     };
-    holding.cases.iter().filter(|case| !case.held).map(why).collect()
+    let lets_go = |case: &CaseHolding| {
+        let n = newtons(case.lets_go_above_n?);
+        Some(format!("no one squeeze holds all: \"{}\" lets go above {n} N per finger", shown(&case.name)))
+    };
+    holding.cases.iter().filter(|case| !case.held).map(|case| lets_go(case).unwrap_or_else(|| why(case))).collect()
 }
 
 /// Scores that differ; one that was not saved is not compared, nor is the weakest direction, which may be one of several.

@@ -133,7 +133,7 @@ impl Bearing {
     }
 
     /// The largest squeeze an edge bears here without being marked, N; nothing where its limits do not say.
-    pub fn most_n(self, limit: &EdgeLimit) -> Option<f64> {
+    pub fn most_n(self, limit: EdgeLimit) -> Option<f64> {
         match self {
             Self::Face { mm2 } => limit.face_mpa.map(|mpa| mpa * mm2),
             Self::Line { mm } => limit.line_n_per_mm.map(|n_per_mm| n_per_mm * mm),

@@ -96,8 +96,8 @@ pub struct Assessment {
     pub weakest: Option<Weakest>,
     /// Motion out of an open grasp.
     pub escape: Option<Escape>,
-    /// Least mu at which every load case is held within the limit, on the setup's scale as above; nothing without loads
-    /// or a limit, or when no mu does.
+    /// Least mu at which every load case is held within the limit, on the setup's scale as above; nothing without loads,
+    /// without a limit where what closes holds, or when no mu does.
     pub friction_needed_holding: Option<f64>,
     /// What the load cases ask of the fingers; nothing when there are none.
     pub holding: Option<Holding>,
@@ -140,7 +140,8 @@ impl Assessment {
     /// Adds what the load cases ask: the friction needed becomes the larger of that for closure and that for holding,
     /// the margins the smaller.
     pub fn hold(&mut self, holding: Holding, wrenches: &Wrenches, setup_mu: f64) {
-        if holding.limit.is_some() {
+        // Without a limit what closes holds, mostly; then nothing more is asked of friction.
+        if holding.limit.is_some() || holding.friction_factor != Some(0.0) {
             let closed = self.verdict == Verdict::Closed;
             let own = FrictionReading::of_factor(wrenches, setup_mu, closed, holding.friction_factor);
             self.friction_needed_holding = own.needed;

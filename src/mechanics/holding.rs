@@ -1,5 +1,8 @@
 //! Holding: what the load cases ask of a grasp's fingers, and whether they can give it.
 //!
+//! A drive that presses all fingers alike is set once: one squeeze has to hold every case, and where fingers do not balance
+//! one another a harder one may not.
+//!
 //! All of it is *weak* stability (Pang & Trinkle 2000): suitable finger forces exist. That fingers locked in place, or a
 //! drive that shares its force in another way, reach those forces by themselves is not said.
 
@@ -57,8 +60,11 @@ pub struct CaseHolding {
     /// Limit over squeeze: the largest multiple of the load that is held. Nothing without a limit or without a load; 0
     /// when no squeeze holds it.
     pub margin: Option<f64>,
-    /// Held within the limit.
+    /// Held within the limit, and by the squeeze the governing case needs where all fingers are pressed alike.
     pub held: bool,
+    /// With all fingers pressed alike, the largest squeeze that still holds the case, where the governing one is larger: the
+    /// case is not held then.
+    pub lets_go_above_n: Option<f64>,
     /// Forces that hold it with the squeeze asked for (with the part of it that is left), finger after finger; often one
     /// set of many. Empty when there are none.
     pub forces: Vec<FingerForce>,
@@ -90,17 +96,29 @@ impl Holding {
     pub fn of(hold: &Hold<'_>, cases: &[Case], limit: Option<Limit>) -> Self {
         let mut squeezer = Squeezer::new(*hold);
         let answers: Vec<CaseHolding> = cases.iter().map(|case| on_one(&mut squeezer, hold, case, limit)).collect();
+        let mut answers = answers;
         let rank = |case: &CaseHolding| case.squeeze_n.unwrap_or(f64::INFINITY);
         let governing = (0..answers.len())
             .fold(0, |worst, i| if rank(&answers[i]) > rank(&answers[worst]) * (1.0 + 1e-9) { i } else { worst });
-        let friction_factor = match limit {
-            Some(limit) => {
-                // Without any friction to scale, ask what common mu would do.
-                let scale =
-                    if hold.presses().iter().all(|press| press.mu <= 0.0) { hold.with_friction(1.0) } else { *hold };
-                factor_needed(&scale, &in_turn(cases, &answers, governing), limit.squeeze_n, 0.0)
+        if let (Drive::Equal, Some(squeeze_n)) = (hold.drive(), answers[governing].squeeze_n) {
+            for (case, answer) in cases.iter().zip(&mut answers) {
+                let most_n = most(&mut squeezer, hold, case);
+                if most_n < squeeze_n * (1.0 - 1e-9) {
+                    answer.held = false;
+                    answer.lets_go_above_n = Some(most_n);
+                    answer.margin = limit.map(|_| 0.0);
+                }
             }
-            None => Some(0.0),
+        }
+        // Without any friction to scale, ask what common mu would do.
+        let frictionless = hold.presses().iter().all(|press| press.mu <= 0.0);
+        let scale = if frictionless { hold.with_friction(1.0) } else { *hold };
+        let friction_factor = match limit {
+            None if closed_is_enough(&scale) => Some(0.0),
+            _ => {
+                let limit_n = limit.map_or_else(|| any_squeeze_n(&all_loads(cases)), |limit| limit.squeeze_n);
+                factor_needed(&scale, &in_turn(cases, &answers, governing), limit_n, 0.0)
+            }
         };
         Self { drive: hold.drive(), cases: answers, governing, limit, friction_factor }
     }
@@ -117,7 +135,7 @@ impl Holding {
 
     /// The largest multiple of every load that is held at the limit; nothing without a limit or without a load.
     pub fn load_margin(&self) -> Option<f64> {
-        self.governing_case().margin
+        self.cases.iter().filter_map(|case| case.margin).reduce(f64::min)
     }
 
     /// Every case is held.
@@ -158,6 +176,24 @@ impl Holding {
         let batch = own
             .squeeze_n
             .map_or(f64::INFINITY, |n| if n * left > BEYOND / 10.0 * load.norm() { f64::INFINITY } else { n });
+        if own.lets_go_above_n.is_some() || (hold.drive() == Drive::Equal && own.squeeze_n.is_some()) {
+            let squeeze_n = self.squeeze_n().unwrap_or(0.0);
+            let most_n = cases.get(case)?.loads.iter().fold(f64::INFINITY, |least, load| {
+                match program::most_squeeze(hold, &load.wrench, any_squeeze_n(&[(load.wrench, 1.0)])) {
+                    Solved::Answer(n) => least.min(n / left),
+                    Solved::Infeasible | Solved::Inconclusive(_) => least,
+                }
+            });
+            let lets_go = most_n < squeeze_n * (1.0 - AGREE);
+            let near = (most_n - squeeze_n).abs() <= AGREE * (1.0 + squeeze_n);
+            if lets_go != own.lets_go_above_n.is_some() && !near {
+                return Some(Doubt::Squeeze {
+                    case: own.name.clone(),
+                    batch: own.lets_go_above_n.unwrap_or(f64::INFINITY),
+                    program: most_n,
+                });
+            }
+        }
         let both_none = batch.is_infinite() && program.is_infinite();
         let agree = both_none || (batch - program).abs() <= AGREE * (1.0 + batch);
         (!agree).then(|| Doubt::Squeeze { case: own.name.clone(), batch, program })
@@ -174,6 +210,50 @@ const AGREE: f64 = 1e-6;
 
 /// A load and the part of the squeeze that is left for it.
 pub type Asked = (Wrench, f64);
+
+/// The largest squeeze that still holds every load of a case, N per finger.
+fn most(squeezer: &mut Squeezer<'_>, hold: &Hold<'_>, case: &Case) -> f64 {
+    let one = |load: &Load| {
+        squeezer.most(&load.wrench).unwrap_or_else(|| {
+            match program::most_squeeze(hold, &load.wrench, any_squeeze_n(&[(load.wrench, 1.0)])) {
+                Solved::Answer(n) => n,
+                // Not known: nothing is said against a larger squeeze.
+                Solved::Infeasible | Solved::Inconclusive(_) => f64::INFINITY,
+            }
+        })
+    };
+    case.loads.iter().map(one).fold(f64::INFINITY, f64::min) / case.squeeze_left
+}
+
+/// Whether a closed grasp holds every load with some squeeze: in the plane, and in space where every finger has friction
+/// to bear a weight with. Not where all are pressed alike, for then the fingers' own forces may not balance.
+pub fn closed_is_enough(hold: &Hold<'_>) -> bool {
+    let in_plane = hold.presses().iter().all(|press| press.half_height <= 0.0);
+    hold.drive() == Drive::Adjustable && (in_plane || hold.presses().iter().all(|press| press.mu > 0.0))
+}
+
+/// A squeeze that stands for any whatever, N per finger.
+pub fn any_squeeze_n(loads: &[Asked]) -> f64 {
+    BEYOND / 10.0 * loads.iter().map(|(load, left)| load.norm() / left).fold(0.0, f64::max)
+}
+
+/// The squeeze that holds every load, N per finger; nothing when it is above `limit_n`, or when none holds them all.
+pub fn common_squeeze_n(hold: &Hold<'_>, loads: &[Asked], limit_n: f64) -> Option<f64> {
+    let mut squeezer = Squeezer::new(*hold);
+    let mut most_needed = 0.0_f64;
+    for (load, left) in loads {
+        match least(&mut squeezer, hold, load) {
+            Answer::Held(held) => most_needed = most_needed.max(held.squeeze_n / left),
+            Answer::Never { .. } | Answer::Unsure => return None,
+        }
+        if most_needed > at_most(limit_n) {
+            return None;
+        }
+    }
+    let keeps =
+        |(load, left): &Asked| squeezer.most(load).is_none_or(|most_n| most_n / left >= most_needed * (1.0 - 1e-9));
+    (hold.drive() == Drive::Adjustable || loads.iter().all(keeps)).then_some(most_needed)
+}
 
 /// Every load of every case.
 pub fn all_loads(cases: &[Case]) -> Vec<Asked> {
@@ -211,6 +291,7 @@ fn on_one(squeezer: &mut Squeezer<'_>, hold: &Hold<'_>, case: &Case, limit: Opti
         direction_deg: None,
         margin: None,
         held: true,
+        lets_go_above_n: None,
         forces: Vec::new(),
         worst: 0,
         unsure: false,
@@ -262,6 +343,9 @@ const MOST_ROUNDS: usize = 60;
 pub fn factor_needed(hold: &Hold<'_>, loads: &[Asked], limit_n: f64, from: f64) -> Option<f64> {
     let largest = hold.presses().iter().map(|press| press.mu).fold(0.0, f64::max);
     let most = LARGEST_MU / largest;
+    if hold.drive() == Drive::Equal {
+        return common_factor(hold, loads, limit_n, from, most);
+    }
     let mut factor = from;
     let mut squeezer = Squeezer::new(hold.with_friction_times(factor));
     for (load, left) in loads {
@@ -295,6 +379,26 @@ pub fn factor_needed(hold: &Hold<'_>, loads: &[Asked], limit_n: f64, from: f64) 
         squeezer = Squeezer::new(hold.with_friction_times(factor));
     }
     Some(factor)
+}
+
+/// The same where one squeeze has to hold all loads, by halving.
+fn common_factor(hold: &Hold<'_>, loads: &[Asked], limit_n: f64, from: f64, most: f64) -> Option<f64> {
+    let holds = |factor: f64| common_squeeze_n(&hold.with_friction_times(factor), loads, limit_n).is_some();
+    if holds(from) {
+        return Some(from);
+    }
+    let (mut low, mut high) = (from, if from < 1.0 { 1.0 } else { 2.0 * from });
+    while !holds(high) {
+        if !(high < most) {
+            return None;
+        }
+        (low, high) = (high, (2.0 * high).min(most));
+    }
+    while high - low > WIDTH * 10.0 * (1.0 + high) {
+        let middle = low + (high - low) / 2.0;
+        if holds(middle) { high = middle } else { low = middle }
+    }
+    Some(high)
 }
 
 /// The acceleration envelope: for each of `directions` even directions in the plane, from +x, the largest acceleration

@@ -9,6 +9,7 @@ use super::wrench::Wrenches;
 use crate::hand::Drive;
 use good_lp::{Expression, ResolutionError, Solution, SolverModel, Variable, constraint, microlp, variable, variables};
 use nalgebra::{DMatrix, DVector, Vector3};
+use std::panic::{AssertUnwindSafe, catch_unwind};
 
 /// Outcome of a program.
 #[derive(Debug, Clone, PartialEq)]
@@ -40,7 +41,7 @@ impl<T> Solved<T> {
 /// Largest equality residual accepted, for generators of order one.
 const RESIDUAL: f64 = 1e-8;
 /// Largest equality residual accepted of a squeeze, relative to the largest weight.
-const SHARP: f64 = 1e-11;
+const SHARP: f64 = 1e-10;
 
 /// Weights that balance: `W lambda = 0`, `sum lambda = 1`, all `lambda >= least`.
 #[derive(Debug, Clone, PartialEq)]
@@ -106,10 +107,13 @@ impl Program {
     /// 1e-8 of the largest weight; where columns are nearly parallel, that is much in the objective.
     fn sharpened(&self, x: Vec<f64>) -> Solved<Vec<f64>> {
         let size = size(&x);
-        let used: Vec<usize> = (0..x.len()).filter(|&j| x[j] > RESIDUAL * size).collect();
+        let used: Vec<usize> = (0..x.len()).filter(|&j| x[j] > SHARP * size).collect();
         let w = DMatrix::from_fn(self.target.len(), used.len(), |row, at| self.columns[used[at]][row]);
         let target = DVector::from_column_slice(&self.target);
         let mut best = x;
+        if used.is_empty() {
+            return Solved::Inconclusive("no weight stands out");
+        }
         if let Ok(y) = w.svd(true, true).solve(&target, 1e-14) {
             let mut sharp = vec![0.0; best.len()];
             used.iter().zip(y.iter()).for_each(|(&j, y)| sharp[j] = *y);
@@ -134,10 +138,11 @@ impl Program {
             let sum: Expression = x.iter().zip(&self.columns).map(|(&x, column)| column[row] * x).sum();
             problem = problem.with(constraint!(sum == target));
         }
-        let solution = match problem.solve() {
-            Ok(solution) => solution,
-            Err(ResolutionError::Infeasible) => return Solved::Infeasible,
-            Err(_) => return Solved::Inconclusive("the solver gave up"),
+        // The solver asserts what rounding may break on programs with entries far apart.
+        let solution = match catch_unwind(AssertUnwindSafe(|| problem.solve())) {
+            Ok(Ok(solution)) => solution,
+            Ok(Err(ResolutionError::Infeasible)) => return Solved::Infeasible,
+            Ok(Err(_)) | Err(_) => return Solved::Inconclusive("the solver gave up"),
         };
         let mut values: Vec<f64> = x.iter().map(|&x| solution.value(x)).collect();
         if self.left_over(&values).amax() > RESIDUAL * size(&values) {
@@ -243,6 +248,25 @@ pub fn squeeze(hold: &Hold<'_>, load: &Wrench) -> Solved<f64> {
     let squeeze = program.columns.len() - 1;
     program.cost[squeeze] = 1.0;
     program.solve().then(|x| program.sharpened(x)).map(|x| x[squeeze] * size)
+}
+
+/// The largest squeeze that still holds a load, N per finger; infinite where it is beyond `cap_n`. See
+/// [`super::squeeze::Squeezer::most`].
+pub fn most_squeeze(hold: &Hold<'_>, load: &Wrench, cap_n: f64) -> Solved<f64> {
+    let size = load.norm();
+    if size <= 0.0 {
+        return Solved::Answer(f64::INFINITY);
+    }
+    let (mut program, _) = balance(hold, &(load / size), &Wrench::zeros());
+    let squeeze = program.columns.len() - 1;
+    program.cost[squeeze] = -1.0;
+    program.add_row(1.0);
+    let (spare, last) = (program.add_column(0.0), program.target.len() - 1);
+    // In units of the cap, so that the last equation is of the size of the others.
+    program.columns[squeeze][last] = size / cap_n;
+    program.columns[spare][last] = 1.0;
+    let most = program.solve().then(|x| program.sharpened(x)).map(|x| x[squeeze] * size);
+    most.map(|n| if n >= 0.999 * cap_n { f64::INFINITY } else { n })
 }
 
 /// The largest c for which the load `fixed + c growing` is held with a squeeze of at most `limit_n`. With nothing fixed

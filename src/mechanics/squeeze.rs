@@ -183,6 +183,36 @@ impl<'a> Squeezer<'a> {
         }
     }
 
+    /// The largest squeeze that still holds a load, N per finger: infinite where more always does, nothing where the method
+    /// gave up or no squeeze holds it. Only a drive that presses all fingers alike has one: pressed harder, fingers that do
+    /// not balance one another throw the part out.
+    pub fn most(&mut self, load: &Wrench) -> Option<f64> {
+        let size = load.norm();
+        let target = if size > 0.0 { -load / size } else { return Some(f64::INFINITY) };
+        for pivots in 0..MOST_PIVOTS {
+            let artificial = (0..N).any(|r| self.columns[r].artificial && self.x[r] > NOTHING);
+            if (artificial || pivots == 0) && self.solve(&target, Some(f64::INFINITY)) != Ok(Decision::Enough) {
+                return None;
+            }
+            let u = -self.prices(false);
+            let (reach, forces, wrench) = self.hold.farthest(&u);
+            if reach <= -1.0 + PRICE + ROUNDING * u.norm() {
+                // Of every corner u . v <= reach, so that no weights on them come to more than this.
+                let (most, bound) = (self.weight(), target.dot(&u) / reach);
+                let gap = (GAP + ROUNDING * u.norm()).min(WIDEST_GAP) * (1.0 + most);
+                return ((most - bound).abs() <= gap).then_some(most * size);
+            }
+            let mut stalled = 0;
+            if !self.enter(Column { wrench, artificial: false, forces }, false, pivots < PATIENT, &mut stalled) {
+                return Some(f64::INFINITY);
+            }
+            if self.weight() > BEYOND {
+                return Some(f64::INFINITY);
+            }
+        }
+        None
+    }
+
     fn least(&mut self, target: &Wrench) -> Answer {
         match self.solve(target, None) {
             Ok(_) => Answer::Unsure,

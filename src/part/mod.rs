@@ -268,9 +268,14 @@ impl Part {
         &self.edge_limits
     }
 
-    /// What an edge may bear, where it is stated. The last entry for an edge wins.
-    pub fn limit_on(&self, edge: EdgeId) -> Option<&EdgeLimit> {
-        self.edge_limits.iter().rev().find(|own| own.edge == edge)
+    /// What an edge may bear, where it is stated; of several entries for an edge the least.
+    pub fn limit_on(&self, edge: EdgeId) -> Option<EdgeLimit> {
+        let least = |a: Option<f64>, b: Option<f64>| a.into_iter().chain(b).reduce(f64::min);
+        self.edge_limits.iter().filter(|own| own.edge == edge).copied().reduce(|a, b| EdgeLimit {
+            face_mpa: least(a.face_mpa, b.face_mpa),
+            line_n_per_mm: least(a.line_n_per_mm, b.line_n_per_mm),
+            ..a
+        })
     }
 
     /// A local point in the file's frame, mm: what is shown and saved.

@@ -70,6 +70,9 @@ impl<'a> LoadCheck<'a> {
     pub(super) fn squeeze_n(&mut self, levers: &[Lever], mus: &[f64], enough_n: f64) -> Option<f64> {
         let enough_n = holding::at_most(enough_n);
         let hold = self.not_short(levers, mus, 1.0, enough_n)?;
+        if self.drive == Drive::Equal {
+            return holding::common_squeeze_n(&hold, &self.loads, enough_n);
+        }
         let mut squeezer = Squeezer::new(hold);
         let mut most = 0.0_f64;
         let mut governing = None;
@@ -100,11 +103,15 @@ impl<'a> LoadCheck<'a> {
 
     /// True when every load is held by a squeeze, all friction multiplied by a factor.
     pub(super) fn within(&mut self, levers: &[Lever], mus: &[f64], factor: f64, limit_n: f64) -> bool {
-        if limit_n.is_infinite() {
+        let unlimited = limit_n.is_infinite();
+        if unlimited && holding::closed_is_enough(&self.hold(levers, mus, 1.0)) {
             return true;
         }
-        let enough_n = holding::at_most(limit_n);
+        let enough_n = if unlimited { holding::any_squeeze_n(&self.loads) } else { holding::at_most(limit_n) };
         let Some(hold) = self.not_short(levers, mus, factor, enough_n) else { return false };
+        if self.drive == Drive::Equal {
+            return self.common_within(&hold, enough_n);
+        }
         let mut squeezer = Squeezer::new(hold);
         for at in 0..self.loads.len() {
             let (load, left) = self.loads[at];
@@ -121,6 +128,20 @@ impl<'a> LoadCheck<'a> {
         true
     }
 
+    /// The same where one squeeze has to hold all loads.
+    fn common_within(&mut self, hold: &Hold<'a>, enough_n: f64) -> bool {
+        // What one load alone denies is cheaper to see, and leaves a direction.
+        let mut squeezer = Squeezer::new(*hold);
+        for at in 0..self.loads.len() {
+            let (load, left) = self.loads[at];
+            if let Decision::Short { direction } = squeezer.decide(&load, enough_n * left) {
+                self.cut(at, &direction);
+                return false;
+            }
+        }
+        holding::common_squeeze_n(hold, &self.loads, enough_n).is_some()
+    }
+
     /// True when every load is held within the limit, all friction multiplied by a factor.
     pub(super) fn holds(&mut self, levers: &[Lever], mus: &[f64], factor: f64) -> bool {
         self.within(levers, mus, factor, self.limit_n)
@@ -129,10 +150,13 @@ impl<'a> LoadCheck<'a> {
     /// Least factor on all friction, not below `from`, with which every load is held within the limit; nothing when none
     /// does.
     pub(super) fn factor_needed(&self, levers: &[Lever], mus: &[f64], from: f64) -> Option<f64> {
-        if self.limit_n.is_infinite() {
+        let hold = self.hold(levers, mus, 1.0);
+        let unlimited = self.limit_n.is_infinite();
+        if unlimited && holding::closed_is_enough(&hold) {
             return Some(from);
         }
-        holding::factor_needed(&self.hold(levers, mus, 1.0), &self.loads, self.limit_n, from)
+        let limit_n = if unlimited { holding::any_squeeze_n(&self.loads) } else { self.limit_n };
+        holding::factor_needed(&hold, &self.loads, limit_n, from)
     }
 }
 

@@ -6,7 +6,8 @@
 use super::families::{self, Family, choose};
 use super::order::SiteSet;
 use super::rank::Cancelled;
-use super::screen::{Screen, Tally};
+use super::screen::Screen;
+use super::tally::Tally;
 use rand_chacha::ChaCha8Rng;
 use rand_chacha::rand_core::{Rng, SeedableRng};
 use rayon::prelude::*;

@@ -3,8 +3,9 @@
 use super::order::{Candidate, Key};
 use super::plan::Plan;
 use super::scene::{Grasp, Scene};
-use super::screen::{Screen, Tally};
+use super::screen::Screen;
 use super::sites::Sites;
+use super::tally::Tally;
 use crate::mechanics::{Assessment, Verdict};
 use rayon::prelude::*;
 use std::sync::Arc;

@@ -269,31 +269,27 @@ impl Scene {
 
     /// Reads a grasp and confirms the reading by the second way.
     pub fn assess(&self, grasp: &Grasp) -> (Assessment, Vec<Doubt>) {
-        let wrenches = self.wrenches(grasp);
-        let (mut assessment, mut doubts) = self.assess_in_plane(grasp, &wrenches);
-        if let Some(holding) = self.holding(grasp, &wrenches) {
-            doubts.extend(holding.doubts(&self.hold(&wrenches), &self.cases));
-            assessment.hold(holding, &wrenches, self.setup.friction.mu);
-        }
-        (assessment, doubts)
+        self.assess_with(grasp, |holding, hold| holding.doubts(hold, &self.cases))
     }
 
     /// The same for a row of a list: of the load cases only the governing one, which the row shows, is confirmed by the
     /// linear program; every other squeeze carries the batch solver's own proof.
     pub fn assess_for_list(&self, grasp: &Grasp) -> (Assessment, Vec<Doubt>) {
-        let wrenches = self.wrenches(grasp);
-        let (mut assessment, mut doubts) = self.assess_in_plane(grasp, &wrenches);
-        if let Some(holding) = self.holding(grasp, &wrenches) {
-            doubts.extend(holding.doubt_of_governing(&self.hold(&wrenches), &self.cases));
-            assessment.hold(holding, &wrenches, self.setup.friction.mu);
-        }
-        (assessment, doubts)
+        self.assess_with(grasp, |holding, hold| holding.doubt_of_governing(hold, &self.cases).into_iter().collect())
     }
 
-    fn assess_in_plane(&self, grasp: &Grasp, wrenches: &Wrenches) -> (Assessment, Vec<Doubt>) {
-        let mu = self.setup.friction.mu;
-        let assessment = Assessment::of(wrenches, &self.frame, mu, &grasp.rooms_mm);
-        let doubts = assessment.doubts(wrenches, &self.frame, mu);
+    fn assess_with(
+        &self,
+        grasp: &Grasp,
+        confirm: impl Fn(&Holding, &Hold<'_>) -> Vec<Doubt>,
+    ) -> (Assessment, Vec<Doubt>) {
+        let (wrenches, mu) = (self.wrenches(grasp), self.setup.friction.mu);
+        let mut assessment = Assessment::of(&wrenches, &self.frame, mu, &grasp.rooms_mm);
+        let mut doubts = assessment.doubts(&wrenches, &self.frame, mu);
+        if let Some(holding) = self.holding(grasp, &wrenches) {
+            doubts.extend(confirm(&holding, &self.hold(&wrenches)));
+            assessment.hold(holding, &wrenches, mu);
+        }
         (assessment, doubts)
     }
 

@@ -14,11 +14,12 @@
 use super::families::Family;
 use super::family_forces::{FamilyForces, NO_LEVER, polygon_of};
 use super::load_check::LoadCheck;
-use super::order::{self, Candidate, FRICTION_QUANTUM, Key, SiteSet, Top};
+use super::order::{self, Candidate, FRICTION_QUANTUM, Key, SiteSet};
 use super::plan::TRIES;
 use super::rank::{Cancel, Cancelled, Listing};
 use super::scene::Scene;
 use super::sites::{Site, Sites};
+use super::tally::Tally;
 use crate::hand::{self, FingerCount, Tip};
 use crate::mechanics::force_polygon::{ForcePolygon, PlanarScore};
 use crate::mechanics::friction::UnitForces;
@@ -27,7 +28,6 @@ use crate::mechanics::wrench::{MOST_DIRECTIONS, MOST_GENERATORS};
 use crate::mechanics::{Lever, MARGINAL, friction, quality};
 use nalgebra::Vector3;
 use std::cmp::Ordering;
-use std::collections::HashSet;
 use std::hash::{DefaultHasher, Hash, Hasher};
 use std::ops::Range;
 
@@ -41,68 +41,6 @@ pub(super) struct Screen<'a> {
     /// Least distance between the axes of two pins, squared, mm2; 0 when any distance will do.
     least_apart_square: f64,
     scale_mm: f64,
-}
-
-/// Counts and the best of what was screened.
-#[derive(Debug, Clone)]
-pub(super) struct Tally {
-    pub examined: u64,
-    pub closed: u64,
-    /// Those among them that fall below a floor.
-    pub below_floors: u64,
-    /// Closed sets that came in question for the list and were turned away because a load is not held.
-    pub not_held: u64,
-    /// Families with a closed grasp above the floors, other than those in `spread`; loads are not asked.
-    families: usize,
-    /// Families with such a grasp whose sets are spread over several parcels, by their hash: a million families
-    /// fit in a few megabytes, and two of them collide once in ten million rankings.
-    spread: HashSet<u64>,
-    pub(super) top: Top,
-}
-
-impl Tally {
-    pub(super) fn new(most: usize) -> Self {
-        Self {
-            examined: 0,
-            closed: 0,
-            below_floors: 0,
-            not_held: 0,
-            families: 0,
-            spread: HashSet::new(),
-            top: Top::new(most),
-        }
-    }
-
-    /// An empty tally for a thread to fill, that need not keep what this one would not.
-    pub(super) fn fresh(&self) -> Self {
-        Self { top: self.top.above(), ..Self::new(0) }
-    }
-
-    pub(super) fn merge(mut self, mut other: Self) -> Self {
-        if self.spread.len() < other.spread.len() {
-            std::mem::swap(&mut self.spread, &mut other.spread);
-        }
-        self.spread.extend(other.spread);
-        Self {
-            examined: self.examined + other.examined,
-            closed: self.closed + other.closed,
-            below_floors: self.below_floors + other.below_floors,
-            not_held: self.not_held + other.not_held,
-            families: self.families + other.families,
-            spread: self.spread,
-            top: self.top.merge(other.top),
-        }
-    }
-
-    /// Families with a closed grasp above the floors.
-    pub(super) fn families(&self) -> usize {
-        self.families + self.spread.len()
-    }
-
-    /// The list, best first.
-    pub(super) fn sorted(&self) -> Vec<Candidate> {
-        self.top.candidates().copied().collect()
-    }
 }
 
 /// Friction factor of a grasp that no friction makes hold its loads: behind all others.

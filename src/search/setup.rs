@@ -113,6 +113,13 @@ impl Setup {
         {
             faults.note("hand.bite_mm", bite, format!("the part is {thickness} mm thick; give no more than that"));
         }
+        if let TorqueScale::Mm(mm) = self.search.torque_scale {
+            let least = part.reach_mm() * LEAST_SCALE;
+            if mm < least {
+                let mend = format!("the part reaches {:.4} mm; give at least {least:.1e} mm", part.reach_mm());
+                faults.note("search.torque_scale", mm, mend);
+            }
+        }
         for (number, load) in self.loads.iter().enumerate() {
             let name = &load.name;
             if load.needs_mass() && part.mass().is_none() {
@@ -268,6 +275,8 @@ impl Setup {
 
 /// Largest budget: half an hour's work for one core.
 const LARGEST_BUDGET: u64 = 10_000_000_000;
+/// Least torque scale taken, as a part of the reach: below, torques drown forces and no digits are left.
+const LEAST_SCALE: f64 = 1e-4;
 /// Longest length taken for a setting, mm.
 const LONGEST_MM: f64 = 1e9;
 

@@ -94,10 +94,13 @@ impl Run<'_, '_> {
         let Some(mut loads) = self.loads.take() else { return true };
         let (levers, mus) = (&levers[..self.k], &self.forces.mus[..self.k]);
         let floors = &self.screen.scene.setup().floors;
-        // By squeeze it is known already.
-        let held = self.screen.key == Key::Squeeze || loads.within(levers, mus, 1.0, self.most_n(&loads));
-        let at_margin = floors.friction_margin <= 1.0
+        // By squeeze it is known already; without a floor whatever closes is listed.
+        let held = self.screen.key == Key::Squeeze
             || floors.load_margin <= 0.0
+            || loads.within(levers, mus, 1.0, self.most_n(&loads));
+        // Whoever lists what is not held asks for friction margin of closure alone.
+        let at_margin = floors.friction_margin <= 1.0
+            || floors.load_margin < 1.0
             || (held && loads.holds(levers, mus, 1.0 / floors.friction_margin));
         self.tally.not_held += u64::from(!(held && at_margin));
         self.loads = Some(loads);

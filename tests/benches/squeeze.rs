@@ -81,17 +81,23 @@ fn programs(name: &str, count: usize, half_width_mm: f64, drive: Drive) {
         warm.push(time(all, || {
             for hold in &holds {
                 let mut squeezer = Squeezer::new(*hold);
-                loads.iter().for_each(|load| drop(black_box(squeezer.squeeze(load))));
+                loads.iter().for_each(|load| {
+                    black_box(squeezer.squeeze(load));
+                });
             }
         }));
         fresh.push(time(all, || {
             for hold in &holds {
-                loads.iter().for_each(|load| drop(black_box(Squeezer::new(*hold).squeeze(load))));
+                loads.iter().for_each(|load| {
+                    black_box(Squeezer::new(*hold).squeeze(load));
+                });
             }
         }));
         let slow = time(all, || {
             for hold in &holds {
-                loads.iter().for_each(|load| drop(black_box(program::squeeze(hold, load))));
+                loads.iter().for_each(|load| {
+                    black_box(program::squeeze(hold, load));
+                });
             }
         });
         ratio.push(slow / warm[warm.len() - 1]);

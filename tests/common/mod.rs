@@ -2,8 +2,9 @@
 #![allow(dead_code, reason = "every test file takes what it needs")]
 #![allow(clippy::unwrap_used, reason = "a test stops at the first surprise")]
 
+use holdwright::hand::Stretch;
 use holdwright::mechanics::{Assessment, Contact, Frame, Wrenches};
-use holdwright::part::{ArcDescription, Part, PartDescription};
+use holdwright::part::{ArcDescription, Edge, Part, PartDescription};
 use nalgebra::{Point2, Rotation2, Vector2};
 use rand_chacha::ChaCha8Rng;
 use rand_chacha::rand_core::{Rng, SeedableRng};
@@ -139,4 +140,15 @@ pub(crate) fn rounded_with_arcs(rings: &[Vec<Corner>]) -> Part {
         vertices.push(ring);
     }
     part_with_arcs(vertices, &arcs)
+}
+
+/// Stretches come in order, apart from one another, and on their edges.
+pub(crate) fn check_shape(part: &Part, found: &[Stretch]) {
+    for stretch in found {
+        let length = part.outline().edge(stretch.edge).map_or(0.0, Edge::length_mm);
+        assert!(0.0 <= stretch.from_mm && stretch.from_mm <= stretch.to_mm && stretch.to_mm <= length, "{stretch:?}");
+    }
+    for pair in found.windows(2) {
+        assert!((pair[0].edge, pair[0].to_mm) < (pair[1].edge, pair[1].from_mm), "{pair:?}");
+    }
 }

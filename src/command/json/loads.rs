@@ -44,6 +44,8 @@ struct LoadReport {
     squeeze_n: Option<f64>,
     held: bool,
     margin: Option<f64>,
+    /// Pressed alike with more, the fingers let go of the part; null where that is not the case below the squeeze needed.
+    lets_go_above_n: Option<f64>,
     direction_deg: Option<f64>,
     finger_forces_n: Vec<ForceReport>,
     lies: Option<&'static str>,
@@ -130,6 +132,7 @@ fn load(scene: &Scene, grasp: &Grasp, holding: &Holding, number: usize) -> LoadR
         name: case.name.clone(),
         squeeze_n: case.squeeze_n,
         held: case.held,
+        lets_go_above_n: case.lets_go_above_n,
         margin: case.margin,
         direction_deg: case.direction_deg,
         finger_forces_n: case.forces.iter().map(force).collect(),

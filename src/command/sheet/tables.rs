@@ -196,7 +196,10 @@ pub(super) fn loads(source: &Source<'_>, most: usize) -> Piece {
     for &i in order.iter().take(most) {
         let case = &holding.cases[i];
         let what = source.scene.setup().loads.get(i).map_or(String::new(), words::load);
-        let what = lines(&what, CASE_WIDTH);
+        let mut what = lines(&what, CASE_WIDTH);
+        if let Some(n) = case.lets_go_above_n {
+            what.push(format!("pressed alike with more than {} N each, the fingers let go", newtons(n)));
+        }
         extra += what.len().saturating_sub(1);
         let value = |class: &str, n: Option<f64>| n.map_or("none".to_owned(), |n| datum(class, n, &newtons(n)));
         rows.push(vec![

@@ -49,10 +49,13 @@ pub(super) fn asks(case: &CaseHolding, fingers: usize) -> String {
         .direction_deg
         .map_or(String::new(), |deg| format!(", worst when accelerated toward {} deg", number::degrees(deg)));
     let margin = case.margin.map_or(String::new(), |margin| format!(", load margin {}", number::times(Some(margin))));
+    let loose = case
+        .lets_go_above_n
+        .map_or(String::new(), |n| format!(", pressed alike above {} N each it gets loose", number::mm(n)));
     match case.squeeze_n {
         _ if case.unsure => "the solvers could not prove a squeeze".to_owned(),
         Some(n) => format!(
-            "{} N per finger, {} N in all{margin}: {}{worst}",
+            "{} N per finger, {} N in all{margin}: {}{loose}{worst}",
             number::mm(n),
             number::mm(n * fingers as f64),
             held_word(case)
@@ -103,7 +106,13 @@ impl Page<'_> {
         } else {
             let failing = holding.cases.iter().filter(|case| !case.held).count();
             let times = times.map_or(String::new(), |times| format!(", {times}"));
-            let meaning = format!("{failing} of {}{times}; {limit}", holding.cases.len());
+            let lets_go = holding.cases.iter().find_map(|case| Some((case, case.lets_go_above_n?)));
+            let meaning = match lets_go {
+                Some((case, n)) => {
+                    format!("pressed alike above {} N each, \"{}\" gets loose", number::mm(n), shown(&case.name))
+                }
+                None => format!("{failing} of {}{times}; {limit}", holding.cases.len()),
+            };
             self.tell("loads", "NOT HELD", look.bad(), &meaning);
         }
     }

@@ -1,0 +1,96 @@
+//! The goal: what counts as better, as good enough, and as the same.
+
+use super::super::order::{self, Key};
+use super::super::scene::Scene;
+use crate::mechanics::holding;
+
+/// The key of a search, its gap, and the units they are told in.
+///
+/// Inside, every key is a *merit*, larger is better: quality, quality per finger, placement in mm, minus the friction
+/// factor, minus the squeeze in N.
+#[derive(Debug, Clone, Copy)]
+pub(super) struct Goal {
+    pub key: Key,
+    gap: f64,
+    /// A merit smaller than this is near 0, where no relative gap can be reached: the gap is a part of this instead.
+    small: f64,
+    /// Torque scale, mm.
+    scale_mm: f64,
+    /// What a friction factor is told as: the setup's friction, or the factor itself where that is 0.
+    friction_unit: f64,
+    /// Size of the largest load, N.
+    size_n: f64,
+}
+
+impl Goal {
+    pub(super) fn new(scene: &Scene, key: Key, gap: f64) -> Self {
+        let scale_mm = scene.frame().scale_mm;
+        let size_n = holding::all_loads(scene.cases()).iter().map(|(load, _)| load.norm()).fold(0.0, f64::max);
+        let small = match key {
+            Key::Quality | Key::QualityPerFinger => 1e-4,
+            Key::Placement => 1e-4 * scale_mm,
+            Key::Friction => 1e-2,
+            Key::Squeeze => 1e-6 * size_n,
+        };
+        let mu = scene.setup().friction.mu;
+        Self { key, gap: gap.max(0.0), small, scale_mm, friction_unit: if mu > 0.0 { mu } else { 1.0 }, size_n }
+    }
+
+    /// What a merit may be beaten by and still stand; without one, what nobody looks for.
+    pub(super) fn enough(&self, merit: Option<f64>) -> f64 {
+        match (merit, self.key) {
+            (Some(merit), _) => merit + self.gap * merit.abs().max(self.small) + HAIR * self.unit(),
+            (None, Key::Friction | Key::Squeeze) => f64::NEG_INFINITY,
+            (None, _) => (self.gap * self.small).max(HAIR * self.unit()),
+        }
+    }
+
+    /// The gap between a merit and a bound on it.
+    pub(super) fn gap_between(&self, merit: f64, bound: f64) -> f64 {
+        let over = bound - merit;
+        // Rounding alone is no gap.
+        if over <= 2.0 * HAIR * self.unit() { 0.0 } else { over / merit.abs().max(self.small) }
+    }
+
+    /// The gap asked for.
+    pub(super) fn gap(&self) -> f64 {
+        self.gap
+    }
+
+    /// A step of a friction factor that is small beside the gap at `factor`.
+    pub(super) fn fine_factor(&self, factor: f64) -> f64 {
+        (self.gap / 8.0).clamp(1e-9, 0.1) * factor.max(self.small)
+    }
+
+    /// Width of one unit of the key, for rounding.
+    fn unit(&self) -> f64 {
+        match self.key {
+            Key::Quality | Key::QualityPerFinger | Key::Friction => 1.0,
+            Key::Placement => self.scale_mm,
+            Key::Squeeze => self.size_n,
+        }
+    }
+
+    /// The merit as people read it.
+    pub(super) fn told(&self, merit: f64) -> f64 {
+        match self.key {
+            Key::Quality | Key::QualityPerFinger | Key::Placement => merit,
+            // Adding 0 turns -0 into 0.
+            Key::Friction => -merit * self.friction_unit + 0.0,
+            Key::Squeeze => -merit + 0.0,
+        }
+    }
+
+    /// The merit in the quanta of a ranking: what has as many counts as equal.
+    pub(super) fn quanta(&self, merit: f64) -> i64 {
+        match self.key {
+            Key::Quality | Key::QualityPerFinger => order::quanta(merit),
+            Key::Placement => order::quanta(merit / self.scale_mm),
+            Key::Friction => -order::friction_quanta(-merit),
+            Key::Squeeze => order::squeeze_quanta(-merit, self.size_n),
+        }
+    }
+}
+
+/// What rounding may lift a bound by, as a part of the key's unit.
+const HAIR: f64 = 1e-9;

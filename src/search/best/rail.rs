@@ -1,0 +1,340 @@
+//! Rails: what a finger runs along, and the contacts it makes anywhere on a piece of it.
+//!
+//! On a straight edge a finger anywhere in an interval has its generators in the hull of those at the two ends: they are
+//! exactly the generators of a pad centred on the interval that is wider by half of it on either side.
+//!
+//! On an arc of radius R the normal turns by up to phi = half / R either way. With friction angle psi every force the finger
+//! can make lies within psi + phi of the middle normal, and stands off the middle contact by at most R sin phi along the
+//! tangent and R (1 - cos phi) across it. So, with mu' = tan(psi + phi), a force with normal part fn has a torque that differs
+//! from that of the same force at the middle by at most fn (R sin phi + R (1 - cos phi) mu'): a pad with friction mu' of that
+//! half width covers the arc, once its forces are made longer by the largest normal part a cone edge can have,
+//! cos(psi - phi) / cos psi (1 / cos psi when phi > psi). All of it shrinks to the contact itself as the piece gets shorter.
+//!
+//! That error is as long as the piece; where the generators are few enough, a cover with an error of the second order takes its
+//! place. A cone edge turned by theta has its torque about the arc's centre o unchanged, k, so its generator is
+//! (f, ((o - c) x f + k) / l): linear in the force f, which runs along a circle. The chord between the forces at the two ends,
+//! both made longer by 1 / cos phi, passes outside that circle; on it lie the points (f / cos theta,
+//! ((o - c) x f / cos theta + k') / l) for every k' from k to k / cos phi once both ends have both torques, and one of them is
+//! the generator itself made longer by 1 / cos theta. A hull that holds 0, as every hull of a closed grasp does, holds
+//! with it the generator.
+
+use super::super::scene::Scene;
+use crate::hand::{self, FingerCount, Hand, Tip};
+use crate::mechanics::force_polygon::PlanarScore;
+use crate::mechanics::wrench::{MOST_GENERATORS, cross};
+use crate::mechanics::{Lever, quality};
+use crate::part::Edge;
+use nalgebra::{Point2, Vector2, Vector3};
+
+use super::super::family_forces::NO_LEVER;
+
+/// An interval of positions along an edge, mm; a single position when both are the same.
+pub(super) type Span = [f64; 2];
+
+/// Half of an interval.
+pub(super) fn half_mm(span: Span) -> f64 {
+    (span[1] - span[0]) / 2.0
+}
+
+/// Middle of an interval.
+pub(super) fn middle(span: Span) -> f64 {
+    span[0] + (span[1] - span[0]) / 2.0
+}
+
+/// Angles of the common cone and the turn together beyond this cover half the plane: nothing is said there.
+const WIDEST_RAD: f64 = 1.5;
+
+/// Largest half turn of a piece of an arc that is covered by its ends.
+const WIDEST_TURN_RAD: f64 = 1.2;
+
+/// A stretch as the search sees it.
+pub(super) struct Rail<'a> {
+    scene: &'a Scene,
+    edge: &'a Edge,
+    /// Index into [`Scene::stretches`].
+    pub stretch: usize,
+    /// Where fingers may be.
+    pub whole: Span,
+    /// Friction coefficient of the edge.
+    pub mu: f64,
+    /// Size of the edge's curvature, 1/mm; 0 where it is straight.
+    pub bend: f64,
+    /// Contact at the start of the stretch.
+    base: Lever,
+    /// What its torque over l gains for each mm along the edge.
+    torque_per_mm: f64,
+}
+
+/// The contacts of a box: one lever for each finger, with the friction and the length of its forces.
+#[derive(Clone, Copy)]
+pub(super) struct Contacts {
+    pub levers: [Lever; FingerCount::MOST],
+    pub mus: [f64; FingerCount::MOST],
+    /// What the forces of each finger are longer by, at least 1.
+    pub longer: [f64; FingerCount::MOST],
+    pub count: usize,
+}
+
+impl Contacts {
+    pub(super) fn none() -> Self {
+        let longer = [1.0; FingerCount::MOST];
+        Self { levers: [NO_LEVER; FingerCount::MOST], mus: [0.0; FingerCount::MOST], longer, count: 0 }
+    }
+
+    fn push(&mut self, (lever, mu, longer): (Lever, f64, f64)) {
+        (self.levers[self.count], self.mus[self.count], self.longer[self.count]) = (lever, mu, longer);
+        self.count += 1;
+    }
+
+    pub(super) fn levers(&self) -> &[Lever] {
+        &self.levers[..self.count]
+    }
+
+    pub(super) fn mus(&self) -> &[f64] {
+        &self.mus[..self.count]
+    }
+
+    /// The largest of what forces are longer by.
+    pub(super) fn longest(&self) -> f64 {
+        self.longer[..self.count].iter().copied().fold(1.0, f64::max)
+    }
+
+    /// Closure, quality and placement by the plain definition: every number is one that no contact in the box exceeds.
+    pub(super) fn by_definition(&self) -> PlanarScore {
+        let mut generators = [Vector3::zeros(); MOST_GENERATORS];
+        let mut n = 0;
+        for ((lever, &mu), longer) in self.levers().iter().zip(self.mus()).zip(self.longer) {
+            for generator in &*lever.generators(mu) {
+                generators[n] = generator * longer;
+                n += 1;
+            }
+        }
+        quality::by_definition(&generators[..n])
+    }
+}
+
+impl<'a> Rail<'a> {
+    /// The rail of a stretch; nothing for one that is none.
+    pub(super) fn new(scene: &'a Scene, stretch: usize) -> Option<Self> {
+        let on = scene.stretches().get(stretch)?;
+        let edge = scene.part().outline().edge(on.edge)?;
+        let contact = scene.contact(edge, on.from_mm);
+        let sound = on.from_mm <= on.to_mm;
+        sound.then(|| Self {
+            scene,
+            edge,
+            stretch,
+            whole: [on.from_mm, on.to_mm],
+            mu: contact.mu,
+            bend: edge.curvature().abs(),
+            base: Lever::of(&contact, scene.frame()),
+            torque_per_mm: cross(edge.direction_at(on.from_mm), contact.normal) / scene.frame().scale_mm,
+        })
+    }
+
+    /// True when a pad lies flush here.
+    pub(super) fn is_flush(&self) -> bool {
+        self.base.spread > 0.0
+    }
+
+    /// The edge's number.
+    pub(super) fn edge(&self) -> crate::part::EdgeId {
+        self.edge.id()
+    }
+
+    /// Half the angle the normal turns through on a piece, rad.
+    pub(super) fn half_turn(&self, span: Span) -> f64 {
+        half_mm(span) * self.bend
+    }
+
+    /// Contact in the middle of a piece.
+    pub(super) fn at_middle(&self, span: Span) -> Lever {
+        if self.bend > 0.0 {
+            return Lever::of(&self.scene.contact(self.edge, middle(span)), self.scene.frame());
+        }
+        let normal_torque = self.base.normal_torque + self.torque_per_mm * (middle(span) - self.whole[0]);
+        Lever { normal_torque, ..self.base }
+    }
+
+    /// What covers every contact with friction `mu` on a piece: lever, friction, and what its forces are longer by. Nothing
+    /// where the piece turns too far.
+    pub(super) fn over(&self, span: Span, mu: f64) -> Option<(Lever, f64, f64)> {
+        let mut lever = self.at_middle(span);
+        let scale_mm = self.scene.frame().scale_mm;
+        let half = half_mm(span);
+        if self.bend <= 0.0 {
+            lever.spread += half / scale_mm;
+            return Some((lever, mu, 1.0));
+        }
+        if half <= 0.0 {
+            return Some((lever, mu, 1.0));
+        }
+        let (turn, angle) = (half * self.bend, mu.atan());
+        if turn + angle > WIDEST_RAD {
+            return None;
+        }
+        let wider = (turn + angle).tan();
+        lever.spread += (turn.sin() + (1.0 - turn.cos()) * wider) / self.bend / scale_mm;
+        Some((lever, wider, (angle - turn).max(0.0).cos() / angle.cos()))
+    }
+
+    /// Generators whose hull, with 0 in it, holds those of every contact with friction `mu` on a piece of an arc; nothing
+    /// where the piece turns too far.
+    fn turned_generators(&self, span: Span, mu: f64, add: &mut impl FnMut(Vector3<f64>)) -> bool {
+        let turn = self.half_turn(span);
+        if turn > WIDEST_TURN_RAD {
+            return false;
+        }
+        let longer = 1.0 / turn.cos();
+        let about_centre = mu / self.edge.curvature() / self.scene.frame().scale_mm;
+        for end in span {
+            let lever = self.at_middle([end, end]);
+            for (m, k) in [(mu, about_centre), (-mu, -about_centre)] {
+                let force = (lever.normal + lever.tangent * m) * longer;
+                let torque = (lever.normal_torque + m * lever.tangent_torque) * longer;
+                add(Vector3::new(force.x, force.y, torque));
+                if turn > 0.0 && mu > 0.0 {
+                    add(Vector3::new(force.x, force.y, torque - k * (longer - 1.0)));
+                }
+                if mu <= 0.0 {
+                    break;
+                }
+            }
+            if turn <= 0.0 {
+                break;
+            }
+        }
+        true
+    }
+
+    /// How far the wrench of a unit normal force moves, at most, from the middle of a piece of an arc to anywhere on it,
+    /// for forces applied up to `half_height` (over l) above or below the plane; 0 on a straight edge, whose spread says it.
+    pub(super) fn wander(&self, span: Span, half_height: f64) -> f64 {
+        if self.bend <= 0.0 {
+            return 0.0;
+        }
+        let (turn, lever) = (self.half_turn(span), self.at_middle(span));
+        let radius = 1.0 / self.bend / self.scene.frame().scale_mm;
+        let arm = lever.normal_torque.hypot(lever.tangent_torque) + radius * turn + half_height;
+        turn * self.mu.hypot(1.0) * (radius + arm).hypot(1.0)
+    }
+
+    /// Distance to the nearer end of the stretch, mm: the largest on a piece.
+    pub(super) fn room_mm(&self, span: Span) -> f64 {
+        let centre = middle(self.whole).clamp(span[0], span[1]);
+        (centre - self.whole[0]).min(self.whole[1] - centre).max(0.0)
+    }
+
+    fn stand(&self, along_mm: f64) -> (Point2<f64>, Vector2<f64>) {
+        (self.edge.point_at(along_mm), self.edge.normal_at(along_mm))
+    }
+
+    /// How far the body of a finger moves from the middle of a piece, at most, mm.
+    fn moves_mm(&self, span: Span, hand: &Hand) -> f64 {
+        let size = match hand.tip {
+            Tip::Pin => hand.pin_radius_mm,
+            Tip::Pad => hand.pad_width_mm.hypot(hand.pad_depth_mm),
+        };
+        half_mm(span) * (1.0 + self.bend * size)
+    }
+}
+
+/// The contacts over a box, each finger's friction as `mu_of` says; nothing where an arc turns too far.
+pub(super) fn contacts_over(rails: &[&Rail<'_>], spans: &[Span], mu_of: impl Fn(&Rail<'_>) -> f64) -> Option<Contacts> {
+    let mut contacts = Contacts::none();
+    for (rail, span) in rails.iter().zip(spans) {
+        contacts.push(rail.over(*span, mu_of(rail))?);
+    }
+    Some(contacts)
+}
+
+/// Closure, quality and placement over a box with fingers on arcs, by the plain definition: no number is below that of any
+/// placement in the box, where that is closed. Nothing where an arc turns too far.
+pub(super) fn score_over(rails: &[&Rail<'_>], spans: &[Span], mu_of: impl Fn(&Rail<'_>) -> f64) -> Option<PlanarScore> {
+    let most: usize = rails.iter().map(|rail| if rail.bend > 0.0 { 8 } else { 4 }).sum();
+    if most > MOST_GENERATORS {
+        return Some(contacts_over(rails, spans, mu_of)?.by_definition());
+    }
+    let mut generators = [Vector3::zeros(); MOST_GENERATORS];
+    let mut n = 0;
+    let mut add = |generator| {
+        generators[n] = generator;
+        n += 1;
+    };
+    for (rail, span) in rails.iter().zip(spans) {
+        let mu = mu_of(rail);
+        if rail.bend > 0.0 {
+            if !rail.turned_generators(*span, mu, &mut add) {
+                return None;
+            }
+        } else {
+            let (lever, mu, _) = rail.over(*span, mu)?;
+            lever.generators(mu).iter().copied().for_each(&mut add);
+        }
+    }
+    Some(quality::by_definition(&generators[..n]))
+}
+
+/// Whether fingers keep their gaps, and when they cannot.
+pub(super) struct Gaps<'a> {
+    hand: &'a Hand,
+    /// Fingers may stand as near to one another as they like.
+    any: bool,
+}
+
+impl<'a> Gaps<'a> {
+    pub(super) fn of(hand: &'a Hand) -> Self {
+        Self { hand, any: hand.tip == Tip::Pin && 2.0 * hand.pin_radius_mm + hand.gap_mm <= 0.0 }
+    }
+
+    /// True when fingers at these positions keep the hand's gap.
+    pub(super) fn kept(&self, rails: &[&Rail<'_>], at: &[f64]) -> bool {
+        self.any
+            || (1..at.len()).all(|i| {
+                let a = rails[i].stand(at[i]);
+                (0..i).all(|j| hand::apart(self.hand, a, rails[j].stand(at[j])))
+            })
+    }
+
+    /// True when two fingers come too near wherever they stand in the box: they do in the middle of it even when both are
+    /// made smaller, or the gap less, by as much as they can move.
+    pub(super) fn never_kept(&self, rails: &[&Rail<'_>], spans: &[Span]) -> bool {
+        !self.any
+            && (1..spans.len()).any(|i| (0..i).any(|j| self.never_apart([rails[i], rails[j]], [spans[i], spans[j]])))
+    }
+
+    fn never_apart(&self, rails: [&Rail<'_>; 2], spans: [Span; 2]) -> bool {
+        let moves = rails[0].moves_mm(spans[0], self.hand) + rails[1].moves_mm(spans[1], self.hand);
+        let mut smaller = *self.hand;
+        smaller.gap_mm = (self.hand.gap_mm - moves).max(0.0);
+        let inward = (moves - self.hand.gap_mm).max(0.0) / 2.0;
+        let mut stands = [0, 1].map(|i| rails[i].stand(middle(spans[i])));
+        match self.hand.tip {
+            Tip::Pin => {
+                // Two axes this near stay nearer than they may: the circles are shrunk about their axes.
+                let axes = stands.map(|(point, normal)| point - normal * self.hand.pin_radius_mm);
+                let least = 2.0 * self.hand.pin_radius_mm + self.hand.gap_mm - moves;
+                (axes[0] - axes[1]).norm() < least * (1.0 - ROUNDING)
+            }
+            Tip::Pad => {
+                if inward > 0.0 {
+                    // Each rectangle is eroded by `inward` on all sides.
+                    let deep = self.hand.pad_depth_mm - 2.0 * inward;
+                    smaller.pad_width_mm = self.hand.pad_width_mm - 2.0 * inward;
+                    smaller.pad_depth_mm = deep;
+                    if deep <= 0.0 || smaller.pad_width_mm <= 0.0 {
+                        return false;
+                    }
+                    for (point, normal) in &mut stands {
+                        *point -= *normal * inward;
+                    }
+                }
+                smaller.gap_mm *= 1.0 - ROUNDING;
+                !hand::apart(&smaller, stands[0], stands[1])
+            }
+        }
+    }
+}
+
+/// Touching is allowed up to rounding of the positions themselves.
+const ROUNDING: f64 = 1e-9;

@@ -1,0 +1,371 @@
+//! The rounds of a search: which families are looked at when, against which level, and what is known of them in the end.
+
+use super::super::families::Family;
+use super::super::order::Key;
+use super::super::rank::{Cancel, Cancelled, Listed};
+use super::super::scene::Spot;
+use super::cover::{Cover, Screened};
+use super::gauge::Bound;
+use super::plot::{Lead, Plot, State};
+use super::{Proved, ProvedGrasp, Proving, Setting, improve, start};
+use crate::hand::Closing;
+use crate::mechanics::Verdict;
+use rayon::prelude::*;
+use std::collections::BTreeMap;
+
+/// Families of one round: few at first, when the list still changes, more later.
+const ROUND: [usize; 2] = [16, 512];
+/// Boxes looked at in one family and one round.
+const BOXES_A_ROUND: u64 = 128;
+/// Families screened by directions for each box of the budget.
+const SCREENED_A_BOX: u64 = 1000;
+/// Beginnings screened between two looks at the budget and at the wish to stop.
+const BEGINNINGS: usize = 16;
+
+/// The state of a search between two rounds.
+pub(super) struct Search<'a> {
+    setting: &'a Setting<'a>,
+    want: usize,
+    budget: u64,
+    cancel: &'a Cancel,
+    /// The best found of each family that may come into the list.
+    leads: BTreeMap<Family, Lead>,
+    /// Families looked at once that may hold better, with their bounds.
+    waiting: Vec<(Bound, Family)>,
+    /// Families that may hold better, with what is known of them.
+    open: Vec<State>,
+    /// Bounds of families that are settled and may be in the list.
+    settled: BTreeMap<Family, f64>,
+    /// The largest bound of all that was dropped without a name.
+    dropped: f64,
+    boxes: u64,
+    families: u64,
+    opened: u64,
+}
+
+impl<'a> Search<'a> {
+    pub(super) fn new(setting: &'a Setting<'a>, want: usize, budget: u64, cancel: &'a Cancel) -> Self {
+        Self {
+            setting,
+            want,
+            budget,
+            cancel,
+            leads: BTreeMap::new(),
+            waiting: Vec::new(),
+            open: Vec::new(),
+            settled: BTreeMap::new(),
+            dropped: f64::NEG_INFINITY,
+            boxes: 0,
+            families: 0,
+            opened: 0,
+        }
+    }
+
+    fn stop(&self) -> Result<(), Cancelled> {
+        if self.cancel.is_cancelled() { Err(Cancelled) } else { Ok(()) }
+    }
+
+    /// The merits found, best first.
+    fn merits(&self) -> Vec<f64> {
+        let mut merits: Vec<f64> = self.leads.values().map(|lead| lead.merit).collect();
+        merits.sort_by(|a, b| b.total_cmp(a));
+        merits
+    }
+
+    /// What a family has to beat to matter: the last of the list by more than the gap.
+    fn level(&self) -> f64 {
+        self.setting.goal.enough(self.merits().get(self.want - 1).copied())
+    }
+
+    /// Good placements to begin with, so that most families never have to be opened.
+    pub(super) fn start(&mut self, known: &[Vec<Spot>]) -> Result<(), Cancelled> {
+        for spots in known {
+            self.stop()?;
+            for (family, lead) in start::known(self.setting, spots) {
+                self.offer(family, lead);
+            }
+        }
+        if self.setting.scene.setup().hand.closing == Closing::Free {
+            for (family, lead) in start::leads(self.setting, self.want, self.cancel)? {
+                self.offer(family, lead);
+            }
+            self.forget();
+        }
+        Ok(())
+    }
+
+    /// Looks once at every family that its directions do not exclude.
+    pub(super) fn first_looks(&mut self, observe: &(dyn Fn(Proving) + Sync)) -> Result<(), Cancelled> {
+        let setting = self.setting;
+        if setting.scene.setup().hand.closing == Closing::Parallel {
+            let families: Vec<Family> =
+                (0..setting.scene.jaw_runs().len() as u32).map(|run| Family::new(&[run])).collect();
+            self.families = families.len() as u64;
+            return self.look_at(&families, f64::NEG_INFINITY);
+        }
+        if start::never_closes(setting) {
+            return Ok(());
+        }
+        let level = self.level();
+        let cover = Cover::above(setting, level);
+        let patience = self.budget.saturating_mul(SCREENED_A_BOX);
+        let beginnings: Vec<u32> = (0..setting.rails.len() as u32).collect();
+        // What the directions exclude is not above the level.
+        self.dropped = self.dropped.max(level);
+        for group in beginnings.chunks(BEGINNINGS) {
+            self.stop()?;
+            let screened: Vec<Screened> = group
+                .par_iter()
+                .map(|&first| cover.beginning_with(first, setting.fingers, setting, patience))
+                .collect();
+            let stopped = self.families > patience || screened.iter().any(|own| own.stopped);
+            self.families += screened.iter().map(|own| own.seen).sum::<u64>();
+            let kept: Vec<Family> = screened.into_iter().flat_map(|own| own.kept).collect();
+            self.look_at(&kept, level)?;
+            observe(self.progress());
+            if stopped || self.boxes >= self.budget {
+                if group.last() != beginnings.last() || stopped {
+                    self.dropped = self.dropped.max(self.any());
+                }
+                break;
+            }
+        }
+        Ok(())
+    }
+
+    /// What no family can beat.
+    fn any(&self) -> f64 {
+        let longest = self.setting.rails.iter().map(|rail| rail.mu.hypot(1.0)).fold(1.0, f64::max);
+        match self.setting.goal.key {
+            Key::Quality => longest,
+            Key::QualityPerFinger => longest * self.setting.fingers as f64,
+            Key::Placement => self.setting.rails.iter().map(|rail| rail.room_mm(rail.whole)).fold(0.0, f64::max),
+            Key::Friction | Key::Squeeze => 0.0,
+        }
+    }
+
+    /// Bounds families as a whole, as far as the budget goes.
+    fn look_at(&mut self, families: &[Family], level: f64) -> Result<(), Cancelled> {
+        let left = usize::try_from(self.left()).unwrap_or(usize::MAX);
+        let (now, never) = families.split_at(left.min(families.len()));
+        if !never.is_empty() {
+            self.dropped = self.dropped.max(self.any());
+        }
+        let setting = self.setting;
+        let look = |family: &Family| {
+            if self.cancel.is_cancelled() {
+                return None;
+            }
+            let mut plot = Plot::new(setting, family);
+            let whole = plot.whole();
+            Some(plot.bound(&whole, level))
+        };
+        let looks: Option<Vec<Bound>> = now.par_iter().map(look).collect();
+        for (bound, family) in looks.ok_or(Cancelled)?.into_iter().zip(now) {
+            if bound.merit > level {
+                self.waiting.push((bound, *family));
+            } else {
+                self.dropped = self.dropped.max(bound.merit);
+            }
+        }
+        self.boxes += now.len() as u64;
+        Ok(())
+    }
+
+    /// What is left of the budget.
+    fn left(&self) -> u64 {
+        self.budget.saturating_sub(self.boxes)
+    }
+
+    /// Cuts boxes, those of the families with the largest bounds first, until every family is settled or the budget spent.
+    pub(super) fn settle(&mut self, observe: &(dyn Fn(Proving) + Sync)) -> Result<(), Cancelled> {
+        // Largest bound last; families are all different, so the order is total.
+        self.waiting.sort_by(|a, b| a.0.merit.total_cmp(&b.0.merit).then_with(|| b.1.cmp(&a.1)));
+        let mut size = ROUND[0];
+        while self.round(size)? {
+            observe(self.progress());
+            size = (2 * size).min(ROUND[1]);
+        }
+        Ok(())
+    }
+
+    /// One round; false when there was nothing to do, or nothing to do it with.
+    fn round(&mut self, size: usize) -> Result<bool, Cancelled> {
+        let level = self.level();
+        if let Some((bound, _)) = self.waiting.last()
+            && bound.merit <= level
+        {
+            self.dropped = self.dropped.max(bound.merit);
+            self.waiting.clear();
+        }
+        let mut round = self.next(size);
+        let most = BOXES_A_ROUND.min(self.left() / round.len().max(1) as u64);
+        if round.is_empty() || most < 2 {
+            self.open.append(&mut round);
+            return Ok(false);
+        }
+        let (setting, cancel) = (self.setting, self.cancel);
+        let work = |mut state: State| {
+            if cancel.is_cancelled() {
+                return None;
+            }
+            let mut plot = Plot::new(setting, &state.family);
+            let boxes = plot.settle(&mut state, level, most);
+            Some((state, boxes))
+        };
+        let done: Option<Vec<(State, u64)>> = round.into_par_iter().map(work).collect();
+        for (state, boxes) in done.ok_or(Cancelled)? {
+            self.boxes += boxes;
+            if let Some(lead) = state.lead {
+                self.offer(state.family, lead);
+            }
+            if state.is_settled() {
+                self.settled.insert(state.family, state.bound());
+            } else {
+                self.open.push(state);
+            }
+        }
+        self.forget();
+        Ok(true)
+    }
+
+    /// The families with the largest bounds, at most so many.
+    fn next(&mut self, size: usize) -> Vec<State> {
+        self.open.sort_by(|a, b| a.open_bound().total_cmp(&b.open_bound()).then_with(|| b.family.cmp(&a.family)));
+        let mut round = Vec::with_capacity(size);
+        while round.len() < size {
+            let waits = self.waiting.last().map_or(f64::NEG_INFINITY, |(bound, _)| bound.merit);
+            if self.open.last().is_some_and(|state| state.open_bound() >= waits) {
+                round.extend(self.open.pop());
+            } else if let Some((bound, family)) = self.waiting.pop() {
+                self.opened += 1;
+                round.push(State::new(family, bound, self.leads.get(&family).copied()));
+            } else {
+                break;
+            }
+        }
+        round
+    }
+
+    /// Keeps a placement, if it is the best of its family.
+    fn offer(&mut self, family: Family, lead: Lead) {
+        let own = self.leads.entry(family).or_insert(lead);
+        if lead.merit > own.merit {
+            *own = lead;
+        }
+    }
+
+    /// Forgets families too far behind to come into the list, but for their bounds.
+    fn forget(&mut self) {
+        let Some(&last) = self.merits().get(self.want - 1) else { return };
+        self.leads.retain(|_, lead| lead.merit >= last);
+        let (leads, dropped) = (&self.leads, &mut self.dropped);
+        self.settled.retain(|family, bound| {
+            let listed = leads.contains_key(family);
+            *dropped = if listed { *dropped } else { dropped.max(*bound) };
+            listed
+        });
+    }
+
+    fn progress(&self) -> Proving {
+        let best = self.merits().first().copied();
+        let waiting = self.waiting.iter().map(|(bound, _)| bound.merit);
+        let open = self.open.iter().map(State::bound);
+        let bound = waiting.chain(open).chain(self.settled.values().copied()).chain(best).fold(self.dropped, f64::max);
+        let told = |merit| self.setting.goal.told(merit);
+        Proving {
+            boxes: self.boxes,
+            budget: self.budget,
+            best: best.map(told),
+            bound: bound.is_finite().then(|| told(bound)),
+        }
+    }
+
+    /// The list, moved to the middles of plateaus and confirmed, and what is proved of it.
+    pub(super) fn finish(mut self) -> Result<Proved, Cancelled> {
+        let mut bounds = std::mem::take(&mut self.settled);
+        bounds.extend(self.open.drain(..).map(|state| (state.family, state.bound())));
+        bounds.extend(self.waiting.drain(..).map(|(bound, family)| (family, bound.merit)));
+        let mut list: Vec<(Family, Lead)> = std::mem::take(&mut self.leads).into_iter().collect();
+        list.sort_by(|a, b| b.1.merit.total_cmp(&a.1.merit).then_with(|| a.0.cmp(&b.0)));
+        list.truncate(self.want);
+        let full = list.len() == self.want;
+        // A family without a bound of its own is among those dropped.
+        let own = |(family, lead): (Family, Lead)| {
+            let bound = bounds.remove(&family).unwrap_or(self.dropped);
+            (family, lead, bound)
+        };
+        let list: Vec<(Family, Lead, f64)> = list.into_iter().map(own).collect();
+        let mut rest = bounds.into_values().fold(self.dropped, f64::max);
+        let (setting, cancel) = (self.setting, self.cancel);
+        let row = |(family, lead, bound): &(Family, Lead, f64)| {
+            (!cancel.is_cancelled()).then(|| row(setting, family, *lead, *bound).ok_or(*bound))
+        };
+        let rows: Option<Vec<Result<Row, f64>>> = list.par_iter().map(row).collect();
+        let mut inconclusive = 0;
+        let mut listed = Vec::with_capacity(list.len());
+        for row in rows.ok_or(Cancelled)? {
+            match row {
+                Ok(row) => listed.push(row),
+                Err(bound) => {
+                    inconclusive += 1;
+                    rest = rest.max(bound);
+                }
+            }
+        }
+        Ok(self.proved(listed, rest, full, inconclusive))
+    }
+
+    fn proved(&self, mut rows: Vec<Row>, rest: f64, full: bool, inconclusive: u64) -> Proved {
+        let goal = &self.setting.goal;
+        rows.sort_by_key(|row| std::cmp::Reverse(goal.quanta(row.merit)));
+        let best_bound = rows.iter().map(|row| row.bound).fold(rest, f64::max);
+        let own = rows.iter().map(|row| goal.gap_between(row.merit, row.bound));
+        let first = rows.first().map(|row| goal.gap_between(row.merit, best_bound));
+        let behind = match rows.last() {
+            Some(last) if full => goal.gap_between(last.merit, rest),
+            // Every family there is should be in the list.
+            _ if rest <= goal.enough(None) => 0.0,
+            _ => f64::INFINITY,
+        };
+        let gap = own.chain(first).fold(behind, f64::max);
+        let told = |merit: f64| (merit > f64::NEG_INFINITY).then(|| goal.told(merit));
+        let grasp =
+            |row: Row| ProvedGrasp { value: goal.told(row.merit), bound: goal.told(row.bound), listed: row.listed };
+        Proved {
+            grasps: rows.into_iter().map(grasp).collect(),
+            best_bound: told(best_bound),
+            rest_bound: told(rest),
+            gap,
+            proved: gap <= goal.gap() + ROUNDING,
+            boxes: self.boxes,
+            families: self.families,
+            opened: self.opened,
+            inconclusive,
+        }
+    }
+}
+
+/// What a gap may be wider by and still be the one asked for.
+const ROUNDING: f64 = 1e-6;
+
+/// A row of the list, with merits.
+struct Row {
+    listed: Listed,
+    merit: f64,
+    bound: f64,
+}
+
+/// The grasp of a lead in the middle of its plateau; nothing when its two ways of scoring disagree.
+fn row(setting: &Setting<'_>, family: &Family, lead: Lead, bound: f64) -> Option<Row> {
+    let mut plot = Plot::new(setting, family);
+    let lead = improve::to_the_middle(&mut plot, lead);
+    let at = plot.spots(&lead.at);
+    let rails = &plot.gauge.rails[..plot.gauge.k];
+    let spots: Vec<Spot> = rails.iter().zip(at).map(|(rail, along_mm)| Spot { edge: rail.edge(), along_mm }).collect();
+    let grasp = setting.scene.grasp(&spots).ok()?;
+    let (assessment, doubts) = setting.scene.assess_for_list(&grasp);
+    let sure = doubts.is_empty() && assessment.verdict == Verdict::Closed;
+    let family = rails.iter().map(|rail| rail.stretch).collect();
+    sure.then(|| Row { listed: Listed { grasp, family, assessment }, merit: lead.merit, bound: bound.max(lead.merit) })
+}
