@@ -5,8 +5,8 @@
 //! where the drive presses all fingers alike). With one squeeze F the fingers reach exactly F times the Minkowski sum of their
 //! own hulls, so the program is `min sum x_v` subject to `sum x_v v = -load`, `x >= 0` over the corners v of that sum: six
 //! equations whatever the number of fingers. The corners are never written down. The one that enters the basis is the
-//! farthest in the direction u of the present prices, and each finger finds its own share of it: [`Hold::farthest`]
-//! (column generation; Dantzig & Wolfe 1960).
+//! farthest in the direction u of the present prices, and each finger finds its own share of it (column generation; Dantzig &
+//! Wolfe 1960).
 //!
 //! # Why it can be trusted
 //! Every answer carries both sides of its proof, computed again from the fingers themselves: forces that balance the load with

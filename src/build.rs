@@ -5,7 +5,7 @@ use std::path::Path;
 use std::process::Command;
 
 fn main() {
-    println!("cargo:rerun-if-changed=build.rs");
+    println!("cargo:rerun-if-changed=src/build.rs");
     let rustc = env::var("RUSTC").unwrap_or_else(|_| "rustc".to_owned());
     let known = |text: Option<String>| text.unwrap_or_else(|| "unknown".to_owned());
     println!("cargo:rustc-env=HOLDWRIGHT_RUSTC={}", known(line_of(&rustc, &["--version"])));
