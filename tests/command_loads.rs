@@ -313,3 +313,32 @@ fn score_says_how_jaws_stand_and_what_they_hold() {
     let ranked = json(&bench.run(&["rank", "bar.toml", "--setup", "jaws.toml", "--json"]));
     assert!(ranked["grasps"].as_array().unwrap().iter().all(|grasp| grasp["jaws"]["opening_mm"].is_number()));
 }
+
+/// What once broke the program or emptied a list. Fingers pressed alike that nearly fail to balance, with nothing asked of
+/// the loads; a torque scale beside which no digits are left; jaws on faces a hair from parallel. Found by trying; the
+/// squeeze of the last is held against the definition by the list itself, which leaves out what two ways disagree on.
+#[test]
+fn near_degenerate_grips_are_ranked_or_refused() {
+    let bench = Bench::new();
+    let wedge = "schema = 1\nthickness = 0.6\nmass_kg = 0.1\nouter = [[0, 0], [40, 0], [40, 22], [0, 24]]\n";
+    bench.write("wedge.toml", wedge);
+    let alike = "schema = 1\n[hand]\nforce_limit_n = 1.0\ndrive = \"equal\"\n[floors]\nload_margin = 0.0\n[[load]]\n";
+    bench.write("alike.toml", alike);
+    for key in Key::ALL {
+        let at = ["rank", "wedge.toml", "--setup", "alike.toml", "--spacing", "4", "--sort", key.word(), "--json"];
+        assert_eq!(bench.run(&at).status.code(), Some(0), "{}", key.word());
+    }
+    let tiny = bench.run(&["rank", "wedge.toml", "--setup", "alike.toml", "--torque-scale", "1e-6"]);
+    assert_eq!(tiny.status.code(), Some(2));
+    assert!(err(&tiny).contains("give at least"), "{}", err(&tiny));
+    let hair = "schema = 1\nthickness = 2.16\nmass_kg = 0.05\ncom = [54.1, 47.8]\n\
+                outer = [[0, 0], [111.19, 0], [111.19, 89.86], [0, 89.862]]\n";
+    bench.write("hair.toml", hair);
+    let jaws = "schema = 1\n[friction]\nmu = 0.15\n[hand]\nclosing = \"parallel\"\npad_width_mm = 7.0\npad_depth_mm = 20.0\n\
+                force_limit_n = 150.0\n[[load]]\nangular_acceleration_rad_s2 = 46.0\nsafety = 0.7\n";
+    bench.write("jaws.toml", jaws);
+    let report =
+        json(&bench.run(&["rank", "hair.toml", "--setup", "jaws.toml", "--members", "--top", "400", "--json"]));
+    assert_eq!(report["inconclusive"], 0);
+    assert!(report["grasps"].as_array().unwrap().len() > 30);
+}

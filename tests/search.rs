@@ -2,37 +2,17 @@
 //! plain definition of the hull (Trinkle 1992; Ferrari & Canny 1992), with none of the kernel's or the plan's shortcuts.
 #![allow(clippy::unwrap_used, clippy::expect_used, reason = "a test that cannot go on has failed")]
 
-use holdwright::hand::{Closing, Drive, FingerCount, Tip};
+mod common;
+
+use common::{bracket, scene};
+use holdwright::hand::{Closing, Drive, Tip};
 use holdwright::mechanics::holding;
 use holdwright::mechanics::load::Load;
 use holdwright::mechanics::program::{self, Solved};
 use holdwright::mechanics::{Holding, LoadCase, Verdict, Wrenches, closure, quality};
-use holdwright::part::{ArcDescription, EdgeId, EdgeLimit, KeepOutDescription, Part, PartDescription};
-use holdwright::search::{Cancel, Cancelled, Key, Listing, Ranking, Scene, Setup, Spot, rank};
+use holdwright::part::{ArcDescription, EdgeId, EdgeLimit, PartDescription};
+use holdwright::search::{Cancel, Cancelled, Key, Listing, Ranking, Scene, Spot, rank};
 use std::collections::{BTreeMap, BTreeSet};
-use std::sync::Arc;
-
-/// An asymmetric bracket with a hole, a keep-out and a rubber edge.
-fn bracket() -> PartDescription {
-    let outer = vec![[0.0, 0.0], [70.0, -6.0], [95.0, 31.0], [48.0, 66.0], [9.0, 52.0]];
-    let hole = vec![[30.0, 18.0], [52.0, 20.0], [40.0, 39.0]];
-    let mut described = PartDescription::bare("bracket", vec![outer, hole]);
-    described.keep_outs.push(KeepOutDescription {
-        ring: 0,
-        edge: 1,
-        from: Some(10.0),
-        to: Some(20.0),
-        reason: "weld".into(),
-    });
-    described
-}
-
-fn scene(described: PartDescription, fingers: usize, change: impl FnOnce(&mut Setup)) -> Scene {
-    let mut setup = Setup::default();
-    setup.hand.fingers = FingerCount::new(fingers).unwrap();
-    change(&mut setup);
-    Scene::new(Arc::new(Part::new(described).unwrap()), setup).unwrap()
-}
 
 fn ranked(scene: &Scene, key: Key, listing: Listing, most: usize) -> Ranking {
     rank(scene, key, listing, most, &Cancel::default(), &|_| ()).unwrap()

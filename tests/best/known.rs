@@ -101,21 +101,6 @@ fn a_disc_and_a_polygon_like_one() {
     assert!(found.grasps[0].value >= mu - 1e-9 && found.grasps[0].value <= mu + half_side);
 }
 
-/// An asymmetric bracket with a hole and a keep-out.
-fn bracket() -> PartDescription {
-    let outer = vec![[0.0, 0.0], [70.0, -6.0], [95.0, 31.0], [48.0, 66.0], [9.0, 52.0]];
-    let hole = vec![[30.0, 18.0], [52.0, 20.0], [40.0, 39.0]];
-    let mut described = PartDescription::bare("bracket", vec![outer, hole]);
-    described.keep_outs.push(KeepOutDescription {
-        ring: 0,
-        edge: 1,
-        from: Some(10.0),
-        to: Some(20.0),
-        reason: "weld".into(),
-    });
-    described
-}
-
 /// The proved best is never below the best of the sampler it began with, nor a row of the list below the sampler's by more
 /// than the gap, and no family the
 /// sampler finds beats the bound that goes for it; at the top of the list, by quality, neither is above the other by more
@@ -144,7 +129,7 @@ fn never_below_the_sampler() {
     ];
     for (fingers, change) in cases {
         for mixed in [false, true] {
-            let mut described = bracket();
+            let mut described = common::bracket();
             if mixed {
                 described.edge_friction = vec![(0, 2, 0.7), (0, 0, 0.1)];
             }
@@ -249,7 +234,7 @@ fn parallel_jaws() {
 /// A spent budget widens the gap and says so; the bound still holds.
 #[test]
 fn a_spent_budget_is_honest() {
-    let scene = scene(bracket(), 4, |setup| setup.friction.mu = 0.3);
+    let scene = scene(common::bracket(), 4, |setup| setup.friction.mu = 0.3);
     let whole = proved(&scene, Key::Quality, 1, 0.005, 1_000_000);
     assert!(whole.proved);
     let best = whole.grasps[0].value;
@@ -267,7 +252,7 @@ fn a_spent_budget_is_honest() {
 #[test]
 fn any_number_of_threads_finds_the_same() {
     for (key, fingers) in [(Key::Quality, 4), (Key::Placement, 3), (Key::Friction, 3)] {
-        let scene = scene(bracket(), fingers, |setup| setup.friction.mu = 0.3);
+        let scene = scene(common::bracket(), fingers, |setup| setup.friction.mu = 0.3);
         let on = |threads| {
             let pool = rayon::ThreadPoolBuilder::new().num_threads(threads).build().unwrap();
             pool.install(|| proved(&scene, key, 5, 0.02, 30_000))
@@ -280,7 +265,7 @@ fn any_number_of_threads_finds_the_same() {
 
 #[test]
 fn a_cancelled_search_stops() {
-    let scene = scene(bracket(), 4, |_| ());
+    let scene = scene(common::bracket(), 4, |_| ());
     let ask = Ask { key: Key::Quality, want: 1, gap: 0.0, budget: 1_000_000, known: &[] };
     let cancel = Cancel::default();
     cancel.cancel();
@@ -293,7 +278,7 @@ fn a_cancelled_search_stops() {
 /// Fewer than four frictionless contacts never close (Reuleaux 1876; Somov 1897): proved without a search.
 #[test]
 fn where_nothing_closes_that_is_proved() {
-    let scene = scene(bracket(), 3, |setup| setup.friction.mu = 0.0);
+    let scene = scene(common::bracket(), 3, |setup| setup.friction.mu = 0.0);
     let none = proved(&scene, Key::Quality, 5, 0.01, 1000);
     assert!(none.proved && none.grasps.is_empty() && none.best_bound.is_none());
 }
@@ -302,11 +287,11 @@ fn where_nothing_closes_that_is_proved() {
 /// search still ends.
 #[test]
 fn nothing_to_ask_and_nowhere_to_stand() {
-    let without_loads = scene(bracket(), 3, |_| ());
+    let without_loads = scene(common::bracket(), 3, |_| ());
     let found = proved(&without_loads, Key::Squeeze, 2, 0.01, 1000);
     assert!(found.proved && found.grasps.len() == 2);
     assert!(found.grasps.iter().all(|row| row.value.abs() <= 0.0));
-    let nowhere = scene(bracket(), 3, |setup| setup.hand.corner_clearance_mm = 500.0);
+    let nowhere = scene(common::bracket(), 3, |setup| setup.hand.corner_clearance_mm = 500.0);
     assert!(nowhere.stretches().is_empty());
     for key in Key::ALL {
         let found = proved(&nowhere, key, 0, f64::NAN, 1000);

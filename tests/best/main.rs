@@ -7,20 +7,12 @@ mod attack;
 mod common;
 mod known;
 
-use common::{Dice, assert_close};
-use holdwright::hand::{Closing, FingerCount, Stretch, Tip};
+use common::{Dice, assert_close, scene};
+use holdwright::hand::{Closing, Stretch, Tip};
 use holdwright::mechanics::{Assessment, Holding, LoadCase, MARGINAL, Verdict, quality};
-use holdwright::part::{ArcDescription, KeepOutDescription, Part, PartDescription};
+use holdwright::part::{ArcDescription, KeepOutDescription, PartDescription};
 use holdwright::search::{Ask, Cancel, Cancelled, Key, Listing, Proved, Scene, Setup, Spot, TorqueScale, prove, rank};
 use std::f64::consts::TAU;
-use std::sync::Arc;
-
-fn scene(described: PartDescription, fingers: usize, change: impl FnOnce(&mut Setup)) -> Scene {
-    let mut setup = Setup::default();
-    setup.hand.fingers = FingerCount::new(fingers).unwrap();
-    change(&mut setup);
-    Scene::new(Arc::new(Part::new(described).unwrap()), setup).unwrap()
-}
 
 fn proved(scene: &Scene, key: Key, want: usize, gap: f64, budget: u64) -> Proved {
     prove(scene, &Ask { key, want, gap, budget, known: &[] }, &Cancel::default(), &|_| ()).unwrap()

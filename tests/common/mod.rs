@@ -2,12 +2,14 @@
 #![allow(dead_code, reason = "every test file takes what it needs")]
 #![allow(clippy::unwrap_used, reason = "a test stops at the first surprise")]
 
-use holdwright::hand::Stretch;
+use holdwright::hand::{FingerCount, Stretch};
 use holdwright::mechanics::{Assessment, Contact, Frame, Wrenches};
-use holdwright::part::{ArcDescription, Edge, Part, PartDescription};
+use holdwright::part::{ArcDescription, Edge, KeepOutDescription, Part, PartDescription};
+use holdwright::search::{Scene, Setup};
 use nalgebra::{Point2, Rotation2, Vector2};
 use rand_chacha::ChaCha8Rng;
 use rand_chacha::rand_core::{Rng, SeedableRng};
+use std::sync::Arc;
 
 /// Fails unless `|a - b| <= abs + rel * max(|a|, |b|)`; NaN always fails.
 #[track_caller]
@@ -151,4 +153,27 @@ pub(crate) fn check_shape(part: &Part, found: &[Stretch]) {
     for pair in found.windows(2) {
         assert!((pair[0].edge, pair[0].to_mm) < (pair[1].edge, pair[1].from_mm), "{pair:?}");
     }
+}
+
+/// An asymmetric bracket with a hole and a keep-out.
+pub(crate) fn bracket() -> PartDescription {
+    let outer = vec![[0.0, 0.0], [70.0, -6.0], [95.0, 31.0], [48.0, 66.0], [9.0, 52.0]];
+    let hole = vec![[30.0, 18.0], [52.0, 20.0], [40.0, 39.0]];
+    let mut described = PartDescription::bare("bracket", vec![outer, hole]);
+    described.keep_outs.push(KeepOutDescription {
+        ring: 0,
+        edge: 1,
+        from: Some(10.0),
+        to: Some(20.0),
+        reason: "weld".into(),
+    });
+    described
+}
+
+/// A scene of so many fingers under the default setup, changed.
+pub(crate) fn scene(described: PartDescription, fingers: usize, change: impl FnOnce(&mut Setup)) -> Scene {
+    let mut setup = Setup::default();
+    setup.hand.fingers = FingerCount::new(fingers).unwrap();
+    change(&mut setup);
+    Scene::new(Arc::new(Part::new(described).unwrap()), setup).unwrap()
 }
