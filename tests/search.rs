@@ -272,6 +272,25 @@ fn pins_pressed_alike() {
             setup.loads = loads();
         }));
     }
+    // Two pins below and one above press the plate up by F: a push of 30 N down and one of 3 N ask for two different F.
+    let plate = PartDescription::bare("plate", vec![vec![[0.0, 0.0], [80.0, 0.0], [80.0, 40.0], [0.0, 40.0]]]);
+    let push = |n: f64| LoadCase {
+        gravity: [0.0; 3],
+        force_n: [0.0, -n, 0.0],
+        at_mm: [40.0, 20.0, 0.0],
+        ..LoadCase::default()
+    };
+    let pushed = scene(plate, 3, |setup| {
+        setup.search.spacing_mm = Some(20.0);
+        setup.hand.drive = Drive::Equal;
+        setup.hand.force_limit_n = Some(100.0);
+        setup.loads = vec![push(30.0), push(3.0)];
+    });
+    assert!(plain(&pushed).best.is_empty());
+    for key in Key::ALL {
+        let ranking = ranked(&pushed, key, Listing::Families, 100);
+        assert!(ranking.grasps.is_empty() && ranking.families == 8 && ranking.not_held > 0, "{key:?}");
+    }
 }
 
 /// Parallel jaws: every run gone through, the best of each listed, and each listed pair one that jaws can take.
