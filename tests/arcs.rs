@@ -7,7 +7,7 @@ use common::{Dice, assert_close, part, part_with_arcs};
 use holdwright::hand::{FingerCount, Hand, stretch_around, stretches};
 use holdwright::mechanics::{Verdict, quality};
 use holdwright::part::{ArcDescription, Edge, EdgeId, Part, PartDescription, PartFault};
-use holdwright::search::{Cancel, Key, Listing, Scene, Setup, Spot, TorqueScale, rank};
+use holdwright::search::{Cancel, Key, Listing, Scene, Setup, Spot, TorqueScale, sample};
 use nalgebra::{Point2, Vector2};
 use std::f64::consts::{FRAC_PI_2, PI, TAU};
 use std::sync::Arc;
@@ -252,7 +252,7 @@ fn arcs_and_fine_chords_agree() {
         let mut setup = Setup::default();
         setup.search.spacing_mm = Some(4.0);
         let scene = Scene::new(Arc::new(part), setup).unwrap();
-        rank(&scene, Key::Quality, Listing::Members, 3, &Cancel::default(), &|_| ()).unwrap()
+        sample(&scene, Key::Quality, Listing::Members, 3, &Cancel::default(), &|_| ()).unwrap()
     };
     let (with_arcs, with_chords) = (of(arcs), of(chords));
     assert_eq!(with_arcs.inconclusive, 0);

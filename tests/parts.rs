@@ -8,7 +8,7 @@ use common::assert_close;
 use holdwright::file;
 use holdwright::mechanics::Verdict;
 use holdwright::part::{EdgeId, Part};
-use holdwright::search::{Cancel, Key, Listing, Ranking, Scene, Setup, Spot, rank};
+use holdwright::search::{Cancel, Key, Listing, Ranking, Scene, Setup, Spot, sample};
 use std::path::{Path, PathBuf};
 use std::sync::Arc;
 
@@ -33,7 +33,7 @@ fn read(name: &str) -> Part {
 
 fn ranked(part: &Arc<Part>, setup: &Setup) -> Ranking {
     let scene = Scene::new(part.clone(), setup.clone()).unwrap();
-    rank(&scene, Key::Quality, Listing::Families, 5, &Cancel::default(), &|_| {}).unwrap()
+    sample(&scene, Key::Quality, Listing::Families, 5, &Cancel::default(), &|_| {}).unwrap()
 }
 
 #[test]

@@ -11,11 +11,11 @@ use holdwright::mechanics::load::Load;
 use holdwright::mechanics::program::{self, Solved};
 use holdwright::mechanics::{Holding, LoadCase, Verdict, Wrenches, closure, quality};
 use holdwright::part::{ArcDescription, EdgeId, EdgeLimit, PartDescription};
-use holdwright::search::{Cancel, Cancelled, Key, Listing, Ranking, Scene, Spot, rank};
+use holdwright::search::{Cancel, Cancelled, Key, Listing, Ranking, Scene, Spot, sample};
 use std::collections::{BTreeMap, BTreeSet};
 
 fn ranked(scene: &Scene, key: Key, listing: Listing, most: usize) -> Ranking {
-    rank(scene, key, listing, most, &Cancel::default(), &|_| ()).unwrap()
+    sample(scene, key, listing, most, &Cancel::default(), &|_| ()).unwrap()
 }
 
 /// Positions by the rule: at most the spacing apart, both ends and the middle included.
@@ -457,7 +457,7 @@ fn a_cancelled_ranking_stops() {
     let scene = scene(bracket(), 4, |setup| setup.search.budget = 50_000_000);
     let cancel = Cancel::default();
     let stop = |_| cancel.cancel();
-    assert_eq!(rank(&scene, Key::Quality, Listing::Families, 5, &cancel, &stop).err(), Some(Cancelled));
+    assert_eq!(sample(&scene, Key::Quality, Listing::Families, 5, &cancel, &stop).err(), Some(Cancelled));
 }
 
 #[test]

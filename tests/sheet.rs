@@ -8,7 +8,7 @@ mod shell;
 use common::assert_close;
 use holdwright::file::{self, Keep};
 use holdwright::part::Part;
-use holdwright::search::{Cancel, Key, Listing, Scene, Setup, Spot, rank};
+use holdwright::search::{Cancel, Key, Listing, Scene, Setup, Spot, sample};
 use roxmltree::{Document, Node, ParsingOptions};
 use serde_json::Value;
 use shell::{command, complaints, err, json, out};
@@ -53,7 +53,7 @@ fn best(part: &Arc<Part>, setup: &Setup) -> Option<Keep> {
     let mut quick = setup.clone();
     quick.search.budget = 20_000;
     let scene = Scene::new(part.clone(), quick).unwrap();
-    let listed = rank(&scene, Key::Quality, Listing::Families, 1, &Cancel::default(), &|_| {}).unwrap().grasps;
+    let listed = sample(&scene, Key::Quality, Listing::Families, 1, &Cancel::default(), &|_| {}).unwrap().grasps;
     let spots = listed.first()?.grasp.spots.clone();
     Some(keep("best", part, setup, &spots))
 }

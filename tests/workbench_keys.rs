@@ -242,8 +242,13 @@ fn the_list_says_how_much_the_floors_hide() {
     open.search.spacing_mm = Some(20.0);
     let scene = |setup: &Setup| Arc::new(holdwright::search::Scene::new(Arc::new(hinge()), setup.clone()).unwrap());
     let all = |setup: &Setup| {
-        let request =
-            Request { scene: scene(setup), key: SortKey::Quality, listing: Listing::Members, most: 1_000_000 };
+        let request = Request {
+            scene: scene(setup),
+            key: SortKey::Quality,
+            listing: Listing::Members,
+            most: 1_000_000,
+            known: Vec::new(),
+        };
         ranked(&request)
     };
     let every = all(&open);

@@ -22,9 +22,9 @@ pub(super) struct Report<'a> {
     pub(super) closed: u64,
     pub(super) inconclusive: u64,
     pub(super) complete: bool,
-    /// Present where a proof was asked for.
+    /// Present in a ranking.
     #[serde(flatten)]
-    pub(super) proof: Option<super::rank::Proof>,
+    pub(super) proof: Option<super::rank::ProofReport>,
     pub(super) grasps: Vec<GraspReport>,
 }
 

@@ -43,7 +43,7 @@ pub(super) struct Knobs {
     /// Seed of the sampler
     #[arg(long, value_name = "SEED")]
     seed: Option<u64>,
-    /// Candidate sets looked at before sampling takes over
+    /// Most work for a ranking, in candidate sets; what is left open then is told
     #[arg(long, value_name = "SETS")]
     budget: Option<u64>,
     /// What torque is divided by to stand beside force: reach, gyration, or a length in mm

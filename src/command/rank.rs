@@ -9,7 +9,7 @@ use super::reading::{LINE, decimals, drive, fingers, hand, length, newtons, rati
 use crate::file::{CAUTION, DRIVES, shown, word_for};
 use crate::hand::{Closing, PARALLEL_RAD, Tip};
 use crate::mechanics::{Assessment, Holding};
-use crate::search::{self, Cancel, Key, Listed, Listing, Ranking, Scene, TorqueScale};
+use crate::search::{self, Cancel, Key, Listed, Listing, Proof, Ranking, Scene, TorqueScale, Wanted};
 use clap::Args;
 use clap::builder::{PossibleValuesParser, TypedValueParser};
 use serde::Serialize;
@@ -34,9 +34,9 @@ pub(super) struct RankArgs {
     /// List single grasps instead of the best of each family
     #[arg(long)]
     members: bool,
-    /// Go on from the sites to every placement on the outline, and prove the list to within GAP, a part of the score
-    #[arg(long, value_name = "GAP", conflicts_with = "members", value_parser = gap)]
-    gap: Option<f64>,
+    /// How much better than its row any placement of a family may be, as a part of its score
+    #[arg(long, value_name = "GAP", conflicts_with = "members", default_value = "0.01", value_parser = gap)]
+    gap: f64,
     /// Print JSON
     #[arg(long)]
     json: bool,
@@ -63,20 +63,18 @@ pub(super) fn run(args: &RankArgs) -> Result<Answer, Stop> {
         ));
     }
     let listing = if args.members { Listing::Members } else { Listing::Families };
+    let wanted = Wanted { key, listing, most: args.top as usize, gap: args.gap, known: &[] };
     let line = ProgressLine::new();
-    let observe = |progress: search::Progress| line.tell(progress.done, progress.total);
-    let ranked = args
-        .knobs
-        .on_threads(|| search::rank(&scene, key, listing, args.top as usize, &Cancel::default(), &observe))?;
-    drop(line);
-    let mut ranking = ranked.map_err(|stopped| Stop::bad(stopped.to_string()))?;
-    let proof = match args.gap {
-        Some(gap) => Some(args.knobs.on_threads(|| prove(&scene, key, args.top as usize, gap, &mut ranking))??),
-        None => None,
+    let observe = |progress: search::Progress| match progress.gap {
+        Some(gap) => line.tell_of(&format!("of the budget; gap {:.1} %", 100.0 * gap), progress.done, progress.total),
+        None => line.tell(progress.done, progress.total),
     };
+    let ranked = args.knobs.on_threads(|| search::rank(&scene, &wanted, &Cancel::default(), &observe))?;
+    drop(line);
+    let ranking = ranked.map_err(|stopped| Stop::bad(stopped.to_string()))?;
     if args.json {
         let mut report = Report::new(&scene);
-        report.proof = proof;
+        report.proof = Some(ProofReport::of(ranking.proof.as_ref()));
         report.examined = ranking.examined;
         report.closed = ranking.closed;
         report.inconclusive = ranking.inconclusive;
@@ -89,14 +87,14 @@ pub(super) fn run(args: &RankArgs) -> Result<Answer, Stop> {
         }
         output::print_json(&report)?;
     } else {
-        output::print(&table(&scene, key, listing, &ranking, proof.as_ref()))?;
+        output::print(&table(&scene, &wanted, &ranking))?;
     }
     Ok(Answer::Done)
 }
 
 /// How good the list is beside every placement on the outline.
 #[derive(Debug, Clone, Copy, Serialize)]
-pub(super) struct Proof {
+pub(super) struct ProofReport {
     /// No placement scores better than this on the key; null where none is a grasp at all, or nothing is known.
     best_bound: Option<f64>,
     /// How much better than its row a family can be, as a part of its score; null where something may be missing.
@@ -105,49 +103,49 @@ pub(super) struct Proof {
     proved: bool,
 }
 
-/// Goes on from the best of the sites to every placement, and puts the proved list in the place of the sampled one.
-fn prove(scene: &Scene, key: Key, want: usize, gap: f64, ranking: &mut Ranking) -> Result<Proof, Stop> {
-    let known: Vec<_> = ranking.grasps.iter().map(|listed| listed.grasp.spots.clone()).collect();
-    let ask = search::Ask { key, want, gap, budget: scene.setup().search.budget, known: &known };
-    let line = ProgressLine::new();
-    let observe = |proving: search::Proving| line.tell(proving.boxes, proving.budget);
-    let proved = search::prove(scene, &ask, &Cancel::default(), &observe);
-    drop(line);
-    let proved = proved.map_err(|stopped| Stop::bad(stopped.to_string()))?;
-    ranking.inconclusive += proved.inconclusive;
-    ranking.grasps = proved.grasps.into_iter().map(|grasp| grasp.listed).collect();
-    Ok(Proof {
-        best_bound: proved.best_bound.filter(|bound| bound.is_finite()),
-        gap: Some(proved.gap).filter(|gap| gap.is_finite()),
-        proved: proved.proved,
-    })
+impl ProofReport {
+    /// Of a list that was proved; nothing is known of one that was not.
+    fn of(proof: Option<&Proof>) -> Self {
+        let finite = |number: f64| Some(number).filter(|number| number.is_finite());
+        Self {
+            best_bound: proof.and_then(|proof| proof.best_bound).and_then(finite),
+            gap: proof.and_then(|proof| finite(proof.gap)),
+            proved: proof.is_some_and(|proof| proof.proved),
+        }
+    }
 }
 
 /// What a proof says, in a line.
-fn proved(proof: &Proof) -> String {
-    let bound = proof.best_bound.map_or("-".to_owned(), short);
-    let gap = proof.gap.map_or("open".to_owned(), |gap| format!("{:.2} %", 100.0 * gap));
-    let word = if proof.proved { "proved" } else { "not proved to the gap asked for (raise --budget)" };
-    format!("{word}: no placement anywhere on the outline is better than {bound}; gap {gap}")
+fn proved(proof: &Proof, key: Key, gap: f64) -> String {
+    let Some(bound) = proof.best_bound else {
+        return "proved: no placement anywhere on the outline is such a grasp".to_owned();
+    };
+    let better = if key.more_is_better() { "above" } else { "below" };
+    let none = format!("none {better} {} anywhere on the outline", short(bound));
+    match (proof.proved, proof.gap.is_finite()) {
+        (true, _) => format!("proved: {none}; every row within {:.2} % of its family's best", 100.0 * proof.gap),
+        (false, true) => {
+            let (open, asked) = (100.0 * proof.gap, 100.0 * gap);
+            format!("not proved to {asked} %: {none}, {open:.2} % from the list; raise --budget to close the gap")
+        }
+        (false, false) => format!("not proved: {none}, and families may be missing; raise --budget to find them"),
+    }
 }
 
-fn table(scene: &Scene, key: Key, listing: Listing, ranking: &Ranking, proof: Option<&Proof>) -> String {
+fn table(scene: &Scene, wanted: &Wanted<'_>, ranking: &Ranking) -> String {
     let mut text = String::new();
     // Writing to a String cannot fail.
-    let _ = head(&mut text, scene, ranking);
-    if let Some(proof) = proof {
-        let _ = writeln!(text, "{}", wrapped(&proved(proof), 0, 4));
-    }
+    let _ = head(&mut text, scene, wanted, ranking);
     let _ = if ranking.grasps.is_empty() {
         writeln!(text, "\n{}", why_empty(scene, ranking))
     } else {
-        rows(&mut text, scene, key, listing, ranking)
+        rows(&mut text, scene, wanted, ranking)
     };
     let _ = writeln!(text, "\n{}", wrapped(CAUTION, 0, 0));
     text
 }
 
-fn head(text: &mut String, scene: &Scene, ranking: &Ranking) -> std::fmt::Result {
+fn head(text: &mut String, scene: &Scene, wanted: &Wanted<'_>, ranking: &Ranking) -> std::fmt::Result {
     let (setup, search) = (scene.setup(), &scene.setup().search);
     let scale = match search.torque_scale {
         TorqueScale::Reach => "reach",
@@ -166,6 +164,9 @@ fn head(text: &mut String, scene: &Scene, ranking: &Ranking) -> std::fmt::Result
     let drive_word = word_for(&DRIVES, setup.hand.drive);
     writeln!(text, "{}", wrapped(&format!("drive {drive_word}: {}; {limit}", drive(setup.hand.drive)), 0, 4))?;
     writeln!(text, "torque scale {} mm ({scale}), seed {}", length(scene.frame().scale_mm), search.seed)?;
+    if let Some(proof) = ranking.proof.filter(|_| !ranking.grasps.is_empty()) {
+        return writeln!(text, "{}", wrapped(&proved(&proof, wanted.key, wanted.gap), 0, 4));
+    }
     writeln!(
         text,
         "{} candidate sets of {} sites examined, {} closed, {} inconclusive",
@@ -178,12 +179,10 @@ fn head(text: &mut String, scene: &Scene, ranking: &Ranking) -> std::fmt::Result
     }
 }
 
-fn rows(text: &mut String, scene: &Scene, key: Key, listing: Listing, ranking: &Ranking) -> std::fmt::Result {
-    let count = ranking.grasps.len();
-    match listing {
-        Listing::Families => {
-            writeln!(text, "\nBest grasp of {count} of {} families, by {}:", ranking.families, key.word())?;
-        }
+fn rows(text: &mut String, scene: &Scene, wanted: &Wanted<'_>, ranking: &Ranking) -> std::fmt::Result {
+    let (count, key) = (ranking.grasps.len(), wanted.key);
+    match wanted.listing {
+        Listing::Families => writeln!(text, "\nBest placement of the best {count} families, by {}:", key.word())?,
         Listing::Members => writeln!(text, "\nBest {count} grasps, by {}:", key.word())?,
     }
     let columns = columns::fitted(columns_of(scene, key, ranking), LINE);

@@ -85,7 +85,7 @@ pub struct Proved {
 }
 
 /// How far a search is.
-#[derive(Debug, Clone, Copy, PartialEq)]
+#[derive(Debug, Clone, PartialEq)]
 pub struct Proving {
     /// Boxes looked at.
     pub boxes: u64,
@@ -95,6 +95,10 @@ pub struct Proving {
     pub best: Option<f64>,
     /// What none can beat, as far as it is known.
     pub bound: Option<f64>,
+    /// The gap between the two, as a part of the best score.
+    pub gap: Option<f64>,
+    /// The best so far, when a snapshot was due.
+    pub grasps: Option<Vec<Listed>>,
 }
 
 /// What stays the same for all families.
@@ -153,10 +157,26 @@ pub fn prove(
     cancel: &Cancel,
     observe: &(dyn Fn(Proving) + Sync),
 ) -> Result<Proved, Cancelled> {
+    prove_or(scene, ask, cancel, observe, 0, &|| Ok(Vec::new()))
+}
+
+/// [`prove`], with the best `snapshot_rows` so far in some of its [`Proving`], and with placements from elsewhere where the
+/// budget ends before the gap is reached.
+pub(super) fn prove_or(
+    scene: &Scene,
+    ask: &Ask<'_>,
+    cancel: &Cancel,
+    observe: &(dyn Fn(Proving) + Sync),
+    snapshot_rows: usize,
+    when_spent: &dyn Fn() -> Result<Vec<Vec<Spot>>, Cancelled>,
+) -> Result<Proved, Cancelled> {
     let setting = Setting::new(scene, ask.key, ask.gap);
-    let mut search = Search::new(&setting, ask.want.max(1), ask.budget, cancel);
+    let mut search = Search::new(&setting, ask.want.max(1), ask.budget, cancel, snapshot_rows);
     search.start(ask.known)?;
     search.first_looks(observe)?;
     search.settle(observe)?;
+    if search.is_spent() {
+        search.know(&when_spent()?)?;
+    }
     search.finish()
 }

@@ -4,8 +4,8 @@
 //! News carry the number of the request they belong to; whoever listens drops the stale ones.
 
 use super::order::Key;
-use super::rank::{Cancel, Listing, Progress, Ranking, rank_with_snapshots};
-use super::scene::Scene;
+use super::rank::{Cancel, Listing, Progress, Ranking, USUAL_GAP, Wanted, rank_with_snapshots};
+use super::scene::{Scene, Spot};
 use std::panic::{AssertUnwindSafe, catch_unwind};
 use std::sync::{Arc, Condvar, Mutex, MutexGuard, PoisonError};
 
@@ -20,6 +20,8 @@ pub struct Request {
     pub listing: Listing,
     /// Rows wanted.
     pub most: usize,
+    /// Placements to begin with: the list at the knobs before.
+    pub known: Vec<Vec<Spot>>,
 }
 
 /// News from the worker; stale news is told by its generation.
@@ -40,6 +42,8 @@ pub enum What {
         done: u64,
         /// Sets in all.
         total: u64,
+        /// How far the best so far may be from the best there is, as a part of its score, where a proof knows.
+        gap: Option<f64>,
     },
     /// The best so far.
     Snapshot(Arc<Ranking>),
@@ -138,14 +142,14 @@ impl Drop for Ranker {
 
 fn run(generation: u64, request: &Request, cancel: &Cancel, tell: &(impl Fn(News) + Sync)) {
     let observe = |progress: Progress| {
-        let Progress { done, total, snapshot } = progress;
-        let what = snapshot.map_or(What::Progress { done, total }, What::Snapshot);
+        let Progress { done, total, gap, snapshot } = progress;
+        let what = snapshot.map_or(What::Progress { done, total, gap }, What::Snapshot);
         tell(News { generation, what });
     };
-    let Request { scene, key, listing, most } = request;
-    let outcome = catch_unwind(AssertUnwindSafe(|| {
-        rank_with_snapshots(scene, *key, *listing, *most, cancel, &observe, SNAPSHOT_ROWS)
-    }));
+    let Request { scene, key, listing, most, known } = request;
+    let wanted = Wanted { key: *key, listing: *listing, most: *most, gap: USUAL_GAP, known };
+    let outcome =
+        catch_unwind(AssertUnwindSafe(|| rank_with_snapshots(scene, &wanted, cancel, &observe, SNAPSHOT_ROWS)));
     let what = match outcome {
         Ok(Ok(ranking)) => What::Done(Arc::new(ranking)),
         Ok(Err(_cancelled)) => return,
@@ -183,8 +187,13 @@ mod tests {
             let _ = sender.send(one);
         })
         .unwrap();
-        let request =
-            |fingers| Request { scene: scene(fingers), key: Key::Quality, listing: Listing::Families, most: 5 };
+        let request = |fingers| Request {
+            scene: scene(fingers),
+            key: Key::Quality,
+            listing: Listing::Families,
+            most: 5,
+            known: Vec::new(),
+        };
         let mut last = 0;
         for fingers in [5, 4, 5, 4, 3] {
             last = ranker.request(request(fingers));

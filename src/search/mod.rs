@@ -8,6 +8,7 @@ mod load_check;
 mod order;
 mod plan;
 mod rank;
+mod sample;
 mod scene;
 mod screen;
 mod setup;
@@ -17,6 +18,7 @@ mod under_load;
 
 pub use best::{Ask, Proved, ProvedGrasp, Proving, prove};
 pub use order::Key;
-pub use rank::{Cancel, Cancelled, Listed, Listing, Progress, Ranking, rank};
+pub use rank::{Cancel, Cancelled, Listed, Listing, Progress, Proof, Ranking, USUAL_GAP, Wanted, rank};
+pub use sample::sample;
 pub use scene::{Grasp, PlaceFault, Scene, Spot, Standing};
 pub use setup::{Floors, SearchSettings, Setup, SetupFault, TorqueScale};

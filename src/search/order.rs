@@ -38,6 +38,11 @@ impl Key {
         }
     }
 
+    /// True where a larger score is the better one.
+    pub fn more_is_better(self) -> bool {
+        matches!(self, Self::Quality | Self::QualityPerFinger | Self::Placement)
+    }
+
     /// The key of a word.
     pub fn from_word(word: &str) -> Option<Self> {
         Self::ALL.into_iter().find(|key| key.word() == word)

@@ -50,10 +50,9 @@ enum Work {
 }
 
 impl Plan {
-    pub(super) fn of(screen: &Screen) -> Result<Self, Cancelled> {
-        let setup = screen.scene.setup();
-        let fingers = setup.hand.fingers.get();
-        let budget = setup.search.budget;
+    /// Every set where they number at most `budget`, else a sample of about so many.
+    pub(super) fn of(screen: &Screen, budget: u64) -> Result<Self, Cancelled> {
+        let fingers = screen.scene.setup().hand.fingers.get();
         if screen.sites.are_paired() {
             return Ok(jaws(screen, budget));
         }

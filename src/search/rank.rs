@@ -1,15 +1,22 @@
-//! Ranking: every candidate set scored by the kernel, the best of each family listed and confirmed.
+//! Ranking: the best grasp of each family, proved, or single grasps of the sites.
+//!
+//! A ranking of families is a proof ([`best`]): it finds the best placement of each family anywhere on its stretches. Where
+//! its budget ends before the gap is reached, the sampler looks as well, and the better of both is listed with the gap that
+//! is left. Where it lists nothing, the sampler tells what becomes of the candidate sets: open, below a floor, a load not held.
 
-use super::order::{Candidate, Key};
-use super::plan::Plan;
-use super::scene::{Grasp, Scene};
-use super::screen::Screen;
-use super::sites::Sites;
-use super::tally::Tally;
-use crate::mechanics::{Assessment, Verdict};
-use rayon::prelude::*;
+use super::best::{self, Ask, Proved, Proving};
+use super::order::Key;
+use super::sample::sample_with_snapshots;
+use super::scene::{Grasp, Scene, Spot};
+use crate::mechanics::Assessment;
 use std::sync::Arc;
 use std::sync::atomic::{AtomicBool, Ordering};
+
+/// Gap of a ranking that nobody asked another of, as a part of the score.
+pub const USUAL_GAP: f64 = 0.01;
+
+/// Candidate sets of the budget that one box of a proof counts for: about as long a look, measured.
+const SETS_A_BOX: u64 = 16;
 
 /// What a ranking lists.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -29,14 +36,19 @@ pub struct Listed {
     pub family: Vec<usize>,
     /// Every score.
     pub assessment: Assessment,
+    /// No placement of its family scores better than this on the key the list is sorted by, in that key's unit; nothing
+    /// where only sites were looked at.
+    pub bound: Option<f64>,
 }
 
 /// The outcome of a ranking, or of as much of it as is done.
 #[derive(Debug, Clone, PartialEq, Default)]
 pub struct Ranking {
-    /// Sites candidate sets were made of.
+    /// How far the list is from the best there is; nothing where only sites were looked at.
+    pub proof: Option<Proof>,
+    /// Sites candidate sets were made of; 0 where none were needed.
     pub sites: usize,
-    /// Candidate sets looked at.
+    /// Candidate sets looked at: sets of sites, or placements and boxes of placements of a proof.
     pub examined: u64,
     /// Those closed among them.
     pub closed: u64,
@@ -48,10 +60,29 @@ pub struct Ranking {
     pub inconclusive: u64,
     /// False when the budget made it a sample, or the ranking is not done yet.
     pub complete: bool,
-    /// Families with at least one closed grasp above the floors; of those in the list every load is held too.
+    /// Families with at least one closed grasp above the floors; of those in the list every load is held too. A proof does
+    /// not count those that cannot come into the list.
     pub families: usize,
     /// The list, best first.
     pub grasps: Vec<Listed>,
+}
+
+/// How far the list of a ranking is from the best grasps anywhere on the outline. Scores and bounds are in the key's unit.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct Proof {
+    /// No placement scores better than this; nothing where no placement is a grasp at all.
+    pub best_bound: Option<f64>,
+    /// How much better than its row any family of the list can be, as a part of its score; see [`Proved::gap`]. Infinite
+    /// while something may be missing.
+    pub gap: f64,
+    /// The gap is no wider than was asked for.
+    pub proved: bool,
+}
+
+impl Proof {
+    fn of(proved: &Proved) -> Self {
+        Self { best_bound: proved.best_bound, gap: proved.gap, proved: proved.proved }
+    }
 }
 
 /// How far a ranking is.
@@ -59,8 +90,10 @@ pub struct Ranking {
 pub struct Progress {
     /// Candidate sets looked at.
     pub done: u64,
-    /// Candidate sets in all.
+    /// Candidate sets in all; for a proof those of its budget, which it seldom needs.
     pub total: u64,
+    /// How much better than the best so far any placement can be, as a part of its score; nothing while that is not known.
+    pub gap: Option<f64>,
     /// The best so far, when a snapshot was due.
     pub snapshot: Option<Arc<Ranking>>,
 }
@@ -86,83 +119,88 @@ impl Cancel {
 #[error("stopped")]
 pub struct Cancelled;
 
-/// Ranks the candidate sets of a scene and lists the best `most`.
-///
-/// All sets are looked at while they number at most the setup's budget; above it a stratified sample drawn from the
-/// setup's seed. `observe` is called from time to time, from the calling thread. Runs on rayon's current pool; results
-/// do not depend on the number of threads.
+/// Candidate sets sampled before a proof: good placements to begin with, and among equals those with the best tie-breaks.
+const FIRST_SETS: u64 = 100_000;
+
+/// What is wanted of a ranking.
+#[derive(Debug, Clone, Copy)]
+pub struct Wanted<'a> {
+    /// What grasps are sorted by.
+    pub key: Key,
+    /// The best of each family, or single grasps.
+    pub listing: Listing,
+    /// Rows, at most.
+    pub most: usize,
+    /// How much better than its row a family may be, as a part of its score.
+    pub gap: f64,
+    /// Placements to begin with, such as the list at another friction; they shorten the proof and change nothing else.
+    pub known: &'a [Vec<Spot>],
+}
+
+impl Wanted<'static> {
+    /// So many of the best families by a key, within the usual gap.
+    pub fn families(key: Key, most: usize) -> Self {
+        Self { key, listing: Listing::Families, most, gap: USUAL_GAP, known: &[] }
+    }
+}
+
+/// Ranks the grasps of a scene and lists the best. `observe` is called from time to time, from the calling thread. Runs on
+/// rayon's current pool; results do not depend on the number of threads.
 ///
 /// # Errors
 /// [`Cancelled`] when told to stop.
 pub fn rank(
     scene: &Scene,
-    key: Key,
-    listing: Listing,
-    most: usize,
+    wanted: &Wanted<'_>,
     cancel: &Cancel,
     observe: &(dyn Fn(Progress) + Sync),
 ) -> Result<Ranking, Cancelled> {
-    rank_with_snapshots(scene, key, listing, most, cancel, observe, 0)
+    rank_with_snapshots(scene, wanted, cancel, observe, 0)
 }
 
 /// [`rank`], with the best `snapshot_rows` so far in some of its [`Progress`].
 pub(super) fn rank_with_snapshots(
     scene: &Scene,
-    key: Key,
-    listing: Listing,
-    most: usize,
+    wanted: &Wanted<'_>,
     cancel: &Cancel,
     observe: &(dyn Fn(Progress) + Sync),
     snapshot_rows: usize,
 ) -> Result<Ranking, Cancelled> {
-    let sites = Sites::of(scene);
-    let screen = Screen::new(scene, &sites, key, listing, cancel);
-    let plan = Plan::of(&screen)?;
-    // The list is filled a little beyond `most`, so that grasps found inconclusive leave no hole.
-    let mut tally = Tally::new(most + most / 8 + 8);
-    for (number, batch) in plan.batches().into_iter().enumerate() {
-        tally = plan.run(batch, &screen, tally)?;
-        // Early snapshots change the list most; later ones would cost more than they tell.
-        let due = snapshot_rows > 0 && (number + 1).is_power_of_two();
-        let snapshot = due.then(|| Arc::new(listed(&screen, &tally, snapshot_rows.min(most), false)));
-        observe(Progress { done: tally.examined.min(plan.total()), total: plan.total(), snapshot });
-        if cancel.is_cancelled() {
-            return Err(Cancelled);
-        }
+    let &Wanted { key, listing, most, gap, known } = wanted;
+    let sets = scene.setup().search.budget;
+    let sampled =
+        |most, sets, observe, rows| sample_with_snapshots(scene, key, listing, most, sets, cancel, observe, rows);
+    if listing == Listing::Members {
+        return sampled(most, sets, observe, snapshot_rows);
     }
-    Ok(listed(&screen, &tally, most, plan.is_complete()))
-}
-
-/// Assesses and confirms the first rows.
-fn listed(screen: &Screen, tally: &Tally, most: usize, complete: bool) -> Ranking {
-    let candidates = tally.sorted();
-    let fingers = screen.scene.setup().hand.fingers.get();
-    let read = |candidate: &Candidate| {
-        let sites = &candidate.sites[..fingers];
-        let spots: Vec<_> = sites.iter().map(|&site| screen.sites.spot(screen.scene, site)).collect();
-        let grasp = screen.scene.grasp(&spots).ok()?;
-        let (assessment, doubts) = screen.scene.assess_for_list(&grasp);
-        let family = sites.iter().map(|&site| screen.sites.get(site).stretch as usize).collect();
-        (doubts.is_empty() && assessment.verdict == Verdict::Closed).then_some(Listed { grasp, family, assessment })
+    let spots = |ranking: Ranking| ranking.grasps.into_iter().map(|listed| listed.grasp.spots);
+    let mut begin = known.to_vec();
+    begin.extend(spots(sampled(most, sets.min(FIRST_SETS), &|_| (), 0)?));
+    let budget = (sets / SETS_A_BOX).max(1);
+    let ask = Ask { key, want: most, gap, budget, known: &begin };
+    let tell = |proving: Proving| {
+        let Proving { boxes, budget, gap, .. } = proving;
+        let snapshot =
+            proving.grasps.map(|grasps| Arc::new(Ranking { families: grasps.len(), grasps, ..Ranking::default() }));
+        observe(Progress { done: boxes * SETS_A_BOX, total: budget * SETS_A_BOX, gap, snapshot });
     };
-    let mut ranking = Ranking {
-        sites: screen.sites.len(),
-        examined: tally.examined,
-        closed: tally.closed,
-        below_floors: tally.below_floors,
-        not_held: tally.not_held,
-        inconclusive: 0,
-        complete,
-        families: tally.families(),
-        grasps: Vec::new(),
-    };
-    let mut rest = &candidates[..];
-    while ranking.grasps.len() < most && !rest.is_empty() {
-        let (now, later) = rest.split_at(rest.len().min(most - ranking.grasps.len()));
-        let rows: Vec<Option<Listed>> = now.par_iter().map(read).collect();
-        ranking.inconclusive += rows.iter().filter(|row| row.is_none()).count() as u64;
-        ranking.grasps.extend(rows.into_iter().flatten());
-        rest = later;
+    let more = || Ok(spots(sampled(most, sets, observe, 0)?).collect());
+    let proved = best::prove_or(scene, &ask, cancel, &tell, snapshot_rows.min(most), &more)?;
+    let proof = Proof::of(&proved);
+    if proved.grasps.is_empty() {
+        let told = sampled(1, sets, observe, 0)?;
+        return Ok(Ranking { proof: Some(proof), grasps: Vec::new(), ..told });
     }
-    ranking
+    let rows = proved.grasps.into_iter().map(|row| Listed { bound: Some(row.bound), ..row.listed });
+    let grasps: Vec<Listed> = rows.collect();
+    Ok(Ranking {
+        proof: Some(proof),
+        examined: proved.boxes,
+        closed: grasps.len() as u64,
+        inconclusive: proved.inconclusive,
+        complete: proof.proved || proved.boxes < budget,
+        families: grasps.len(),
+        grasps,
+        ..Ranking::default()
+    })
 }

@@ -18,7 +18,10 @@ pub(super) fn rank(state: &mut State) -> Vec<Effect> {
     }
     // Until the new number is known no ranking on the screen counts as that of the new knobs.
     state.asked = None;
-    vec![Effect::Rank(state.order.request())]
+    // The list at the knobs before is a good beginning: after a small step most of it still stands.
+    let rows = state.shown.as_ref().map_or(&[][..], |shown| &shown.ranking.grasps);
+    let known = rows.iter().map(|row| row.grasp.spots.clone()).collect();
+    vec![Effect::Rank(state.order.request(known))]
 }
 
 /// Takes a changed setup, reads the selected grasp under it at once, and ranks again.

@@ -28,8 +28,9 @@ pub struct Order {
 }
 
 impl Order {
-    pub(super) fn request(&self) -> Request {
-        Request { scene: Arc::clone(&self.scene), key: self.key, listing: self.listing, most: MOST_ROWS }
+    /// The ranking to ask for; `known` are placements to begin with.
+    pub(super) fn request(&self, known: Vec<Vec<Spot>>) -> Request {
+        Request { scene: Arc::clone(&self.scene), key: self.key, listing: self.listing, most: MOST_ROWS, known }
     }
 }
 
@@ -52,10 +53,21 @@ pub struct Shown {
 pub enum Job {
     /// Nothing runs.
     Idle,
-    /// Asked, or running with so many of so many sets looked at.
-    Running(Option<(u64, u64)>),
+    /// Asked, or running and so far.
+    Running(Option<Along>),
     /// It broke; the reason.
     Failed(String),
+}
+
+/// How far a running job is.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct Along {
+    /// Candidate sets looked at.
+    pub done: u64,
+    /// Those that may be looked at.
+    pub total: u64,
+    /// How far the best so far may be from the best there is, as a part of its score, where a proof knows.
+    pub gap: Option<f64>,
 }
 
 /// The grasp the user chose, kept while rankings come and go.

@@ -5,7 +5,7 @@ use super::entry;
 use super::knobs;
 use super::loads;
 use super::marks;
-use super::state::{Entry, EntryKind, Job, Layer, Panel, Question, Reading, State};
+use super::state::{Along, Entry, EntryKind, Job, Layer, Panel, Question, Reading, State};
 use super::tables;
 use crate::file::Keep;
 use crate::search::job::{News, Request, What};
@@ -131,7 +131,7 @@ fn hear(state: &mut State, news: News) {
         return;
     }
     match news.what {
-        What::Progress { done, total } => state.job = Job::Running(Some((done, total))),
+        What::Progress { done, total, gap } => state.job = Job::Running(Some(Along { done, total, gap })),
         What::Snapshot(ranking) => state.show(ranking, news.generation),
         What::Done(ranking) => {
             state.job = Job::Idle;

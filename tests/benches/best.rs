@@ -12,7 +12,7 @@ mod common;
 
 use common::Dice;
 use holdwright::hand::FingerCount;
-use holdwright::search::{Ask, Cancel, Key, Listing, Proved, Scene, Setup, prove, rank};
+use holdwright::search::{Ask, Cancel, Key, Listing, Proved, Scene, Setup, prove, sample};
 use std::sync::Arc;
 use std::time::Instant;
 
@@ -61,7 +61,7 @@ fn run(edges: usize, pins: usize, rounds: usize) {
         let (again, time) = proved(&scene, Key::Quality, 1);
         assert_eq!(first, again);
         let start = Instant::now();
-        let sampled = rank(&scene, Key::Quality, Listing::Families, 1, &Cancel::default(), &|_| {}).unwrap();
+        let sampled = sample(&scene, Key::Quality, Listing::Families, 1, &Cancel::default(), &|_| {}).unwrap();
         let per_set = start.elapsed().as_secs_f64() / sampled.examined as f64;
         times.push(time);
         ratios.push(per_set * count / time);

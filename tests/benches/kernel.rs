@@ -12,7 +12,7 @@ use common::Dice;
 use holdwright::mechanics::program::{self, Solved};
 use holdwright::mechanics::{Contact, Frame, MARGINAL, Wrenches, quality};
 use holdwright::part::Part;
-use holdwright::search::{Cancel, Key, Listing, Ranking, Scene, Setup, rank};
+use holdwright::search::{Cancel, Key, Listing, Ranking, Scene, Setup, sample};
 use std::hint::black_box;
 use std::sync::Arc;
 use std::time::Instant;
@@ -159,7 +159,7 @@ fn peak_mb() -> Option<f64> {
 }
 
 fn ranked(scene: &Scene) -> Ranking {
-    rank(scene, Key::Quality, Listing::Families, 20, &Cancel::default(), &|_| {}).unwrap()
+    sample(scene, Key::Quality, Listing::Families, 20, &Cancel::default(), &|_| {}).unwrap()
 }
 
 /// A scene of a random polygon on which some spacing gives so many sites, or nearly.

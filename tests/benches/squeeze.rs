@@ -15,7 +15,7 @@ use holdwright::mechanics::spatial::{Hold, Pyramid, Wrench};
 use holdwright::mechanics::squeeze::{Answer, Squeezer};
 use holdwright::mechanics::{Contact, LoadCase, Wrenches};
 use holdwright::part::{Part, PartDescription};
-use holdwright::search::{Cancel, Key, Listing, Ranking, Scene, Setup, rank};
+use holdwright::search::{Cancel, Key, Listing, Ranking, Scene, Setup, sample};
 use std::hint::black_box;
 use std::sync::Arc;
 use std::time::Instant;
@@ -155,7 +155,7 @@ fn list(loads: Vec<LoadCase>, tip: Tip) -> (f64, Ranking) {
     setup.loads = loads;
     let scene = Scene::new(Arc::new(plate()), setup).unwrap();
     let start = Instant::now();
-    let ranking = rank(&scene, Key::Quality, Listing::Families, 500, &Cancel::default(), &|_| ()).unwrap();
+    let ranking = sample(&scene, Key::Quality, Listing::Families, 500, &Cancel::default(), &|_| ()).unwrap();
     (start.elapsed().as_secs_f64() * 1e3, ranking)
 }
 

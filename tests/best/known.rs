@@ -139,7 +139,7 @@ fn never_below_the_sampler() {
             });
             for key in [Key::Quality, Key::QualityPerFinger, Key::Friction, Key::Placement] {
                 let gap = 0.02;
-                let sampled = rank(&scene, key, Listing::Families, 10_000, &Cancel::default(), &|_| ()).unwrap();
+                let sampled = sample(&scene, key, Listing::Families, 10_000, &Cancel::default(), &|_| ()).unwrap();
                 let known: Vec<Vec<Spot>> = sampled.grasps.iter().take(3).map(|row| row.grasp.spots.clone()).collect();
                 let ask = Ask { key, want: 6, gap, budget: 40_000, known: &known };
                 let found = prove(&scene, &ask, &Cancel::default(), &|_| ()).unwrap();

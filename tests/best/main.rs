@@ -11,7 +11,9 @@ use common::{Dice, assert_close, scene};
 use holdwright::hand::{Closing, Stretch, Tip};
 use holdwright::mechanics::{Assessment, Holding, LoadCase, MARGINAL, Verdict, quality};
 use holdwright::part::{ArcDescription, KeepOutDescription, PartDescription};
-use holdwright::search::{Ask, Cancel, Cancelled, Key, Listing, Proved, Scene, Setup, Spot, TorqueScale, prove, rank};
+use holdwright::search::{
+    Ask, Cancel, Cancelled, Key, Listing, Proved, Scene, Setup, Spot, TorqueScale, prove, sample,
+};
 use std::f64::consts::TAU;
 
 fn proved(scene: &Scene, key: Key, want: usize, gap: f64, budget: u64) -> Proved {

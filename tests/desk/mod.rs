@@ -6,7 +6,7 @@ use holdwright::file::Keep;
 use holdwright::mechanics::LoadCase;
 use holdwright::part::{KeepOutDescription, Part, PartDescription};
 use holdwright::search::job::{News, Request, What};
-use holdwright::search::{Cancel, Ranking, SearchSettings, Setup, Spot, rank};
+use holdwright::search::{Cancel, Ranking, SearchSettings, Setup, Spot, USUAL_GAP, Wanted, rank};
 use holdwright::workbench::{ColorChoice, Effect, Input, Key, Options, State, update, view};
 use ratatui::Terminal;
 use ratatui::backend::TestBackend;
@@ -174,7 +174,9 @@ impl Desk {
 }
 
 pub fn ranked(request: &Request) -> Ranking {
-    rank(&request.scene, request.key, request.listing, request.most, &Cancel::default(), &|_| {}).unwrap()
+    let Request { scene, key, listing, most, known } = request;
+    let wanted = Wanted { key: *key, listing: *listing, most: *most, gap: USUAL_GAP, known };
+    rank(scene, &wanted, &Cancel::default(), &|_| {}).unwrap()
 }
 
 pub fn named_key(name: &str) -> Option<Key> {

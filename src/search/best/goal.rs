@@ -47,7 +47,9 @@ impl Goal {
 
     /// The gap between a merit and a bound on it.
     pub(super) fn gap_between(&self, merit: f64, bound: f64) -> f64 {
-        let over = bound - merit;
+        // Nothing is better than no friction and no squeeze.
+        let most = if self.key.more_is_better() { f64::INFINITY } else { 0.0 };
+        let over = bound.min(most) - merit;
         // Rounding alone is no gap.
         if over <= 2.0 * HAIR * self.unit() { 0.0 } else { over / merit.abs().max(self.small) }
     }
@@ -75,9 +77,9 @@ impl Goal {
     pub(super) fn told(&self, merit: f64) -> f64 {
         match self.key {
             Key::Quality | Key::QualityPerFinger | Key::Placement => merit,
-            // Adding 0 turns -0 into 0.
-            Key::Friction => -merit * self.friction_unit + 0.0,
-            Key::Squeeze => -merit + 0.0,
+            // No bound says less than nothing, though rounding may.
+            Key::Friction => (-merit * self.friction_unit).max(0.0),
+            Key::Squeeze => (-merit).max(0.0),
         }
     }
 

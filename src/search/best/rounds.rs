@@ -1,16 +1,17 @@
 //! The rounds of a search: which families are looked at when, against which level, and what is known of them in the end.
 
 use super::super::families::Family;
-use super::super::order::Key;
+use super::super::order::{Key, friction_quanta, quanta};
 use super::super::rank::{Cancel, Cancelled, Listed};
 use super::super::scene::Spot;
 use super::cover::{Cover, Screened};
-use super::gauge::Bound;
+use super::gauge::{Bound, Spots};
 use super::plot::{Lead, Plot, State};
 use super::{Proved, ProvedGrasp, Proving, Setting, improve, start};
 use crate::hand::Closing;
 use crate::mechanics::Verdict;
 use rayon::prelude::*;
+use std::cmp::Reverse;
 use std::collections::BTreeMap;
 
 /// Families of one round: few at first, when the list still changes, more later.
@@ -19,6 +20,8 @@ const ROUND: [usize; 2] = [16, 512];
 const BOXES_A_ROUND: u64 = 128;
 /// Families screened by directions for each box of the budget.
 const SCREENED_A_BOX: u64 = 1000;
+/// Progress is told so many times before a list goes with it: a short search needs none.
+const FIRST_SNAPSHOT: u32 = 4;
 /// Beginnings screened between two looks at the budget and at the wish to stop.
 const BEGINNINGS: usize = 16;
 
@@ -28,6 +31,10 @@ pub(super) struct Search<'a> {
     want: usize,
     budget: u64,
     cancel: &'a Cancel,
+    /// Rows of a list that is told on the way.
+    snapshot_rows: usize,
+    /// Times progress was told.
+    told: u32,
     /// The best found of each family that may come into the list.
     leads: BTreeMap<Family, Lead>,
     /// Families looked at once that may hold better, with their bounds.
@@ -44,12 +51,20 @@ pub(super) struct Search<'a> {
 }
 
 impl<'a> Search<'a> {
-    pub(super) fn new(setting: &'a Setting<'a>, want: usize, budget: u64, cancel: &'a Cancel) -> Self {
+    pub(super) fn new(
+        setting: &'a Setting<'a>,
+        want: usize,
+        budget: u64,
+        cancel: &'a Cancel,
+        snapshot_rows: usize,
+    ) -> Self {
         Self {
             setting,
             want,
             budget,
             cancel,
+            snapshot_rows,
+            told: 0,
             leads: BTreeMap::new(),
             waiting: Vec::new(),
             open: Vec::new(),
@@ -79,12 +94,7 @@ impl<'a> Search<'a> {
 
     /// Good placements to begin with, so that most families never have to be opened.
     pub(super) fn start(&mut self, known: &[Vec<Spot>]) -> Result<(), Cancelled> {
-        for spots in known {
-            self.stop()?;
-            for (family, lead) in start::known(self.setting, spots) {
-                self.offer(family, lead);
-            }
-        }
+        self.know(known)?;
         if self.setting.scene.setup().hand.closing == Closing::Free {
             for (family, lead) in start::leads(self.setting, self.want, self.cancel)? {
                 self.offer(family, lead);
@@ -92,6 +102,23 @@ impl<'a> Search<'a> {
             self.forget();
         }
         Ok(())
+    }
+
+    /// Takes placements from elsewhere, as far as they are grasps here.
+    pub(super) fn know(&mut self, known: &[Vec<Spot>]) -> Result<(), Cancelled> {
+        for spots in known {
+            self.stop()?;
+            for (family, lead) in start::known(self.setting, spots) {
+                self.offer(family, lead);
+            }
+        }
+        self.forget();
+        Ok(())
+    }
+
+    /// True when the budget ended before all was settled.
+    pub(super) fn is_spent(&self) -> bool {
+        !self.open.is_empty() || !self.waiting.is_empty() || self.boxes >= self.budget
     }
 
     /// Looks once at every family that its directions do not exclude.
@@ -122,7 +149,7 @@ impl<'a> Search<'a> {
             self.families += screened.iter().map(|own| own.seen).sum::<u64>();
             let kept: Vec<Family> = screened.into_iter().flat_map(|own| own.kept).collect();
             self.look_at(&kept, level)?;
-            observe(self.progress());
+            observe(self.progress()?);
             if stopped || self.boxes >= self.budget {
                 if group.last() != beginnings.last() || stopped {
                     self.dropped = self.dropped.max(self.any());
@@ -183,7 +210,7 @@ impl<'a> Search<'a> {
         self.waiting.sort_by(|a, b| a.0.merit.total_cmp(&b.0.merit).then_with(|| b.1.cmp(&a.1)));
         let mut size = ROUND[0];
         while self.round(size)? {
-            observe(self.progress());
+            observe(self.progress()?);
             size = (2 * size).min(ROUND[1]);
         }
         Ok(())
@@ -267,18 +294,44 @@ impl<'a> Search<'a> {
         });
     }
 
-    fn progress(&self) -> Proving {
+    fn progress(&mut self) -> Result<Proving, Cancelled> {
         let best = self.merits().first().copied();
         let waiting = self.waiting.iter().map(|(bound, _)| bound.merit);
         let open = self.open.iter().map(State::bound);
         let bound = waiting.chain(open).chain(self.settled.values().copied()).chain(best).fold(self.dropped, f64::max);
         let told = |merit| self.setting.goal.told(merit);
-        Proving {
-            boxes: self.boxes,
-            budget: self.budget,
-            best: best.map(told),
-            bound: bound.is_finite().then(|| told(bound)),
-        }
+        let gap = best.map(|best| self.setting.goal.gap_between(best, bound)).filter(|gap| gap.is_finite());
+        let (best, bound) = (best.map(told), bound.is_finite().then(|| told(bound)));
+        self.told += 1;
+        let due = self.snapshot_rows > 0 && self.told >= FIRST_SNAPSHOT && self.told.is_power_of_two();
+        let grasps = if due { Some(self.list_so_far()?) } else { None };
+        Ok(Proving { boxes: self.boxes, budget: self.budget, best, bound, gap, grasps })
+    }
+
+    /// The list, best first; of families that are equal on the key those with the larger placement tolerance and room.
+    fn in_order(&self) -> Vec<(Family, Lead)> {
+        let comforts = |(family, lead): (&Family, &Lead)| {
+            let plot = Plot::new(self.setting, family);
+            let spots = plot.spots(&lead.at);
+            let (placement_mm, room_mm) = plot.gauge.comfort(&spots[..plot.gauge.k]);
+            ((self.setting.goal.quanta(lead.merit), quanta(placement_mm), quanta(room_mm)), *family, *lead)
+        };
+        let mut list: Vec<_> = self.leads.iter().map(comforts).collect();
+        list.sort_by(|a, b| b.0.cmp(&a.0).then_with(|| a.1.cmp(&b.1)));
+        list.truncate(self.want);
+        list.into_iter().map(|(_, family, lead)| (family, lead)).collect()
+    }
+
+    /// The best so far, confirmed.
+    fn list_so_far(&self) -> Result<Vec<Listed>, Cancelled> {
+        let mut list = self.in_order();
+        list.truncate(self.snapshot_rows);
+        let (setting, cancel) = (self.setting, self.cancel);
+        let row = |(family, lead): &(Family, Lead)| {
+            (!cancel.is_cancelled()).then(|| listed(setting, &Plot::new(setting, family), &lead.at))
+        };
+        let rows: Option<Vec<Option<Listed>>> = list.par_iter().map(row).collect();
+        Ok(rows.ok_or(Cancelled)?.into_iter().flatten().collect())
     }
 
     /// The list, moved to the middles of plateaus and confirmed, and what is proved of it.
@@ -286,9 +339,7 @@ impl<'a> Search<'a> {
         let mut bounds = std::mem::take(&mut self.settled);
         bounds.extend(self.open.drain(..).map(|state| (state.family, state.bound())));
         bounds.extend(self.waiting.drain(..).map(|(bound, family)| (family, bound.merit)));
-        let mut list: Vec<(Family, Lead)> = std::mem::take(&mut self.leads).into_iter().collect();
-        list.sort_by(|a, b| b.1.merit.total_cmp(&a.1.merit).then_with(|| a.0.cmp(&b.0)));
-        list.truncate(self.want);
+        let list = self.in_order();
         let full = list.len() == self.want;
         // A family without a bound of its own is among those dropped.
         let own = |(family, lead): (Family, Lead)| {
@@ -318,7 +369,13 @@ impl<'a> Search<'a> {
 
     fn proved(&self, mut rows: Vec<Row>, rest: f64, full: bool, inconclusive: u64) -> Proved {
         let goal = &self.setting.goal;
-        rows.sort_by_key(|row| std::cmp::Reverse(goal.quanta(row.merit)));
+        // The tie-breaks of every list of grasps.
+        rows.sort_by_cached_key(|row| {
+            let a = &row.listed.assessment;
+            let room_mm = row.listed.grasp.rooms_mm.iter().copied().fold(f64::INFINITY, f64::min);
+            let friction = friction_quanta(a.friction_needed.unwrap_or(0.0));
+            (Reverse(goal.quanta(row.merit)), friction, Reverse(quanta(a.placement.mm)), Reverse(quanta(room_mm)))
+        });
         let best_bound = rows.iter().map(|row| row.bound).fold(rest, f64::max);
         let own = rows.iter().map(|row| goal.gap_between(row.merit, row.bound));
         let first = rows.first().map(|row| goal.gap_between(row.merit, best_bound));
@@ -360,12 +417,18 @@ struct Row {
 fn row(setting: &Setting<'_>, family: &Family, lead: Lead, bound: f64) -> Option<Row> {
     let mut plot = Plot::new(setting, family);
     let lead = improve::to_the_middle(&mut plot, lead);
-    let at = plot.spots(&lead.at);
+    let listed = listed(setting, &plot, &lead.at)?;
+    Some(Row { listed, merit: lead.merit, bound: bound.max(lead.merit) })
+}
+
+/// The grasp of a placement; nothing when its two ways of scoring disagree.
+fn listed(setting: &Setting<'_>, plot: &Plot<'_>, at: &Spots) -> Option<Listed> {
+    let at = plot.spots(at);
     let rails = &plot.gauge.rails[..plot.gauge.k];
     let spots: Vec<Spot> = rails.iter().zip(at).map(|(rail, along_mm)| Spot { edge: rail.edge(), along_mm }).collect();
     let grasp = setting.scene.grasp(&spots).ok()?;
     let (assessment, doubts) = setting.scene.assess_for_list(&grasp);
     let sure = doubts.is_empty() && assessment.verdict == Verdict::Closed;
     let family = rails.iter().map(|rail| rail.stretch).collect();
-    sure.then(|| Row { listed: Listed { grasp, family, assessment }, merit: lead.merit, bound: bound.max(lead.merit) })
+    sure.then_some(Listed { grasp, family, assessment, bound: None })
 }

@@ -1,7 +1,7 @@
 //! Header, message line and footer.
 
 use super::super::action;
-use super::super::state::{Job, State};
+use super::super::state::{Along, Job, State};
 use super::super::tables;
 use super::{number, put, shifted};
 use crate::file::shown;
@@ -80,7 +80,8 @@ pub(super) fn cut(text: &str, most: usize) -> String {
 fn job(state: &State) -> String {
     match &state.job {
         Job::Idle => String::new(),
-        Job::Running(Some((done, total))) if *total > 0 => {
+        Job::Running(Some(Along { gap: Some(gap), .. })) => format!("proving, gap {}", number::percent(*gap)),
+        Job::Running(Some(Along { done, total, .. })) if *total > 0 => {
             format!("ranking {} %", (*done).min(*total) as u128 * 100 / u128::from(*total))
         }
         Job::Running(_) => "ranking".to_owned(),

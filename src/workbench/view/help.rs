@@ -7,7 +7,7 @@ use crate::file::CAUTION;
 use ratatui::text::{Line, Span};
 
 /// What each number means.
-const NUMBERS: [(&str, &str); 13] = [
+const NUMBERS: [(&str, &str); 14] = [
     ("mu", "friction coefficient of the finger tips on the part, as entered; every score uses it"),
     ("closed", "every push and turn in the part plane can be balanced by pressing hard enough; open: one cannot"),
     (
@@ -37,6 +37,10 @@ const NUMBERS: [(&str, &str); 13] = [
     (
         "^",
         "no row is better on one of quality, margin, place and, with loads, squeeze and load, and as good on the others",
+    ),
+    (
+        "within, GAP",
+        "no placement anywhere on the outline beats its row by more than this part of the score; GAP: not proved to 1 %",
     ),
     (
         "edges",

@@ -44,6 +44,20 @@ pub(super) fn mu(value: f64) -> String {
     if decimals < 2 { format!("{value:.2}") } else { text.to_owned() }
 }
 
+/// A part of a score in percent: two figures, never rounded down, so that no bound is told tighter than it is.
+pub(super) fn percent(part: f64) -> String {
+    let percent = 100.0 * part;
+    if percent > 99.0 {
+        "over 99 %".to_owned()
+    } else if percent >= 9.95 {
+        format!("{:.0} %", percent.ceil())
+    } else if percent >= 0.005 {
+        format!("{:.1} %", (percent * 10.0 - 1e-3).ceil() / 10.0)
+    } else {
+        "0 %".to_owned()
+    }
+}
+
 /// Length in mm: about three figures.
 pub(super) fn mm(value: f64) -> String {
     let size = value.abs();

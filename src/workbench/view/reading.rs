@@ -6,7 +6,7 @@ use crate::mechanics::assess::Assessment;
 use crate::mechanics::escape::{Escape, Sense};
 use crate::mechanics::placement::Governor;
 use crate::mechanics::{Verdict, Weakest};
-use crate::search::{Spot, Standing};
+use crate::search::{Key, Spot, Standing};
 use ratatui::style::Style;
 use ratatui::text::{Line, Span};
 
@@ -38,6 +38,7 @@ pub(super) fn lines(state: &State, width: u16, full: bool) -> Vec<Line<'static>>
         page.placement(&reading.assessment);
     }
     page.contacts(reading);
+    page.proof();
     if closed {
         if let Some(weakest) = &reading.assessment.weakest {
             page.weakest(weakest);
@@ -248,6 +249,23 @@ impl Page<'_> {
             ),
         };
         self.tell("placement", &format!("{} mm", number::mm(placement.mm)), self.state.look.title(), &governs);
+    }
+
+    /// What the proof says of the selected row and of the whole outline, on the key the list is sorted by.
+    fn proof(&mut self) {
+        let Some(shown) = self.state.shown.as_ref().filter(|_| !self.state.is_old()) else { return };
+        let bound = self.state.row().and_then(|row| row.bound);
+        let (Some(family), Some(all)) = (bound, shown.ranking.proof.and_then(|proof| proof.best_bound)) else { return };
+        let word = shown.order.key.word().replace('_', " ");
+        let told = |value: f64| match shown.order.key {
+            Key::Quality | Key::QualityPerFinger => number::quality(value),
+            Key::Placement => format!("{} mm", number::mm(value)),
+            Key::Friction => number::mu(value),
+            Key::Squeeze => format!("{} N", number::mm(value)),
+        };
+        let limit = if shown.order.key.more_is_better() { "at most" } else { "at least" };
+        let meaning = format!("is the {word} anywhere on these edges; {} on the whole outline", told(all));
+        self.tell("proved", &format!("{limit} {}", told(family)), self.state.look.title(), &meaning);
     }
 
     fn weakest(&mut self, weakest: &Weakest) {

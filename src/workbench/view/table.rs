@@ -1,6 +1,6 @@
 //! The ranked table, and what is said when it is empty.
 
-use super::super::state::{Job, Shown, State};
+use super::super::state::{Job, MOST_ROWS, Shown, State};
 use super::{bars, number, put, titled, wrapped};
 use crate::hand::{Closing, Drive, Hand, Tip};
 use crate::mechanics::{Assessment, Holding};
@@ -40,10 +40,14 @@ fn title(state: &State) -> (String, String) {
         return (format!("OLD: mu {mu}, {fingers}"), shown.order.key.word().replace('_', " "));
     }
     let ranking = &shown.ranking;
-    let sample = match (&state.job, ranking.complete) {
-        (Job::Running(_), _) => "so far",
-        (_, false) => "sample",
-        _ => "",
+    let sample = match (&state.job, &ranking.proof) {
+        (Job::Running(_), _) => "so far".to_owned(),
+        (_, Some(proof)) if ranking.grasps.is_empty() && proof.proved => "proved".to_owned(),
+        (_, Some(proof)) if proof.proved => format!("within {}", number::percent(proof.gap)),
+        (_, Some(proof)) if proof.gap.is_finite() => format!("GAP {}", number::percent(proof.gap)),
+        (_, Some(_)) => "GAP OPEN".to_owned(),
+        (_, None) if !ranking.complete => "sample".to_owned(),
+        _ => String::new(),
     };
     let doubtful = match ranking.inconclusive {
         0 => String::new(),
@@ -57,7 +61,10 @@ fn title(state: &State) -> (String, String) {
     };
     let right = format!("{hidden}{doubtful}{sample}").trim().to_owned();
     let title = match shown.order.listing {
-        Listing::Families => number::count(ranking.families as u64, "family", "families"),
+        Listing::Families => match ranking.families as u64 {
+            count if count as usize >= MOST_ROWS => format!("best {count} families"),
+            count => number::count(count, "family", "families"),
+        },
         Listing::Members => {
             number::count(ranking.closed.saturating_sub(ranking.below_floors), "closed grasp", "closed grasps")
         }
