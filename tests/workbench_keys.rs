@@ -157,7 +157,7 @@ fn the_old_list_stays_and_says_it_is_old_until_the_new_one_comes() {
     // Quality never falls when mu rises (a larger cone holds the smaller one); the reading follows at once.
     assert!(desk.state.reading.as_ref().unwrap().assessment.quality >= quality);
     assert!(desk.screen(80, 24).contains("OLD: mu 0.20"));
-    desk.news(desk.generation, What::Progress { done: 30, total: 120 });
+    desk.news(desk.generation, What::Progress { done: 30, total: 120, gap: None });
     assert!(desk.screen(80, 24).contains("ranking 25 %"));
     // News of the request before this one changes nothing.
     desk.news(desk.generation - 1, What::Done(Arc::new(Ranking::default())));

@@ -41,7 +41,23 @@ impl JawRun {
         let share = if length > 0.0 { (u_mm / length).clamp(0.0, 1.0) } else { 0.0 };
         [0, 1].map(|finger| self.from_mm[finger] * (1.0 - share) + self.to_mm[finger] * share)
     }
+
+    /// The distance along the run at which the contacts stand at these positions on the two edges; nothing where they
+    /// stand so nowhere on it.
+    pub fn u_mm(&self, along_mm: [f64; 2]) -> Option<f64> {
+        let way = |finger: usize| self.to_mm[finger] - self.from_mm[finger];
+        // The finger that moves farther tells it best.
+        let finger = usize::from(way(1).abs() > way(0).abs());
+        let u_mm = ((along_mm[finger] - self.from_mm[finger]) * way(finger).signum()).clamp(0.0, self.length_mm());
+        let there = self.along_mm(u_mm);
+        let near =
+            |finger: usize| (there[finger] - along_mm[finger]).abs() <= ON_RUN_MM * (1.0 + along_mm[finger].abs());
+        (near(0) && near(1)).then_some(u_mm)
+    }
 }
+
+/// How far a position may be off a run and still be on it: it may have gone through a file in decimal.
+const ON_RUN_MM: f64 = 1e-6;
 
 /// All placements of parallel jaws on stretches of a part, in order of the stretches. As with the stretches themselves, a
 /// single placement left over where two ends just meet is none, but one that the edges leave no other choice for is.

@@ -92,8 +92,8 @@ impl Family {
     }
 }
 
-/// Calls `visit` with every family that starts with the two given stretches and has at least one candidate set.
-/// Stops when `visit` returns false.
+/// Calls `visit` with every family that starts with the two given stretches, has every finger that is kept and at least one
+/// candidate set. Stops when `visit` returns false.
 pub(super) fn beginning_with(
     first: [u32; 2],
     fingers: usize,
@@ -102,6 +102,10 @@ pub(super) fn beginning_with(
 ) -> bool {
     let mut stretches = [0; FingerCount::MOST];
     stretches[..2].copy_from_slice(&first);
+    let has_kept = |(finger, on): (usize, &u32)| finger >= sites.kept() || *on == finger as u32;
+    if !first.iter().enumerate().all(has_kept) {
+        return true;
+    }
     extend(&mut stretches, 2, fingers, sites, visit)
 }
 
@@ -116,7 +120,13 @@ fn extend(
         let family = Family::new(&stretches[..fingers]);
         return family.count(sites) == 0 || visit(&family);
     }
-    for next in stretches[have - 1]..sites.group_count() as u32 {
+    // Fingers that are kept come first, each on a place of its own.
+    let next = if have < sites.kept() {
+        have as u32..have as u32 + 1
+    } else {
+        stretches[have - 1]..sites.group_count() as u32
+    };
+    for next in next {
         stretches[have] = next;
         if !extend(stretches, have + 1, fingers, sites, visit) {
             return false;

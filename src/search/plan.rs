@@ -56,12 +56,14 @@ impl Plan {
         if screen.sites.are_paired() {
             return Ok(jaws(screen, budget));
         }
-        let sets = choose(screen.sites.len() as u128, fingers as u128);
+        let kept = screen.sites.kept();
+        let free = (fingers - kept) as u128;
+        let sets = choose((screen.sites.len() - kept) as u128, free);
         if sets <= u128::from(budget) {
             return Ok(Self { parcels: everything(screen, fingers), total: sets as u64, complete: true });
         }
-        let stretches = screen.sites.group_count() as u128;
-        let families = choose(stretches + fingers as u128 - 1, fingers as u128);
+        let stretches = (screen.sites.group_count() - kept) as u128;
+        let families = choose((stretches + free).saturating_sub(1), free);
         let parcels = if families <= u128::from(budget.min(MOST_FAMILIES)) {
             strata(screen, fingers, budget)?
         } else {
@@ -154,7 +156,7 @@ fn jaws(screen: &Screen, budget: u64) -> Plan {
     Plan { total: parcels.iter().map(|parcel| parcel.sets).sum(), parcels, complete }
 }
 
-/// All sets, cut by the first two stretches and, where those alone are too much, by sites of the first finger.
+/// All sets with every finger that is kept, cut by the first two stretches and, where those alone are too much, by sites of the first finger.
 fn everything(screen: &Screen, fingers: usize) -> Vec<Parcel> {
     let sites = screen.sites;
     let stretches = sites.group_count();
@@ -239,16 +241,20 @@ fn draw(
     tally: &mut Tally,
 ) -> Result<(), Cancelled> {
     let fingers = screen.scene.setup().hand.fingers.get();
-    let sites = screen.sites.len() as f64;
+    // Fingers that are kept come first, and so do their sites.
+    let kept = screen.sites.kept();
+    let sites = (screen.sites.len() - kept) as f64;
     for stratum in strata {
         let mut set = SiteSet::default();
         // Fingers that stand too near to one another are drawn again, a few times: the budget is for sets that can be.
         for _ in 0..TRIES {
             set = SiteSet::default();
-            set[0] = ((stratum as f64 + unit(random)) / of as f64 * sites).min(sites - 1.0) as u32;
-            let mut have = 1;
+            set[..kept].iter_mut().zip(0..).for_each(|(site, number)| *site = number);
+            let even = (stratum as f64 + unit(random)) / of as f64 * sites;
+            set[kept] = kept as u32 + even.min(sites - 1.0) as u32;
+            let mut have = kept + 1;
             while have < fingers {
-                let site = (unit(random) * sites) as u32;
+                let site = kept as u32 + (unit(random) * sites) as u32;
                 if !set[..have].contains(&site) {
                     set[have] = site;
                     have += 1;

@@ -32,7 +32,7 @@ pub enum Listing {
 pub struct Listed {
     /// Where the fingers stand.
     pub grasp: Grasp,
-    /// The stretches they stand on (indices into [`Scene::stretches`], ascending): the family.
+    /// The stretches they stand on (indices into [`Scene::places`], ascending): the family.
     pub family: Vec<usize>,
     /// Every score.
     pub assessment: Assessment,

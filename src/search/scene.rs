@@ -72,13 +72,24 @@ impl Grasp {
 /// Sites a ranking takes: with more, memory would run out before patience.
 const MOST_SITES: f64 = 2e6;
 
-/// One part under one setup.
+/// Where a finger of a ranking may be: a stretch, or the one position of a finger that stays.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct Place {
+    /// The positions a ranking may take.
+    pub span: Stretch,
+    /// The stretch they lie on: its ends are what room is counted to.
+    pub whole: Stretch,
+}
+
+/// One part under one setup, perhaps with some fingers that stay where they are.
 #[derive(Debug, Clone)]
 pub struct Scene {
     part: Arc<Part>,
     setup: Setup,
     frame: Frame,
     stretches: Vec<Stretch>,
+    kept: Vec<Spot>,
+    places: Vec<Place>,
     jaw_runs: Vec<JawRun>,
     cases: Vec<Case>,
     pyramid: Pyramid,
@@ -92,11 +103,21 @@ impl Scene {
     /// # Errors
     /// A setup the part does not allow ([`Setup::faults_with`]), or one with more sites than a ranking takes.
     pub fn new(part: Arc<Part>, setup: Setup) -> Result<Self, SetupFault> {
+        Self::keeping(part, setup, &[])
+    }
+
+    /// The same, with fingers that every grasp of a ranking keeps where they are.
+    ///
+    /// # Errors
+    /// As [`Scene::new`], and a finger that does not fit where it is to stay, more of them than there are fingers, any with
+    /// parallel jaws.
+    pub fn keeping(part: Arc<Part>, setup: Setup, kept: &[Spot]) -> Result<Self, SetupFault> {
         if let Some(fault) = setup.faults_with(&part).into_iter().next() {
             return Err(fault);
         }
         let frame = Frame { about: part.com(), scale_mm: setup.search.torque_scale.mm(&part) };
         let stretches = hand::stretches(&part, &setup.hand);
+        let places = places(&stretches, kept, &setup)?;
         let spacing_mm = setup.search.spacing_for(&part);
         let jaw_runs = match setup.hand.closing {
             Closing::Free => Vec::new(),
@@ -131,7 +152,7 @@ impl Scene {
         let pyramid = Pyramid::new(setup.search.cone_sides).filter(|_| in_space).unwrap_or_else(Pyramid::planar);
         let bite_mm = if in_space { setup.hand.bite_for(part.thickness_mm()) } else { 0.0 };
         let half_height = bite_mm / 2.0 / frame.scale_mm;
-        Ok(Self { part, setup, frame, stretches, jaw_runs, cases, pyramid, half_height })
+        Ok(Self { part, setup, frame, stretches, kept: kept.to_vec(), places, jaw_runs, cases, pyramid, half_height })
     }
 
     /// The part.
@@ -152,6 +173,16 @@ impl Scene {
     /// Where fingers fit, in order of edge and position.
     pub fn stretches(&self) -> &[Stretch] {
         &self.stretches
+    }
+
+    /// Fingers that every grasp of a ranking keeps.
+    pub fn kept(&self) -> &[Spot] {
+        &self.kept
+    }
+
+    /// Where the fingers of a ranking may be: first the fingers that are kept, then the stretches.
+    pub fn places(&self) -> &[Place] {
+        &self.places
     }
 
     /// With parallel closing: every placement of the two jaws, as one-parameter sets.
@@ -318,6 +349,30 @@ impl Scene {
         let wrenches = assess::scaled_to(&self.wrenches(grasp), self.setup.friction.mu, mu);
         Standing { mu, verdict: Assessment::verdict_at(&wrenches), holding: self.holding(grasp, &wrenches) }
     }
+}
+
+/// The places of a ranking.
+fn places(stretches: &[Stretch], kept: &[Spot], setup: &Setup) -> Result<Vec<Place>, SetupFault> {
+    let fault =
+        |value: String, mend: &str| SetupFault { key: "locked fingers".to_owned(), value, mend: mend.to_owned() };
+    if !kept.is_empty() && setup.hand.closing == Closing::Parallel {
+        return Err(fault(kept.len().to_string(), "parallel jaws stand on one line: unlock them"));
+    }
+    if kept.len() > setup.hand.fingers.get() {
+        let value = format!("{} of {}", kept.len(), setup.hand.fingers.get());
+        return Err(fault(value, "unlock one or take more fingers"));
+    }
+    let mut places = Vec::with_capacity(kept.len() + stretches.len());
+    for spot in kept {
+        let Some(&whole) = hand::stretch_around(stretches, spot.edge, spot.along_mm) else {
+            let value = format!("{}:{}@{:.2}", spot.edge.ring, spot.edge.edge, spot.along_mm);
+            return Err(fault(value, "no finger of this hand fits there: unlock it"));
+        };
+        let along_mm = spot.along_mm.clamp(whole.from_mm, whole.to_mm);
+        places.push(Place { span: Stretch { from_mm: along_mm, to_mm: along_mm, ..whole }, whole });
+    }
+    places.extend(stretches.iter().map(|&whole| Place { span: whole, whole }));
+    Ok(places)
 }
 
 /// How a grasp stands at some friction.

@@ -76,7 +76,7 @@ impl<'a> Screen<'a> {
     fn load_check(&self, family: &Family) -> Option<LoadCheck<'a>> {
         let on = |&stretch: &u32| {
             let first = self.sites.get(self.sites.on(stretch as usize).start as u32);
-            (self.scene.stretches()[first.stretch as usize].edge, first.lever.spread > 0.0)
+            (self.scene.places()[first.stretch as usize].span.edge, first.lever.spread > 0.0)
         };
         let limit = self.scene.limit_on(family.stretches().iter().map(on));
         LoadCheck::new(self.scene, limit.map_or(f64::INFINITY, |limit| limit.squeeze_n))

@@ -1,7 +1,7 @@
 //! Sites: the positions on the stretches that candidate sets are made of.
 
 use super::scene::{Scene, Spot};
-use crate::hand::Closing;
+use crate::hand::{Closing, Stretch};
 use crate::mechanics::Lever;
 use nalgebra::Point2;
 use std::ops::Range;
@@ -9,7 +9,7 @@ use std::ops::Range;
 /// One position a finger may take, with all that scoring needs of it.
 #[derive(Debug, Clone, Copy)]
 pub(super) struct Site {
-    /// Index into [`Scene::stretches`].
+    /// Index into [`Scene::places`].
     pub stretch: u32,
     /// Distance along the edge, mm.
     pub along_mm: f64,
@@ -31,13 +31,14 @@ pub(super) struct Site {
 
 /// All sites, group after group.
 ///
-/// Fingers that close freely have one group for each stretch, and any site of one goes with any of another. Parallel
+/// Fingers that close freely have one group for each place, those that are kept first, and any site of one goes with any of another. Parallel
 /// jaws have two groups for each run of theirs, 2 r and 2 r + 1, and the n-th site of the one goes with the n-th of the other.
 pub(super) struct Sites {
     all: Vec<Site>,
     /// First site of each group, and the total at the end.
     starts: Vec<usize>,
     paired: bool,
+    kept: usize,
 }
 
 /// Number of [`positions`] on a length, as a float: it may be beyond any integer.
@@ -60,11 +61,15 @@ pub(super) fn positions(from_mm: f64, to_mm: f64, spacing_mm: f64) -> impl Itera
 impl Sites {
     pub(super) fn of(scene: &Scene) -> Self {
         let spacing_mm = scene.setup().search.spacing_for(scene.part());
-        let mut sites = Self { all: Vec::new(), starts: Vec::new(), paired: false };
+        let mut sites = Self { all: Vec::new(), starts: Vec::new(), paired: false, kept: scene.kept().len() };
         match scene.setup().hand.closing {
             Closing::Free => {
-                for (number, stretch) in scene.stretches().iter().enumerate() {
-                    sites.add(scene, number, positions(stretch.from_mm, stretch.to_mm, spacing_mm));
+                for (number, place) in scene.places().iter().enumerate() {
+                    let Stretch { from_mm, to_mm, .. } = place.span;
+                    // A finger that is kept has one site.
+                    let kept = number < scene.kept().len();
+                    let most = if kept { 1 } else { usize::MAX };
+                    sites.add(scene, number, positions(from_mm, to_mm, spacing_mm).take(most));
                 }
             }
             Closing::Parallel => {
@@ -84,15 +89,15 @@ impl Sites {
     /// Adds a group on a stretch.
     fn add(&mut self, scene: &Scene, number: usize, along: impl Iterator<Item = f64>) {
         self.starts.push(self.all.len());
-        let stretch = &scene.stretches()[number];
-        let Some(edge) = scene.part().outline().edge(stretch.edge) else { return };
+        let place = &scene.places()[number];
+        let Some(edge) = scene.part().outline().edge(place.span.edge) else { return };
         for along_mm in along {
             let contact = scene.contact(edge, along_mm);
             let (mu, lever) = (contact.mu, Lever::of(&contact, scene.frame()));
             self.all.push(Site {
                 stretch: number as u32,
                 along_mm,
-                room_mm: stretch.room_mm(along_mm).max(0.0),
+                room_mm: place.whole.room_mm(along_mm).max(0.0),
                 mu,
                 curvature: edge.curvature(),
                 lever,
@@ -106,6 +111,11 @@ impl Sites {
     /// True when sites go together in pairs, as those of parallel jaws do.
     pub(super) fn are_paired(&self) -> bool {
         self.paired
+    }
+
+    /// Fingers that are kept: so many groups at the beginning have one site each, and every candidate set has them.
+    pub(super) fn kept(&self) -> usize {
+        self.kept
     }
 
     pub(super) fn len(&self) -> usize {
@@ -132,6 +142,6 @@ impl Sites {
 
     pub(super) fn spot(&self, scene: &Scene, site: u32) -> Spot {
         let site = self.get(site);
-        Spot { edge: scene.stretches()[site.stretch as usize].edge, along_mm: site.along_mm }
+        Spot { edge: scene.places()[site.stretch as usize].span.edge, along_mm: site.along_mm }
     }
 }

@@ -79,6 +79,12 @@ pub enum Scope {
     Materials,
     /// The list of load cases.
     Loads,
+    /// The list of floors.
+    Floors,
+    /// A grasp changed by hand.
+    Hand,
+    /// Grasps beside each other.
+    Compare,
     /// A line of text being typed.
     Entry,
     /// Unsaved marks at the end.
@@ -101,6 +107,9 @@ impl Scope {
             Some(Layer::Pairs { .. }) => Self::Pairs,
             Some(Layer::Materials { .. }) => Self::Materials,
             Some(Layer::Loads { .. }) => Self::Loads,
+            Some(Layer::Floors { .. }) => Self::Floors,
+            Some(Layer::Hand) => Self::Hand,
+            Some(Layer::Compare { .. }) => Self::Compare,
             Some(Layer::Entry(_)) => Self::Entry,
             Some(Layer::Ask(Question::Quit)) => Self::AskQuit,
             Some(Layer::Ask(Question::Reload)) => Self::AskReload,
@@ -182,6 +191,42 @@ pub enum Action {
     OpenMaterials,
     /// The list of load cases.
     OpenLoads,
+    /// The list of floors.
+    OpenFloors,
+    /// Take the grasp in hand.
+    ByHand,
+    /// The picked finger forward along the outline.
+    Forward,
+    /// The picked finger back along the outline.
+    Back,
+    /// The picked finger to the middle of the next edge.
+    NextEdge,
+    /// The picked finger to the middle of the edge before.
+    EdgeBefore,
+    /// Longer steps.
+    StepLonger,
+    /// Shorter steps.
+    StepShorter,
+    /// One finger more, by hand.
+    AddFinger,
+    /// The picked finger away.
+    TakeFinger,
+    /// The picked finger stays, or may move again.
+    Lock,
+    /// The best grasp that small steps lead to.
+    BestFromHere,
+    /// The step before.
+    Undo,
+    /// The step undone.
+    Redo,
+    /// Set the grasp beside others.
+    Beside,
+    /// Compare what stands beside each other.
+    OpenCompare,
+    /// List only what no other row beats.
+    OnlyUnbeaten,
+    /// List only grasps on an edge.
+    OnEdge,
     /// A larger load.
     Larger,
     /// A smaller load.
@@ -303,6 +348,19 @@ pub static TABLE: &[Row] = &[
     row(A::LimitDown, S::Bench, &[C('U')], "limit-", "force limit down a step", always),
     row(A::SortNext, S::Bench, &[C('o')], "order", "sort by the next key", always),
     row(A::Listing, S::Bench, &[C('v')], "members", "list families' best grasps, or every grasp", always),
+    row(
+        A::ByHand,
+        S::Bench,
+        &[C('b')],
+        "by hand",
+        "change the grasp by hand: move, add, take away, lock fingers",
+        any_reading,
+    ),
+    row(A::Beside, S::Bench, &[C('x')], "beside", "set the grasp beside others, or take it away from there", any_row),
+    row(A::OpenCompare, S::Bench, &[C('X')], "compare", "compare the grasps set beside each other", always),
+    row(A::OnlyUnbeaten, S::Bench, &[C('^')], "", "list only rows that no other beats, or all", always),
+    row(A::OnEdge, S::Bench, &[C('/')], "edge", "list only grasps with a finger on an edge; empty lists all", always),
+    row(A::OpenFloors, S::Bench, &[C('_')], "floors", "list the floors a grasp must reach: change them", always),
     row(A::Cones, S::Bench, &[C('c')], "cones", "friction cones on the outline", always),
     row(A::Name, S::Bench, &[C('n')], "name", "mark the grasp and name it", any_row),
     row(A::Note, S::Bench, &[C('w')], "why", "mark the grasp and note why", any_row),
@@ -379,6 +437,70 @@ pub static TABLE: &[Row] = &[
     row(A::Close, S::Loads, &[Key::Esc, C('q'), C('L')], "close", "", always),
     row(A::Down, S::Loads, &[C('j'), Key::Down], "down", "", any_load),
     row(A::Up, S::Loads, &[C('k'), Key::Up], "up", "", any_load),
+    row(A::Larger, S::Floors, &[C('+'), C('l'), Key::Right], "higher", "", always),
+    row(A::Smaller, S::Floors, &[C('-'), C('h'), Key::Left], "lower", "", always),
+    row(A::Accept, S::Floors, &[Key::Enter], "type it", "", always),
+    row(A::TakeOut, S::Floors, &[C('x')], "take off", "", always),
+    row(A::Close, S::Floors, &[Key::Esc, C('q'), C('_')], "close", "", always),
+    row(A::Down, S::Floors, &[C('j'), Key::Down], "down", "", always),
+    row(A::Up, S::Floors, &[C('k'), Key::Up], "up", "", always),
+    row(
+        A::Forward,
+        S::Hand,
+        &[C('l'), Key::Right, C('+')],
+        "move",
+        "the picked finger forward along the outline",
+        always,
+    ),
+    row(A::Back, S::Hand, &[C('h'), Key::Left, C('-')], "back", "the picked finger back along the outline", always),
+    row(A::Down, S::Hand, &[C('j'), Key::Down], "finger", "pick the next finger", always),
+    row(A::Up, S::Hand, &[C('k'), Key::Up], "", "pick the finger before", always),
+    row(A::Undo, S::Hand, &[C('u')], "undo", "undo the last step", always),
+    row(
+        A::BestFromHere,
+        S::Hand,
+        &[C('b')],
+        "best near",
+        "the best grasp that small steps of the free fingers lead to",
+        always,
+    ),
+    row(A::NextEdge, S::Hand, &[C('e')], "edge+", "the picked finger to the middle of the next edge", always),
+    row(A::EdgeBefore, S::Hand, &[C('E')], "", "the picked finger to the middle of the edge before", always),
+    row(
+        A::Lock,
+        S::Hand,
+        &[C('L')],
+        "lock",
+        "lock the picked finger, or free it; the list then keeps the locked ones",
+        always,
+    ),
+    row(A::AddFinger, S::Hand, &[C('a')], "add", "one finger more, where it helps most", always),
+    row(A::TakeFinger, S::Hand, &[C('d'), Key::Delete], "take away", "the picked finger away", always),
+    row(A::Mark, S::Hand, &[C('m'), C(' ')], "mark", "", any_reading),
+    row(A::OpenCompare, S::Hand, &[C('X')], "compare", "", always),
+    row(A::Save, S::Hand, &[C('s')], "save", "", any_unsaved),
+    row(A::Close, S::Hand, &[Key::Esc, C('q')], "put down", "put the grasp down; it stays in hand for later", always),
+    row(A::StepShorter, S::Hand, &[C('.')], "finer", "shorter steps", always),
+    row(A::StepLonger, S::Hand, &[C(',')], "wider", "longer steps", always),
+    row(A::Redo, S::Hand, &[C('r'), Ctrl('r')], "redo", "do the undone step again", always),
+    row(A::Beside, S::Hand, &[C('x')], "beside", "", any_reading),
+    row(A::Name, S::Hand, &[C('n')], "name", "", any_reading),
+    row(A::Note, S::Hand, &[C('w')], "why", "", any_reading),
+    row(A::OpenReading, S::Hand, &[Key::Enter], "read", "", any_reading),
+    row(A::MuUp, S::Hand, &[C('>')], "mu+", "", always),
+    row(A::MuDown, S::Hand, &[C('<')], "mu-", "", always),
+    row(A::Cones, S::Hand, &[C('c')], "cones", "", always),
+    row(A::Help, S::Hand, &[C('?')], "help", "", always),
+    row(A::Close, S::Compare, &[Key::Esc, C('q'), C('X'), Key::Enter], "close", "", always),
+    row(A::Down, S::Compare, &[C('j'), Key::Down], "down", "", always),
+    row(A::Up, S::Compare, &[C('k'), Key::Up], "up", "", always),
+    row(A::PageDown, S::Compare, &[C(' '), C('J'), Key::PageDown], "page", "", always),
+    row(A::PageUp, S::Compare, &[C('K'), Key::PageUp], "", "", always),
+    row(A::First, S::Compare, &[C('g'), Key::Home], "", "", always),
+    row(A::Last, S::Compare, &[C('G'), Key::End], "", "", always),
+    row(A::MuUp, S::Compare, &[C('l'), Key::Right, C('+')], "mu+", "", always),
+    row(A::MuDown, S::Compare, &[C('h'), Key::Left, C('-')], "mu-", "", always),
+    row(A::TakeOut, S::Compare, &[C('x')], "empty", "", always),
     row(A::Accept, S::Entry, &[Key::Enter], "take", "", always),
     row(A::Close, S::Entry, &[Key::Esc], "leave", "", always),
     row(A::Backspace, S::Entry, &[Key::Backspace, Ctrl('h')], "", "", always),

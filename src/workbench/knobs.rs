@@ -1,5 +1,6 @@
 //! The knobs: each takes a changed setup, reads the selected grasp under it at once and asks for a new ranking.
 
+use super::by_hand;
 use super::loads;
 use super::look::Marker;
 use super::state::{Job, State};
@@ -37,10 +38,39 @@ pub(super) fn turn(state: &mut State, change: impl FnOnce(&mut Setup)) -> Result
     if let Some(fault) = setup.faults().first() {
         return Err(fault.to_string());
     }
-    let scene = Scene::new(Arc::clone(state.order.scene.part()), setup).map_err(|fault| fault.to_string())?;
+    let scene = &state.order.scene;
+    let scene = Scene::keeping(Arc::clone(scene.part()), setup, scene.kept()).map_err(|fault| fault.to_string())?;
+    Ok(take_scene(state, scene))
+}
+
+/// Takes another scene, reads the grasps at hand under it and ranks again.
+fn take_scene(state: &mut State, scene: Scene) -> Vec<Effect> {
     state.order.scene = Arc::new(scene);
+    by_hand::read_began(state);
     state.read();
-    Ok(rank(state))
+    rank(state)
+}
+
+/// Ranks what keeps the fingers that are locked by hand. Where more are locked than there are fingers, as many are taken.
+///
+/// # Errors
+/// Why they cannot be kept; everything stays as it was.
+pub(super) fn keep_fingers(state: &mut State) -> Result<Vec<Effect>, String> {
+    let (kept, count) = state.hand.as_ref().map_or((Vec::new(), 0), |hand| (hand.now.kept(), hand.now.spots.len()));
+    let scene = &state.order.scene;
+    let mut setup = scene.setup().clone();
+    if let Some(fingers) = FingerCount::new(count).filter(|_| kept.len() > setup.hand.fingers.get()) {
+        setup.hand.fingers = fingers;
+    }
+    let scene = Scene::keeping(Arc::clone(scene.part()), setup, &kept).map_err(|fault| fault.to_string())?;
+    let told = match kept.len() {
+        0 => "no finger is locked; the list is free again".to_owned(),
+        1 => "1 finger locked; the list keeps it".to_owned(),
+        count => format!("{count} fingers locked; the list keeps them"),
+    };
+    let effects = take_scene(state, scene);
+    state.message = Some(told);
+    Ok(effects)
 }
 
 /// Takes another part in place of the present one, of the same outline, puts the loads it lacks something for aside, brings
@@ -50,10 +80,8 @@ pub(super) fn turn(state: &mut State, change: impl FnOnce(&mut Setup)) -> Result
 /// What is wrong with the setup for this part; everything stays as it was.
 pub(super) fn take_part(state: &mut State, part: Arc<Part>) -> Result<Vec<Effect>, String> {
     let setup = Setup { loads: loads::in_force(&state.loads, &part), ..state.setup().clone() };
-    let scene = Scene::new(part, setup).map_err(|fault| fault.to_string())?;
-    state.order.scene = Arc::new(scene);
-    state.read();
-    Ok(rank(state))
+    let scene = Scene::keeping(part, setup, state.order.scene.kept()).map_err(|fault| fault.to_string())?;
+    Ok(take_scene(state, scene))
 }
 
 fn turn_or_say(state: &mut State, change: impl FnOnce(&mut Setup)) -> Vec<Effect> {

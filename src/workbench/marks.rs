@@ -9,7 +9,13 @@ use crate::search::Spot;
 
 /// Marks the selected grasp, or takes its mark away.
 pub(super) fn toggle(state: &mut State) {
-    let Some(spots) = state.row().map(|row| row.grasp.spots.clone()) else { return };
+    if let Some(spots) = state.row().map(|row| row.grasp.spots.clone()) {
+        toggle_at(state, &spots);
+    }
+}
+
+/// The same for the grasp that is read, at these places.
+pub(super) fn toggle_at(state: &mut State, spots: &[Spot]) {
     if let Some(at) = state.marks.iter().position(|mark| mark.keep.grasp.spots == spots) {
         lift(state, at);
     } else if let Some(back) = state.lifted.take_if(|lifted| lifted.keep.grasp.spots == spots) {

@@ -4,7 +4,10 @@
 //! alone; `run` owns the threads, the terminal and the files. All keys stand in one table ([`action::TABLE`]).
 
 pub mod action;
+pub mod by_hand;
+pub mod compare;
 mod entry;
+pub mod floors;
 mod guard;
 mod knobs;
 pub mod loads;

@@ -1,15 +1,16 @@
 //! What the workbench knows: the scene, the ranking shown, the selection, the marks and the open layers. No I/O.
 
+use super::by_hand::{self, ByHand};
 use super::loads::{self, LoadRow};
 use super::look::{ColorChoice, Look, Marker};
 use crate::file::Keep;
-use crate::hand::{FingerCount, Stretch, Tip};
+use crate::hand::{FingerCount, Tip};
 use crate::mechanics::assess::Doubt;
 use crate::mechanics::{Assessment, Condition, FrictionBand, Holding};
-use crate::part::Part;
 use crate::part::material::Density;
+use crate::part::{EdgeId, Part};
 use crate::search::job::Request;
-use crate::search::{Grasp, Key, Listed, Listing, Ranking, Scene, Setup, Spot, Standing};
+use crate::search::{Grasp, Key, Listed, Listing, Place, Ranking, Scene, Setup, Spot, Standing};
 use std::path::PathBuf;
 use std::sync::Arc;
 
@@ -46,6 +47,23 @@ pub struct Shown {
     /// For each row: no other row is better on one of quality, friction margin, placement, load margin and squeeze and as
     /// good on the rest.
     pub unbeaten: Vec<bool>,
+}
+
+/// What of a ranking is listed.
+#[derive(Debug, Clone, Copy, PartialEq, Default)]
+pub struct Filter {
+    /// Only rows that no other beats.
+    pub unbeaten: bool,
+    /// Only rows with a finger on this edge.
+    pub edge: Option<EdgeId>,
+}
+
+impl Filter {
+    /// Whether it lists a row.
+    fn lists(&self, shown: &Shown, row: usize) -> bool {
+        let on = |edge| shown.ranking.grasps[row].grasp.spots.iter().any(|spot| spot.edge == edge);
+        (!self.unbeaten || shown.unbeaten[row]) && self.edge.is_none_or(on)
+    }
 }
 
 /// How the running job does.
@@ -108,6 +126,15 @@ impl Reading {
     }
 }
 
+/// A grasp set beside others.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Beside {
+    /// What it is called there.
+    pub name: String,
+    /// Where its fingers stand.
+    pub spots: Vec<Spot>,
+}
+
 /// A grasp the user wants to keep.
 #[derive(Debug, Clone)]
 pub struct Mark {
@@ -140,6 +167,13 @@ pub enum EntryKind {
         /// Row of the list of loads.
         row: usize,
     },
+    /// A floor.
+    Floor {
+        /// Row of the list of floors.
+        row: usize,
+    },
+    /// The edge that grasps are looked for by.
+    Edge,
 }
 
 /// A line of text being typed.
@@ -217,6 +251,18 @@ pub enum Layer {
         /// Selected row.
         at: usize,
     },
+    /// The list of floors.
+    Floors {
+        /// Selected row.
+        at: usize,
+    },
+    /// A grasp changed by hand; the bench stays in sight.
+    Hand,
+    /// Grasps beside each other, scrolled.
+    Compare {
+        /// First line shown.
+        top: usize,
+    },
     /// A line of text being typed.
     Entry(Entry),
     /// A question.
@@ -254,11 +300,17 @@ pub struct State {
     pub asked: Option<u64>,
     /// How that job does.
     pub job: Job,
-    /// Selected row.
+    /// Selected row, counted in the ranking.
     pub selected: usize,
+    /// Which rows are listed.
+    pub filter: Filter,
     pub(super) anchor: Option<Anchor>,
     /// The selected grasp under the present knobs.
     pub reading: Option<Reading>,
+    /// The grasp changed by hand, kept when it is put down.
+    pub hand: Option<ByHand>,
+    /// Grasps set beside each other.
+    pub beside: Vec<Beside>,
     /// Marks, in the order they were made.
     pub marks: Vec<Mark>,
     pub(super) next_mark: u64,
@@ -305,8 +357,11 @@ impl State {
             asked: None,
             job: Job::Idle,
             selected: 0,
+            filter: Filter::default(),
             anchor: None,
             reading: None,
+            hand: None,
+            beside: Vec::new(),
             marks: Vec::new(),
             next_mark: 1,
             layers: Vec::new(),
@@ -336,14 +391,28 @@ impl State {
         self.order.scene.setup()
     }
 
-    /// Rows of the list.
-    pub fn rows(&self) -> usize {
-        self.shown.as_ref().map_or(0, |shown| shown.ranking.grasps.len())
+    /// The rows that are listed, as numbers in the ranking.
+    pub fn listed(&self) -> Vec<usize> {
+        let Some(shown) = &self.shown else { return Vec::new() };
+        (0..shown.ranking.grasps.len()).filter(|&row| self.filter.lists(shown, row)).collect()
     }
 
-    /// The selected row.
+    /// Rows of the list.
+    pub fn rows(&self) -> usize {
+        self.listed().len()
+    }
+
+    /// The selected row; nothing when it is not listed.
     pub fn row(&self) -> Option<&Listed> {
-        self.shown.as_ref()?.ranking.grasps.get(self.selected)
+        let shown = self.shown.as_ref()?;
+        let row = shown.ranking.grasps.get(self.selected)?;
+        self.filter.lists(shown, self.selected).then_some(row)
+    }
+
+    /// Where the fingers of the grasp stand that is read: the one in hand, else the selected one.
+    pub fn spots(&self) -> Option<Vec<Spot>> {
+        let in_hand = self.hand.as_ref().filter(|_| by_hand::in_hand(self)).map(|hand| hand.now.spots.clone());
+        in_hand.or_else(|| self.row().map(|row| row.grasp.spots.clone()))
     }
 
     /// True when the list on the screen belongs to other knobs than those that stand now.
@@ -365,7 +434,7 @@ impl State {
     /// comes open.
     pub(super) fn read(&mut self) {
         let last = || self.reading.as_ref().map(|reading| reading.grasp.spots.clone());
-        let spots = self.row().map(|row| row.grasp.spots.clone()).or_else(last);
+        let spots = self.spots().or_else(last);
         self.reading = spots.and_then(|spots| Reading::of(&self.order.scene, &spots));
     }
 
@@ -380,29 +449,51 @@ impl State {
             Some(anchor) => {
                 let same = rows.iter().position(|row| row.grasp.spots == anchor.spots);
                 let family = || {
-                    let family = family_of(&anchor.spots, self.order.scene.stretches())?;
+                    let family = family_of(&anchor.spots, self.order.scene.places())?;
                     rows.iter().position(|row| row.family == family)
                 };
                 same.or_else(family).unwrap_or(self.selected.min(rows.len().saturating_sub(1)))
             }
         };
         self.shown = Some(shown);
+        self.stay_listed();
         self.read();
+    }
+
+    /// Moves the selection to the nearest listed row where its own is not listed.
+    pub(super) fn stay_listed(&mut self) {
+        let listed = self.listed();
+        if !listed.is_empty() && !listed.contains(&self.selected) {
+            let next = listed.partition_point(|row| *row < self.selected).min(listed.len() - 1);
+            self.selected = listed[next];
+        }
+    }
+
+    /// Selects the row so many listed rows farther down for the user.
+    pub(super) fn step(&mut self, by: isize) {
+        let listed = self.listed();
+        let Some(last) = listed.len().checked_sub(1) else { return };
+        let at = listed.partition_point(|row| *row < self.selected);
+        self.select(listed[at.saturating_add_signed(by).min(last)]);
     }
 
     /// Selects a row for the user, who expects to stay on that grasp.
     pub(super) fn select(&mut self, row: usize) {
-        self.selected = row.min(self.rows().saturating_sub(1));
+        let rows = self.shown.as_ref().map_or(0, |shown| shown.ranking.grasps.len());
+        self.selected = row.min(rows.saturating_sub(1));
         self.anchor = self.row().map(|row| Anchor { spots: row.grasp.spots.clone() });
         self.read();
     }
 }
 
-/// The family spots belong to among the stretches of a scene, ascending.
-fn family_of(spots: &[Spot], stretches: &[Stretch]) -> Option<Vec<usize>> {
+/// The family spots belong to among the places of a scene, ascending: fingers that are kept on places of their own.
+fn family_of(spots: &[Spot], places: &[Place]) -> Option<Vec<usize>> {
     let on = |spot: &Spot| {
-        let near = |s: &Stretch| s.edge == spot.edge && s.room_mm(spot.along_mm) >= -1e-6 * (1.0 + s.to_mm);
-        stretches.iter().position(near)
+        let near = |place: &Place| {
+            let span = place.span;
+            span.edge == spot.edge && span.room_mm(spot.along_mm) >= -1e-6 * (1.0 + span.to_mm)
+        };
+        places.iter().position(near)
     };
     let mut family = spots.iter().map(on).collect::<Option<Vec<usize>>>()?;
     family.sort_unstable();

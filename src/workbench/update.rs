@@ -1,13 +1,17 @@
 //! What each input does to the state. Pure: what must be done outside comes back as effects.
 
 use super::action::{self, Action, Key};
+use super::by_hand;
+use super::compare;
 use super::entry;
+use super::floors;
 use super::knobs;
 use super::loads;
 use super::marks;
-use super::state::{Along, Entry, EntryKind, Job, Layer, Panel, Question, Reading, State};
+use super::state::{Along, Entry, EntryKind, Filter, Job, Layer, Panel, Question, Reading, State};
 use super::tables;
 use crate::file::Keep;
+use crate::part::EdgeId;
 use crate::search::job::{News, Request, What};
 
 /// Something that reaches the workbench.
@@ -178,21 +182,35 @@ fn act(state: &mut State, action: Action) -> Vec<Effect> {
         Some(Layer::Marks { .. }) => marks::act(state, action),
         Some(Layer::Pairs { .. } | Layer::Materials { .. }) => tables::act(state, action),
         Some(Layer::Loads { .. }) => loads::act(state, action),
+        Some(Layer::Floors { .. }) => floors::act(state, action),
+        Some(Layer::Hand) => by_hand::act(state, action),
+        Some(Layer::Compare { .. }) => match action {
+            Action::MuUp => knobs::step_mu(state, 100.0, 1.0),
+            Action::MuDown => knobs::step_mu(state, 100.0, -1.0),
+            Action::TakeOut => {
+                state.beside.clear();
+                state.layers.pop();
+                Vec::new()
+            }
+            _ => {
+                page(state, action);
+                Vec::new()
+            }
+        },
         Some(Layer::Entry(_)) => typing(state, action),
         Some(&Layer::Ask(question)) => answer(state, question, action),
     }
 }
 
 fn bench(state: &mut State, action: Action) -> Vec<Effect> {
-    let last = state.rows().saturating_sub(1);
-    let page = usize::from(state.size.1 / 2).max(1);
+    let page = isize::try_from(state.size.1 / 2).unwrap_or(1).max(1);
     match action {
-        Action::Down => state.select((state.selected + 1).min(last)),
-        Action::Up => state.select(state.selected.saturating_sub(1)),
-        Action::PageDown => state.select((state.selected + page).min(last)),
-        Action::PageUp => state.select(state.selected.saturating_sub(page)),
-        Action::First => state.select(0),
-        Action::Last => state.select(last),
+        Action::Down => state.step(1),
+        Action::Up => state.step(-1),
+        Action::PageDown => state.step(page),
+        Action::PageUp => state.step(-page),
+        Action::First => state.step(isize::MIN),
+        Action::Last => state.step(isize::MAX),
         Action::MuUp => return knobs::step_mu(state, 100.0, 1.0),
         Action::MuDown => return knobs::step_mu(state, 100.0, -1.0),
         Action::MuUpCoarse => return knobs::step_mu(state, 20.0, 1.0),
@@ -208,6 +226,15 @@ fn bench(state: &mut State, action: Action) -> Vec<Effect> {
         Action::SpacingWider => return knobs::step_spacing(state, 1.25),
         Action::SortNext => return knobs::next_key(state),
         Action::Listing => return knobs::other_listing(state),
+        Action::ByHand => by_hand::open(state),
+        Action::Beside => compare::toggle(state),
+        Action::OpenCompare => compare::open(state),
+        Action::OpenFloors => state.layers.push(Layer::Floors { at: 0 }),
+        Action::OnlyUnbeaten => {
+            state.filter.unbeaten = !state.filter.unbeaten;
+            list_again(state);
+        }
+        Action::OnEdge => open_entry(state, EntryKind::Edge),
         Action::Cones => state.cones = !state.cones,
         Action::Marker => knobs::next_marker(state),
         Action::CellShape => knobs::next_cell_shape(state),
@@ -236,9 +263,50 @@ fn bench(state: &mut State, action: Action) -> Vec<Effect> {
     Vec::new()
 }
 
+/// After another filter: the selection goes to a listed row.
+fn list_again(state: &mut State) {
+    state.stay_listed();
+    state.select(state.selected);
+    let Filter { unbeaten, edge } = state.filter;
+    let on = edge.map(|edge| format!("with a finger on edge {}:{}", edge.ring, edge.edge));
+    let what = match (unbeaten, on) {
+        (true, Some(on)) => format!("rows that no other beats, {on}"),
+        (true, None) => "rows that no other beats".to_owned(),
+        (false, Some(on)) => format!("rows {on}"),
+        (false, None) => "all rows".to_owned(),
+    };
+    state.message = Some(format!("{}: {what}", state.rows()));
+}
+
+/// Takes the edge to look for: a number of the outer ring, or ring:edge; nothing lists all.
+fn look_for_edge(state: &mut State, text: &str) -> Result<Vec<Effect>, String> {
+    let edge = if text.is_empty() {
+        None
+    } else {
+        let (ring, edge) = text.split_once(':').unwrap_or(("0", text));
+        let number = |word: &str| word.trim().parse::<usize>().ok();
+        let id = number(ring).zip(number(edge)).map(|(ring, edge)| EdgeId { ring, edge });
+        let id = id.ok_or("give an edge, for example 3, or 1:0 for edge 0 of the first hole")?;
+        let outline = state.order.scene.part().outline();
+        Some(id).filter(|id| outline.edge(*id).is_some()).ok_or_else(|| {
+            let sizes: Vec<String> = outline
+                .ring_sizes()
+                .iter()
+                .enumerate()
+                .map(|(ring, n)| format!("{ring}:0 to {ring}:{}", n - 1))
+                .collect();
+            format!("there is no such edge; there are {}", sizes.join(", "))
+        })?;
+        Some(id)
+    };
+    state.filter.edge = edge;
+    list_again(state);
+    Ok(Vec::new())
+}
+
 fn page(state: &mut State, action: Action) {
     let step = usize::from(state.size.1).saturating_sub(4).max(1);
-    if let Some(Layer::Help { top } | Layer::Reading { top } | Layer::Fault { top, .. }) = state.layers.last_mut() {
+    if let Some(top) = state.layers.last_mut().and_then(scrolled) {
         match action {
             Action::Down => *top = top.saturating_add(1),
             Action::Up => *top = top.saturating_sub(1),
@@ -255,8 +323,16 @@ fn page(state: &mut State, action: Action) {
     }
     // A page is never scrolled past its end, so that the way back starts at once.
     let most = super::view::last_top(state);
-    if let Some(Layer::Help { top } | Layer::Reading { top } | Layer::Fault { top, .. }) = state.layers.last_mut() {
+    if let Some(top) = state.layers.last_mut().and_then(scrolled) {
         *top = (*top).min(most);
+    }
+}
+
+/// The first line shown of a page that is scrolled.
+fn scrolled(layer: &mut Layer) -> Option<&mut usize> {
+    match layer {
+        Layer::Help { top } | Layer::Reading { top } | Layer::Fault { top, .. } | Layer::Compare { top } => Some(top),
+        _ => None,
     }
 }
 
@@ -278,20 +354,23 @@ fn typing(state: &mut State, action: Action) -> Vec<Effect> {
 fn accept(state: &mut State) -> Vec<Effect> {
     let Some(Layer::Entry(entry)) = state.layers.last().cloned() else { return Vec::new() };
     match entry.kind {
-        EntryKind::Mu | EntryKind::Limit | EntryKind::Size { .. } | EntryKind::Safety { .. } => {
-            match take_number(state, entry.kind, entry.text.trim()) {
-                Ok(effects) => {
-                    state.layers.pop();
-                    effects
-                }
-                Err(fault) => {
-                    if let Some(Layer::Entry(entry)) = state.layers.last_mut() {
-                        entry.fault = Some(fault);
-                    }
-                    Vec::new()
-                }
+        EntryKind::Mu
+        | EntryKind::Limit
+        | EntryKind::Size { .. }
+        | EntryKind::Safety { .. }
+        | EntryKind::Floor { .. }
+        | EntryKind::Edge => match take_number(state, entry.kind, entry.text.trim()) {
+            Ok(effects) => {
+                state.layers.pop();
+                effects
             }
-        }
+            Err(fault) => {
+                if let Some(Layer::Entry(entry)) = state.layers.last_mut() {
+                    entry.fault = Some(fault);
+                }
+                Vec::new()
+            }
+        },
         EntryKind::Name | EntryKind::Note => {
             state.layers.pop();
             if state.mark_on(&entry.spots).is_none()
@@ -314,6 +393,9 @@ fn accept(state: &mut State) -> Vec<Effect> {
 
 /// Takes a number that was typed.
 fn take_number(state: &mut State, kind: EntryKind, text: &str) -> Result<Vec<Effect>, String> {
+    if kind == EntryKind::Edge {
+        return look_for_edge(state, text);
+    }
     if kind == EntryKind::Limit && text == NO_LIMIT {
         return knobs::turn(state, |setup| setup.hand.force_limit_n = None);
     }
@@ -328,7 +410,8 @@ fn take_number(state: &mut State, kind: EntryKind, text: &str) -> Result<Vec<Eff
         EntryKind::Limit => knobs::turn(state, |setup| setup.hand.force_limit_n = Some(number)),
         EntryKind::Size { row } => loads::resize(state, row, number),
         EntryKind::Safety { row } => loads::set_safety(state, row, number),
-        EntryKind::Name | EntryKind::Note => Ok(Vec::new()),
+        EntryKind::Floor { row } => floors::set(state, row, number),
+        EntryKind::Name | EntryKind::Note | EntryKind::Edge => Ok(Vec::new()),
     }
 }
 
@@ -336,17 +419,18 @@ fn take_number(state: &mut State, kind: EntryKind, text: &str) -> Result<Vec<Eff
 const NO_LIMIT: &str = "none";
 
 pub(super) fn open_entry(state: &mut State, kind: EntryKind) {
-    let spots = match kind {
-        EntryKind::Mu | EntryKind::Limit | EntryKind::Size { .. } | EntryKind::Safety { .. } => Vec::new(),
-        EntryKind::Name | EntryKind::Note => match state.row() {
-            Some(row) => row.grasp.spots.clone(),
+    let mark = match kind {
+        EntryKind::Name | EntryKind::Note => match state.spots() {
+            Some(spots) => Some(spots),
             None => return,
         },
+        _ => None,
     };
+    let spots = mark.unwrap_or_default();
     let text = match kind {
-        EntryKind::Mu | EntryKind::Limit | EntryKind::Size { .. } | EntryKind::Safety { .. } => String::new(),
         EntryKind::Name => state.mark_on(&spots).map(|mark| mark.keep.name.clone()).unwrap_or_default(),
         EntryKind::Note => state.mark_on(&spots).map(|mark| mark.keep.note.clone()).unwrap_or_default(),
+        _ => String::new(),
     };
     let suggested = kind == EntryKind::Name && text == marks::suggested_name(&spots);
     let fresh = Entry { kind, at: text.chars().count(), text, suggested, fault: None, spots };

@@ -1,5 +1,6 @@
 //! What lies on top of the bench: a line being typed, questions, the list of marks, faults.
 
+use super::super::floors;
 use super::super::loads;
 use super::super::state::{Entry, EntryKind, Question, State};
 use super::{bars, number, put, shifted, split_rows, table, titled, wrapped};
@@ -31,6 +32,8 @@ pub(super) fn entry(state: &State, area: Rect, entry: &Entry, buf: &mut Buffer) 
         EntryKind::Limit => "force limit, N per finger".to_owned(),
         EntryKind::Size { row } => format!("size of {}", case_name(state, row)),
         EntryKind::Safety { row } => format!("safety factor on {}", case_name(state, row)),
+        EntryKind::Floor { row } => format!("floor: {}", floors::ROWS.get(row).map_or("", |own| own.meaning)),
+        EntryKind::Edge => "edge to list grasps by; nothing lists all".to_owned(),
     };
     let mut inside = titled(state, strip, &title, "", buf);
     if let Some(fault) = &entry.fault {
@@ -64,6 +67,11 @@ fn case_name(state: &State, row: usize) -> String {
 fn now(state: &State, kind: EntryKind) -> Option<String> {
     let value = match kind {
         EntryKind::Name | EntryKind::Note => return None,
+        EntryKind::Floor { row } => number::given(floors::value(state, row)),
+        EntryKind::Edge => match state.filter.edge {
+            Some(edge) => format!("{}:{}", edge.ring, edge.edge),
+            None => "all; 3 is edge 3 of the outer ring, 1:0 edge 0 of the first hole".to_owned(),
+        },
         EntryKind::Mu => number::mu(state.setup().friction.mu),
         EntryKind::Limit => match state.setup().hand.force_limit_n {
             Some(limit) => format!("{} N; none takes it away", number::given(limit)),

@@ -9,7 +9,10 @@
 //! ```
 
 mod bars;
+mod by_hand;
+mod compare;
 mod dialog;
+mod floors;
 mod help;
 mod holding;
 mod loads;
@@ -64,9 +67,15 @@ pub fn render(state: &State, area: Rect, buf: &mut Buffer) -> Option<Position> {
         Some(Layer::Pairs { at, condition }) => tables::pairs(state, area, *at, *condition, buf),
         Some(Layer::Materials { at }) => tables::materials(state, area, *at, buf),
         Some(Layer::Loads { at }) => loads::list(state, area, *at, buf),
+        Some(Layer::Floors { at }) => floors::list(state, area, *at, buf),
+        Some(Layer::Hand) => bench(state, &layout, buf),
+        Some(Layer::Compare { top }) => {
+            page(state, area, "beside each other", &compare::lines(state, area.width), *top, buf);
+        }
         top @ (None | Some(Layer::Entry(_) | Layer::Ask(_))) => {
             match state.layers.iter().rev().nth(1) {
                 Some(Layer::Loads { at }) => loads::list(state, area, *at, buf),
+                Some(Layer::Floors { at }) => floors::list(state, area, *at, buf),
                 _ => bench(state, &layout, buf),
             }
             return match top {
@@ -89,6 +98,7 @@ pub(super) fn last_top(state: &State) -> usize {
         Some(Layer::Help { .. }) => help::lines(state, width).len(),
         Some(Layer::Reading { .. }) => reading::lines(state, width, true).len(),
         Some(Layer::Fault { lines, .. }) => dialog::fault_lines(lines, width).len(),
+        Some(Layer::Compare { .. }) => compare::lines(state, width).len(),
         _ => 0,
     };
     lines.saturating_sub(usize::from(state.size.1.saturating_sub(2)))
@@ -183,7 +193,10 @@ fn bench(state: &State, layout: &Layout, buf: &mut Buffer) {
         outline::render(state, area, buf);
     }
     if let Some(area) = layout.table {
-        table::render(state, area, buf);
+        match state.hand.as_ref().filter(|_| super::by_hand::in_hand(state)) {
+            Some(hand) => by_hand::render(state, hand, area, buf),
+            None => table::render(state, area, buf),
+        }
     }
     if let Some(area) = layout.reading {
         let inside = titled(state, area, "reading", "Enter shows all", buf);

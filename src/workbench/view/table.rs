@@ -1,5 +1,6 @@
 //! The ranked table, and what is said when it is empty.
 
+use super::super::floors;
 use super::super::state::{Job, MOST_ROWS, Shown, State};
 use super::{bars, number, put, titled, wrapped};
 use crate::hand::{Closing, Drive, Hand, Tip};
@@ -16,7 +17,7 @@ pub(super) fn render(state: &State, area: Rect, buf: &mut Buffer) {
         return;
     }
     match &state.shown {
-        Some(shown) if !shown.ranking.grasps.is_empty() => rows(state, shown, inside, buf),
+        Some(shown) if state.rows() > 0 => rows(state, shown, inside, buf),
         _ => {
             let mut at = inside;
             for paragraph in nothing(state) {
@@ -54,12 +55,25 @@ fn title(state: &State) -> (String, String) {
         n => format!("{n} in doubt "),
     };
     let hidden = match ranking.below_floors {
+        // A proof does not count what the floors hide.
+        0 if floors::any(state) => "floors ".to_owned(),
         0 => String::new(),
-        _ if floors(state.setup()).is_empty() => String::new(),
+        _ if !floors::any(state) => String::new(),
         _ if ranking.closed == ranking.below_floors => "floors hide all ".to_owned(),
         n => format!("floors hide {} % ", (n as u128 * 100).div_ceil(u128::from(ranking.closed)).min(99)),
     };
-    let right = format!("{hidden}{doubtful}{sample}").trim().to_owned();
+    let mut filter = String::new();
+    if let Some(edge) = state.filter.edge {
+        filter.push_str(&format!("on {}:{} ", edge.ring, edge.edge));
+    }
+    if state.filter.unbeaten {
+        filter.push_str("only ^ ");
+    }
+    let kept = match state.order.scene.kept().len() {
+        0 => String::new(),
+        count => format!("{count} locked "),
+    };
+    let right = format!("{kept}{filter}{hidden}{doubtful}{sample}").trim().to_owned();
     let title = match shown.order.listing {
         Listing::Families => match ranking.families as u64 {
             count if count as usize >= MOST_ROWS => format!("best {count} families"),
@@ -140,9 +154,10 @@ fn rows(state: &State, shown: &Shown, area: Rect, buf: &mut Buffer) {
     }
     put(buf, area, &head, state.look.dim());
     let height = usize::from(area.height.saturating_sub(1));
-    let grasps = &shown.ranking.grasps;
-    let top = first_row(state.selected, height, grasps.len());
-    for (i, row) in grasps.iter().enumerate().skip(top).take(height) {
+    let listed = state.listed();
+    let top = first_row(listed.partition_point(|row| *row < state.selected), height, listed.len());
+    for (line, &i) in listed.iter().enumerate().skip(top).take(height) {
+        let row = &shown.ranking.grasps[i];
         let selected = i == state.selected;
         let mut text = format!(
             "{}{}{}{:>3} {}",
@@ -155,7 +170,7 @@ fn rows(state: &State, shown: &Shown, area: Rect, buf: &mut Buffer) {
         for Column { value, width, .. } in &columns {
             text.push_str(&format!("{:>width$}", value(&row.assessment)));
         }
-        let line = Rect { y: area.y + 1 + (i - top) as u16, height: 1, ..area };
+        let line = Rect { y: area.y + 1 + (line - top) as u16, height: 1, ..area };
         let style = match (selected, state.is_old()) {
             (true, _) => state.look.selected(),
             (false, true) => state.look.dim(),
@@ -233,6 +248,9 @@ fn nothing(state: &State) -> Vec<String> {
         return vec!["Ranking ...".to_owned()];
     };
     let ranking = &shown.ranking;
+    if !ranking.grasps.is_empty() {
+        return hidden_by_filter(state, ranking.grasps.len());
+    }
     if matches!(state.job, Job::Running(_)) {
         return vec!["Nothing closed so far.".to_owned()];
     }
@@ -248,16 +266,31 @@ fn nothing(state: &State) -> Vec<String> {
         let closed = number::count(ranking.closed, "candidate set is", "candidate sets are");
         lines.push(format!("{closed} closed, none listed."));
     }
-    let floors = floors(setup);
+    let floors = floors_asked(setup);
     if !floors.is_empty() {
         lines.push(format!("The floors ask for {}.", floors.join(", ")));
-        lines.push("Try a lower floor in the setup, more friction (l) or one finger more (f).".to_owned());
+        lines.push("Try a lower floor (_), more friction (l) or one finger more (f).".to_owned());
     }
     if ranking.not_held > 0 {
         lines.extend(not_held(state, ranking.not_held));
     }
     if ranking.inconclusive > 0 {
         lines.push(format!("{} left out: the two ways to the score disagree.", ranking.inconclusive));
+    }
+    lines
+}
+
+/// That rows are there, but the filter lists none.
+fn hidden_by_filter(state: &State, rows: usize) -> Vec<String> {
+    let mut lines = vec![format!("None of the {rows} best is listed.")];
+    if let Some(edge) = state.filter.edge {
+        lines.push(format!("None has a finger on edge {}:{}; / and Enter lists all.", edge.ring, edge.edge));
+        lines.push(
+            "To rank grasps with a finger there, take one in hand (b), move a finger and lock it (L).".to_owned(),
+        );
+    }
+    if state.filter.unbeaten {
+        lines.push("Only rows that no other beats are listed; ^ lists all.".to_owned());
     }
     lines
 }
@@ -298,7 +331,7 @@ fn tips(hand: &Hand) -> String {
 }
 
 /// The floors that ask for something, in words.
-fn floors(setup: &Setup) -> Vec<String> {
+fn floors_asked(setup: &Setup) -> Vec<String> {
     let floors = &setup.floors;
     let loads = !setup.loads.is_empty() && setup.hand.force_limit_n.is_some();
     let mut asked = Vec::new();
