@@ -20,7 +20,19 @@ fn rank_prints_the_promised_object() {
     let report = json(&bench.run(&["rank", "bar.toml", "--fingers", "2", "--json", "--top", "3"]));
     assert_eq!(
         keys(&report),
-        sorted(["schema", "part", "setup", "examined", "closed", "inconclusive", "complete", "grasps"])
+        sorted([
+            "schema",
+            "part",
+            "setup",
+            "examined",
+            "closed",
+            "inconclusive",
+            "complete",
+            "best_bound",
+            "gap",
+            "proved",
+            "grasps"
+        ])
     );
     let (part, setup) = (&report["part"], &report["setup"]);
     assert_eq!(keys(part), sorted(["name", "area_mm2", "centroid_mm", "com_mm", "mass_kg", "polar_kg_m2", "reach_mm"]));
@@ -190,7 +202,7 @@ fn the_table_fits_eighty_columns_and_says_what_it_is() {
         assert_eq!(output.status.code(), Some(0));
         let text = out(&output);
         assert!(text.lines().all(|line| line.chars().count() <= 80), "{text}");
-        for said in ["gunwale bar", "torque scale 44.721 mm (reach)", "seed 1", "examined", "first-order statics"] {
+        for said in ["gunwale bar", "torque scale 44.721 mm (reach)", "seed 1", "proved", "first-order statics"] {
             assert!(text.contains(said), "{said}\n{text}");
         }
         let rows =
@@ -201,7 +213,9 @@ fn the_table_fits_eighty_columns_and_says_what_it_is() {
         assert!(out(&output).contains("qual/f"), "{}", out(&output));
         assert!(out(&output).lines().all(|line| line.chars().count() <= 80), "{}", out(&output));
     }
-    let sampled = bench.run(&["rank", "bar.toml", "--budget", "1000"]);
+    let spent = bench.run(&["rank", "bar.toml", "--budget", "1000", "--gap", "0.0001"]);
+    assert!(out(&spent).contains("not proved"), "{}", out(&spent));
+    let sampled = bench.run(&["rank", "bar.toml", "--budget", "1000", "--members"]);
     assert!(out(&sampled).contains("a sample: the budget is 1000 sets"), "{}", out(&sampled));
 }
 
@@ -491,7 +505,7 @@ fn check_notices_edited_scores() {
 /// Two facing pins give at most mu across the faces, wherever they stand (Ferrari & Canny 1992): the bound over the whole
 /// outline is that, and the list is proved down to it.
 #[test]
-fn rank_proves_its_list_on_request() {
+fn rank_proves_its_list() {
     let bench = Bench::new();
     let at = ["rank", "bar.toml", "--fingers", "2", "--top", "1", "--gap", "0.001", "--json"];
     let report = json(&bench.run(&at));
@@ -499,11 +513,13 @@ fn rank_proves_its_list_on_request() {
     let (best, bound) = (report["grasps"][0]["quality"].as_f64().unwrap(), report["best_bound"].as_f64().unwrap());
     assert!(bound >= best && bound <= best * 1.001 + 1e-8, "{best} {bound}");
     assert!(report["gap"].as_f64().unwrap() <= 0.001 + 1e-7);
-    let sampled = json(&bench.run(&["rank", "bar.toml", "--fingers", "2", "--top", "1", "--json"]));
+    let sampled = json(&bench.run(&["rank", "bar.toml", "--fingers", "2", "--top", "1", "--members", "--json"]));
     assert!(best >= sampled["grasps"][0]["quality"].as_f64().unwrap() - 1e-12);
-    assert!(sampled.get("proved").is_none());
+    // Of single grasps of the sites nothing is proved.
+    assert_eq!(sampled["proved"], false);
+    assert!(sampled["gap"].is_null() && sampled["best_bound"].is_null());
     let text = bench.run(&at[..at.len() - 1]);
-    assert!(out(&text).contains("proved: no placement anywhere on the outline is better than"), "{}", out(&text));
+    assert!(out(&text).contains("proved: none above"), "{}", out(&text));
     for wrong in ["-0.1", "1", "nan", "x"] {
         let output = bench.run(&["rank", "bar.toml", "--gap", wrong]);
         assert_eq!(output.status.code(), Some(2), "{wrong}");

@@ -260,7 +260,11 @@ fn the_list_says_how_much_the_floors_hide() {
     assert!(below > 0 && below < every.closed);
     let hidden = all(&floored);
     assert_eq!((hidden.closed, hidden.below_floors), (every.closed, below));
-    let screen = Desk::new(hinge(), floored).screen(80, 24);
+    let mut desk = Desk::new(hinge(), floored);
+    let screen = desk.screen(80, 24);
+    assert!(screen.contains("- floors within"), "{screen}");
+    desk.keys("v");
+    let screen = desk.screen(80, 24);
     assert!(screen.contains("floors hide"), "{screen}");
 }
 
@@ -405,6 +409,9 @@ fn every_action_of_the_table_can_be_done_in_its_scope_without_a_panic() {
                 Scope::Pairs => drop(desk.keys("t")),
                 Scope::Materials => drop(desk.keys("d")),
                 Scope::Loads => drop(desk.keys("Ln")),
+                Scope::Floors => drop(desk.keys("_")),
+                Scope::Hand => drop(desk.keys("b")),
+                Scope::Compare => drop(desk.keys("xjxX")),
                 Scope::Entry => drop(desk.keys("=")),
                 Scope::AskQuit => desk.state.layers.push(Layer::Ask(Question::Quit)),
                 Scope::AskReload => desk.state.layers.push(Layer::Ask(Question::Reload)),

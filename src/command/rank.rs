@@ -34,7 +34,7 @@ pub(super) struct RankArgs {
     /// List single grasps instead of the best of each family
     #[arg(long)]
     members: bool,
-    /// How much better than its row any placement of a family may be, as a part of its score
+    /// How much better than its row any placement of a family may be, as a part of the best score
     #[arg(long, value_name = "GAP", conflicts_with = "members", default_value = "0.01", value_parser = gap)]
     gap: f64,
     /// Print JSON
@@ -97,7 +97,7 @@ pub(super) fn run(args: &RankArgs) -> Result<Answer, Stop> {
 pub(super) struct ProofReport {
     /// No placement scores better than this on the key; null where none is a grasp at all, or nothing is known.
     best_bound: Option<f64>,
-    /// How much better than its row a family can be, as a part of its score; null where something may be missing.
+    /// How much better than its row a family can be, as a part of the best score; null where something may be missing.
     gap: Option<f64>,
     /// The gap is no wider than was asked for.
     proved: bool,
@@ -123,7 +123,7 @@ fn proved(proof: &Proof, key: Key, gap: f64) -> String {
     let better = if key.more_is_better() { "above" } else { "below" };
     let none = format!("none {better} {} anywhere on the outline", short(bound));
     match (proof.proved, proof.gap.is_finite()) {
-        (true, _) => format!("proved: {none}; every row within {:.2} % of its family's best", 100.0 * proof.gap),
+        (true, _) => format!("proved: {none}; no family beats its row by more than {:.2} % of that", 100.0 * proof.gap),
         (false, true) => {
             let (open, asked) = (100.0 * proof.gap, 100.0 * gap);
             format!("not proved to {asked} %: {none}, {open:.2} % from the list; raise --budget to close the gap")

@@ -68,9 +68,9 @@ pub struct Proved {
     pub best_bound: Option<f64>,
     /// No placement of a family that is not in the list scores better than this; nothing where all that are grasps are in it.
     pub rest_bound: Option<f64>,
-    /// How much better than its row a family in the list can be, at most, as a part of its score; than the first row, any
-    /// family; than the last row of a full list, any family that is not in it. Infinite when the list is not full and
-    /// something may be missing.
+    /// How much better than its row a family in the list can be, at most, as a part of the best score or of its own where
+    /// that is larger; than the first row, any family; than the last row of a full list, any family that is not in it. Infinite
+    /// when the list is not full and a family may be missing that reaches this part of the best score.
     pub gap: f64,
     /// The gap is no wider than was asked for.
     pub proved: bool,
@@ -106,17 +106,24 @@ struct Setting<'a> {
     scene: &'a Scene,
     goal: Goal,
     gaps: Gaps<'a>,
-    /// One for each stretch.
+    /// One for each place.
     rails: Vec<Rail<'a>>,
     fingers: usize,
+    /// Fingers that stay: so many rails at the beginning are single positions, and every family has them.
+    kept: usize,
 }
 
 impl<'a> Setting<'a> {
     fn new(scene: &'a Scene, key: Key, gap: f64) -> Self {
-        // Every stretch of a scene lies on one of its edges, so none is left out and the numbers stay the same.
-        let rails = (0..scene.stretches().len()).filter_map(|stretch| Rail::new(scene, stretch)).collect();
+        // Every place of a scene lies on one of its edges, so none is left out and the numbers stay the same.
+        let rails = (0..scene.places().len()).filter_map(|stretch| Rail::new(scene, stretch)).collect();
         let (goal, gaps) = (Goal::new(scene, key, gap), Gaps::of(&scene.setup().hand));
-        Self { scene, goal, gaps, rails, fingers: scene.setup().hand.fingers.get() }
+        Self { scene, goal, gaps, rails, fingers: scene.setup().hand.fingers.get(), kept: scene.kept().len() }
+    }
+
+    /// Rails the next finger of a family may be on, once some have theirs, the last of them on rail `last`.
+    fn following(&self, have: usize, last: usize) -> std::ops::Range<usize> {
+        if have < self.kept { have..have + 1 } else { last..self.rails.len() }
     }
 
     /// The run of a family of parallel jaws.
@@ -133,7 +140,7 @@ pub struct Ask<'a> {
     pub key: Key,
     /// Families in the list, at least one.
     pub want: usize,
-    /// How much better than its row a family may be in the end, as a part of its score.
+    /// How much better than its row a family may be in the end, as a part of the best score.
     pub gap: f64,
     /// Boxes looked at, at most.
     pub budget: u64,

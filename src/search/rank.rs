@@ -72,7 +72,7 @@ pub struct Ranking {
 pub struct Proof {
     /// No placement scores better than this; nothing where no placement is a grasp at all.
     pub best_bound: Option<f64>,
-    /// How much better than its row any family of the list can be, as a part of its score; see [`Proved::gap`]. Infinite
+    /// How much better than its row any family of the list can be, as a part of the best score; see [`Proved::gap`]. Infinite
     /// while something may be missing.
     pub gap: f64,
     /// The gap is no wider than was asked for.
@@ -131,7 +131,7 @@ pub struct Wanted<'a> {
     pub listing: Listing,
     /// Rows, at most.
     pub most: usize,
-    /// How much better than its row a family may be, as a part of its score.
+    /// How much better than its row a family may be, as a part of the best score.
     pub gap: f64,
     /// Placements to begin with, such as the list at another friction; they shorten the proof and change nothing else.
     pub known: &'a [Vec<Spot>],

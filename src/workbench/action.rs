@@ -552,17 +552,27 @@ pub fn key_of(action: Action) -> String {
     row.and_then(|row| row.keys.first()).map_or_else(String::new, Key::to_string)
 }
 
-/// The rows of the help page: the bench's keys, then those that hold everywhere.
+/// The rows of the help page: the bench's keys, those that hold everywhere, those with a grasp in hand.
 pub fn help() -> impl Iterator<Item = &'static Row> {
     TABLE.iter().filter(|row| !row.help.is_empty())
 }
 
+/// The rows of the help page in its parts, each with its heading.
+pub fn help_parts() -> [(&'static str, Vec<&'static Row>); 2] {
+    let (hand, bench) = help().partition(|row| row.scope == Scope::Hand);
+    [("keys", bench), ("keys with a grasp in hand", hand)]
+}
+
 /// The table of keys in Markdown, for the README.
 pub fn markdown() -> String {
-    let mut text = String::from("| keys | what they do |\n|---|---|\n");
-    for row in help() {
-        let keys: Vec<String> = row.keys.iter().map(|key| format!("`{key}`")).collect();
-        text.push_str(&format!("| {} | {} |\n", keys.join(" "), row.help));
+    let mut text = String::new();
+    for (heading, rows) in help_parts() {
+        let gap = if text.is_empty() { "" } else { "\n" };
+        text.push_str(&format!("{gap}| {heading} | what they do |\n|---|---|\n"));
+        for row in rows {
+            let keys: Vec<String> = row.keys.iter().map(|key| format!("`{key}`")).collect();
+            text.push_str(&format!("| {} | {} |\n", keys.join(" "), row.help));
+        }
     }
     text
 }

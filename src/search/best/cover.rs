@@ -117,6 +117,11 @@ impl Walk<'_, '_> {
         if self.screened.seen > self.patience { ControlFlow::Break(()) } else { ControlFlow::Continue(()) }
     }
 
+    fn following(&self, have: usize, last: u32) -> std::ops::Range<u32> {
+        let range = self.setting.following(have, last as usize);
+        range.start as u32..range.end as u32
+    }
+
     /// Two fingers cannot share a stretch that is a single position.
     fn has_place(&self, have: usize, next: u32) -> bool {
         let whole = self.setting.rails[next as usize].whole;
@@ -155,7 +160,7 @@ impl Walk<'_, '_> {
                 continue;
             }
             self.on[have] = next;
-            self.bits(tracks, from, have + 1, next..tracks.len() as u32, &with)?;
+            self.bits(tracks, from, have + 1, self.following(have + 1, next), &with)?;
         }
         ControlFlow::Continue(())
     }
@@ -185,7 +190,7 @@ impl Walk<'_, '_> {
             let mut with = *so_far;
             with.iter_mut().zip(row).for_each(|(sum, own)| *sum += own);
             self.on[have] = next;
-            self.sums(tracks, level, have + 1, next..tracks.len() as u32, &with)?;
+            self.sums(tracks, level, have + 1, self.following(have + 1, next), &with)?;
         }
         ControlFlow::Continue(())
     }

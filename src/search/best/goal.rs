@@ -36,22 +36,27 @@ impl Goal {
         Self { key, gap: gap.max(0.0), small, scale_mm, friction_unit: if mu > 0.0 { mu } else { 1.0 }, size_n }
     }
 
-    /// What a merit may be beaten by and still stand; without one, what nobody looks for.
-    pub(super) fn enough(&self, merit: Option<f64>) -> f64 {
+    /// What gaps are parts of: the best merit found, or that of a row where it is larger.
+    fn whole(&self, merit: Option<f64>, best: Option<f64>) -> f64 {
+        merit.into_iter().chain(best).map(f64::abs).fold(self.small, f64::max)
+    }
+
+    /// What a merit may be beaten by and still stand beside the best found; without one, what nobody looks for.
+    pub(super) fn enough(&self, merit: Option<f64>, best: Option<f64>) -> f64 {
         match (merit, self.key) {
-            (Some(merit), _) => merit + self.gap * merit.abs().max(self.small) + HAIR * self.unit(),
+            (Some(merit), _) => merit + self.gap * self.whole(Some(merit), best) + HAIR * self.unit(),
             (None, Key::Friction | Key::Squeeze) => f64::NEG_INFINITY,
-            (None, _) => (self.gap * self.small).max(HAIR * self.unit()),
+            (None, _) => (self.gap * self.whole(None, best)).max(HAIR * self.unit()),
         }
     }
 
-    /// The gap between a merit and a bound on it.
-    pub(super) fn gap_between(&self, merit: f64, bound: f64) -> f64 {
+    /// The gap between a merit and a bound on it, beside the best found.
+    pub(super) fn gap_between(&self, merit: f64, bound: f64, best: f64) -> f64 {
         // Nothing is better than no friction and no squeeze.
         let most = if self.key.more_is_better() { f64::INFINITY } else { 0.0 };
         let over = bound.min(most) - merit;
         // Rounding alone is no gap.
-        if over <= 2.0 * HAIR * self.unit() { 0.0 } else { over / merit.abs().max(self.small) }
+        if over <= 2.0 * HAIR * self.unit() { 0.0 } else { over / self.whole(Some(merit), Some(best)) }
     }
 
     /// The gap asked for.

@@ -162,9 +162,9 @@ impl<'a> Plot<'a> {
     }
 
     /// Cuts boxes, the largest bound first, until none is above `level` nor above what is good enough beside the family's
-    /// own best, or so many have been looked at. `level` is what excludes the family from the list. Returns how many boxes
-    /// were looked at.
-    pub(super) fn settle(&mut self, state: &mut State, level: f64, at_most: u64) -> u64 {
+    /// own best, or so many have been looked at. `level` is what excludes the family from the list, `best` the best of all.
+    /// Returns how many boxes were looked at.
+    pub(super) fn settle(&mut self, state: &mut State, level: f64, best: Option<f64>, at_most: u64) -> u64 {
         let goal = *self.gauge.goal();
         let mut boxes = 0;
         if let Some(bound) = state.first.take() {
@@ -173,7 +173,7 @@ impl<'a> Plot<'a> {
             state.pieces.push(Piece { bound, spans: whole });
         }
         loop {
-            let level = state.lead.map_or(level, |lead| level.max(goal.enough(Some(lead.merit))));
+            let level = state.lead.map_or(level, |lead| level.max(goal.enough(Some(lead.merit), best)));
             let Some(top) = state.pieces.peek().copied() else { return boxes };
             if top.bound.merit <= level {
                 state.dropped = state.dropped.max(top.bound.merit);

@@ -47,14 +47,16 @@ const WIDEST_RAD: f64 = 1.5;
 /// Largest half turn of a piece of an arc that is covered by its ends.
 const WIDEST_TURN_RAD: f64 = 1.2;
 
-/// A stretch as the search sees it.
+/// A place as the search sees it: a stretch, or the one position of a finger that is kept.
 pub(super) struct Rail<'a> {
     scene: &'a Scene,
     edge: &'a Edge,
-    /// Index into [`Scene::stretches`].
+    /// Index into [`Scene::places`].
     pub stretch: usize,
     /// Where fingers may be.
     pub whole: Span,
+    /// Ends of the stretch, that room is counted to; beyond `whole` where a finger is kept.
+    ends: Span,
     /// Friction coefficient of the edge.
     pub mu: f64,
     /// Size of the edge's curvature, 1/mm; 0 where it is straight.
@@ -116,7 +118,8 @@ impl Contacts {
 impl<'a> Rail<'a> {
     /// The rail of a stretch; nothing for one that is none.
     pub(super) fn new(scene: &'a Scene, stretch: usize) -> Option<Self> {
-        let on = scene.stretches().get(stretch)?;
+        let place = scene.places().get(stretch)?;
+        let on = &place.span;
         let edge = scene.part().outline().edge(on.edge)?;
         let contact = scene.contact(edge, on.from_mm);
         let sound = on.from_mm <= on.to_mm;
@@ -125,6 +128,7 @@ impl<'a> Rail<'a> {
             edge,
             stretch,
             whole: [on.from_mm, on.to_mm],
+            ends: [place.whole.from_mm, place.whole.to_mm],
             mu: contact.mu,
             bend: edge.curvature().abs(),
             base: Lever::of(&contact, scene.frame()),
@@ -221,8 +225,8 @@ impl<'a> Rail<'a> {
 
     /// Distance to the nearer end of the stretch, mm: the largest on a piece.
     pub(super) fn room_mm(&self, span: Span) -> f64 {
-        let centre = middle(self.whole).clamp(span[0], span[1]);
-        (centre - self.whole[0]).min(self.whole[1] - centre).max(0.0)
+        let centre = middle(self.ends).clamp(span[0], span[1]);
+        (centre - self.ends[0]).min(self.ends[1] - centre).max(0.0)
     }
 
     fn stand(&self, along_mm: f64) -> (Point2<f64>, Vector2<f64>) {

@@ -89,7 +89,8 @@ impl<'a> Search<'a> {
 
     /// What a family has to beat to matter: the last of the list by more than the gap.
     fn level(&self) -> f64 {
-        self.setting.goal.enough(self.merits().get(self.want - 1).copied())
+        let merits = self.merits();
+        self.setting.goal.enough(merits.get(self.want - 1).copied(), merits.first().copied())
     }
 
     /// Good placements to begin with, so that most families never have to be opened.
@@ -136,7 +137,7 @@ impl<'a> Search<'a> {
         let level = self.level();
         let cover = Cover::above(setting, level);
         let patience = self.budget.saturating_mul(SCREENED_A_BOX);
-        let beginnings: Vec<u32> = (0..setting.rails.len() as u32).collect();
+        let beginnings: Vec<u32> = setting.following(0, 0).map(|rail| rail as u32).collect();
         // What the directions exclude is not above the level.
         self.dropped = self.dropped.max(level);
         for group in beginnings.chunks(BEGINNINGS) {
@@ -219,6 +220,7 @@ impl<'a> Search<'a> {
     /// One round; false when there was nothing to do, or nothing to do it with.
     fn round(&mut self, size: usize) -> Result<bool, Cancelled> {
         let level = self.level();
+        let best = self.merits().first().copied();
         if let Some((bound, _)) = self.waiting.last()
             && bound.merit <= level
         {
@@ -237,7 +239,7 @@ impl<'a> Search<'a> {
                 return None;
             }
             let mut plot = Plot::new(setting, &state.family);
-            let boxes = plot.settle(&mut state, level, most);
+            let boxes = plot.settle(&mut state, level, best, most);
             Some((state, boxes))
         };
         let done: Option<Vec<(State, u64)>> = round.into_par_iter().map(work).collect();
@@ -300,7 +302,7 @@ impl<'a> Search<'a> {
         let open = self.open.iter().map(State::bound);
         let bound = waiting.chain(open).chain(self.settled.values().copied()).chain(best).fold(self.dropped, f64::max);
         let told = |merit| self.setting.goal.told(merit);
-        let gap = best.map(|best| self.setting.goal.gap_between(best, bound)).filter(|gap| gap.is_finite());
+        let gap = best.map(|best| self.setting.goal.gap_between(best, bound, best)).filter(|gap| gap.is_finite());
         let (best, bound) = (best.map(told), bound.is_finite().then(|| told(bound)));
         self.told += 1;
         let due = self.snapshot_rows > 0 && self.told >= FIRST_SNAPSHOT && self.told.is_power_of_two();
@@ -377,12 +379,13 @@ impl<'a> Search<'a> {
             (Reverse(goal.quanta(row.merit)), friction, Reverse(quanta(a.placement.mm)), Reverse(quanta(room_mm)))
         });
         let best_bound = rows.iter().map(|row| row.bound).fold(rest, f64::max);
-        let own = rows.iter().map(|row| goal.gap_between(row.merit, row.bound));
-        let first = rows.first().map(|row| goal.gap_between(row.merit, best_bound));
+        let best = rows.iter().map(|row| row.merit).fold(f64::NEG_INFINITY, f64::max);
+        let own = rows.iter().map(|row| goal.gap_between(row.merit, row.bound, best));
+        let first = rows.first().map(|row| goal.gap_between(row.merit, best_bound, best));
         let behind = match rows.last() {
-            Some(last) if full => goal.gap_between(last.merit, rest),
+            Some(last) if full => goal.gap_between(last.merit, rest, best),
             // Every family there is should be in the list.
-            _ if rest <= goal.enough(None) => 0.0,
+            _ if rest <= goal.enough(None, Some(best).filter(|best| best.is_finite())) => 0.0,
             _ => f64::INFINITY,
         };
         let gap = own.chain(first).fold(behind, f64::max);

@@ -61,6 +61,9 @@ pub(super) fn known(setting: &Setting<'_>, spots: &[Spot]) -> Vec<(Family, Lead)
         return Vec::new();
     }
     placed.sort_by(|a, b| a.0.cmp(&b.0).then(a.1.total_cmp(&b.1)));
+    if placed.iter().take(setting.kept).enumerate().any(|(finger, (rail, _))| *rail != finger) {
+        return Vec::new();
+    }
     let mut at = [0.0; FingerCount::MOST];
     let mut candidates = Vec::new();
     if setting.scene.setup().hand.closing == Closing::Parallel {
@@ -116,7 +119,7 @@ impl<'a> Start<'a> {
         let Some((mut family, mut lead)) = found.last().copied() else { return found };
         for _ in 0..MOST_ROUNDS {
             let before = lead.merit;
-            for finger in 0..self.setting.fingers {
+            for finger in self.setting.kept..self.setting.fingers {
                 if let Some(better) = self.exchange(&family, finger, lead.merit) {
                     found.push(better);
                     (family, lead) = better;
@@ -132,8 +135,9 @@ impl<'a> Start<'a> {
     }
 
     fn draw(&mut self) -> Vec<u32> {
-        let rails = self.setting.rails.len();
-        let mut on: Vec<u32> = (0..self.setting.fingers).map(|_| self.pick(rails) as u32).collect();
+        let (kept, rails) = (self.setting.kept, self.setting.rails.len());
+        let mut on: Vec<u32> = (0..kept as u32).collect();
+        on.extend((kept..self.setting.fingers).map(|_| (kept + self.pick((rails - kept).max(1))) as u32));
         on.sort_unstable();
         on
     }
@@ -163,7 +167,7 @@ impl<'a> Start<'a> {
         let stride = rails.div_ceil(MOST_TRIED);
         let offset = self.pick(stride);
         let mut best: Option<(Family, Lead)> = None;
-        for next in (offset..rails).step_by(stride) {
+        for next in (self.setting.kept + offset..rails).step_by(stride) {
             let mut on = family.stretches().to_vec();
             on[finger] = next as u32;
             on.sort_unstable();

@@ -198,7 +198,7 @@ fn families_excluded_by_directions_are_behind() {
             let mut sorted = best.clone();
             sorted.sort_by(f64::total_cmp);
             let level = sorted[sorted.len() * 2 / 3];
-            let level = if level.is_finite() { level } else { setting.goal.enough(None) };
+            let level = if level.is_finite() { level } else { setting.goal.enough(None, None) };
             let cover = Cover::above(&setting, level);
             for (family, merit) in families.iter().zip(&best) {
                 let first = family.stretches()[0];

@@ -9,7 +9,7 @@ use crate::search::Standing;
 use ratatui::text::{Line, Span};
 
 /// Width of the names on the left, and of the signs before them.
-const NAMES: usize = 12;
+const NAMES: usize = 13;
 
 /// The lines of the page for a width.
 pub(super) fn lines(state: &State, width: u16) -> Vec<Line<'static>> {

@@ -51,11 +51,14 @@ const NUMBERS: [(&str, &str); 14] = [
 /// The lines of the page for a width.
 pub(super) fn lines(state: &State, width: u16) -> Vec<Line<'static>> {
     let width = usize::from(width);
-    let mut lines = vec![Line::styled("keys", state.look.title())];
-    for row in action::help() {
-        two_columns(state, &action::keys_of(row), row.help, width, &mut lines);
+    let mut lines = Vec::new();
+    for (heading, rows) in action::help_parts() {
+        lines.push(Line::styled(heading, state.look.title()));
+        for row in rows {
+            two_columns(state, &action::keys_of(row), row.help, width, &mut lines);
+        }
+        lines.push(Line::raw(""));
     }
-    lines.push(Line::raw(""));
     lines.push(Line::styled("signs and numbers", state.look.title()));
     two_columns(state, "> *", "the selected row; a marked grasp", width, &mut lines);
     for (name, meaning) in NUMBERS {

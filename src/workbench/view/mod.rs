@@ -165,7 +165,7 @@ impl Layout {
     fn beside(&mut self, area: Rect, left: Panel, loads: bool) {
         // The table needs about forty columns for three fingers, more for what the loads ask; what is more goes to the
         // picture first.
-        let (least, most, more) = if loads { (48, 70, 8) } else { (40, 62, 0) };
+        let (least, most, more) = if loads { (48, 90, 8) } else { (40, 76, 0) };
         let table_width = (area.width * 9 / 20 + more).clamp(least, most).min(area.width / 2 + 8);
         let left_area = Rect { width: area.width - table_width - 1, ..area };
         self.divider = Some(Rect { x: left_area.right(), width: 1, ..area });

@@ -1,5 +1,6 @@
 //! The reading of the selected grasp: every score with its meaning in one line.
 
+use super::super::by_hand;
 use super::super::state::{Job, Reading, State};
 use super::{holding, number, table, wrapped};
 use crate::mechanics::assess::Assessment;
@@ -23,9 +24,13 @@ pub(super) fn lines(state: &State, width: u16, full: bool) -> Vec<Line<'static>>
     let mut page = Page { width: usize::from(width), full, state, lines: Vec::new() };
     if full {
         let edges = table::edges(&reading.grasp.spots);
-        let rank = state.row().map_or_else(|| "not listed".to_owned(), |_| format!("number {}", state.selected + 1));
+        let rank = match state.row() {
+            _ if by_hand::in_hand(state) => "in hand".to_owned(),
+            Some(_) => format!("number {}", state.selected + 1),
+            None => "not listed".to_owned(),
+        };
         page.heading(&format!("grasp on edges {edges}, {rank}"), reading);
-    } else if state.row().is_none() {
+    } else if state.row().is_none() && !by_hand::in_hand(state) {
         page.tell("not listed", "", state.look.bad(), "the grasp last selected, under the present knobs");
     }
     page.doubts(reading);
@@ -253,6 +258,9 @@ impl Page<'_> {
 
     /// What the proof says of the selected row and of the whole outline, on the key the list is sorted by.
     fn proof(&mut self) {
+        if by_hand::in_hand(self.state) {
+            return;
+        }
         let Some(shown) = self.state.shown.as_ref().filter(|_| !self.state.is_old()) else { return };
         let bound = self.state.row().and_then(|row| row.bound);
         let (Some(family), Some(all)) = (bound, shown.ranking.proof.and_then(|proof| proof.best_bound)) else { return };

@@ -119,6 +119,10 @@ fn columns(key: Key, loads: bool) -> Vec<Column> {
         columns.push(column("squeeze", 8, squeeze, key == Key::Squeeze));
         columns.push(column("load", 9, load, false));
     }
+    columns.push(column("needed", 8, |a| a.friction_needed.map_or("-".to_owned(), number::mu), false));
+    if key != Key::QualityPerFinger {
+        columns.push(column("/finger", 8, |a| number::quality(a.quality_per_finger), false));
+    }
     columns
 }
 
