@@ -37,6 +37,7 @@ mod start;
 #[cfg(test)]
 #[allow(clippy::unwrap_used, reason = "a test that cannot go on has failed")]
 mod tests;
+mod tilt;
 
 use super::families::Family;
 use super::order::Key;

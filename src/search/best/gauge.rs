@@ -8,11 +8,13 @@
 //! Cheap before dear: the wall of the force polygon before any torque, the room before the torque, the quality before the
 //! quality per finger (at most k times it), one closure test at the friction to beat before the friction itself is sought.
 
+use super::super::family_forces::NO_LEVER;
 use super::super::order::Key;
 use super::Setting;
 use super::goal::Goal;
 use super::loads::Loads;
 use super::rail::{Contacts, Gaps, Rail, Span, contacts_over, half_mm, score_over};
+use super::tilt::{Target, Tilt};
 use crate::hand::FingerCount;
 use crate::mechanics::force_polygon::{CERTAIN, ForcePolygon, PlanarScore};
 use crate::mechanics::friction::{self, CLOSED, UnitForces};
@@ -48,6 +50,8 @@ pub(super) struct Gauge<'a> {
     pub k: usize,
     /// One friction coefficient for all fingers, none of them on an arc: the forces are the same all over the family.
     polygon: Option<(f64, ForcePolygon)>,
+    /// The friction coefficient, where it is one for all fingers.
+    mu: Option<f64>,
     /// The forces may positively span the plane.
     spans: bool,
     curved: bool,
@@ -62,7 +66,7 @@ impl<'a> Gauge<'a> {
         rails[..k].copy_from_slice(on);
         let curved = on.iter().any(|rail| rail.bend > 0.0);
         let mu = on.iter().all(|rail| rail.mu == on[0].mu).then_some(on[0].mu);
-        let mut gauge = Self { setting, rails, k, polygon: None, spans: true, curved, loads: None };
+        let mut gauge = Self { setting, rails, k, polygon: None, mu, spans: true, curved, loads: None };
         if !curved {
             let (mut levers, mut mus) = ([on[0].at_middle(on[0].whole); FingerCount::MOST], [0.0; FingerCount::MOST]);
             for (finger, rail) in on.iter().enumerate() {
@@ -147,10 +151,38 @@ impl<'a> Gauge<'a> {
         if bound.merit <= level && goal.key != Key::Squeeze {
             return bound;
         }
+        if self.tilts_away(spans, level) {
+            return Bound { merit: level, ..bound };
+        }
         if floors.friction_margin > 1.0 && !self.may_close(spans, &contacts, 1.0 / floors.friction_margin) {
             return NOTHING;
         }
         self.under_load(bound, &contacts, spans, level)
+    }
+
+    /// True when directions that turn with the placement exclude a box ([`super::tilt`]).
+    fn tilts_away(&self, spans: &[Span], level: f64) -> bool {
+        let placement = self.setting.goal.key == Key::Placement;
+        if !(level > 0.0 && (self.setting.goal.key == Key::Quality || placement)) {
+            return false;
+        }
+        let Some(mu) = self.mu else { return false };
+        let (mut levers, mut mus) = ([NO_LEVER; FingerCount::MOST], [mu; FingerCount::MOST]);
+        for ((lever, rail), span) in levers.iter_mut().zip(self.rails()).zip(spans) {
+            *lever = rail.at_middle(*span);
+        }
+        let (levers, mus) = (&levers[..self.k], &mut mus[..self.k]);
+        let own;
+        let polygon = match &self.polygon {
+            Some((_, polygon)) => polygon,
+            None => {
+                own = ForcePolygon::of_levers(levers, mu);
+                &own
+            }
+        };
+        let torque = if placement { level / self.setting.scene.frame().scale_mm } else { 0.0 };
+        let target = Target { push: if placement { 0.0 } else { level }, torque };
+        Tilt::new(self.rails(), spans, levers, mus, |_| 1.0, polygon).excludes(target)
     }
 
     /// The bound once the loads have been asked too.
