@@ -116,21 +116,25 @@ impl<'a> Tilt<'a> {
         tilt
     }
 
-    /// True when nothing in the box exceeds the target; false when that cannot be told.
-    pub(super) fn excludes(&self, target: Target) -> bool {
+    /// By how much less than the target even, in its unit (a push or a torque), nothing in the box exceeds; nothing when the
+    /// target itself may be exceeded.
+    pub(super) fn short_by(&self, target: Target) -> Option<f64> {
         let mut all = [Inequality { c: 0.0, a: [0.0; FingerCount::MOST] }; MOST_FACETS];
-        let mut n = 0;
+        let (mut n, mut longest) = (0, 1.0_f64);
         self.polygon.facets(&self.torques[..2 * self.k], |facet| {
-            if let Some(inequality) = self.inequality(&facet, target) {
+            if let Some((inequality, longer)) = self.inequality(&facet, target) {
                 all[n] = inequality;
                 n += 1;
+                longest = longest.max(longer);
             }
         });
-        self.never_all(&all[..n])
+        // A lower target lifts each inequality by no more than so much.
+        self.least_of_mixes(&all[..n]).map(|least| -least / longest)
     }
 
-    /// What a placement above the target keeps because of one facet.
-    fn inequality(&self, facet: &Facet, target: Target) -> Option<Inequality> {
+    /// What a placement above the target keeps because of one facet, and how much longer than in the middle v gets, as a
+    /// factor.
+    fn inequality(&self, facet: &Facet, target: Target) -> Option<(Inequality, f64)> {
         let corners = &facet.on[..facet.corners];
         let size = facet.normal.norm();
         // On a cap the torque share of v stays as it is, on a wall 0.
@@ -198,7 +202,7 @@ impl<'a> Tilt<'a> {
             let own = rises[i] * (adds[i] - target.push * unit.dot(&turns[i])) / length;
             inequality.a[self.pushes[corner].finger] += own;
         }
-        Some(inequality).filter(|inequality| self.most(inequality).is_finite())
+        self.most(&inequality).is_finite().then_some((inequality, 1.0 + turning / length))
     }
 
     /// The largest an inequality's left side gets in the box.
@@ -207,15 +211,12 @@ impl<'a> Tilt<'a> {
         inequality.c + swing.sum::<f64>()
     }
 
-    /// True when some mix of the inequalities fails all over the box.
-    fn never_all(&self, all: &[Inequality]) -> bool {
+    /// The largest the left side of some mix of the inequalities gets in the box, where that is below 0.
+    fn least_of_mixes(&self, all: &[Inequality]) -> Option<f64> {
         let lowest = all.iter().min_by(|a, b| self.most(a).total_cmp(&self.most(b)));
-        let Some(mut mixed) = lowest.copied() else { return false };
+        let mut mixed = *lowest?;
         let mut least = self.most(&mixed);
         for _ in 0..MIXES {
-            if least < -HAIR {
-                return true;
-            }
             let (before, from) = (least, mixed);
             for other in all {
                 // Along the way from one to the other the most is convex and linear between zeros of the coefficients.
@@ -235,9 +236,9 @@ impl<'a> Tilt<'a> {
                 }
             }
             if !(least < before) {
-                return false;
+                break;
             }
         }
-        least < -HAIR
+        Some(least + HAIR).filter(|least| *least < 0.0)
     }
 }
