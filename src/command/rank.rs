@@ -165,6 +165,8 @@ fn head(text: &mut String, scene: &Scene, wanted: &Wanted<'_>, ranking: &Ranking
     writeln!(text, "{}", wrapped(&format!("drive {drive_word}: {}; {limit}", drive(setup.hand.drive)), 0, 4))?;
     writeln!(text, "torque scale {} mm ({scale}), seed {}", length(scene.frame().scale_mm), search.seed)?;
     if let Some(proof) = ranking.proof.filter(|_| !ranking.grasps.is_empty()) {
+        let (examined, closed) = (ranking.examined, ranking.closed);
+        writeln!(text, "{examined} placements examined, {closed} closed, {} inconclusive", ranking.inconclusive)?;
         return writeln!(text, "{}", wrapped(&proved(&proof, wanted.key, wanted.gap), 0, 4));
     }
     writeln!(

@@ -35,11 +35,11 @@ pub const CERTAIN: f64 = 1e-10;
 /// A facet whose shadow on the force plane is smaller than this cannot lie over the origin.
 const LEAST_SHADOW: f64 = 1e-12;
 
-/// Heights over the vertices of a [`ForcePolygon`].
+/// Heights over the vertices of a [`Polygon`] of at most `N` forces.
 #[derive(Debug, Clone, Copy)]
-pub struct Heights {
-    top: [f64; MOST_DIRECTIONS],
-    bottom: [f64; MOST_DIRECTIONS],
+pub struct Heights<const N: usize = MOST_DIRECTIONS> {
+    top: [f64; N],
+    bottom: [f64; N],
 }
 
 /// What the kernel says of one grasp.
@@ -57,13 +57,16 @@ pub struct PlanarScore {
     pub certain: bool,
 }
 
-/// The forces of a grasp's generators, sorted round the circle and merged where they coincide.
+/// The polygon of a grasp.
+pub type ForcePolygon = Polygon<MOST_DIRECTIONS>;
+
+/// The forces of generators, at most `N`, sorted round the circle and merged where they coincide.
 #[derive(Debug, Clone, Copy)]
-pub struct ForcePolygon {
+pub struct Polygon<const N: usize> {
     count: usize,
-    forces: [[f64; 2]; MOST_DIRECTIONS],
+    forces: [[f64; 2]; N],
     /// Vertex of each generator, in the caller's order.
-    vertex: [u8; MOST_DIRECTIONS],
+    vertex: [u8; N],
     generators: usize,
     /// Distance from the origin to the nearest side, 0 or below when the origin is not inside.
     wall: f64,
@@ -76,13 +79,13 @@ fn pseudo_angle(x: f64, y: f64) -> f64 {
     if y < 0.0 { p - 1.0 } else { 1.0 - p }
 }
 
-impl ForcePolygon {
-    /// Builds the polygon of forces that all have the same length (at most twelve of them).
+impl<const N: usize> Polygon<N> {
+    /// Builds the polygon of forces that all have the same length, at most `N` of them.
     pub fn new(forces: &[[f64; 2]]) -> Self {
         let n = forces.len();
-        debug_assert!(n <= MOST_DIRECTIONS);
-        let mut order = [0u8; MOST_DIRECTIONS];
-        let mut angle = [0.0; MOST_DIRECTIONS];
+        debug_assert!(n <= N);
+        let mut order = [0u8; N];
+        let mut angle = [0.0; N];
         for (i, f) in forces.iter().enumerate() {
             let a = pseudo_angle(f[0], f[1]);
             let mut at = i;
@@ -96,8 +99,8 @@ impl ForcePolygon {
         }
         let mut polygon = Self {
             count: 0,
-            forces: [[0.0; 2]; MOST_DIRECTIONS],
-            vertex: [0; MOST_DIRECTIONS],
+            forces: [[0.0; 2]; N],
+            vertex: [0; N],
             generators: n,
             wall: f64::NEG_INFINITY,
             wall_normal: [0.0; 2],
@@ -125,7 +128,7 @@ impl ForcePolygon {
 
     /// The polygon of contacts with one friction coefficient. Generator order: finger after finger, `+mu` before `-mu`.
     pub fn of_levers(levers: &[Lever], mu: f64) -> Self {
-        let mut forces = [[0.0; 2]; MOST_DIRECTIONS];
+        let mut forces = [[0.0; 2]; N];
         for (pair, lever) in forces.chunks_exact_mut(2).zip(levers) {
             let (nx, ny, tx, ty) = (lever.normal.x, lever.normal.y, mu * lever.tangent.x, mu * lever.tangent.y);
             pair[0] = [nx + tx, ny + ty];
@@ -159,7 +162,7 @@ impl ForcePolygon {
 
     /// Heights of one grasp from the least and the largest torque over l of each force, in the order the polygon was built
     /// with.
-    pub fn heights(&self, torques: &[[f64; 2]]) -> Heights {
+    pub fn heights(&self, torques: &[[f64; 2]]) -> Heights<N> {
         let mut heights = self.no_heights();
         for (&vertex, torque) in self.vertex[..self.generators].iter().zip(torques) {
             heights.cover(usize::from(vertex), torque);
@@ -168,7 +171,7 @@ impl ForcePolygon {
     }
 
     /// Heights of contacts with the friction coefficient the polygon was built for.
-    pub fn heights_of_levers(&self, levers: &[Lever], mu: f64) -> Heights {
+    pub fn heights_of_levers(&self, levers: &[Lever], mu: f64) -> Heights<N> {
         let mut heights = self.no_heights();
         for (pair, lever) in self.vertex.chunks_exact(2).zip(levers) {
             for (vertex, m) in [(pair[0], mu), (pair[1], -mu)] {
@@ -178,12 +181,16 @@ impl ForcePolygon {
         heights
     }
 
-    fn no_heights(&self) -> Heights {
-        Heights { top: [f64::NEG_INFINITY; MOST_DIRECTIONS], bottom: [f64::INFINITY; MOST_DIRECTIONS] }
+    fn no_heights(&self) -> Heights<N> {
+        Heights { top: [f64::NEG_INFINITY; N], bottom: [f64::INFINITY; N] }
     }
 
     /// Closure, quality and placement of the wrench set with these heights.
-    pub fn score(&self, heights: &Heights) -> PlanarScore {
+    pub fn score(&self, heights: &Heights<N>) -> PlanarScore {
+        self.score_and_caps(heights).0
+    }
+
+    fn score_and_caps(&self, heights: &Heights<N>) -> (PlanarScore, Option<[Cap; 2]>) {
         let mut score = PlanarScore {
             signed_quality: self.wall,
             torque_up: f64::NEG_INFINITY,
@@ -192,17 +199,12 @@ impl ForcePolygon {
             certain: true,
         };
         if self.wall <= 0.0 {
-            return score;
+            return (score, None);
         }
-        let up = self.cap(&heights.top);
-        let mut flipped = [0.0; MOST_DIRECTIONS];
-        for (flipped, bottom) in flipped.iter_mut().zip(&heights.bottom) {
-            *flipped = -bottom;
-        }
-        let down = self.cap(&flipped);
+        let [up, down] = self.caps(heights);
         score.torque_up = up.height;
         score.torque_down = down.height;
-        for (cap, sign) in [(up, 1.0), (down, -1.0)] {
+        for (cap, sign) in [(&up, 1.0), (&down, -1.0)] {
             let distance = cap.signed_square.signum() * cap.signed_square.abs().sqrt();
             if distance < score.signed_quality {
                 let [x, y, z] = cap.normal;
@@ -212,11 +214,56 @@ impl ForcePolygon {
             }
         }
         score.certain = self.reach(heights, &score.direction) <= score.signed_quality + CERTAIN;
+        (score, Some([up, down]))
+    }
+
+    /// Numbers that the wrench set with these heights does not exceed, whatever its forces: each is its reach in one
+    /// direction, the one that would be weakest if the forces had one length. The nearer they are to that the closer.
+    pub fn bounds(&self, heights: &Heights<N>) -> PlanarScore {
+        let (mut score, caps) = self.score_and_caps(heights);
+        let Some([up, down]) = caps else { return score };
+        score.signed_quality = self.reach(heights, &score.direction);
+        let torque = |cap: &Cap, sign: f64| {
+            let [x, y, z] = cap.over_axis;
+            if z > 0.0 { self.reach(heights, &Vector3::new(x / z, y / z, sign)) } else { f64::INFINITY }
+        };
+        (score.torque_up, score.torque_down) = (torque(&up, 1.0), torque(&down, -1.0));
         score
     }
 
+    /// Calls `each` with the facets of the wrench set: walls, and those of both caps. Torques as for [`Self::heights`].
+    pub fn facets(&self, torques: &[[f64; 2]], mut each: impl FnMut(Facet)) {
+        if self.wall <= 0.0 {
+            return;
+        }
+        let heights = self.heights(torques);
+        // The generator that makes the height of a vertex.
+        let (mut top, mut bottom) = ([0; N], [0; N]);
+        for (generator, (&vertex, [low, high])) in self.vertex[..self.generators].iter().zip(torques).enumerate() {
+            let vertex = usize::from(vertex);
+            if *high >= heights.top[vertex] {
+                top[vertex] = generator;
+            }
+            if *low <= heights.bottom[vertex] {
+                bottom[vertex] = generator;
+            }
+        }
+        for i in 0..self.count {
+            let j = if i + 1 == self.count { 0 } else { i + 1 };
+            let (a, b) = (self.forces[i], self.forces[j]);
+            let normal = Vector3::new(b[1] - a[1], a[0] - b[0], 0.0);
+            each(Facet { on: [top[i], top[j], top[j]], corners: 2, normal });
+        }
+        self.wrap(&heights.top, |on, [x, y, z]| {
+            each(Facet { on: on.map(|vertex| top[vertex]), corners: 3, normal: Vector3::new(x, y, z) });
+        });
+        self.wrap(&heights.bottom.map(|bottom| -bottom), |on, [x, y, z]| {
+            each(Facet { on: on.map(|vertex| bottom[vertex]), corners: 3, normal: Vector3::new(x, y, -z) });
+        });
+    }
+
     /// Largest `u . w` over vertices with their top and bottom heights.
-    fn reach(&self, heights: &Heights, u: &Vector3<f64>) -> f64 {
+    fn reach(&self, heights: &Heights<N>, u: &Vector3<f64>) -> f64 {
         let z = if u.z >= 0.0 { &heights.top } else { &heights.bottom };
         let mut reach = f64::NEG_INFINITY;
         for (f, z) in self.forces[..self.count].iter().zip(z) {
@@ -225,11 +272,41 @@ impl ForcePolygon {
         reach
     }
 
-    /// Wraps the upper envelope of heights `z` over the polygon.
-    fn cap(&self, z: &[f64; MOST_DIRECTIONS]) -> Cap {
+    /// The upper cap, and the lower one turned upside down.
+    fn caps(&self, heights: &Heights<N>) -> [Cap; 2] {
+        [self.cap(&heights.top), self.cap(&heights.bottom.map(|bottom| -bottom))]
+    }
+
+    fn cap(&self, z: &[f64; N]) -> Cap {
+        let mut cap = Cap {
+            signed_square: f64::INFINITY,
+            height: f64::INFINITY,
+            normal: [0.0, 0.0, 1.0],
+            over_axis: [0.0, 0.0, 1.0],
+        };
+        self.wrap(z, |[i, ..], normal| {
+            let [x, y] = self.forces[i];
+            let offset = normal[0] * x + normal[1] * y + normal[2] * z[i];
+            let square = normal[0] * normal[0] + normal[1] * normal[1] + normal[2] * normal[2];
+            // Signed square of the distance: no root until the nearest facet is known.
+            let signed_square = offset * offset.abs() / square;
+            if signed_square < cap.signed_square {
+                cap.signed_square = signed_square;
+                cap.normal = normal;
+            }
+            if normal[2] > LEAST_SHADOW && offset < cap.height * normal[2] {
+                cap.height = offset / normal[2];
+                cap.over_axis = normal;
+            }
+        });
+        cap
+    }
+
+    /// Wraps the upper envelope of heights `z` over the polygon: the vertices of each facet, and its normal, which points
+    /// up and is not of unit length.
+    fn wrap(&self, z: &[f64; N], mut each: impl FnMut([usize; 3], [f64; 3])) {
         let point = |i: usize| [self.forces[i][0], self.forces[i][1], z[i]];
-        let mut cap = Cap { signed_square: f64::INFINITY, height: f64::INFINITY, normal: [0.0, 0.0, 1.0] };
-        let mut chords = [(0usize, 0usize); MOST_DIRECTIONS];
+        let mut chords = [(0usize, 0usize); N];
         chords[0] = (0, self.count - 1);
         let mut open = 1;
         while open > 0 {
@@ -247,17 +324,7 @@ impl ForcePolygon {
                     normal = facet_normal(&base, &a, &p);
                 }
             }
-            let offset = normal[0] * a[0] + normal[1] * a[1] + normal[2] * a[2];
-            let square = normal[0] * normal[0] + normal[1] * normal[1] + normal[2] * normal[2];
-            // Signed square of the distance: no root until the nearest facet is known.
-            let signed_square = offset * offset.abs() / square;
-            if signed_square < cap.signed_square {
-                cap.signed_square = signed_square;
-                cap.normal = normal;
-            }
-            if normal[2] > LEAST_SHADOW {
-                cap.height = cap.height.min(offset / normal[2]);
-            }
+            each([i, apex, j], normal);
             if apex - i > 1 {
                 chords[open] = (i, apex);
                 open += 1;
@@ -267,16 +334,26 @@ impl ForcePolygon {
                 open += 1;
             }
         }
-        cap
     }
 }
 
-impl Heights {
+impl<const N: usize> Heights<N> {
     /// Raises the top and lowers the bottom over a vertex to cover `[bottom, top]`.
     fn cover(&mut self, vertex: usize, [bottom, top]: &[f64; 2]) {
         self.top[vertex] = self.top[vertex].max(*top);
         self.bottom[vertex] = self.bottom[vertex].min(*bottom);
     }
+}
+
+/// A facet of a wrench set.
+#[derive(Debug, Clone, Copy)]
+pub struct Facet {
+    /// Generators it touches.
+    pub on: [usize; 3],
+    /// How many of them count: two on a wall, three on a cap.
+    pub corners: usize,
+    /// Outward normal, not of unit length.
+    pub normal: Vector3<f64>,
 }
 
 struct Cap {
@@ -286,6 +363,8 @@ struct Cap {
     height: f64,
     /// Normal (not unit) of the nearest facet, pointing up.
     normal: [f64; 3],
+    /// The same of the facet that crosses the torque axis lowest.
+    over_axis: [f64; 3],
 }
 
 /// Upward normal of the plane through a, apex and a + base, for an apex on the right of the base.

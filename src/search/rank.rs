@@ -48,7 +48,7 @@ pub struct Ranking {
     pub proof: Option<Proof>,
     /// Sites candidate sets were made of; 0 where none were needed.
     pub sites: usize,
-    /// Candidate sets looked at: sets of sites, or placements and boxes of placements of a proof.
+    /// Candidate sets looked at: sets of sites, or the placements a proof scored.
     pub examined: u64,
     /// Those closed among them.
     pub closed: u64,
@@ -195,10 +195,10 @@ pub(super) fn rank_with_snapshots(
     let grasps: Vec<Listed> = rows.collect();
     Ok(Ranking {
         proof: Some(proof),
-        examined: proved.boxes,
-        closed: grasps.len() as u64,
+        examined: proved.scored,
+        closed: proved.closed,
         inconclusive: proved.inconclusive,
-        complete: proof.proved || proved.boxes < budget,
+        complete: proved.complete,
         families: grasps.len(),
         grasps,
         ..Ranking::default()

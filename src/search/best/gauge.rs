@@ -8,11 +8,13 @@
 //! Cheap before dear: the wall of the force polygon before any torque, the room before the torque, the quality before the
 //! quality per finger (at most k times it), one closure test at the friction to beat before the friction itself is sought.
 
+use super::super::family_forces::NO_LEVER;
 use super::super::order::Key;
-use super::Setting;
 use super::goal::Goal;
 use super::loads::Loads;
 use super::rail::{Contacts, Gaps, Rail, Span, contacts_over, half_mm, score_over};
+use super::tilt::{Target, Tilt};
+use super::{Setting, Tally};
 use crate::hand::FingerCount;
 use crate::mechanics::force_polygon::{CERTAIN, ForcePolygon, PlanarScore};
 use crate::mechanics::friction::{self, CLOSED, UnitForces};
@@ -48,10 +50,14 @@ pub(super) struct Gauge<'a> {
     pub k: usize,
     /// One friction coefficient for all fingers, none of them on an arc: the forces are the same all over the family.
     polygon: Option<(f64, ForcePolygon)>,
+    /// The friction coefficient, where it is one for all fingers.
+    mu: Option<f64>,
     /// The forces may positively span the plane.
     spans: bool,
     curved: bool,
     loads: Option<Loads<'a>>,
+    /// Placements looked at.
+    pub tally: Tally,
 }
 
 impl<'a> Gauge<'a> {
@@ -62,7 +68,8 @@ impl<'a> Gauge<'a> {
         rails[..k].copy_from_slice(on);
         let curved = on.iter().any(|rail| rail.bend > 0.0);
         let mu = on.iter().all(|rail| rail.mu == on[0].mu).then_some(on[0].mu);
-        let mut gauge = Self { setting, rails, k, polygon: None, spans: true, curved, loads: None };
+        let mut gauge =
+            Self { setting, rails, k, polygon: None, mu, spans: true, curved, loads: None, tally: Tally::default() };
         if !curved {
             let (mut levers, mut mus) = ([on[0].at_middle(on[0].whole); FingerCount::MOST], [0.0; FingerCount::MOST]);
             for (finger, rail) in on.iter().enumerate() {
@@ -133,8 +140,7 @@ impl<'a> Gauge<'a> {
             return NOTHING;
         }
         let bound = match goal.key {
-            Key::Quality if self.curved => Bound { merit: score.signed_quality, cut: longest },
-            Key::Quality => Bound { merit: score.signed_quality, cut: touching(&contacts, &score, spans) },
+            Key::Quality => Bound { merit: score.signed_quality, cut: self.swinging(&score.direction, spans) },
             Key::QualityPerFinger => self.per_finger(&contacts, &score, spans, level),
             Key::Placement => {
                 let beside = room_mm > torque_mm || BESIDE * half_mm(spans[longest]) > half_mm(spans[nearest]);
@@ -147,10 +153,66 @@ impl<'a> Gauge<'a> {
         if bound.merit <= level && goal.key != Key::Squeeze {
             return bound;
         }
+        if let Some(merit) = self.tilted(spans, level) {
+            return Bound { merit, ..bound };
+        }
         if floors.friction_margin > 1.0 && !self.may_close(spans, &contacts, 1.0 / floors.friction_margin) {
             return NOTHING;
         }
         self.under_load(bound, &contacts, spans, level)
+    }
+
+    /// The finger whose push in the weakest direction changes most over its interval, one that pushes farthest counting more:
+    /// cutting another does not move that facet, but may let a weaker one come forward.
+    fn swinging(&self, u: &Vector3<f64>, spans: &[Span]) -> usize {
+        let longest = widest(spans);
+        let scale_mm = self.setting.scene.frame().scale_mm;
+        let (mut swings, mut reaches) = ([0.0; FingerCount::MOST], [0.0; FingerCount::MOST]);
+        let mut most = f64::NEG_INFINITY;
+        for (finger, (rail, span)) in self.rails().iter().zip(spans).enumerate() {
+            let half = half_mm(*span);
+            let middle = farthest(&rail.at_middle(*span), rail.mu, u);
+            let ends = span.map(|end| farthest(&rail.at_middle([end, end]), rail.mu, u));
+            let swing = ends.into_iter().map(|end| (end - middle).abs()).fold(0.0, f64::max);
+            swings[finger] = swing + FLAT * half / scale_mm;
+            reaches[finger] = ends.into_iter().fold(middle, f64::max);
+            most = reaches[finger].max(most);
+        }
+        let mut best = (0.0, longest);
+        for finger in 0..self.k {
+            let counts = if reaches[finger] >= most - 1e-9 { 1.0 } else { BESIDE };
+            if counts * swings[finger] > best.0 {
+                best = (counts * swings[finger], finger);
+            }
+        }
+        best.1
+    }
+
+    /// A bound below `level` by directions that turn with the placement ([`super::tilt`]), where there is one.
+    fn tilted(&self, spans: &[Span], level: f64) -> Option<f64> {
+        let placement = self.setting.goal.key == Key::Placement;
+        if !(level > 0.0 && (self.setting.goal.key == Key::Quality || placement)) {
+            return None;
+        }
+        let mu = self.mu?;
+        let (mut levers, mut mus) = ([NO_LEVER; FingerCount::MOST], [mu; FingerCount::MOST]);
+        for ((lever, rail), span) in levers.iter_mut().zip(self.rails()).zip(spans) {
+            *lever = rail.at_middle(*span);
+        }
+        let (levers, mus) = (&levers[..self.k], &mut mus[..self.k]);
+        let own;
+        let polygon = match &self.polygon {
+            Some((_, polygon)) => polygon,
+            None => {
+                own = ForcePolygon::of_levers(levers, mu);
+                &own
+            }
+        };
+        let unit = if placement { self.setting.scene.frame().scale_mm } else { 1.0 };
+        let target =
+            if placement { Target { push: 0.0, torque: level / unit } } else { Target { push: level, torque: 0.0 } };
+        let short = Tilt::new(self.rails(), spans, levers, mus, |_| 1.0, polygon).short_by(target)?;
+        Some((level - short * unit).max(0.0))
     }
 
     /// The bound once the loads have been asked too.
@@ -290,6 +352,7 @@ impl<'a> Gauge<'a> {
         if !self.spans || !self.setting.gaps.kept(self.rails(), at) {
             return None;
         }
+        self.tally.scored += 1;
         let mut spans: Spans = [[0.0; 2]; FingerCount::MOST];
         for (span, &x) in spans.iter_mut().zip(at) {
             *span = [x, x];
@@ -305,7 +368,11 @@ impl<'a> Gauge<'a> {
             }
             None => contacts.by_definition(),
         };
-        if !(score.signed_quality > MARGINAL && score.signed_quality >= floors.quality) {
+        if !(score.signed_quality > MARGINAL) {
+            return None;
+        }
+        self.tally.closed += 1;
+        if !(score.signed_quality >= floors.quality) {
             return None;
         }
         let placement_mm = |gauge: &Self| {
@@ -384,10 +451,10 @@ impl<'a> Gauge<'a> {
     }
 }
 
-/// Share of torque below which a direction does not tell one end of an interval from the other.
-const UPRIGHT: f64 = 1e-6;
-/// What the length of an interval counts that does not touch the weakest facet.
+/// What the swing of a finger counts that does not touch the weakest facet.
 const BESIDE: f64 = 0.3;
+/// What the length of an interval counts beside its swing.
+const FLAT: f64 = 0.1;
 
 /// The longest of some intervals.
 pub(super) fn widest(spans: &[Span]) -> usize {
@@ -406,20 +473,4 @@ pub(super) fn farthest(lever: &Lever, mu: f64, u: &Vector3<f64>) -> f64 {
     let normal = u.x * n.x + u.y * n.y + u.z * lever.normal_torque;
     let along = u.x * t.x + u.y * t.y + u.z * lever.tangent_torque;
     normal + mu * along.abs() + lever.spread * u.z.abs()
-}
-
-/// The finger with the longest interval, one that touches the weakest facet counting more: cutting another does not
-/// move that facet, but may let a weaker one come forward.
-fn touching(contacts: &Contacts, score: &PlanarScore, spans: &[Span]) -> usize {
-    let u = &score.direction;
-    let mut best = (0.0, widest(spans));
-    for ((finger, lever), mu) in contacts.levers().iter().enumerate().zip(contacts.mus()) {
-        let reach = farthest(lever, *mu, u);
-        let touches = reach >= score.signed_quality - 1e-9 && u.z.abs() > UPRIGHT;
-        let half = half_mm(spans[finger]) * if touches { 1.0 } else { BESIDE };
-        if half > best.0 {
-            best = (half, finger);
-        }
-    }
-    best.1
 }

@@ -50,6 +50,11 @@ impl Goal {
         }
     }
 
+    /// The same with the gap to which the first row is polished.
+    pub(super) fn nearly(&self, merit: f64) -> f64 {
+        merit + self.gap.min(POLISHED) * merit.abs().max(self.small) + HAIR * self.unit()
+    }
+
     /// The gap between a merit and a bound on it, beside the best found.
     pub(super) fn gap_between(&self, merit: f64, bound: f64, best: f64) -> f64 {
         // Nothing is better than no friction and no squeeze.
@@ -99,5 +104,7 @@ impl Goal {
     }
 }
 
+/// Gap of a polished first row, as a part of its score.
+pub(super) const POLISHED: f64 = 1e-6;
 /// What rounding may lift a bound by, as a part of the key's unit.
 const HAIR: f64 = 1e-9;

@@ -71,13 +71,43 @@ pub(super) struct State {
     /// The bound on the whole family, until it is taken up.
     first: Option<Bound>,
     pieces: BinaryHeap<Piece>,
+    /// Boxes that need not be cut, but may hold better than the first row.
+    aside: Vec<Piece>,
     dropped: f64,
+}
+
+/// What decides whether a box is cut.
+#[derive(Clone, Copy)]
+pub(super) struct Aim {
+    /// Families whose bound is no larger are of no interest.
+    pub level: f64,
+    /// Merit of the first row: a box whose bound is larger is kept in mind even when it is not cut.
+    pub first: f64,
+    /// The first row is polished: the search goes on beyond the gap.
+    pub polish: bool,
 }
 
 impl State {
     /// Nothing but that no placement has a larger merit than `bound`.
     pub(super) fn new(family: Family, bound: Bound, lead: Option<Lead>) -> Self {
-        Self { family, lead, first: Some(bound), pieces: BinaryHeap::new(), dropped: f64::NEG_INFINITY }
+        Self {
+            family,
+            lead,
+            first: Some(bound),
+            pieces: BinaryHeap::new(),
+            aside: Vec::new(),
+            dropped: f64::NEG_INFINITY,
+        }
+    }
+
+    /// True when boxes were put aside.
+    pub(super) fn has_more(&self) -> bool {
+        !self.aside.is_empty()
+    }
+
+    /// Takes up again what was put aside.
+    pub(super) fn take_up(&mut self) {
+        self.pieces.extend(self.aside.drain(..));
     }
 
     /// True when no box is left that may be cut further.
@@ -94,7 +124,17 @@ impl State {
     /// No placement of the family has a larger merit.
     pub(super) fn bound(&self) -> f64 {
         let lead = self.lead.map_or(f64::NEG_INFINITY, |lead| lead.merit);
-        self.open_bound().max(self.dropped).max(lead)
+        let aside = self.aside.iter().map(|piece| piece.bound.merit).fold(self.dropped, f64::max);
+        self.open_bound().max(aside).max(lead)
+    }
+
+    /// Leaves a box as it is.
+    fn leave(&mut self, piece: Piece, first: f64) {
+        if piece.bound.merit > first {
+            self.aside.push(piece);
+        } else {
+            self.dropped = self.dropped.max(piece.bound.merit);
+        }
     }
 }
 
@@ -162,22 +202,26 @@ impl<'a> Plot<'a> {
     }
 
     /// Cuts boxes, the largest bound first, until none is above `level` nor above what is good enough beside the family's
-    /// own best, or so many have been looked at. `level` is what excludes the family from the list, `best` the best of all.
-    /// Returns how many boxes were looked at.
-    pub(super) fn settle(&mut self, state: &mut State, level: f64, best: Option<f64>, at_most: u64) -> u64 {
+    /// own best, or so many have been looked at. Returns how many boxes were looked at.
+    pub(super) fn settle(&mut self, state: &mut State, aim: Aim, at_most: u64) -> u64 {
         let goal = *self.gauge.goal();
         let mut boxes = 0;
         if let Some(bound) = state.first.take() {
             let whole = self.whole();
-            self.look(state, &whole, level);
+            self.look(state, &whole, aim.level);
             state.pieces.push(Piece { bound, spans: whole });
         }
         loop {
-            let level = state.lead.map_or(level, |lead| level.max(goal.enough(Some(lead.merit), best)));
+            let best = Some(aim.first).filter(|first| first.is_finite());
+            let own = state.lead.map_or(f64::NEG_INFINITY, |lead| {
+                if aim.polish { goal.nearly(lead.merit) } else { goal.enough(Some(lead.merit), best) }
+            });
+            let level = aim.level.max(own);
             let Some(top) = state.pieces.peek().copied() else { return boxes };
             if top.bound.merit <= level {
-                state.dropped = state.dropped.max(top.bound.merit);
-                state.pieces.clear();
+                for piece in std::mem::take(&mut state.pieces) {
+                    state.leave(piece, aim.first);
+                }
                 return boxes;
             }
             if boxes + 2 > at_most {
@@ -196,7 +240,7 @@ impl<'a> Plot<'a> {
                 let mut bound = self.bound(&spans, level);
                 bound.merit = bound.merit.min(top.bound.merit);
                 if bound.merit <= level {
-                    state.dropped = state.dropped.max(bound.merit);
+                    state.leave(Piece { bound, spans }, aim.first);
                     continue;
                 }
                 self.look(state, &spans, level);

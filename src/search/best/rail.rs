@@ -10,8 +10,7 @@
 //! half width covers the arc, once its forces are made longer by the largest normal part a cone edge can have,
 //! cos(psi - phi) / cos psi (1 / cos psi when phi > psi). All of it shrinks to the contact itself as the piece gets shorter.
 //!
-//! That error is as long as the piece; where the generators are few enough, a cover with an error of the second order takes its
-//! place. A cone edge turned by theta has its torque about the arc's centre o unchanged, k, so its generator is
+//! That error is as long as the piece; in the plane a cover with an error of the second order takes its place. A cone edge turned by theta has its torque about the arc's centre o unchanged, k, so its generator is
 //! (f, ((o - c) x f + k) / l): linear in the force f, which runs along a circle. The chord between the forces at the two ends,
 //! both made longer by 1 / cos phi, passes outside that circle; on it lie the points (f / cos theta,
 //! ((o - c) x f / cos theta + k') / l) for every k' from k to k / cos phi once both ends have both torques, and one of them is
@@ -20,8 +19,8 @@
 
 use super::super::scene::Scene;
 use crate::hand::{self, FingerCount, Hand, Tip};
-use crate::mechanics::force_polygon::PlanarScore;
-use crate::mechanics::wrench::{MOST_GENERATORS, cross};
+use crate::mechanics::force_polygon::{CERTAIN, PlanarScore, Polygon};
+use crate::mechanics::wrench::{MOST_DIRECTIONS, MOST_GENERATORS, cross};
 use crate::mechanics::{Lever, quality};
 use crate::part::Edge;
 use nalgebra::{Point2, Vector2, Vector3};
@@ -182,33 +181,29 @@ impl<'a> Rail<'a> {
         Some((lever, wider, (angle - turn).max(0.0).cos() / angle.cos()))
     }
 
-    /// Generators whose hull, with 0 in it, holds those of every contact with friction `mu` on a piece of an arc; nothing
-    /// where the piece turns too far.
-    fn turned_generators(&self, span: Span, mu: f64, add: &mut impl FnMut(Vector3<f64>)) -> bool {
+    /// Forces, each with a range of torques, whose hull, with 0 in it, holds the generators of every contact with friction
+    /// `mu` on a piece of an arc. The forces are longer by `longer`, which is no less than 1 / cos of half the turn.
+    fn turned(&self, span: Span, mu: f64, longer: f64, add: &mut impl FnMut([f64; 2], [f64; 2])) {
         let turn = self.half_turn(span);
-        if turn > WIDEST_TURN_RAD {
-            return false;
-        }
-        let longer = 1.0 / turn.cos();
-        let about_centre = mu / self.edge.curvature() / self.scene.frame().scale_mm;
-        for end in span {
+        let about_centre = mu / self.edge.curvature() / self.scene.frame().scale_mm * longer * (1.0 - turn.cos());
+        let ends = if turn > 0.0 { &span[..] } else { &span[..1] };
+        for &end in ends {
             let lever = self.at_middle([end, end]);
-            for (m, k) in [(mu, about_centre), (-mu, -about_centre)] {
+            for (m, change) in [(mu, about_centre), (-mu, -about_centre)] {
                 let force = (lever.normal + lever.tangent * m) * longer;
                 let torque = (lever.normal_torque + m * lever.tangent_torque) * longer;
-                add(Vector3::new(force.x, force.y, torque));
-                if turn > 0.0 && mu > 0.0 {
-                    add(Vector3::new(force.x, force.y, torque - k * (longer - 1.0)));
-                }
+                let other = torque - change;
+                add([force.x, force.y], [torque.min(other), torque.max(other)]);
                 if mu <= 0.0 {
                     break;
                 }
             }
-            if turn <= 0.0 {
-                break;
-            }
         }
-        true
+    }
+
+    /// How fast the torque over l of a unit normal force grows along the edge, and how far it turns, both for each mm.
+    pub(super) fn per_mm(&self) -> (f64, f64) {
+        (self.torque_per_mm, self.edge.curvature())
     }
 
     /// How far the wrench of a unit normal force moves, at most, from the middle of a piece of an arc to anywhere on it,
@@ -252,31 +247,57 @@ pub(super) fn contacts_over(rails: &[&Rail<'_>], spans: &[Span], mu_of: impl Fn(
     Some(contacts)
 }
 
-/// Closure, quality and placement over a box with fingers on arcs, by the plain definition: no number is below that of any
-/// placement in the box, where that is closed. Nothing where an arc turns too far.
+/// Most forces that cover a box: two at either end of each piece.
+const MOST_COVERING: usize = 2 * MOST_DIRECTIONS;
+
+/// Closure, quality and placement over a box with fingers on arcs: no number is below that of any placement in the box,
+/// where that is closed. Nothing where an arc turns too far.
+#[expect(clippy::float_cmp, reason = "equal means copied from the same setting, digit for digit")]
 pub(super) fn score_over(rails: &[&Rail<'_>], spans: &[Span], mu_of: impl Fn(&Rail<'_>) -> f64) -> Option<PlanarScore> {
-    let most: usize = rails.iter().map(|rail| if rail.bend > 0.0 { 8 } else { 4 }).sum();
-    if most > MOST_GENERATORS {
-        return Some(contacts_over(rails, spans, mu_of)?.by_definition());
+    let turns = rails.iter().zip(spans).map(|(rail, span)| rail.half_turn(*span));
+    let turn = turns.fold(0.0, f64::max);
+    if turn > WIDEST_TURN_RAD {
+        return None;
     }
-    let mut generators = [Vector3::zeros(); MOST_GENERATORS];
+    // All forces longer by the same: where they have one friction they end on one circle, as the kernel wants them. That
+    // takes nothing from a hull with 0 in it.
+    let longer = 1.0 / turn.cos();
+    let (mut forces, mut torques) = ([[0.0; 2]; MOST_COVERING], [[0.0; 2]; MOST_COVERING]);
     let mut n = 0;
-    let mut add = |generator| {
-        generators[n] = generator;
+    let mut add = |force, torque| {
+        (forces[n], torques[n]) = (force, torque);
         n += 1;
     };
+    let mut alike = true;
     for (rail, span) in rails.iter().zip(spans) {
         let mu = mu_of(rail);
+        alike &= mu == mu_of(rails[0]);
         if rail.bend > 0.0 {
-            if !rail.turned_generators(*span, mu, &mut add) {
-                return None;
+            rail.turned(*span, mu, longer, &mut add);
+            continue;
+        }
+        let (lever, mu, _) = rail.over(*span, mu)?;
+        for m in [mu, -mu] {
+            let force = (lever.normal + lever.tangent * m) * longer;
+            add([force.x, force.y], lever.torques(m).map(|torque| torque * longer));
+            if mu <= 0.0 {
+                break;
             }
-        } else {
-            let (lever, mu, _) = rail.over(*span, mu)?;
-            lever.generators(mu).iter().copied().for_each(&mut add);
         }
     }
-    Some(quality::by_definition(&generators[..n]))
+    let polygon = Polygon::<MOST_COVERING>::new(&forces[..n]);
+    let mut score = polygon.bounds(&polygon.heights(&torques[..n]));
+    // Forces of several lengths need not end in convex position, and the bounds be far off.
+    if !alike && !score.certain && 2 * n <= MOST_GENERATORS {
+        let mut generators = [Vector3::zeros(); MOST_GENERATORS];
+        for (pair, ([x, y], torques)) in generators.chunks_exact_mut(2).zip(forces.iter().zip(&torques[..n])) {
+            pair.copy_from_slice(&torques.map(|torque| Vector3::new(*x, *y, torque)));
+        }
+        score = quality::by_definition(&generators[..2 * n]);
+    }
+    // Merged directions move a generator by less.
+    score.signed_quality += CERTAIN;
+    Some(score)
 }
 
 /// Whether fingers keep their gaps, and when they cannot.

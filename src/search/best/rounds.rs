@@ -6,8 +6,8 @@ use super::super::rank::{Cancel, Cancelled, Listed};
 use super::super::scene::Spot;
 use super::cover::{Cover, Screened};
 use super::gauge::{Bound, Spots};
-use super::plot::{Lead, Plot, State};
-use super::{Proved, ProvedGrasp, Proving, Setting, improve, start};
+use super::plot::{Aim, Lead, Plot, State};
+use super::{Proved, ProvedGrasp, Proving, Setting, Tally, improve, start};
 use crate::hand::Closing;
 use crate::mechanics::Verdict;
 use rayon::prelude::*;
@@ -22,6 +22,9 @@ const BOXES_A_ROUND: u64 = 128;
 const SCREENED_A_BOX: u64 = 1000;
 /// Progress is told so many times before a list goes with it: a short search needs none.
 const FIRST_SNAPSHOT: u32 = 4;
+/// Boxes the polishing of the first row may take: one for so many looked at before, and so many more.
+const POLISH_SHARE: u64 = 3;
+const POLISH_BOXES: u64 = 256;
 /// Beginnings screened between two looks at the budget and at the wish to stop.
 const BEGINNINGS: usize = 16;
 
@@ -35,6 +38,10 @@ pub(super) struct Search<'a> {
     snapshot_rows: usize,
     /// Times progress was told.
     told: u32,
+    /// Families were left out because the budget ended.
+    cut_short: bool,
+    /// The budget ended before all was settled to the gap.
+    pub(super) spent: bool,
     /// The best found of each family that may come into the list.
     leads: BTreeMap<Family, Lead>,
     /// Families looked at once that may hold better, with their bounds.
@@ -48,6 +55,12 @@ pub(super) struct Search<'a> {
     boxes: u64,
     families: u64,
     opened: u64,
+    tally: Tally,
+    /// Families that are settled but for boxes put aside.
+    aside: Vec<State>,
+    /// Families looked at that need not be opened, but may hold better than the first row.
+    passed: Vec<(Bound, Family)>,
+    polished: bool,
 }
 
 impl<'a> Search<'a> {
@@ -65,6 +78,8 @@ impl<'a> Search<'a> {
             cancel,
             snapshot_rows,
             told: 0,
+            cut_short: false,
+            spent: false,
             leads: BTreeMap::new(),
             waiting: Vec::new(),
             open: Vec::new(),
@@ -73,6 +88,10 @@ impl<'a> Search<'a> {
             boxes: 0,
             families: 0,
             opened: 0,
+            tally: Tally::default(),
+            aside: Vec::new(),
+            passed: Vec::new(),
+            polished: false,
         }
     }
 
@@ -93,11 +112,24 @@ impl<'a> Search<'a> {
         self.setting.goal.enough(merits.get(self.want - 1).copied(), merits.first().copied())
     }
 
+    /// Merit of the first row so far.
+    fn first(&self) -> f64 {
+        self.leads.values().map(|lead| lead.merit).fold(f64::NEG_INFINITY, f64::max)
+    }
+
+    /// What a family has to beat to matter, to the list or to its first row.
+    fn least(&self) -> f64 {
+        let first = self.first();
+        if first.is_finite() { self.level().min(self.setting.goal.nearly(first)) } else { self.level() }
+    }
+
     /// Good placements to begin with, so that most families never have to be opened.
     pub(super) fn start(&mut self, known: &[Vec<Spot>]) -> Result<(), Cancelled> {
         self.know(known)?;
         if self.setting.scene.setup().hand.closing == Closing::Free {
-            for (family, lead) in start::leads(self.setting, self.want, self.cancel)? {
+            let (leads, tally) = start::leads(self.setting, self.want, self.cancel)?;
+            self.tally.add(tally);
+            for (family, lead) in leads {
                 self.offer(family, lead);
             }
             self.forget();
@@ -119,7 +151,11 @@ impl<'a> Search<'a> {
 
     /// True when the budget ended before all was settled.
     pub(super) fn is_spent(&self) -> bool {
-        !self.open.is_empty() || !self.waiting.is_empty() || self.boxes >= self.budget
+        let level = self.level();
+        let is_open = |bound: f64| bound > level;
+        self.cut_short
+            || self.open.iter().any(|state| is_open(state.open_bound()))
+            || self.waiting.iter().any(|(bound, _)| is_open(bound.merit))
     }
 
     /// Looks once at every family that its directions do not exclude.
@@ -134,7 +170,7 @@ impl<'a> Search<'a> {
         if start::never_closes(setting) {
             return Ok(());
         }
-        let level = self.level();
+        let level = self.least();
         let cover = Cover::above(setting, level);
         let patience = self.budget.saturating_mul(SCREENED_A_BOX);
         let beginnings: Vec<u32> = setting.following(0, 0).map(|rail| rail as u32).collect();
@@ -153,12 +189,18 @@ impl<'a> Search<'a> {
             observe(self.progress()?);
             if stopped || self.boxes >= self.budget {
                 if group.last() != beginnings.last() || stopped {
-                    self.dropped = self.dropped.max(self.any());
+                    self.cut_short();
                 }
                 break;
             }
         }
         Ok(())
+    }
+
+    /// The budget ended before every family was looked at.
+    fn cut_short(&mut self) {
+        self.cut_short = true;
+        self.dropped = self.dropped.max(self.any());
     }
 
     /// What no family can beat.
@@ -177,7 +219,7 @@ impl<'a> Search<'a> {
         let left = usize::try_from(self.left()).unwrap_or(usize::MAX);
         let (now, never) = families.split_at(left.min(families.len()));
         if !never.is_empty() {
-            self.dropped = self.dropped.max(self.any());
+            self.cut_short();
         }
         let setting = self.setting;
         let look = |family: &Family| {
@@ -220,51 +262,104 @@ impl<'a> Search<'a> {
     /// One round; false when there was nothing to do, or nothing to do it with.
     fn round(&mut self, size: usize) -> Result<bool, Cancelled> {
         let level = self.level();
-        let best = self.merits().first().copied();
-        if let Some((bound, _)) = self.waiting.last()
-            && bound.merit <= level
-        {
-            self.dropped = self.dropped.max(bound.merit);
-            self.waiting.clear();
+        if self.waiting.last().is_some_and(|(bound, _)| bound.merit <= level) {
+            self.passed.append(&mut self.waiting);
         }
-        let mut round = self.next(size);
+        let aim = Aim { level, first: self.first(), polish: false };
+        let mut round = self.next(size, level);
         let most = BOXES_A_ROUND.min(self.left() / round.len().max(1) as u64);
         if round.is_empty() || most < 2 {
             self.open.append(&mut round);
             return Ok(false);
         }
+        self.work(round, aim, most)?;
+        Ok(true)
+    }
+
+    /// Cuts boxes of some families, and puts together what they came to.
+    fn work(&mut self, round: Vec<State>, aim: Aim, most: u64) -> Result<(), Cancelled> {
         let (setting, cancel) = (self.setting, self.cancel);
         let work = |mut state: State| {
             if cancel.is_cancelled() {
                 return None;
             }
             let mut plot = Plot::new(setting, &state.family);
-            let boxes = plot.settle(&mut state, level, best, most);
-            Some((state, boxes))
+            let boxes = plot.settle(&mut state, aim, most);
+            Some((state, boxes, plot.gauge.tally))
         };
-        let done: Option<Vec<(State, u64)>> = round.into_par_iter().map(work).collect();
-        for (state, boxes) in done.ok_or(Cancelled)? {
+        let done: Option<Vec<(State, u64, Tally)>> = round.into_par_iter().map(work).collect();
+        for (state, boxes, tally) in done.ok_or(Cancelled)? {
             self.boxes += boxes;
+            self.tally.add(tally);
             if let Some(lead) = state.lead {
                 self.offer(state.family, lead);
             }
-            if state.is_settled() {
+            if state.is_settled() && state.has_more() {
+                self.aside.push(state);
+            } else if state.is_settled() {
                 self.settled.insert(state.family, state.bound());
             } else {
                 self.open.push(state);
             }
         }
         self.forget();
-        Ok(true)
+        Ok(())
     }
 
-    /// The families with the largest bounds, at most so many.
-    fn next(&mut self, size: usize) -> Vec<State> {
+    /// Goes on where something better than the first row may be, as far as a share of the boxes looked at so far.
+    pub(super) fn polish(&mut self, observe: &(dyn Fn(Proving) + Sync)) -> Result<(), Cancelled> {
+        let first = self.first();
+        if !first.is_finite() || self.is_spent() {
+            self.waiting.append(&mut self.passed);
+            self.polished = !first.is_finite() && self.highest() <= self.setting.goal.enough(None, None);
+            return Ok(());
+        }
+        let extra = self.boxes / POLISH_SHARE + POLISH_BOXES;
+        let budget = self.budget;
+        self.budget = budget.min(self.boxes + extra);
+        let passed = std::mem::take(&mut self.passed);
+        let (more, over): (Vec<_>, Vec<_>) = passed.into_iter().partition(|(bound, _)| bound.merit > first);
+        self.dropped = over.iter().map(|(bound, _)| bound.merit).fold(self.dropped, f64::max);
+        self.waiting = more;
+        self.waiting.sort_by(|a, b| a.0.merit.total_cmp(&b.0.merit).then_with(|| b.1.cmp(&a.1)));
+        loop {
+            for mut state in std::mem::take(&mut self.aside) {
+                state.take_up();
+                self.open.push(state);
+            }
+            let first = self.first();
+            let level = self.setting.goal.nearly(first);
+            let is_over = |bound: f64| bound <= level;
+            let waits = self.waiting.last().is_some_and(|(bound, _)| !is_over(bound.merit));
+            let opens = self.open.iter().any(|state| !is_over(state.open_bound()));
+            if !waits && !opens {
+                self.polished = self.highest() <= level;
+                break;
+            }
+            let now = self.next(ROUND[0], level);
+            let most = BOXES_A_ROUND.min(self.left() / now.len().max(1) as u64);
+            if most < 2 {
+                self.open.extend(now);
+                break;
+            }
+            self.work(now, Aim { level, first: level, polish: true }, most)?;
+            observe(self.progress()?);
+        }
+        self.budget = budget;
+        Ok(())
+    }
+
+    /// The families with the largest bounds above a level, at most so many.
+    fn next(&mut self, size: usize, level: f64) -> Vec<State> {
         self.open.sort_by(|a, b| a.open_bound().total_cmp(&b.open_bound()).then_with(|| b.family.cmp(&a.family)));
         let mut round = Vec::with_capacity(size);
         while round.len() < size {
             let waits = self.waiting.last().map_or(f64::NEG_INFINITY, |(bound, _)| bound.merit);
-            if self.open.last().is_some_and(|state| state.open_bound() >= waits) {
+            let opens = self.open.last().map_or(f64::NEG_INFINITY, State::open_bound);
+            if !(opens.max(waits) > level) {
+                break;
+            }
+            if opens >= waits {
                 round.extend(self.open.pop());
             } else if let Some((bound, family)) = self.waiting.pop() {
                 self.opened += 1;
@@ -296,11 +391,18 @@ impl<'a> Search<'a> {
         });
     }
 
+    /// The largest of all bounds and merits.
+    fn highest(&self) -> f64 {
+        let waiting = self.waiting.iter().map(|(bound, _)| bound.merit);
+        let open = self.open.iter().chain(&self.aside).map(State::bound);
+        let waiting = waiting.chain(self.passed.iter().map(|(bound, _)| bound.merit));
+        let bounds = waiting.chain(open).chain(self.settled.values().copied());
+        bounds.fold(self.dropped.max(self.first()), f64::max).min(self.any())
+    }
+
     fn progress(&mut self) -> Result<Proving, Cancelled> {
         let best = self.merits().first().copied();
-        let waiting = self.waiting.iter().map(|(bound, _)| bound.merit);
-        let open = self.open.iter().map(State::bound);
-        let bound = waiting.chain(open).chain(self.settled.values().copied()).chain(best).fold(self.dropped, f64::max);
+        let bound = self.highest();
         let told = |merit| self.setting.goal.told(merit);
         let gap = best.map(|best| self.setting.goal.gap_between(best, bound, best)).filter(|gap| gap.is_finite());
         let (best, bound) = (best.map(told), bound.is_finite().then(|| told(bound)));
@@ -339,25 +441,30 @@ impl<'a> Search<'a> {
     /// The list, moved to the middles of plateaus and confirmed, and what is proved of it.
     pub(super) fn finish(mut self) -> Result<Proved, Cancelled> {
         let mut bounds = std::mem::take(&mut self.settled);
-        bounds.extend(self.open.drain(..).map(|state| (state.family, state.bound())));
+        let states = self.open.drain(..).chain(self.aside.drain(..));
+        bounds.extend(states.map(|state| (state.family, state.bound())));
         bounds.extend(self.waiting.drain(..).map(|(bound, family)| (family, bound.merit)));
         let list = self.in_order();
         let full = list.len() == self.want;
         // A family without a bound of its own is among those dropped.
         let own = |(family, lead): (Family, Lead)| {
-            let bound = bounds.remove(&family).unwrap_or(self.dropped);
+            let bound = bounds.remove(&family).unwrap_or(self.dropped).min(self.any());
             (family, lead, bound)
         };
         let list: Vec<(Family, Lead, f64)> = list.into_iter().map(own).collect();
-        let mut rest = bounds.into_values().fold(self.dropped, f64::max);
+        let mut rest = bounds.into_values().fold(self.dropped, f64::max).min(self.any());
         let (setting, cancel) = (self.setting, self.cancel);
         let row = |(family, lead, bound): &(Family, Lead, f64)| {
-            (!cancel.is_cancelled()).then(|| row(setting, family, *lead, *bound).ok_or(*bound))
+            (!cancel.is_cancelled()).then(|| {
+                let (row, tally) = row(setting, family, *lead, *bound);
+                (row.ok_or(*bound), tally)
+            })
         };
-        let rows: Option<Vec<Result<Row, f64>>> = list.par_iter().map(row).collect();
+        let rows: Option<Vec<(Result<Row, f64>, Tally)>> = list.par_iter().map(row).collect();
         let mut inconclusive = 0;
         let mut listed = Vec::with_capacity(list.len());
-        for row in rows.ok_or(Cancelled)? {
+        for (row, tally) in rows.ok_or(Cancelled)? {
+            self.tally.add(tally);
             match row {
                 Ok(row) => listed.push(row),
                 Err(bound) => {
@@ -398,9 +505,13 @@ impl<'a> Search<'a> {
             rest_bound: told(rest),
             gap,
             proved: gap <= goal.gap() + ROUNDING,
+            complete: !self.spent,
             boxes: self.boxes,
             families: self.families,
             opened: self.opened,
+            scored: self.tally.scored,
+            closed: self.tally.closed,
+            polished: self.polished && inconclusive == 0,
             inconclusive,
         }
     }
@@ -417,10 +528,14 @@ struct Row {
 }
 
 /// The grasp of a lead in the middle of its plateau; nothing when its two ways of scoring disagree.
-fn row(setting: &Setting<'_>, family: &Family, lead: Lead, bound: f64) -> Option<Row> {
+fn row(setting: &Setting<'_>, family: &Family, lead: Lead, bound: f64) -> (Option<Row>, Tally) {
     let mut plot = Plot::new(setting, family);
     let lead = improve::to_the_middle(&mut plot, lead);
-    let listed = listed(setting, &plot, &lead.at)?;
+    (confirmed(setting, &plot, lead, bound), plot.gauge.tally)
+}
+
+fn confirmed(setting: &Setting<'_>, plot: &Plot<'_>, lead: Lead, bound: f64) -> Option<Row> {
+    let listed = listed(setting, plot, &lead.at)?;
     Some(Row { listed, merit: lead.merit, bound: bound.max(lead.merit) })
 }
 

@@ -3,11 +3,11 @@
 use super::super::families::Family;
 use super::super::rank::{Cancel, Cancelled};
 use super::super::scene::Spot;
-use super::Setting;
 use super::gauge::Spots;
 use super::improve;
 use super::plot::{Lead, Plot};
 use super::rail::{Rail, middle};
+use super::{Setting, Tally};
 use crate::hand::{Closing, FingerCount, Tip};
 use rand_chacha::ChaCha8Rng;
 use rand_chacha::rand_core::{Rng, SeedableRng};
@@ -29,19 +29,27 @@ pub(super) fn never_closes(setting: &Setting<'_>) -> bool {
 }
 
 /// Good placements of some families, each start with a random stream of its own.
-pub(super) fn leads(setting: &Setting<'_>, want: usize, cancel: &Cancel) -> Result<Vec<(Family, Lead)>, Cancelled> {
+pub(super) fn leads(
+    setting: &Setting<'_>,
+    want: usize,
+    cancel: &Cancel,
+) -> Result<(Vec<(Family, Lead)>, Tally), Cancelled> {
+    let mut tally = Tally::default();
     if setting.rails.is_empty() || never_closes(setting) {
-        return Ok(Vec::new());
+        return Ok((Vec::new(), tally));
     }
     let starts = STARTS + want / 2;
-    let found: Vec<Option<Vec<(Family, Lead)>>> = (0..starts as u64)
+    let found: Vec<Option<(Vec<(Family, Lead)>, Tally)>> = (0..starts as u64)
         .into_par_iter()
         .map(|stream| (!cancel.is_cancelled()).then(|| Start::new(setting, stream).leads()))
         .collect();
-    found.into_iter().try_fold(Vec::new(), |mut all, own| {
-        all.extend(own.ok_or(Cancelled)?);
-        Ok(all)
-    })
+    let mut all = Vec::new();
+    for own in found {
+        let (leads, counted) = own.ok_or(Cancelled)?;
+        all.extend(leads);
+        tally.add(counted);
+    }
+    Ok((all, tally))
 }
 
 /// A placement known already, as leads of the families it belongs to; none where it is no grasp here. Jaws may stand so on
@@ -95,13 +103,14 @@ const AT_END_MM: f64 = 1e-6;
 struct Start<'a> {
     setting: &'a Setting<'a>,
     random: ChaCha8Rng,
+    tally: Tally,
 }
 
 impl<'a> Start<'a> {
     fn new(setting: &'a Setting<'a>, stream: u64) -> Self {
         let mut random = ChaCha8Rng::seed_from_u64(setting.scene.setup().search.seed);
         random.set_stream(stream);
-        Self { setting, random }
+        Self { setting, random, tally: Tally::default() }
     }
 
     fn pick(&mut self, count: usize) -> usize {
@@ -109,14 +118,14 @@ impl<'a> Start<'a> {
     }
 
     /// The best of some draws, with fingers exchanged until none gains, and what was come by on the way.
-    fn leads(mut self) -> Vec<(Family, Lead)> {
+    fn leads(mut self) -> (Vec<(Family, Lead)>, Tally) {
         let mut found: Vec<(Family, Lead)> = Vec::new();
         for _ in 0..DRAWS {
             let on = self.draw();
             let beat = found.last().map_or(f64::NEG_INFINITY, |(_, lead)| lead.merit);
             found.extend(self.at_middles(on, beat));
         }
-        let Some((mut family, mut lead)) = found.last().copied() else { return found };
+        let Some((mut family, mut lead)) = found.last().copied() else { return (found, self.tally) };
         for _ in 0..MOST_ROUNDS {
             let before = lead.merit;
             for finger in self.setting.kept..self.setting.fingers {
@@ -125,13 +134,15 @@ impl<'a> Start<'a> {
                     (family, lead) = better;
                 }
             }
-            lead = improve::climb(&mut Plot::new(self.setting, &family), lead);
+            let mut plot = Plot::new(self.setting, &family);
+            lead = improve::climb(&mut plot, lead);
+            self.tally.add(plot.gauge.tally);
             found.push((family, lead));
             if lead.merit <= before {
                 break;
             }
         }
-        found
+        (found, self.tally)
     }
 
     fn draw(&mut self) -> Vec<u32> {
@@ -143,7 +154,7 @@ impl<'a> Start<'a> {
     }
 
     /// A family with every finger in the middle of its stretch, those that share one spread evenly.
-    fn at_middles(&self, on: Vec<u32>, beat: f64) -> Option<(Family, Lead)> {
+    fn at_middles(&mut self, on: Vec<u32>, beat: f64) -> Option<(Family, Lead)> {
         let family = Family::new(&on);
         let mut plot = Plot::new(self.setting, &family);
         let whole = plot.whole();
@@ -158,7 +169,9 @@ impl<'a> Start<'a> {
                 at[first + i] = from + (to - from) * i as f64 / (run.len() - 1) as f64;
             }
         }
-        plot.value(&at, beat).map(|merit| (family, Lead { merit, at }))
+        let merit = plot.value(&at, beat);
+        self.tally.add(plot.gauge.tally);
+        merit.map(|merit| (family, Lead { merit, at }))
     }
 
     /// The family with one finger on the stretch where it gains most, every finger in the middle of its own.
