@@ -98,6 +98,7 @@ fn rank_prints_the_promised_object() {
                 "loads",
                 "bearing",
                 "jaws",
+                "bound",
                 "envelope",
                 "standing",
             ])

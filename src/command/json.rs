@@ -7,7 +7,7 @@ use crate::file::{CLOSINGS, DRIVES, TIPS, word_for};
 use crate::mechanics::Assessment;
 use crate::mechanics::escape::Escape;
 use crate::part::Part;
-use crate::search::{Grasp, Scene};
+use crate::search::{Grasp, Listed, Scene};
 use loads::{HoldingReport, StandingReport};
 use nalgebra::{Point2, Vector2};
 use serde::Serialize;
@@ -75,6 +75,8 @@ pub(super) struct GraspReport {
     holding: HoldingReport,
     /// Where a pair of parallel jaws stands; hands whose fingers close freely have none.
     jaws: Option<JawsReport>,
+    /// No placement of its family scores better on the sort key; null where only given contacts or sites were looked at.
+    bound: Option<f64>,
     /// At the other frictions of the band; given contacts only.
     standing: Option<Vec<StandingReport>>,
     /// Largest acceleration held in each of even directions of the plane; given contacts only, null where it has none.
@@ -162,12 +164,6 @@ impl<'a> Report<'a> {
         self.grasps.push(own);
     }
 
-    /// Adds a grasp with its scores below those that are there.
-    pub(super) fn add_scores(&mut self, scene: &Scene, grasp: &Grasp, a: &Assessment) {
-        let own = self.scores(scene, grasp, a, a.verdict.word());
-        self.grasps.push(own);
-    }
-
     fn scores(&self, scene: &Scene, grasp: &Grasp, a: &Assessment, verdict: &'static str) -> GraspReport {
         GraspReport {
             rank: self.grasps.len() + 1,
@@ -200,9 +196,17 @@ impl<'a> Report<'a> {
                 opening_mm: jaws.opening_mm,
                 inside: jaws.inside,
             }),
+            bound: None,
             standing: None,
             envelope: None,
         }
+    }
+
+    /// Adds a row of a ranking.
+    pub(super) fn add_row(&mut self, scene: &Scene, row: &Listed) {
+        let mut own = self.scores(scene, &row.grasp, &row.assessment, row.assessment.verdict.word());
+        own.bound = row.bound.filter(|bound| bound.is_finite());
+        self.grasps.push(own);
     }
 }
 

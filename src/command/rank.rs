@@ -80,7 +80,7 @@ pub(super) fn run(args: &RankArgs) -> Result<Answer, Stop> {
         report.inconclusive = ranking.inconclusive;
         report.complete = ranking.complete;
         for listed in &ranking.grasps {
-            report.add_scores(&scene, &listed.grasp, &listed.assessment);
+            report.add_row(&scene, listed);
         }
         if ranking.grasps.is_empty() {
             output::note(&why_empty(&scene, &ranking));

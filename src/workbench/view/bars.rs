@@ -31,7 +31,10 @@ pub(super) fn header(state: &State, area: Rect, buf: &mut Buffer) {
         limit,
         format!("by {}", state.order.key.word().replace('_', " ")),
         listing.to_owned(),
-        format!("sites {} mm", number::mm(setup.search.spacing_for(part))),
+        match state.order.listing {
+            Listing::Families => String::new(),
+            Listing::Members => format!("sites {} mm", number::mm(setup.search.spacing_for(part))),
+        },
     ] {
         let gap = if knobs.is_empty() || knob.is_empty() { "" } else { "  " };
         if knobs.len() + gap.len() + knob.len() > usize::from(left.width) {
