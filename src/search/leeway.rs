@@ -102,9 +102,9 @@ fn of_jaws(scene: &Scene, grasp: &Grasp) -> Option<Vec<Leeway>> {
         [Spot { along_mm: own, ..*a }, Spot { along_mm: other, ..*b }]
     };
     let well = |at_mm: f64| {
-        scene.grasp(&spots(at_mm)).is_ok_and(|moved| {
-            moved.fits() && Assessment::verdict_at(&scene.wrenches(&moved)) == Verdict::Closed
-        })
+        scene
+            .grasp(&spots(at_mm))
+            .is_ok_and(|moved| moved.fits() && Assessment::verdict_at(&scene.wrenches(&moved)) == Verdict::Closed)
     };
     let toward = |end_mm: f64| match first_loss(well, here, end_mm, STEPS) {
         Some((inside, _)) => (spots(inside), EndedBy::Closure),
@@ -112,8 +112,7 @@ fn of_jaws(scene: &Scene, grasp: &Grasp) -> Option<Vec<Leeway>> {
     };
     let (start, end) = (toward(0.0), toward(run.length_mm()));
     let of = |finger: usize| {
-        let [mut back, mut on] =
-            [&start, &end].map(|(spots, by)| End { along_mm: spots[finger].along_mm, by: *by });
+        let [mut back, mut on] = [&start, &end].map(|(spots, by)| End { along_mm: spots[finger].along_mm, by: *by });
         if back.along_mm > on.along_mm {
             std::mem::swap(&mut back, &mut on);
         }

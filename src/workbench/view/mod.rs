@@ -15,6 +15,7 @@ mod holding;
 mod loads;
 mod number;
 mod outline;
+mod picture;
 mod reading;
 mod sheet;
 mod table;
@@ -180,7 +181,7 @@ fn bench(state: &State, layout: &Layout, buf: &mut Buffer) {
         }
     }
     if let Some(area) = layout.outline {
-        outline::render(state, area, buf);
+        picture::render(state, area, buf);
     }
     if let Some(area) = layout.table {
         table::render(state, area, buf);
