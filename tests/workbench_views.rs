@@ -7,11 +7,23 @@ use desk::Desk;
 
 #[test]
 fn look() {
-    let mut desk = Desk::loaded();
-    for size in [(80, 24), (120, 40)] {
-        for key in 1..=7 {
-            desk.keys(&key.to_string());
-            println!("=== {key} {size:?}\n{}", desk.resized(size.0, size.1));
+    let mut n = 0;
+    for fingers in ["F", "FT", "", "T", "f"] {
+        for row in 0..40 {
+            let mut desk = Desk::hinge();
+            desk.keys(fingers);
+            desk.keys(&"j".repeat(row));
+            desk.resized(100, 36);
+            for mu in ["0.1", "0.05", "0"] {
+                desk.keys(&format!("={mu}<cr>3"));
+                let s = desk.screen(100, 36);
+                if s.contains("clockwise only") && n < 300 {
+                    n += 1;
+                    if n % 15 == 1 {
+                        println!("=== {fingers} {row} {mu}\n{}", s);
+                    }
+                }
+            }
         }
     }
 }

@@ -313,7 +313,7 @@ pub static TABLE: &[Row] = &[
         A::NextSide,
         S::Bench,
         &[C('y')],
-        "next side",
+        "next",
         "forces: next load case; wrench set: seen from the next side",
         picture::steps,
     ),

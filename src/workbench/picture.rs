@@ -35,10 +35,10 @@ impl Picture {
             Self::Fingers => "fingers",
             Self::Forces => "forces",
             Self::Labels => "moment labels",
-            Self::Envelope => "accelerations held",
+            Self::Envelope => "accelerations",
             Self::Room => "room",
-            Self::Wrenches => "wrench set",
-            Self::Friction => "over friction",
+            Self::Wrenches => "wrenches",
+            Self::Friction => "friction",
         }
     }
 

@@ -363,7 +363,10 @@ impl Pen {
                 if 2.0 * hand.pin_radius_mm < LEAST_BODY * row_mm {
                     return None;
                 }
-                self.circle(middle, hand.pin_radius_mm, None, Depth::Body, style);
+                // A circle of a few cells is even all round only about the middle of one.
+                let cell = self.fit.rounded(middle);
+                let even = if self.look.marker == Marker::Braille { middle } else { self.fit.point(cell.0, cell.1) };
+                self.circle(even, hand.pin_radius_mm, None, Depth::Body, style);
                 Some(middle)
             }
             Tip::Pad => {

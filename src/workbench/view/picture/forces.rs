@@ -30,11 +30,18 @@ pub(super) fn picture<'a>(state: &'a State, reading: &'a Reading) -> Shown<'a> {
     let at =
         holding.map_or(0, |holding| state.view.case.filter(|c| *c < holding.cases.len()).unwrap_or(holding.governing));
     let case = holding.and_then(|holding| holding.cases.get(at));
-    let mut told = match (holding, case) {
+    let told = match (holding, case) {
         (Some(holding), Some(case)) => {
-            let mut told = about(case, at == holding.governing);
+            let forces = if case.forces.is_empty() { vec![no_forces(case).to_owned()] } else { list(&case.forces) };
+            let mut told = vec![about(case), forces, Vec::new()];
+            if let Some(deg) = case.direction_deg {
+                told[2].push(format!("worst when accelerated toward {} deg", number::degrees(deg)));
+            }
+            if at == holding.governing {
+                told[2].push("asks most".to_owned());
+            }
             if holding.cases.len() > 1 {
-                told[0].push(format!("{} next case", key_of(Action::NextSide)));
+                told[2].push(format!("case {} of {}: {} next", at + 1, holding.cases.len(), key_of(Action::NextSide)));
             }
             told
         }
@@ -48,9 +55,6 @@ pub(super) fn picture<'a>(state: &'a State, reading: &'a Reading) -> Shown<'a> {
         }
     };
     let forces = case.map_or(&[][..], |case| &case.forces);
-    if let Some(case) = case {
-        told.push(if forces.is_empty() { vec![no_forces(case).to_owned()] } else { list(forces) });
-    }
     let paint = move |paper: super::Paper| {
         let mut pen = Pen::on_part(state, paper.size, FREE);
         pen.part(scene);
@@ -64,17 +68,10 @@ pub(super) fn picture<'a>(state: &'a State, reading: &'a Reading) -> Shown<'a> {
     Shown { told, paint: Box::new(paint) }
 }
 
-/// The case: its name, its squeeze, its worst direction, whether it is held.
-fn about(case: &CaseHolding, governs: bool) -> Vec<Vec<String>> {
-    let mut told = vec![format!("\"{}\"{}", cut(&shown(&case.name), NAME), if governs { " asks most" } else { "" })];
-    if let Some(n) = case.squeeze_n {
-        told.push(format!("{} N each", number::mm(n)));
-    }
-    told.push(held_word(case).to_owned());
-    if let Some(deg) = case.direction_deg {
-        told.push(format!("toward {} deg", number::degrees(deg)));
-    }
-    vec![told]
+/// The case: its name, its squeeze, whether it is held.
+fn about(case: &CaseHolding) -> Vec<String> {
+    let squeeze = case.squeeze_n.map_or(String::new(), |n| format!(" {} N each,", number::mm(n)));
+    vec![format!("\"{}\"{squeeze} {}", cut(&shown(&case.name), NAME), held_word(case))]
 }
 
 fn no_forces(case: &CaseHolding) -> &'static str {
@@ -93,9 +90,7 @@ fn list(forces: &[FingerForce]) -> Vec<String> {
         let up = if any_up { format!(" {up} up") } else { String::new() };
         format!("{} {normal} in {along} along{up}", finger + 1)
     };
-    let mut told: Vec<String> = forces.iter().enumerate().map(of).collect();
-    told.push("N".to_owned());
-    told
+    forces.iter().enumerate().map(of).collect()
 }
 
 /// A force in the part plane, N.

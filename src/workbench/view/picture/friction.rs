@@ -67,16 +67,19 @@ pub(super) fn picture<'a>(state: &'a State, reading: &'a Reading) -> Shown<'a> {
     let limit_n = scene.limit(&reading.grasp).map(|limit| limit.squeeze_n);
     let here_n = sample(scene, &wrenches, own_mu).squeeze_n.or(top.squeeze_n);
     let top_n = here_n.map(|here_n| TALLER * limit_n.map_or(here_n, |limit_n| limit_n.max(here_n)));
-    let mut told = vec![vec![format!("* quality, top {}", number::quality(top.quality))]];
+    let mut told = vec![vec![format!("* quality to {}", number::quality(top.quality))]];
     if let Some(top_n) = top_n {
-        told[0].push(format!("s squeeze, top {} N each", number::mm(top_n)));
+        told[0].push(format!("s squeeze to {} N each", number::mm(top_n)));
     } else if !scene.cases().is_empty() {
         told[0].push("no squeeze holds the loads".to_owned());
     }
-    // More digits where mu would hide what is needed.
-    let value = |mu: f64| if mu > 0.0 && mu < 5e-5 { "0+".to_owned() } else { number::mu(mu) };
+    let value = |mark: &Mark| match mark.letter {
+        // Closed at every mu above nought.
+        'X' if mark.mu < 5e-5 => "0+".to_owned(),
+        _ => number::mu(mark.mu),
+    };
     let mut named: Vec<String> =
-        marks.iter().map(|mark| format!("{} {} {}", mark.letter, mark.word, value(mark.mu))).collect();
+        marks.iter().map(|mark| format!("{} {} {}", mark.letter, mark.word, value(mark))).collect();
     if reading.assessment.friction_needed.is_none() {
         named.push("no friction will do".to_owned());
     }

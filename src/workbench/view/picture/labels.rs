@@ -7,6 +7,7 @@ use super::super::sheet::Depth;
 use super::Shown;
 use crate::mechanics::Verdict;
 use crate::mechanics::labels::{Label, Labels, Sign};
+use nalgebra::Point2;
 
 const FREE: (u16, u16) = (8, 4);
 /// Points are looked for in a box so many times as large as the part.
@@ -30,22 +31,22 @@ fn told(state: &State, reading: &Reading, labels: &Labels) -> Vec<String> {
     let part = state.order.scene.part();
     let verdict = reading.assessment.verdict;
     if verdict == Verdict::Closed {
-        return vec![
-            "closed".to_owned(),
-            "no point has a label: about each the fingers turn the part both ways".to_owned(),
-        ];
+        return vec!["closed, so no point has a label: about each the fingers turn the part both ways".to_owned()];
     }
     let (low, high) = part.outline().bounds();
     let far = (high - low) * FAR;
-    let any = |sign: Sign| !labels.region(sign, low - far, high + far).is_empty();
-    let mut told = vec![verdict.word().to_owned()];
-    match (any(Sign::Plus), any(Sign::Minus)) {
-        (false, false) => told.push("no point near the part has a label: they lie at infinity".to_owned()),
-        (plus, minus) => {
-            told.extend(plus.then(|| "+ fingers turn it counter-clockwise only".to_owned()));
-            told.extend(minus.then(|| "- clockwise only".to_owned()));
-        }
-    }
+    let region = |sign: Sign| labels.region(sign, low - far, high + far);
+    let (plus, minus) = (region(Sign::Plus), region(Sign::Minus));
+    let word = verdict.word();
+    let mut told = if plus.is_empty() && minus.is_empty() {
+        vec![format!("{word}, yet no point near the part has a label")]
+    } else {
+        let no_moment = |q: &Point2<f64>| labels.at(*q) == Some(Label::Both);
+        let none = plus.iter().chain(&minus).all(no_moment).then_some("0 no turning at all");
+        let signs = [(plus, "+ counter-clockwise only"), (minus, "- clockwise only")];
+        let signs = signs.into_iter().filter(|(region, _)| none.is_none() && !region.is_empty());
+        std::iter::once(word).chain(none).chain(signs.map(|(_, text)| text)).map(str::to_owned).collect()
+    };
     told.extend(reading.assessment.escape.as_ref().map(|escape| escape_words(escape, part)));
     told
 }

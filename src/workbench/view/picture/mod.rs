@@ -32,7 +32,10 @@ pub(super) const HELP: [(&str, &str); 21] = [
         "3 moment +",
         "whatever the fingers do turns the part counter-clockwise about these points, or not at all (Mason 1991)",
     ),
-    ("3 moment -", "the same clockwise; a closed grasp leaves no such point"),
+    (
+        "3 moment -",
+        "the same clockwise; a closed grasp leaves no such point; 0: every finger force goes through the point",
+    ),
     (
         "4 acceler.",
         "the curve: the largest acceleration of the part held in each direction of its plane at the force limit",
@@ -127,6 +130,11 @@ fn told_lines(state: &State, told: &[Vec<String>], width: usize) -> Vec<String> 
             if long > 0 && long + gap + own <= width {
                 line.push_str(&" ".repeat(gap));
                 line.push_str(text);
+                continue;
+            }
+            if number == 0 && line == name && own <= width {
+                // The name alone is not worth a line.
+                line.clone_from(text);
                 continue;
             }
             // A long text goes on in the line it began in.

@@ -15,27 +15,20 @@ const FREE: (u16, u16) = (4, 2);
 pub(super) fn picture<'a>(state: &'a State, reading: &'a Reading) -> Shown<'a> {
     let scene = &state.order.scene;
     let leeway = leeway::leeway(scene, &reading.grasp);
-    let mut told = vec![Vec::new()];
     let parallel = scene.setup().hand.closing == Closing::Parallel;
-    told[0].push(match (&leeway, reading.assessment.verdict) {
-        (Some(_), _) if parallel => "mm along the edge, both pads together".to_owned(),
-        (Some(_), _) => "mm along the edge, the other fingers staying".to_owned(),
-        (None, Verdict::Closed) => "none: a finger stands where it may not".to_owned(),
-        (None, verdict) => format!("none: the grasp is {}", verdict.word()),
+    let words = match (&leeway, reading.assessment.verdict) {
+        (Some(_), _) if parallel => "mm, both together".to_owned(),
+        (Some(_), _) => "mm, one at a time".to_owned(),
+        (None, Verdict::Closed) => "none, a finger stands where it may not".to_owned(),
+        (None, verdict) => format!("none, the grasp is {}", verdict.word()),
+    };
+    let own = leeway.iter().flatten().enumerate();
+    let intervals = own.map(|(finger, own)| format!("{} {}", finger + 1, interval(own))).collect();
+    let stretches = reading.grasp.spots.iter().enumerate().filter_map(|(finger, spot)| {
+        let stretch = hand::stretch_around(scene.stretches(), spot.edge, spot.along_mm)?;
+        Some(format!("{} fits {} to {}", finger + 1, number::at(stretch.from_mm), number::at(stretch.to_mm)))
     });
-    told[0].push(". no finger fits".to_owned());
-    for (finger, spot) in reading.grasp.spots.iter().enumerate() {
-        let own = leeway.as_ref().and_then(|all| all.get(finger));
-        let mut line = Vec::new();
-        match own {
-            Some(own) => line.push(format!("{} {}", finger + 1, interval(own))),
-            None => line.push(format!("{} at {}", finger + 1, number::at(spot.along_mm))),
-        }
-        if let Some(stretch) = hand::stretch_around(scene.stretches(), spot.edge, spot.along_mm) {
-            line.push(format!("fits {} to {}", number::at(stretch.from_mm), number::at(stretch.to_mm)));
-        }
-        told.push(line);
-    }
+    let told = vec![vec![words], intervals, stretches.collect()];
     let paint = move |paper: super::Paper| {
         let mut pen = Pen::on_part(state, paper.size, FREE);
         pen.part(scene);
@@ -50,7 +43,7 @@ pub(super) fn picture<'a>(state: &'a State, reading: &'a Reading) -> Shown<'a> {
     Shown { told, paint: Box::new(paint) }
 }
 
-/// Both ends in mm, with what ends them where it is not the stretch.
+/// Both ends in mm from the edge's first vertex, with what ends them where it is not the stretch.
 fn interval(leeway: &Leeway) -> String {
     let why = |by: EndedBy| match by {
         EndedBy::Stretch => String::new(),

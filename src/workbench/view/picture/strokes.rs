@@ -6,6 +6,9 @@ use super::super::sheet::{Depth, Fit, Ink, Sheet, slope};
 use nalgebra::{Point2, Rotation2, Vector2};
 use ratatui::style::Style;
 
+/// Cells of a circle nearer to its middle than this part of the radius are left out.
+const THINNEST: f64 = 0.75;
+
 impl Pen {
     /// A straight stroke by the marker: signs of its slope, or dots.
     pub(in super::super) fn stroke(&mut self, a: Point2<f64>, b: Point2<f64>, depth: Depth, style: Style) {
@@ -25,18 +28,33 @@ impl Pen {
         depth: Depth,
         style: Style,
     ) {
-        // Chords of about half a cell, so that each is drawn with the slope it has.
-        let cells = radius / self.fit.cell_mm().0;
-        let sides = (cells * 8.0).ceil().clamp(16.0, 2048.0);
+        let (cell_mm, _) = self.fit.cell_mm();
+        let braille = self.look.marker == Marker::Braille;
+        let centre = self.fit.rounded(middle);
+        // Chords shorter than a cell or a dot.
+        let sides = (radius / cell_mm * 16.0).ceil().clamp(32.0, 4096.0);
         let at = |k: f64| middle + Rotation2::new(std::f64::consts::TAU * k / sides) * Vector2::new(radius, 0.0);
         for k in 0..sides as u32 {
-            let (a, b) = (at(f64::from(k)), at(f64::from(k) + 1.0));
-            match sign {
-                Some(sign) if self.look.marker != Marker::Braille => {
-                    self.sheet.stroke(self.fit.cell(a), self.fit.cell(b), Ink::Sign(sign), depth, style);
-                }
-                _ => self.stroke(a, b, depth, style),
+            let k = f64::from(k);
+            if braille {
+                self.stroke(at(k), at(k + 1.0), depth, style);
+                continue;
             }
+            // Rounded from the middle's cell, so that halves go outward on all sides.
+            let place = self.fit.cell(at(k));
+            let (column, row) = (
+                centre.0.saturating_add((place.0 - f64::from(centre.0)).round() as i32),
+                centre.1.saturating_add((place.1 - f64::from(centre.1)).round() as i32),
+            );
+            // The slope is that of the circle through the cell's middle, so that a small one is even all round.
+            let out = self.fit.point(column, row) - middle;
+            // Flat circles pass through cells far inside on their way along a row.
+            if out.norm() < THINNEST * radius {
+                continue;
+            }
+            let line = self.look.marker == Marker::Line;
+            let ink = sign.unwrap_or_else(|| slope(Vector2::new(-out.y, out.x), line));
+            self.sheet.put(column, row, ink, depth, style);
         }
     }
 
@@ -51,7 +69,12 @@ impl Pen {
 
     /// An arrow: its shaft, and its head in the cell where it ends.
     pub(super) fn arrow(&mut self, tail: Point2<f64>, tip: Point2<f64>, depth: Depth, style: Style) {
-        self.stroke(tail, tip, depth, style);
+        let (from, to) = (self.fit.cell(tail), self.fit.cell(tip));
+        let long = (to.0 - from.0).abs().max((to.1 - from.1).abs());
+        // The shaft ends a cell short of the head, so that none of it lies beside the head.
+        if long > 1.0 {
+            self.stroke(tail, tip - (tip - tail) / long, depth, style);
+        }
         let (column, row) = self.fit.rounded(tip);
         self.sheet.put(column, row, head(tip - tail), Depth::Finger, style);
     }

@@ -24,14 +24,11 @@ pub(super) fn picture<'a>(state: &'a State, reading: &'a Reading) -> Shown<'a> {
     let (axes, words) = axes(state.view.side, weakest);
     let scale = number::mm(scene.frame().scale_mm);
     let next = format!("{} next side", key_of(Action::NextSide));
-    let mut told = vec![vec![words.to_owned(), next]];
+    let mut told = vec![vec![words.to_owned()]];
     match weakest {
         Some(weakest) => {
             let quality = number::quality(assessment.quality);
-            told.push(vec![
-                format!("* ball: radius {quality} = quality"),
-                format!("arrow {}", weakest_words(&weakest)),
-            ]);
+            told.push(vec![format!("* radius = quality = {quality}"), format!("arrow {}", weakest_words(&weakest))]);
         }
         None => {
             let mut open = vec![format!("{}: no ball about + lies inside", assessment.verdict.word())];
@@ -39,7 +36,7 @@ pub(super) fn picture<'a>(state: &'a State, reading: &'a Reading) -> Shown<'a> {
             told.push(open);
         }
     }
-    told.push(vec![format!("of 1 N in all, torque over {scale} mm")]);
+    told.push(vec![next, "of 1 N in all".to_owned(), format!("torque over {scale} mm")]);
     let seen = move |w: &Vector3<f64>| Point2::new(axes[0].dot(w), axes[1].dot(w));
     let zoom = state.view.zoom();
     let quality = assessment.quality;
@@ -83,8 +80,8 @@ fn axes(side: Side, weakest: Option<Weakest>) -> (Axes, &'static str) {
             let up = across(Vector3::z()).or_else(|| across(Vector3::y())).unwrap_or_else(Vector3::y);
             ([right, up], "weakest direction right")
         }
-        (Side::Weakest, None) => ([Vector3::x(), Vector3::y()], "no weakest direction; force x right, force y up"),
-        (Side::Forces, _) => ([Vector3::x(), Vector3::y()], "force x right, force y up"),
+        (Side::Weakest, None) => ([Vector3::x(), Vector3::y()], "no weakest; force x right, y up"),
+        (Side::Forces, _) => ([Vector3::x(), Vector3::y()], "force x right, y up"),
     }
 }
 
