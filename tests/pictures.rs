@@ -252,15 +252,6 @@ fn each_finger_keeps_the_grasp_closed_up_to_the_ends_of_its_leeway_and_no_farthe
     let mut ends = Ends::default();
     let round =
         rounded_with_arcs(&[vec![([0.0, 0.0], 12.0), ([90.0, 0.0], 0.0), ([70.0, 50.0], 20.0), ([0.0, 60.0], 8.0)]]);
-    let arcs = Scene::new(Arc::new(round), scene(Tip::Pin, 3, Closing::Free).setup().clone());
-    // The rounded part has no mass, so its loads go.
-    let arcs = arcs.or_else(|_| {
-        let round = rounded_with_arcs(&[vec![
-        ([0.0, 0.0], 12.0),
-        ([90.0, 0.0], 0.0),
-        ([70.0, 50.0], 20.0),
-        ([0.0, 60.0], 8.0),
-    ]]);
     let bare = Setup { loads: Vec::new(), ..scene(Tip::Pin, 3, Closing::Free).setup().clone() };
     let scenes = [
         scene(Tip::Pin, 2, Closing::Free),
