@@ -272,7 +272,7 @@ fn a_pin_is_a_circle_at_its_true_size() {
         .lines()
         .enumerate()
         .skip(1)
-        .take(36)
+        .take(45)
         .flat_map(|(y, line)| {
             let pane: String = line.chars().take(width).collect();
             pane.match_indices(['/', '\\', '|']).map(|(x, _)| (x, y)).collect::<Vec<_>>()

@@ -38,6 +38,9 @@ pub(super) fn picture<'a>(state: &'a State, reading: &'a Reading) -> Shown<'a> {
                 pen.along(edge, own, number_sign(finger));
             }
         }
+        for contact in &reading.grasp.contacts {
+            pen.sign(contact.point, 'o', Depth::Finger, pen.look.finger());
+        }
         pen.sheet
     };
     Shown { told, paint: Box::new(paint) }
@@ -55,7 +58,7 @@ fn interval(leeway: &Leeway) -> String {
 }
 
 impl Pen {
-    /// The piece of an edge a finger has to itself, drawn thick: its number in every cell.
+    /// The piece of an edge a finger has to itself, drawn thick: its number in every cell, over the face of a pad.
     fn along(&mut self, edge: &Edge, leeway: &Leeway, sign: char) {
         let (from, to) = (leeway.back.along_mm, leeway.on.along_mm);
         // Short chords on an arc; a straight edge is one.
@@ -63,7 +66,7 @@ impl Pen {
         let at = |k: i32| self.fit.cell(edge.point_at(from + (to - from) * f64::from(k) / f64::from(chords)));
         let points: Vec<_> = (0..=chords).map(at).collect();
         for pair in points.windows(2) {
-            self.sheet.stroke(pair[0], pair[1], Ink::Sign(sign), Depth::Curve, self.look.finger());
+            self.sheet.stroke(pair[0], pair[1], Ink::Sign(sign), Depth::Finger, self.look.finger());
         }
     }
 }

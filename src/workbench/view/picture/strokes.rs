@@ -8,6 +8,10 @@ use ratatui::style::Style;
 
 /// Cells of a circle nearer to its middle than this part of the radius are left out.
 const THINNEST: f64 = 0.75;
+/// Cells within this part of the radius lie on a circle.
+const ON_IT: f64 = 0.1;
+/// Circles of a smaller radius, in columns, have one sign on either side of a row.
+const SMALL: f64 = 4.0;
 
 impl Pen {
     /// A straight stroke by the marker: signs of its slope, or dots.
@@ -48,8 +52,11 @@ impl Pen {
             );
             // The slope is that of the circle through the cell's middle, so that a small one is even all round.
             let out = self.fit.point(column, row) - middle;
-            // Flat circles pass through cells far inside on their way along a row.
-            if out.norm() < THINNEST * radius {
+            // Flat circles pass through cells far inside on their way along a row, and small ones round their corners.
+            let nearer = self.fit.point(column - (column - centre.0).signum(), row) - middle;
+            let rounded = radius < SMALL * cell_mm
+                && (nearer.norm() / radius - 1.0).abs() < (out.norm() / radius - 1.0).abs().min(ON_IT);
+            if out.norm() < THINNEST * radius || (rounded && row != centre.1) {
                 continue;
             }
             let line = self.look.marker == Marker::Line;
