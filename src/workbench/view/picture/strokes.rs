@@ -6,11 +6,7 @@ use super::super::sheet::{Depth, Fit, Ink, Sheet, slope};
 use nalgebra::{Point2, Rotation2, Vector2};
 use ratatui::style::Style;
 
-/// Cells of a circle nearer to its middle than this part of the radius are left out.
-const THINNEST: f64 = 0.75;
-/// Cells within this part of the radius lie on a circle.
-const ON_IT: f64 = 0.1;
-/// Circles of a smaller radius, in columns, have one sign on either side of a row.
+/// Circles of a smaller radius, in columns, are set cell by cell.
 const SMALL: f64 = 4.0;
 
 impl Pen {
@@ -32,36 +28,57 @@ impl Pen {
         depth: Depth,
         style: Style,
     ) {
-        let (cell_mm, _) = self.fit.cell_mm();
+        let cell_mm = self.fit.cell_mm();
         let braille = self.look.marker == Marker::Braille;
-        let centre = self.fit.rounded(middle);
+        if !braille && radius < SMALL * cell_mm.0 {
+            return self.small_circle(
+                self.fit.rounded(middle),
+                (radius / cell_mm.0, radius / cell_mm.1),
+                sign,
+                depth,
+                style,
+            );
+        }
         // Chords shorter than a cell or a dot.
-        let sides = (radius / cell_mm * 16.0).ceil().clamp(32.0, 4096.0);
+        let sides = (radius / cell_mm.0 * 16.0).ceil().clamp(32.0, 4096.0);
         let at = |k: f64| middle + Rotation2::new(std::f64::consts::TAU * k / sides) * Vector2::new(radius, 0.0);
         for k in 0..sides as u32 {
-            let k = f64::from(k);
-            if braille {
-                self.stroke(at(k), at(k + 1.0), depth, style);
-                continue;
+            let (a, b) = (at(f64::from(k)), at(f64::from(k) + 1.0));
+            match sign {
+                Some(sign) if !braille => self.sign(a, sign, depth, style),
+                _ => self.stroke(a, b, depth, style),
             }
-            // Rounded from the middle's cell, so that halves go outward on all sides.
-            let place = self.fit.cell(at(k));
-            let (column, row) = (
-                centre.0.saturating_add((place.0 - f64::from(centre.0)).round() as i32),
-                centre.1.saturating_add((place.1 - f64::from(centre.1)).round() as i32),
-            );
-            // The slope is that of the circle through the cell's middle, so that a small one is even all round.
-            let out = self.fit.point(column, row) - middle;
-            // Flat circles pass through cells far inside on their way along a row, and small ones round their corners.
-            let nearer = self.fit.point(column - (column - centre.0).signum(), row) - middle;
-            let rounded = radius < SMALL * cell_mm
-                && (nearer.norm() / radius - 1.0).abs() < (out.norm() / radius - 1.0).abs().min(ON_IT);
-            if out.norm() < THINNEST * radius || (rounded && row != centre.1) {
-                continue;
+        }
+    }
+
+    /// A circle of a few cells: two sides in each row, closed at the top and at the bottom.
+    fn small_circle(
+        &mut self,
+        (column, row): (i32, i32),
+        (across, up): (f64, f64),
+        sign: Option<char>,
+        depth: Depth,
+        style: Style,
+    ) {
+        let line = self.look.marker == Marker::Line;
+        let half = |rows: f64| across * (1.0 - (rows / up).powi(2)).max(0.0).sqrt();
+        let last = up.round() as i32;
+        let mut put = |x: i32, y: i32| {
+            // Upright beside the middle, level above and below it, slanted between.
+            let (out_x, out_y) = (f64::from(x) / across, f64::from(-y) / up);
+            let ink = sign.unwrap_or_else(|| slope(Vector2::new(-out_y, out_x), line));
+            self.sheet.put(column.saturating_add(x), row.saturating_add(y), ink, depth, style);
+        };
+        for y in -last..=last {
+            let rows = f64::from(y.abs());
+            if y.abs() == last && last > 0 {
+                let most = (half(rows - 0.5).round() as i32 - 1).max(1);
+                (-most..=most).for_each(|x| put(x, y));
+            } else {
+                let side = (half(rows).round() as i32).max(1);
+                put(-side, y);
+                put(side, y);
             }
-            let line = self.look.marker == Marker::Line;
-            let ink = sign.unwrap_or_else(|| slope(Vector2::new(-out.y, out.x), line));
-            self.sheet.put(column, row, ink, depth, style);
         }
     }
 
