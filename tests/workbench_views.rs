@@ -284,6 +284,34 @@ fn a_pin_is_a_circle_at_its_true_size() {
     assert!(PI * across as f64 > 30.0, "{screen}");
 }
 
+/// Left of the friction needed to close the strip under the graph says open, right of it closed; the needed friction is
+/// confirmed by the linear programs elsewhere.
+#[test]
+fn the_graph_turns_closed_at_the_friction_needed() {
+    let mut desk = Desk::hinge();
+    desk.resized(120, 40);
+    desk.keys("=0.9<cr>7");
+    let mut looked = 0;
+    for _ in 0..desk.state.rows() {
+        desk.keys("j");
+        let needed = desk.state.reading.as_ref().unwrap().assessment.friction_needed_closure.unwrap();
+        if needed < 0.05 {
+            continue;
+        }
+        let screen = desk.screen(120, 40);
+        let strip = screen.lines().find(|line| line.trim_start().starts_with(".")).unwrap();
+        let strip: Vec<char> = strip.chars().skip_while(|c| *c == ' ').take_while(|c| ".=~".contains(*c)).collect();
+        // The axis goes to half as much again as mu: 1.35.
+        let column = needed / 1.35 * (strip.len() - 1) as f64;
+        for (k, sign) in strip.iter().enumerate() {
+            let beyond = k as f64 - column;
+            assert!(beyond.abs() < 1e-6 || (*sign == '=') == (beyond > 0.0), "{k} of {column}\n{screen}");
+        }
+        looked += 1;
+    }
+    assert!(looked > 10, "{looked}");
+}
+
 /// Tips of both kinds, with and without a body.
 #[test]
 fn fingers_without_a_size_are_points() {

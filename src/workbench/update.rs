@@ -231,7 +231,7 @@ fn bench(state: &mut State, action: Action) -> Vec<Effect> {
         Action::MuEnter => open_entry(state, EntryKind::Mu),
         Action::LimitEnter => open_entry(state, EntryKind::Limit),
         Action::Show(_) | Action::NextSide | Action::ZoomIn | Action::ZoomOut | Action::NextContact | Action::Close => {
-            picture::act(state, action)
+            picture::act(state, action);
         }
         Action::Save => return marks::save(state, false),
         Action::Quit => return quit(state),
