@@ -37,6 +37,10 @@ pub(super) fn picture<'a>(state: &'a State, reading: &'a Reading) -> Shown<'a> {
             if let Some(deg) = case.direction_deg {
                 told[2].push(format!("worst when accelerated toward {} deg", number::degrees(deg)));
             }
+            let left = state.setup().loads.get(at).map_or(1.0, |load| load.squeeze_left);
+            if left < 1.0 {
+                told[2].push(format!("with the {} % of the squeeze that are left", number::given(left * 100.0)));
+            }
             if at == holding.governing {
                 told[2].push("asks most".to_owned());
             }

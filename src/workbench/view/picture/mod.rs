@@ -24,22 +24,19 @@ pub(super) const HELP: [(&str, &str); 21] = [
     ),
     (
         "2 forces",
-        "arrows: finger forces in the part plane, the longest the largest; often one set of many that hold the case",
+        "arrows: finger forces in the part plane at the least squeeze that holds the case; often one set of many",
     ),
     ("in", "N into the part, straight onto the edge"),
     ("along", "N along the edge as it runs with the material on its left; up: N toward the viewer"),
     (
-        "3 moment +",
+        "3 label +",
         "whatever the fingers do turns the part counter-clockwise about these points, or not at all (Mason 1991)",
     ),
     (
-        "3 moment -",
+        "3 label -",
         "the same clockwise; a closed grasp leaves no such point; 0: every finger force goes through the point",
     ),
-    (
-        "4 acceler.",
-        "the curve: the largest acceleration of the part held in each direction of its plane at the force limit",
-    ),
+    ("4 curve", "the largest acceleration of the part held in each direction of its plane at the force limit"),
     ("at", "force limit and weight, with its safety factor S, that the curve is for: those of the first load case"),
     (
         "4 numbers",

@@ -19,6 +19,7 @@ pub(super) fn picture<'a>(state: &'a State, reading: &'a Reading) -> Shown<'a> {
     let words = match (&leeway, reading.assessment.verdict) {
         (Some(_), _) if parallel => "mm, both together".to_owned(),
         (Some(_), _) => "mm, one at a time".to_owned(),
+        (None, Verdict::Closed) if reading.grasp.fits() => "not known".to_owned(),
         (None, Verdict::Closed) => "none, a finger stands where it may not".to_owned(),
         (None, verdict) => format!("none, the grasp is {}", verdict.word()),
     };
