@@ -12,6 +12,7 @@ pub mod force_polygon;
 pub mod friction;
 pub mod holding;
 pub mod jaw_formula;
+pub mod labels;
 pub mod load;
 pub mod pair;
 pub mod placement;

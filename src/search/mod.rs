@@ -4,6 +4,7 @@ mod best;
 mod families;
 mod family_forces;
 pub mod job;
+pub mod leeway;
 mod load_check;
 pub mod nearby;
 mod order;

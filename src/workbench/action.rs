@@ -3,6 +3,7 @@
 //! Dispatch, the footer, the help page and the README's table of keys are all read from [`TABLE`], so they cannot
 //! drift apart. `[`, `O` and `A` to `D` are bound to nothing: an arrow key torn apart by a slow line looks like them.
 
+use super::picture::{self, Picture};
 use super::state::{Layer, Question, State};
 use std::fmt;
 
@@ -169,6 +170,16 @@ pub enum Action {
     Listing,
     /// Friction cones on the outline.
     Cones,
+    /// Another picture in the outline pane.
+    Show(Picture),
+    /// Next load case, or next side of the wrench set.
+    NextSide,
+    /// The picture from nearer.
+    ZoomIn,
+    /// The picture from farther.
+    ZoomOut,
+    /// Next contact into the middle of the picture.
+    NextContact,
     /// Next marker.
     Marker,
     /// Next shape of the character cells.
@@ -342,6 +353,59 @@ pub static TABLE: &[Row] = &[
     row(A::MuUp, S::Bench, &[C('l'), Key::Right, C('+')], "mu+", "mu up by 0.01", always),
     row(A::MuDown, S::Bench, &[C('h'), Key::Left, C('-')], "mu-", "mu down by 0.01", always),
     row(A::OpenLoads, S::Bench, &[C('L')], "loads", "list the load cases: make them larger, smaller, add some", always),
+    row(A::Show(Picture::Fingers), S::Bench, &[C('1')], "to 7 picture", "picture: fingers with their normals", always),
+    row(A::Show(Picture::Forces), S::Bench, &[C('2')], "", "picture: the finger forces that hold a load case", always),
+    row(
+        A::Show(Picture::Labels),
+        S::Bench,
+        &[C('3')],
+        "",
+        "picture: moment labels, where fingers turn the part one way only",
+        always,
+    ),
+    row(
+        A::Show(Picture::Envelope),
+        S::Bench,
+        &[C('4')],
+        "",
+        "picture: the accelerations held in each direction",
+        always,
+    ),
+    row(
+        A::Show(Picture::Room),
+        S::Bench,
+        &[C('5')],
+        "",
+        "picture: where each finger may move while the others stay",
+        always,
+    ),
+    row(
+        A::Show(Picture::Wrenches),
+        S::Bench,
+        &[C('6')],
+        "",
+        "picture: the wrench set and the largest ball in it",
+        always,
+    ),
+    row(A::Show(Picture::Friction), S::Bench, &[C('7')], "", "picture: quality and squeeze over friction", always),
+    row(
+        A::NextSide,
+        S::Bench,
+        &[C('y')],
+        "next",
+        "forces: next load case; wrench set: seen from the next side",
+        picture::steps,
+    ),
+    row(A::ZoomIn, S::Bench, &[C('z')], "zoom", "picture from nearer, up to 38 times", picture::zooms),
+    row(A::ZoomOut, S::Bench, &[C('Z')], "zoom out", "picture from farther", picture::zoomed),
+    row(
+        A::NextContact,
+        S::Bench,
+        &[C('i')],
+        "",
+        "next contact into the middle of the picture, after the last the whole part",
+        picture::has_contacts,
+    ),
     row(A::FingersMore, S::Bench, &[C('f')], "finger+", "one finger more", always),
     row(A::FingersFewer, S::Bench, &[C('F')], "finger-", "one finger fewer", always),
     row(A::LimitUp, S::Bench, &[C('u')], "limit+", "force limit up a step (about 12 %)", always),
@@ -397,7 +461,7 @@ pub static TABLE: &[Row] = &[
     row(A::PageUp, S::Bench, &[C('K'), Key::PageUp], "", "a page up", any_row),
     row(A::First, S::Bench, &[C('g'), Key::Home], "", "first grasp", any_row),
     row(A::Last, S::Bench, &[C('G'), Key::End], "", "last grasp", any_row),
-    row(A::Close, S::Bench, &[Key::Esc], "", "close what lies on top; never quits", always),
+    row(A::Close, S::Bench, &[Key::Esc], "", "close what lies on top, or back to the whole part; never quits", always),
     row(A::Close, S::Page, &[Key::Esc, C('q'), Key::Enter, C('?')], "close", "", always),
     row(A::Down, S::Page, &[C('j'), Key::Down], "down", "", always),
     row(A::Up, S::Page, &[C('k'), Key::Up], "up", "", always),

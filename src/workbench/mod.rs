@@ -13,6 +13,7 @@ mod knobs;
 pub mod loads;
 mod look;
 mod marks;
+pub mod picture;
 mod recovery;
 mod run;
 pub mod state;

@@ -3,6 +3,7 @@
 use super::by_hand::{self, ByHand};
 use super::loads::{self, LoadRow};
 use super::look::{ColorChoice, Look, Marker};
+use super::picture::View;
 use crate::file::Keep;
 use crate::hand::{FingerCount, Tip};
 use crate::mechanics::assess::Doubt;
@@ -320,6 +321,8 @@ pub struct State {
     pub message: Option<String>,
     /// Cones drawn.
     pub cones: bool,
+    /// What the outline pane shows.
+    pub view: View,
     /// Panel that is shown when not all fit.
     pub panel: Panel,
     /// Colours, marker and cell shape.
@@ -367,6 +370,7 @@ impl State {
             layers: Vec::new(),
             message: loads::told_aside(&loads, &options.part),
             cones: false,
+            view: View::default(),
             panel: Panel::Table,
             look: Look {
                 color: options.color == ColorChoice::Always,

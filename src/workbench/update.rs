@@ -8,6 +8,7 @@ use super::floors;
 use super::knobs;
 use super::loads;
 use super::marks;
+use super::picture;
 use super::state::{Along, Entry, EntryKind, Filter, Job, Layer, Panel, Question, Reading, State};
 use super::tables;
 use crate::file::Keep;
@@ -256,6 +257,9 @@ fn bench(state: &mut State, action: Action) -> Vec<Effect> {
         Action::Note => open_entry(state, EntryKind::Note),
         Action::MuEnter => open_entry(state, EntryKind::Mu),
         Action::LimitEnter => open_entry(state, EntryKind::Limit),
+        Action::Show(_) | Action::NextSide | Action::ZoomIn | Action::ZoomOut | Action::NextContact | Action::Close => {
+            picture::act(state, action);
+        }
         Action::Save => return marks::save(state, false),
         Action::Quit => return quit(state),
         _ => {}

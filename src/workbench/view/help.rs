@@ -2,7 +2,7 @@
 
 use super::super::action;
 use super::super::state::State;
-use super::wrapped;
+use super::{picture, wrapped};
 use crate::file::CAUTION;
 use ratatui::text::{Line, Span};
 
@@ -62,6 +62,11 @@ pub(super) fn lines(state: &State, width: u16) -> Vec<Line<'static>> {
     lines.push(Line::styled("signs and numbers", state.look.title()));
     two_columns(state, "> *", "the selected row; a marked grasp", width, &mut lines);
     for (name, meaning) in NUMBERS {
+        two_columns(state, name, meaning, width, &mut lines);
+    }
+    lines.push(Line::raw(""));
+    lines.push(Line::styled("pictures", state.look.title()));
+    for (name, meaning) in picture::HELP {
         two_columns(state, name, meaning, width, &mut lines);
     }
     lines.push(Line::raw(""));

@@ -18,6 +18,7 @@ mod holding;
 mod loads;
 mod number;
 mod outline;
+mod picture;
 mod reading;
 mod sheet;
 mod table;
@@ -190,7 +191,7 @@ fn bench(state: &State, layout: &Layout, buf: &mut Buffer) {
         }
     }
     if let Some(area) = layout.outline {
-        outline::render(state, area, buf);
+        picture::render(state, area, buf);
     }
     if let Some(area) = layout.table {
         match state.hand.as_ref().filter(|_| super::by_hand::in_hand(state)) {

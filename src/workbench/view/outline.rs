@@ -1,14 +1,15 @@
 //! The outline pane: the part at true proportion, where fingers fit, keep-outs, the centre of mass, the fingers.
 
 use super::super::look::{Look, Marker};
+use super::super::picture::Picture;
 use super::super::state::State;
 use super::sheet::{Depth, Fit, Sheet, slope};
 use crate::file::shown;
-use crate::hand::Stretch;
+use crate::hand::{Hand, Stretch, Tip};
 use crate::mechanics::Contact;
 use crate::part::{Edge, KeepOut};
 use crate::search::{Grasp, Scene};
-use nalgebra::Vector2;
+use nalgebra::{Point2, Vector2};
 use ratatui::buffer::Buffer;
 use ratatui::layout::Rect;
 use ratatui::style::Style;
@@ -19,28 +20,23 @@ const FREE: (u16, u16) = (4, 2);
 const BEND: f64 = 0.94;
 /// Edges shorter than this many cells, both of a corner, leave it without its mark.
 const SHORT: f64 = 1.5;
+/// Bodies of fewer rows than these are not drawn: they would be a blot.
+const LEAST_BODY: f64 = 1.5;
 /// Rows from which the pane carries a line that explains its signs.
 const KEY_FROM: u16 = 8;
 
-/// Draws the pane.
+/// Draws the pane with the fingers at their places.
 pub(super) fn render(state: &State, area: Rect, buf: &mut Buffer) {
-    let area = area.intersection(buf.area);
-    if area.is_empty() {
-        return;
-    }
     let keyed = area.height >= KEY_FROM;
     let picture = Rect { height: area.height - u16::from(keyed), ..area };
     let scene = &state.order.scene;
-    let (low, high) = scene.part().outline().bounds();
-    let free = (FREE.0.min(picture.width / 6), FREE.1.min(picture.height / 5));
-    let fit = Fit::new(low, high, (picture.width, picture.height), free, state.look.aspect);
-    let mut pen = Pen { sheet: Sheet::new(picture.width, picture.height), fit, look: state.look };
+    let mut pen = Pen::on_part(state, (picture.width, picture.height), FREE);
     let mut signs = pen.part(scene);
     if let Some(reading) = &state.reading {
         if state.cones {
             pen.cones(&reading.grasp, scene);
         }
-        pen.fingers(&reading.grasp);
+        pen.fingers(&reading.grasp, &scene.setup().hand);
         signs.pads = reading.grasp.contacts.iter().any(|contact| contact.half_width_mm > 0.0);
     }
     pen.sheet.render(picture, buf);
@@ -50,9 +46,19 @@ pub(super) fn render(state: &State, area: Rect, buf: &mut Buffer) {
     }
 }
 
+/// How near the picture is and what is in its middle; nothing for the whole part.
+pub(super) fn nearness(state: &State) -> Option<String> {
+    let contacts = state.reading.as_ref().map_or(0, |reading| reading.grasp.contacts.len());
+    let times = format!("x{:.1}", state.view.zoom());
+    match state.view.contact(contacts) {
+        Some(contact) => Some(format!("{times} about contact {}", contact + 1)),
+        None => (state.view.zoom() > 1.0).then_some(times),
+    }
+}
+
 /// Which signs the picture uses, so that only those are explained.
 #[derive(Default)]
-struct Signs {
+pub(super) struct Signs {
     keep_out: bool,
     unreachable: bool,
     pads: bool,
@@ -61,7 +67,12 @@ struct Signs {
 impl Signs {
     /// As many explanations as fit, none cut.
     fn text(&self, state: &State, width: usize) -> String {
-        let mut parts = vec!["@ centre of mass"];
+        let nearness = nearness(state);
+        let mut parts: Vec<&str> = nearness.iter().map(String::as_str).collect();
+        if state.reading.is_none() && state.view.picture != Picture::Fingers {
+            parts.push("no grasp to show");
+        }
+        parts.push("@ centre of mass");
         if self.pads {
             parts.push("# pad");
         }
@@ -104,14 +115,30 @@ fn reasons(state: &State) -> String {
     reasons.join(", ")
 }
 
-struct Pen {
-    sheet: Sheet,
-    fit: Fit,
-    look: Look,
+/// Draws in millimetres of the part.
+pub(super) struct Pen {
+    pub(super) sheet: Sheet,
+    pub(super) fit: Fit,
+    pub(super) look: Look,
 }
 
 impl Pen {
-    fn part(&mut self, scene: &Scene) -> Signs {
+    /// A pen on a sheet of a size that shows the part as near as the user wants it, at most so many columns and rows left
+    /// free around the whole.
+    pub(super) fn on_part(state: &State, size: (u16, u16), free: (u16, u16)) -> Self {
+        let (low, high) = state.order.scene.part().outline().bounds();
+        let free = (free.0.min(size.0 / 6), free.1.min(size.1 / 5));
+        let fit = Fit::new(low, high, size, free, state.look.aspect);
+        let contacts = state.reading.as_ref().map_or(&[][..], |reading| &reading.grasp.contacts);
+        let middle = match state.view.contact(contacts.len()) {
+            Some(contact) => contacts[contact].point,
+            None => nalgebra::center(&low, &high),
+        };
+        Self { sheet: Sheet::new(size.0, size.1), fit: fit.nearer(state.view.zoom(), middle), look: state.look }
+    }
+
+    /// The part: its edges and corners, keep-outs, centre of mass.
+    pub(super) fn part(&mut self, scene: &Scene) -> Signs {
         let part = scene.part();
         let outline = part.outline();
         let mut signs = Signs::default();
@@ -179,6 +206,9 @@ impl Pen {
     }
 
     fn edge(&mut self, edge: &Edge, stretches: &[Stretch], kept_out: &[&KeepOut], signs: &mut Signs) {
+        if self.is_off(edge) {
+            return;
+        }
         let braille = self.look.marker == Marker::Braille;
         let (a, b) = (self.fit.cell(edge.start()), self.fit.cell(edge.end()));
         let fine = if braille { (2.0, 4.0) } else { (1.0, 1.0) };
@@ -220,6 +250,14 @@ impl Pen {
         }
     }
 
+    /// No part of an edge lies on the sheet.
+    fn is_off(&self, edge: &Edge) -> bool {
+        let (low, high) = edge.bounds();
+        let ((left, bottom), (right, top)) = (self.fit.cell(low), self.fit.cell(high));
+        let (columns, rows) = self.sheet.size();
+        right < -1.0 || left > f64::from(columns) || bottom < -1.0 || top > f64::from(rows)
+    }
+
     /// Steps that leave no cell (or dot, where cells are finer) of an edge out.
     fn steps(&self, edge: &Edge, fine: (f64, f64)) -> f64 {
         // Chords of an eighth of a turn are near enough to the arc to count cells along it.
@@ -254,39 +292,94 @@ impl Pen {
         self.sheet.put(column, row, ink, Depth::Edge, self.look.plain());
     }
 
-    /// A number outside the part, and a stroke from it toward the contact along the inward normal.
-    fn fingers(&mut self, grasp: &Grasp) {
-        let style = self.look.finger();
+    /// The body of each finger where it is large enough to be seen, a number in it or outside the part, and a stroke from
+    /// there toward the contact along the inward normal.
+    pub(super) fn fingers(&mut self, grasp: &Grasp, hand: &Hand) {
         for (finger, contact) in grasp.contacts.iter().enumerate() {
-            let number = char::from_digit(finger as u32 + 1, 10).unwrap_or('#');
-            let (column, row) = self.fit.cell(contact.point);
-            let (dx, dy) = self.fit.step(-contact.normal);
-            let at = |k: i32| {
-                let k = f64::from(k);
-                ((column + k * dx).round() as i32, (row + k * dy).round() as i32)
-            };
-            let level = dx.abs() >= dy.abs();
-            self.pad_face(contact, style);
-            let own = at(0);
-            self.sheet.put(own.0, own.1, 'o', Depth::Finger, style);
-            let free = |sheet: &Sheet, k: i32| {
-                let (x, y) = at(k);
-                sheet.depth(x, y) < Depth::Edge
-            };
-            // A slanted edge may still lie in the first cell outside.
-            let first = if free(&self.sheet, 1) { 1 } else { 2 };
-            let wanted = if level { first + 2 } else { first + 1 };
-            let run = (first..first + 6).take_while(|&k| free(&self.sheet, k)).last();
-            let stand = match run {
-                Some(last) => wanted.min(last),
-                None => 0,
-            };
-            let (x, y) = at(stand);
-            self.sheet.put(x, y, number, Depth::Finger, style);
-            for k in first..stand {
-                let (x, y) = at(k);
-                let ink = if k == first { head(contact.normal) } else { slope(contact.normal, false) };
-                self.sheet.put(x, y, ink, Depth::Finger, style);
+            let middle = self.body(contact, hand);
+            self.finger(finger, contact, middle);
+        }
+    }
+
+    fn finger(&mut self, finger: usize, contact: &Contact, middle: Option<Point2<f64>>) {
+        let style = self.look.finger();
+        let number = number_sign(finger);
+        let (column, row) = self.fit.cell(contact.point);
+        let (dx, dy) = self.fit.step(-contact.normal);
+        let at = |k: i32| {
+            let k = f64::from(k);
+            ((column + k * dx).round() as i32, (row + k * dy).round() as i32)
+        };
+        let level = dx.abs() >= dy.abs();
+        self.pad_face(contact, style);
+        let own = at(0);
+        self.sheet.put(own.0, own.1, 'o', Depth::Finger, style);
+        let free = |sheet: &Sheet, k: i32| {
+            let (x, y) = at(k);
+            sheet.depth(x, y) < Depth::Edge
+        };
+        // A slanted edge may still lie in the first cell outside.
+        let first = if free(&self.sheet, 1) { 1 } else { 2 };
+        let wanted = if level { first + 2 } else { first + 1 };
+        let run = (first..first + 6).take_while(|&k| free(&self.sheet, k)).last();
+        let mut stand = match run {
+            Some(last) => wanted.min(last),
+            None => 0,
+        };
+        let inside = middle.map(|middle| self.fit.rounded(middle)).filter(|cell| {
+            let (columns, rows) = self.sheet.size();
+            *cell != own && (0..columns).contains(&cell.0) && (0..rows).contains(&cell.1)
+        });
+        match inside {
+            // The number stands in the body, the head of the stroke between it and the contact where there is room.
+            Some((x, y)) => {
+                self.sheet.put(x, y, number, Depth::Finger, style);
+                stand = if at(first) == (x, y) { 0 } else { first + 1 };
+            }
+            None => {
+                let (x, y) = at(stand);
+                self.sheet.put(x, y, number, Depth::Finger, style);
+            }
+        }
+        for k in first..stand {
+            if !free(&self.sheet, k) {
+                break;
+            }
+            let (x, y) = at(k);
+            let ink = if k == first { head(contact.normal) } else { slope(contact.normal, false) };
+            self.sheet.put(x, y, ink, Depth::Finger, style);
+        }
+    }
+
+    /// A finger's body at its true size, and its middle; nothing where it is hardly larger than a cell. A pin is a circle,
+    /// a pad a rectangle.
+    fn body(&mut self, contact: &Contact, hand: &Hand) -> Option<Point2<f64>> {
+        let style = self.look.finger();
+        let (_, row_mm) = self.fit.cell_mm();
+        let out = -contact.normal;
+        match hand.tip {
+            Tip::Pin => {
+                let middle = contact.point + out * hand.pin_radius_mm;
+                if 2.0 * hand.pin_radius_mm < LEAST_BODY * row_mm {
+                    return None;
+                }
+                // A circle of a few cells is even all round only about the middle of one.
+                let cell = self.fit.rounded(middle);
+                let even = if self.look.marker == Marker::Braille { middle } else { self.fit.point(cell.0, cell.1) };
+                self.circle(even, hand.pin_radius_mm, None, Depth::Body, style);
+                Some(middle)
+            }
+            Tip::Pad => {
+                if hand.pad_depth_mm.min(hand.pad_width_mm) < LEAST_BODY * row_mm {
+                    return None;
+                }
+                let along = Vector2::new(contact.normal.y, -contact.normal.x) * (hand.pad_width_mm / 2.0);
+                let back = out * hand.pad_depth_mm;
+                let corners = [along, along + back, back - along, -along].map(|off| contact.point + off);
+                for pair in corners.windows(2) {
+                    self.stroke(pair[0], pair[1], Depth::Body, style);
+                }
+                Some(contact.point + back / 2.0)
             }
         }
     }
@@ -329,8 +422,13 @@ impl Pen {
     }
 }
 
+/// The sign of a finger, counted from 0.
+pub(super) fn number_sign(finger: usize) -> char {
+    char::from_digit(finger as u32 + 1, 10).unwrap_or('#')
+}
+
 /// Head of a stroke that points along a direction.
-fn head(direction: Vector2<f64>) -> char {
+pub(super) fn head(direction: Vector2<f64>) -> char {
     if direction.x.abs() >= direction.y.abs() {
         if direction.x > 0.0 { '>' } else { '<' }
     } else if direction.y > 0.0 {

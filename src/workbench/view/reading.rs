@@ -7,6 +7,7 @@ use crate::mechanics::assess::Assessment;
 use crate::mechanics::escape::{Escape, Sense};
 use crate::mechanics::placement::Governor;
 use crate::mechanics::{Verdict, Weakest};
+use crate::part::Part;
 use crate::search::{Key, Spot, Standing};
 use ratatui::style::Style;
 use ratatui::text::{Line, Span};
@@ -55,6 +56,23 @@ pub(super) fn lines(state: &State, width: u16, full: bool) -> Vec<Line<'static>>
         page.assumed(state);
     }
     page.lines
+}
+
+/// How the part gets out of an open grasp.
+pub(super) fn escape_words(escape: &Escape, part: &Part) -> String {
+    match escape {
+        Escape::Slide { toward_deg } => {
+            format!("nothing stops it sliding toward {} deg", number::degrees(*toward_deg))
+        }
+        Escape::Turn { about, sense } => {
+            let at = part.file_point(*about);
+            let sense = match sense {
+                Sense::Clockwise => "clockwise",
+                Sense::CounterClockwise => "counter-clockwise",
+            };
+            format!("nothing stops it turning {sense} about ({}, {})", number::at(at.x), number::at(at.y))
+        }
+    }
 }
 
 pub(super) struct Page<'a> {
@@ -139,28 +157,12 @@ impl Page<'_> {
             Verdict::Open => (
                 look.bad(),
                 match &a.escape {
-                    Some(escape) => self.escape(escape),
+                    Some(escape) => escape_words(escape, self.state.order.scene.part()),
                     None => "some push cannot be balanced, however hard the fingers press".to_owned(),
                 },
             ),
         };
         self.tell("verdict", a.verdict.word(), style, &meaning);
-    }
-
-    fn escape(&self, escape: &Escape) -> String {
-        match escape {
-            Escape::Slide { toward_deg } => {
-                format!("nothing stops it sliding toward {} deg", number::degrees(*toward_deg))
-            }
-            Escape::Turn { about, sense } => {
-                let at = self.state.order.scene.part().file_point(*about);
-                let sense = match sense {
-                    Sense::Clockwise => "clockwise",
-                    Sense::CounterClockwise => "counter-clockwise",
-                };
-                format!("nothing stops it turning {sense} about ({}, {})", number::at(at.x), number::at(at.y))
-            }
-        }
     }
 
     fn friction(&mut self, reading: &Reading) {

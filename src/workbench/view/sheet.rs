@@ -9,10 +9,25 @@ use ratatui::style::Style;
 #[derive(Debug, Clone, Copy, PartialEq, Eq, PartialOrd, Ord)]
 pub(super) enum Depth {
     Empty,
+    /// What fills a region.
+    Fill,
     Cone,
+    /// The body of a finger beside the part.
+    Body,
     Edge,
+    /// A curve over the outline.
+    Curve,
     Centre,
     Finger,
+}
+
+/// What a stroke is drawn with.
+#[derive(Debug, Clone, Copy)]
+pub(super) enum Ink {
+    /// One character in every cell.
+    Sign(char),
+    /// Braille dots.
+    Dots,
 }
 
 #[derive(Clone, Copy)]
@@ -60,6 +75,60 @@ impl Sheet {
         {
             *cell = Cell { ink, dots: 0, depth, style };
         }
+    }
+
+    /// Writes characters side by side.
+    pub(super) fn write(&mut self, column: i32, row: i32, text: &str, depth: Depth, style: Style) {
+        for (ink, k) in text.chars().zip(0..) {
+            self.put(column.saturating_add(k), row, ink, depth, style);
+        }
+    }
+
+    /// Draws a straight stroke between two places in cells, as far as it lies on the sheet.
+    pub(super) fn stroke(&mut self, from: (f64, f64), to: (f64, f64), ink: Ink, depth: Depth, style: Style) {
+        let Some((a, b)) = self.clipped(from, to) else { return };
+        let fine = match ink {
+            Ink::Sign(_) => (1.0, 1.0),
+            Ink::Dots => (2.0, 4.0),
+        };
+        let steps = ((b.0 - a.0).abs() * fine.0).max((b.1 - a.1).abs() * fine.1).ceil().clamp(1.0, 65_536.0);
+        for k in 0..=steps as u32 {
+            let t = f64::from(k) / steps;
+            let (column, row) = (a.0 + t * (b.0 - a.0), a.1 + t * (b.1 - a.1));
+            match ink {
+                Ink::Sign(sign) => self.put(column.round() as i32, row.round() as i32, sign, depth, style),
+                Ink::Dots => {
+                    let (x, y) = ((column + 0.5) * 2.0, (row + 0.5) * 4.0);
+                    self.dot(x.floor() as i32, y.floor() as i32, depth, style);
+                }
+            }
+        }
+    }
+
+    /// The piece of a stroke that lies on the sheet or a cell beside it (Liang & Barsky 1984).
+    fn clipped(&self, from: (f64, f64), to: (f64, f64)) -> Option<((f64, f64), (f64, f64))> {
+        let (dx, dy) = (to.0 - from.0, to.1 - from.1);
+        if !(dx.is_finite() && dy.is_finite()) {
+            return None;
+        }
+        let (right, bottom) = (f64::from(self.width), f64::from(self.height));
+        let (mut enters, mut leaves) = (0.0_f64, 1.0_f64);
+        for (step, room) in [(-dx, from.0 + 1.0), (dx, right - from.0), (-dy, from.1 + 1.0), (dy, bottom - from.1)] {
+            if step < 0.0 {
+                enters = enters.max(room / step);
+            } else if step > 0.0 {
+                leaves = leaves.min(room / step);
+            } else if room < 0.0 {
+                return None;
+            }
+        }
+        let at = |t: f64| (from.0 + t * dx, from.1 + t * dy);
+        (enters <= leaves).then(|| (at(enters), at(leaves)))
+    }
+
+    /// Columns and rows.
+    pub(super) fn size(&self) -> (i32, i32) {
+        (self.width, self.height)
     }
 
     /// Sets a braille dot; dots are counted two to a column and four to a row.
@@ -114,6 +183,28 @@ impl Fit {
         let mm = across.max(down).max(f64::MIN_POSITIVE);
         let centre = (f64::from(size.0.saturating_sub(1)) / 2.0, f64::from(size.1.saturating_sub(1)) / 2.0);
         Self { mm, aspect, middle: nalgebra::center(&low, &high), centre }
+    }
+
+    /// The same so many times nearer, another point in the middle.
+    #[must_use]
+    pub(super) fn nearer(self, times: f64, middle: Point2<f64>) -> Self {
+        Self { mm: self.mm / times, middle, ..self }
+    }
+
+    /// A fit of another plane, of which `unit` is a millimetre, the origin on the cell of a point of this one.
+    pub(super) fn about(&self, point: Point2<f64>, unit: f64) -> Self {
+        Self { mm: self.mm * unit, aspect: self.aspect, middle: Point2::origin(), centre: self.cell(point) }
+    }
+
+    /// Millimetres to a column and to a row.
+    pub(super) fn cell_mm(&self) -> (f64, f64) {
+        (self.mm, self.mm * self.aspect)
+    }
+
+    /// The point in the middle of a cell.
+    pub(super) fn point(&self, column: i32, row: i32) -> Point2<f64> {
+        let (x, y) = (f64::from(column) - self.centre.0, self.centre.1 - f64::from(row));
+        self.middle + Vector2::new(x * self.mm, y * self.mm * self.aspect)
     }
 
     /// Column and row, with fractions; whole numbers are the middles of cells.
