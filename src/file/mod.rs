@@ -3,6 +3,7 @@
 mod digest;
 pub mod drawing;
 mod editing;
+mod finding;
 mod grasp_file;
 mod grasp_text;
 mod part_file;
@@ -13,6 +14,7 @@ mod toml_reader;
 mod writing;
 
 pub use digest::part_digest;
+pub use finding::parts_in;
 pub use grasp_file::{
     GraspFile, KeptDensity, SCORES, SavedGrasp, SavedLoad, Scores, WEAKEST, grasps_from_text, read_grasps,
 };

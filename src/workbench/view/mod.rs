@@ -17,6 +17,7 @@ mod number;
 mod outline;
 mod reading;
 mod sheet;
+mod start;
 mod table;
 mod tables;
 
@@ -64,9 +65,11 @@ pub fn render(state: &State, area: Rect, buf: &mut Buffer) -> Option<Position> {
         Some(Layer::Pairs { at, condition }) => tables::pairs(state, area, *at, *condition, buf),
         Some(Layer::Materials { at }) => tables::materials(state, area, *at, buf),
         Some(Layer::Loads { at }) => loads::list(state, area, *at, buf),
+        Some(Layer::Start(page)) => start::render(state, area, page, buf),
         top @ (None | Some(Layer::Entry(_) | Layer::Ask(_))) => {
             match state.layers.iter().rev().nth(1) {
                 Some(Layer::Loads { at }) => loads::list(state, area, *at, buf),
+                Some(Layer::Marks { at }) => dialog::marks(state, area, *at, buf),
                 _ => bench(state, &layout, buf),
             }
             return match top {
