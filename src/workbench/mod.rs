@@ -8,6 +8,7 @@ pub mod demo;
 mod entry;
 mod guard;
 pub mod kept;
+mod keyboard;
 mod knobs;
 pub mod loads;
 mod look;

@@ -3,6 +3,7 @@
 use super::action::Key;
 use super::guard::{Ending, Raft, conclude, guarded, watch_signals};
 use super::kept;
+use super::keyboard;
 use super::look::is_utf8;
 use super::opening::chosen;
 use super::recovery::{Recovery, Unsaved};
@@ -17,7 +18,7 @@ use crate::file::{self, Change, Keep, Revision, SaveFault, Stamp};
 use crate::part::Part;
 use crate::search::Setup;
 use crate::search::job::{News, Ranker, What};
-use crossterm::event::{self, Event, KeyCode, KeyEvent, KeyEventKind, KeyModifiers};
+use crossterm::event::{self, Event};
 use signal_hook::consts::{SIGCONT, SIGSTOP, SIGTSTP};
 use std::fs::File;
 use std::io;
@@ -124,35 +125,6 @@ fn read_input(sender: &Sender<Message>) -> io::Result<()> {
     Ok(())
 }
 
-/// A key press or repeat in the workbench's own terms; releases and unknown keys are nothing.
-fn key_of(event: &KeyEvent) -> Option<Key> {
-    if event.kind == KeyEventKind::Release {
-        return None;
-    }
-    let ctrl = event.modifiers.contains(KeyModifiers::CONTROL);
-    if event.modifiers.contains(KeyModifiers::ALT) {
-        return None;
-    }
-    Some(match event.code {
-        KeyCode::Char(c) if ctrl => Key::Ctrl(c.to_ascii_lowercase()),
-        KeyCode::Char(c) => Key::Char(c),
-        KeyCode::Up => Key::Up,
-        KeyCode::Down => Key::Down,
-        KeyCode::Left => Key::Left,
-        KeyCode::Right => Key::Right,
-        KeyCode::Enter => Key::Enter,
-        KeyCode::Esc => Key::Esc,
-        KeyCode::Tab => Key::Tab,
-        KeyCode::Backspace => Key::Backspace,
-        KeyCode::Delete => Key::Delete,
-        KeyCode::Home => Key::Home,
-        KeyCode::End => Key::End,
-        KeyCode::PageUp => Key::PageUp,
-        KeyCode::PageDown => Key::PageDown,
-        _ => return None,
-    })
-}
-
 /// When the next frame is due.
 #[derive(Clone, Copy, PartialEq, Eq, PartialOrd, Ord)]
 enum Due {
@@ -225,9 +197,6 @@ impl<'a> Bench<'a> {
             let first = match self.wait() {
                 Ok(first) => first,
                 Err(RecvTimeoutError::Timeout) => {
-                    if self.due == Due::Soon {
-                        self.due = Due::Now;
-                    }
                     self.look_at_files(state);
                     continue;
                 }
@@ -377,7 +346,13 @@ impl<'a> Bench<'a> {
                 return None;
             }
             Message::Signal(signal) => return Some(Ending::Signal(signal)),
-            Message::Event(Event::Key(key)) => Input::Key(key_of(&key)?),
+            Message::Event(Event::Key(key)) => {
+                let own = keyboard::key_of(&key)?;
+                if keyboard::behind_esc(&key) {
+                    effects.extend(update(state, Input::Key(Key::Esc)));
+                }
+                Input::Key(own)
+            }
             Message::Event(Event::Paste(text)) => Input::Paste(text),
             Message::Event(Event::Resize(columns, rows)) => Input::Resize(columns, rows),
             Message::Event(_) => return None,

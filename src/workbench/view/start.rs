@@ -4,7 +4,7 @@ use super::super::demo;
 use super::super::start::StartPage;
 use super::super::state::State;
 use super::bars::{self, cut};
-use super::{put, shifted, split_rows, titled, wrapped};
+use super::{put, split_rows, titled, wrapped};
 use crate::file::shown;
 use ratatui::buffer::Buffer;
 use ratatui::layout::Rect;
@@ -12,6 +12,8 @@ use ratatui::layout::Rect;
 const WHAT: &str = "Says where fingers, jaws or clamps should touch a flat part, how hard they must squeeze and how much friction \
 the grip needs. Choose a part.";
 const DRAWING: &str = "Your own drawing (DXF or SVG):  holdwright import DRAWING -o PART.toml";
+/// The same where there is little room.
+const DRAWING_SHORT: &str = "drawings: holdwright import --help";
 
 /// A line of the list.
 enum Row {
@@ -28,7 +30,7 @@ fn rows(page: &StartPage) -> Vec<Row> {
     if page.found.is_empty() {
         rows = vec![Row::Head("no part file here or in parts/")];
     }
-    rows.push(Row::Head("parts to try, with a setup for a deck cell"));
+    rows.push(Row::Head("parts to try, in a deck cell's setup"));
     for (at, demo) in demo::PARTS.iter().enumerate() {
         let name = demo.file.trim_end_matches(".toml").replace('_', " ");
         rows.push(Row::Part { number: page.found.len() + at, name, file: demo.file.to_owned() });
@@ -40,7 +42,7 @@ fn rows(page: &StartPage) -> Vec<Row> {
 pub(super) fn render(state: &State, area: Rect, page: &StartPage, buf: &mut Buffer) {
     let (body, footer) = split_rows(area, area.height.saturating_sub(1));
     let (body, message) = split_rows(body, body.height.saturating_sub(1));
-    let mut inside = titled(state, body, "holdwright", env!("CARGO_PKG_VERSION"), buf);
+    let mut inside = titled(state, body, "holdwright", &format!("{} of {}", page.at + 1, page.rows()), buf);
     // The list matters most: what is said around it leaves first.
     let what = wrapped(WHAT, usize::from(inside.width));
     if usize::from(inside.height) > what.len() + 8 {
@@ -51,7 +53,8 @@ pub(super) fn render(state: &State, area: Rect, page: &StartPage, buf: &mut Buff
     }
     if inside.height > 6 {
         let (list, last) = split_rows(inside, inside.height - 2);
-        put(buf, split_rows(last, 1).1, &cut(DRAWING, usize::from(last.width)), state.look.plain());
+        let text = if usize::from(last.width) < DRAWING.len() { DRAWING_SHORT } else { DRAWING };
+        put(buf, split_rows(last, 1).1, text, state.look.plain());
         inside = list;
     }
     let rows = rows(page);
@@ -77,8 +80,7 @@ pub(super) fn render(state: &State, area: Rect, page: &StartPage, buf: &mut Buff
     if state.message.is_some() {
         bars::message(state, message, buf);
     } else if page.writes_first() {
-        let text = "a file that is there already is never written over";
-        put(buf, shifted(message, 0), text, state.look.dim());
+        put(buf, message, "files that are there already stay", state.look.dim());
     }
     bars::footer(state, footer, buf);
 }
