@@ -12,7 +12,7 @@ use holdwright::mechanics::squeeze::FingerForce;
 use holdwright::mechanics::{Assessment, LoadCase, Verdict};
 use holdwright::part::{Part, PartDescription};
 use holdwright::search::leeway::{EndedBy, Leeway, leeway};
-use holdwright::search::{Cancel, Grasp, Key, Listing, Scene, Setup, rank};
+use holdwright::search::{Cancel, Grasp, Key, Listing, Scene, Setup, sample};
 use nalgebra::Vector3;
 use std::f64::consts::TAU;
 use std::sync::Arc;
@@ -53,7 +53,7 @@ fn scene(tip: Tip, fingers: usize, closing: Closing) -> Scene {
 }
 
 fn listed(scene: &Scene, most: usize) -> Vec<Grasp> {
-    let ranking = rank(scene, Key::Quality, Listing::Families, most, &Cancel::default(), &|_| ()).unwrap();
+    let ranking = sample(scene, Key::Quality, Listing::Families, most, &Cancel::default(), &|_| ()).unwrap();
     ranking.grasps.into_iter().map(|row| row.grasp).collect()
 }
 

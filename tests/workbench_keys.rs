@@ -8,6 +8,7 @@ use holdwright::part::{Part, PartDescription};
 use holdwright::search::job::{Request, What};
 use holdwright::search::{Key as SortKey, Listing, Ranking, Setup, Spot};
 use holdwright::workbench::action::{Action, Scope};
+use holdwright::workbench::start::{Found, StartPage};
 use holdwright::workbench::state::{Job, Layer, Question};
 use holdwright::workbench::{Effect, Input, Key, action, update};
 use std::collections::HashSet;
@@ -392,7 +393,9 @@ fn marks_that_left_the_list_can_still_be_seen() {
     desk.keys("<cr>");
     assert!(desk.screen(80, 24).contains("not in the list"));
     desk.keys("m");
-    assert!(desk.state.marks.is_empty() && desk.state.layers.is_empty());
+    assert!(desk.state.marks.is_empty());
+    desk.keys("u");
+    assert_eq!(desk.state.marks.len(), 1);
 }
 
 #[test]
@@ -412,6 +415,11 @@ fn every_action_of_the_table_can_be_done_in_its_scope_without_a_panic() {
                 Scope::Floors => drop(desk.keys("_")),
                 Scope::Hand => drop(desk.keys("b")),
                 Scope::Compare => drop(desk.keys("xjxX")),
+                Scope::Start => {
+                    let found = vec![Found { path: "a.toml".into(), name: Some("a".into()) }];
+                    desk.state.layers.push(Layer::Start(StartPage::new(found)));
+                }
+                Scope::StartDemo => desk.state.layers.push(Layer::Start(StartPage::new(Vec::new()))),
                 Scope::Entry => drop(desk.keys("=")),
                 Scope::AskQuit => desk.state.layers.push(Layer::Ask(Question::Quit)),
                 Scope::AskReload => desk.state.layers.push(Layer::Ask(Question::Reload)),

@@ -3,200 +3,15 @@
 #![cfg(unix)]
 #![allow(clippy::unwrap_used, clippy::expect_used, reason = "a test that cannot go on has failed")]
 
+mod pty;
+
 use holdwright::file::read_grasps;
-use portable_pty::{Child, CommandBuilder, MasterPty, PtySize, native_pty_system};
-use std::io::{Read, Write};
-use std::num::NonZeroU16;
-use std::path::{Path, PathBuf};
-use std::sync::atomic::{AtomicBool, Ordering};
-use std::sync::{Arc, Mutex};
+use portable_pty::native_pty_system;
+use pty::{PATIENCE, Pty, count, folder, recovery, saved, size, some};
+use std::sync::Arc;
+use std::sync::atomic::Ordering;
 use std::thread;
 use std::time::{Duration, Instant};
-
-/// Longest wait for anything; a loaded machine is slow, a hung program is slower.
-const PATIENCE: Duration = Duration::from_secs(40);
-
-const PART: &str = r#"schema = 1
-name = "cleat base"
-units = "mm"
-outer = [[0.0, 0.0], [80.0, 0.0], [80.0, 24.0], [52.0, 40.0], [0.0, 40.0]]
-"#;
-
-struct Heard {
-    parser: vt100::Parser,
-    log: Vec<u8>,
-}
-
-struct Pty {
-    child: Box<dyn Child + Send + Sync>,
-    master: Option<Box<dyn MasterPty + Send>>,
-    writer: Option<Box<dyn Write + Send>>,
-    heard: Arc<Mutex<Heard>>,
-    deaf: Arc<AtomicBool>,
-    reader: Option<thread::JoinHandle<()>>,
-}
-
-fn some(cells: u16) -> NonZeroU16 {
-    NonZeroU16::new(cells).unwrap()
-}
-
-fn terminal(columns: u16, rows: u16) -> vt100::Parser {
-    vt100::Parser::new(some(rows), some(columns), 0)
-}
-
-fn size(columns: u16, rows: u16) -> PtySize {
-    PtySize { rows, cols: columns, pixel_width: 0, pixel_height: 0 }
-}
-
-impl Pty {
-    fn start(folder: &Path, columns: u16, rows: u16, environment: &[(&str, &str)]) -> Self {
-        std::fs::write(folder.join("cleat.toml"), PART).unwrap();
-        let pair = native_pty_system().openpty(size(columns, rows)).unwrap();
-        let mut command = CommandBuilder::new(env!("CARGO_BIN_EXE_holdwright"));
-        command.args(["cleat.toml", "--spacing", "6"]);
-        command.cwd(folder);
-        command.env_clear();
-        command.env("TERM", "xterm-256color");
-        command.env("LANG", "C");
-        for (name, value) in environment {
-            command.env(name, value);
-        }
-        let child = pair.slave.spawn_command(command).unwrap();
-        drop(pair.slave);
-        let mut source = pair.master.try_clone_reader().unwrap();
-        let heard = Arc::new(Mutex::new(Heard { parser: terminal(columns, rows), log: Vec::new() }));
-        let deaf = Arc::new(AtomicBool::new(false));
-        let (ear, stop) = (Arc::clone(&heard), Arc::clone(&deaf));
-        let reader = thread::spawn(move || {
-            let mut bytes = [0; 4096];
-            while let Ok(count) = source.read(&mut bytes) {
-                if count == 0 || stop.load(Ordering::SeqCst) {
-                    break;
-                }
-                let mut heard = ear.lock().unwrap();
-                heard.parser.process(&bytes[..count]);
-                heard.log.extend_from_slice(&bytes[..count]);
-            }
-        });
-        let writer = pair.master.take_writer().unwrap();
-        Self { child, master: Some(pair.master), writer: Some(writer), heard, deaf, reader: Some(reader) }
-    }
-
-    fn send(&mut self, keys: &str) {
-        let writer = self.writer.as_mut().unwrap();
-        writer.write_all(keys.as_bytes()).unwrap();
-        writer.flush().unwrap();
-    }
-
-    /// The text of the screen without the blanks at the ends of its lines.
-    fn screen(&self) -> String {
-        let text = self.heard.lock().unwrap().parser.screen().contents();
-        text.lines().map(str::trim_end).collect::<Vec<_>>().join("\n")
-    }
-
-    fn bytes(&self) -> usize {
-        self.heard.lock().unwrap().log.len()
-    }
-
-    fn log(&self) -> Vec<u8> {
-        self.heard.lock().unwrap().log.clone()
-    }
-
-    fn wait(&self, what: &str, done: impl Fn(&Self) -> bool) {
-        let start = Instant::now();
-        while !done(self) {
-            assert!(start.elapsed() < PATIENCE, "waited in vain for {what}; the screen:\n{}", self.screen());
-            thread::sleep(Duration::from_millis(15));
-        }
-    }
-
-    fn wait_for(&self, text: &str) {
-        self.wait(text, |pty| pty.screen().contains(text));
-    }
-
-    /// Waits for the finished list.
-    fn wait_ranked(&self) {
-        self.wait("the ranking", |pty| {
-            let screen = pty.screen();
-            screen.contains("families --") && !screen.contains("ranking") && !screen.contains("so far")
-        });
-    }
-
-    /// Waits until nothing has come for a while.
-    fn wait_quiet(&self) {
-        let (start, mut last, mut since) = (Instant::now(), self.bytes(), Instant::now());
-        while since.elapsed() < Duration::from_millis(400) {
-            assert!(start.elapsed() < PATIENCE, "never quiet");
-            thread::sleep(Duration::from_millis(20));
-            if self.bytes() != last {
-                (last, since) = (self.bytes(), Instant::now());
-            }
-        }
-    }
-
-    fn signal(&self, name: &str) {
-        let pid = self.child.process_id().unwrap().to_string();
-        assert!(std::process::Command::new("kill").args([&format!("-{name}"), &pid]).status().unwrap().success());
-    }
-
-    /// Waits for the end; true when the exit code is 0.
-    fn ended(&mut self) -> bool {
-        let start = Instant::now();
-        loop {
-            if let Some(status) = self.child.try_wait().unwrap() {
-                // What was written last may still be on its way to the reader.
-                if let Some(reader) = self.reader.take() {
-                    let waited = Instant::now();
-                    while !reader.is_finished() && waited.elapsed() < Duration::from_secs(2) {
-                        thread::sleep(Duration::from_millis(10));
-                    }
-                }
-                return status.success();
-            }
-            assert!(start.elapsed() < PATIENCE, "does not end; the screen:\n{}", self.screen());
-            thread::sleep(Duration::from_millis(15));
-        }
-    }
-
-    /// Alternate screen left and cursor shown, each exactly once in all.
-    fn assert_restored(&self) {
-        let heard = self.heard.lock().unwrap();
-        assert!(!heard.parser.screen().alternate_screen(), "still on the alternate screen");
-        assert!(!heard.parser.screen().hide_cursor(), "the cursor is hidden");
-        assert!(!heard.parser.screen().bracketed_paste(), "bracketed paste is on");
-        assert_eq!(count(&heard.log, b"\x1b[?1049h"), 1);
-        assert_eq!(count(&heard.log, b"\x1b[?1049l"), 1);
-    }
-
-    fn state(&self) -> char {
-        let pid = self.child.process_id().unwrap();
-        let stat = std::fs::read_to_string(format!("/proc/{pid}/stat")).unwrap_or_default();
-        stat.rsplit(") ").next().and_then(|rest| rest.chars().next()).unwrap_or('?')
-    }
-}
-
-impl Drop for Pty {
-    fn drop(&mut self) {
-        let _ = self.child.kill();
-        let _ = self.child.wait();
-    }
-}
-
-fn count(log: &[u8], piece: &[u8]) -> usize {
-    log.windows(piece.len()).filter(|window| *window == piece).count()
-}
-
-fn folder() -> tempfile::TempDir {
-    tempfile::tempdir().unwrap()
-}
-
-fn saved(folder: &tempfile::TempDir) -> PathBuf {
-    folder.path().join("cleat.grasps.toml")
-}
-
-fn recovery(folder: &tempfile::TempDir) -> PathBuf {
-    folder.path().join("cleat.grasps.toml.recovery")
-}
 
 #[test]
 fn a_day_at_the_bench() {
@@ -523,9 +338,10 @@ fn a_place_that_cannot_be_written_is_told_with_the_mend() {
     let folder = folder();
     std::fs::create_dir(saved(&folder)).unwrap();
     let mut pty = Pty::start(folder.path(), 80, 24, &[]);
+    pty.wait_for("saved grasps not read");
+    pty.send("\x1b");
     pty.wait_ranked();
     pty.send("ms");
-    pty.wait_for("not saved");
     pty.wait_for("press s again");
     pty.send("\x1b");
     pty.wait_for("1 mark, 1 not saved");

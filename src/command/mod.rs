@@ -23,7 +23,7 @@ use clap::{Args, CommandFactory, Parser, Subcommand, ValueEnum};
 use knobs::Knobs;
 use output::{Answer, Stop};
 use std::io::{self, IsTerminal, Write};
-use std::path::PathBuf;
+use std::path::{Path, PathBuf};
 use std::process::ExitCode;
 
 /// Says where fingers, jaws or clamps should touch a flat part, and what the grip can take.
@@ -32,9 +32,7 @@ use std::process::ExitCode;
     version,
     long_version = completions::BUILD,
     args_conflicts_with_subcommands = true,
-    subcommand_negates_reqs = true,
-    arg_required_else_help = true,
-    after_help = "Without a command the workbench opens on PART; a part named like a command is opened as ./NAME.\n\
+    after_help = "Without a command the workbench opens on PART, without PART on a page to choose one; a part named like a command is opened as ./NAME.\n\
                   Exit codes: 0 done, 1 the answer is no (check, sheet), 2 bad usage or input, 3 internal fault."
 )]
 struct Cli {
@@ -47,7 +45,6 @@ struct Cli {
 #[derive(Debug, Args)]
 struct Open {
     /// Part file to open the workbench on; a drawing (DXF, SVG) becomes one first
-    #[arg(required = true)]
     part: Option<PathBuf>,
     #[command(flatten)]
     knobs: Knobs,
@@ -152,10 +149,11 @@ fn run(cli: Cli) -> Result<Answer, Stop> {
 }
 
 fn open(args: Open) -> Result<Answer, Stop> {
-    let Some(part_path) = args.part else {
-        return Err(Stop::bad("name a part file"));
+    let terminal = io::stdin().is_terminal() && io::stdout().is_terminal();
+    let Some(part_path) = args.part.clone() else {
+        return if terminal { start(&args) } else { Err(Stop::Bad(how_to())) };
     };
-    if !(io::stdin().is_terminal() && io::stdout().is_terminal()) {
+    if !terminal {
         return Err(Stop::bad(format!(
             "the workbench needs a terminal for input and output; `holdwright rank {}` lists grasps without one",
             shown(&part_path.display().to_string())
@@ -174,22 +172,77 @@ fn open(args: Open) -> Result<Answer, Stop> {
     let setup = args.knobs.setup()?;
     args.knobs.use_threads_everywhere()?;
     let options = workbench::Options {
-        grasp_path: args.grasps.unwrap_or_else(|| file::default_grasp_path(&part_path)),
+        grasp_path: args.grasps.clone().unwrap_or_else(|| file::default_grasp_path(&part_path)),
         part_path,
         setup_path: args.knobs.setup.clone(),
         part,
         setup,
-        color: match args.color {
-            ColorWord::Auto => workbench::ColorChoice::Auto,
-            ColorWord::Always => workbench::ColorChoice::Always,
-            ColorWord::Never => workbench::ColorChoice::Never,
-        },
-        marker: args.marker.map(|word| match word {
-            MarkerWord::Ascii => workbench::Marker::Ascii,
-            MarkerWord::Line => workbench::Marker::Line,
-            MarkerWord::Braille => workbench::Marker::Braille,
-        }),
+        color: args.color(),
+        marker: args.marker(),
+        overrides: args.overrides(),
     };
     workbench::run(options).map_err(|stopped| Stop::bad(stopped.to_string()))?;
     Ok(Answer::Done)
+}
+
+/// What to do where there is no terminal for the start page.
+fn how_to() -> Vec<String> {
+    [
+        "name a part file, or start on a terminal to choose one; without a terminal:",
+        "  holdwright rank PART.toml                      lists grasps of a part",
+        "  holdwright import DRAWING -o PART.toml         makes a part file of a DXF or SVG drawing",
+        "  holdwright --help                              lists everything else",
+    ]
+    .map(str::to_owned)
+    .into()
+}
+
+/// The page that is shown where no part is named.
+fn start(args: &Open) -> Result<Answer, Stop> {
+    // What cannot be used is said before the screen is taken.
+    args.knobs.setup()?;
+    args.knobs.use_threads_everywhere()?;
+    let here = Path::new("");
+    let mut found = file::parts_in(Path::new("."));
+    found.iter_mut().for_each(|(path, _)| *path = path.strip_prefix(".").map_or(path.clone(), Path::to_owned));
+    found.extend(file::parts_in(Path::new("parts")));
+    let options = workbench::StartOptions {
+        found: found.into_iter().map(|(path, name)| workbench::start::Found { path, name }).collect(),
+        folder: here.to_owned(),
+        setup_path: args.knobs.setup.clone(),
+        overrides: args.overrides(),
+        grasp_path: args.grasps.clone(),
+        color: args.color(),
+        marker: args.marker(),
+    };
+    workbench::run_start(options).map_err(|stopped| Stop::bad(stopped.to_string()))?;
+    Ok(Answer::Done)
+}
+
+impl Open {
+    fn color(&self) -> workbench::ColorChoice {
+        match self.color {
+            ColorWord::Auto => workbench::ColorChoice::Auto,
+            ColorWord::Always => workbench::ColorChoice::Always,
+            ColorWord::Never => workbench::ColorChoice::Never,
+        }
+    }
+
+    fn marker(&self) -> Option<workbench::Marker> {
+        self.marker.map(|word| match word {
+            MarkerWord::Ascii => workbench::Marker::Ascii,
+            MarkerWord::Line => workbench::Marker::Line,
+            MarkerWord::Braille => workbench::Marker::Braille,
+        })
+    }
+
+    fn overrides(&self) -> workbench::Overrides {
+        let knobs = self.knobs.clone();
+        workbench::Overrides::new(move |setup| {
+            knobs.over(setup).map_err(|stop| match stop {
+                Stop::Bad(lines) => lines,
+                Stop::Closed | Stop::Output(_) => Vec::new(),
+            })
+        })
+    }
 }

@@ -172,6 +172,8 @@ pub struct GraspFile {
     pub setup: Setup,
     /// The grasps, in file order.
     pub grasps: Vec<SavedGrasp>,
+    /// In a recovery file: names of grasps that were to be taken out of the grasp file beside it.
+    pub removed: Vec<String>,
     /// Stamp of the file as read.
     pub stamp: Stamp,
 }
@@ -216,6 +218,7 @@ fn file_of(root: &Table<'_>) -> Option<GraspFile> {
         grasps.extend(grasp_of(&table, &setup));
         table.finish();
     }
+    let removed = root.texts("removed");
     // Every key is asked for before a missing one ends the reading.
     let (part_path, part_name, program) = (root.text("part"), root.text("part_name"), root.text("program"));
     Some(GraspFile {
@@ -225,6 +228,7 @@ fn file_of(root: &Table<'_>) -> Option<GraspFile> {
         part_digest: part_digest?,
         setup,
         grasps,
+        removed: removed.unwrap_or_default(),
         stamp: Stamp::of(b""),
     })
 }

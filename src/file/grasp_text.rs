@@ -46,9 +46,14 @@ pub(super) fn grasp(keep: &Keep, name: &str, part: &Part, file_setup: &Setup, ti
     text
 }
 
+/// A note as it goes to a file: its lines, fit for a terminal.
+pub(super) fn note(note: &str) -> String {
+    note.lines().map(shown).collect::<Vec<_>>().join("\n")
+}
+
 fn write_grasp(text: &mut String, keep: &Keep, name: &str, part: &Part, time: jiff::Timestamp) -> Result {
     writeln!(text, "\n[[grasp]]\nname = {}", quoted(&shown(name)))?;
-    writeln!(text, "note = {}", quoted(&keep.note.lines().map(shown).collect::<Vec<_>>().join("\n")))?;
+    writeln!(text, "note = {}", quoted(&note(&keep.note)))?;
     writeln!(text, "time = {time:.0}")?;
     writeln!(text, "contacts = [")?;
     for (spot, contact) in keep.grasp.spots.iter().zip(&keep.grasp.contacts) {

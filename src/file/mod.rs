@@ -2,6 +2,8 @@
 
 mod digest;
 pub mod drawing;
+mod editing;
+mod finding;
 mod grasp_file;
 mod grasp_text;
 mod part_file;
@@ -12,11 +14,12 @@ mod toml_reader;
 mod writing;
 
 pub use digest::part_digest;
+pub use finding::parts_in;
 pub use grasp_file::{
     GraspFile, KeptDensity, SCORES, SavedGrasp, SavedLoad, Scores, WEAKEST, grasps_from_text, read_grasps,
 };
 pub use part_file::{part_from_text, read_part, read_part_with_notes};
-pub use saving::{Keep, SaveFault, Stamp, save, stamp};
+pub use saving::{Becomes, Change, Keep, Revision, SaveFault, Stamp, revise, save, stamp};
 pub use setup_file::{CLOSINGS, CONDITIONS, DRIVES, TIPS, default_setup_text, read_setup, setup_from_text, word_for};
 pub use writing::write_new;
 

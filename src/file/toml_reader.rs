@@ -257,6 +257,13 @@ impl<'a> Table<'a> {
         self.typed(key, &format!("a list of {N} finite numbers"), |value| numbers(value.as_array()?))
     }
 
+    /// A list of texts.
+    pub(super) fn texts(&self, key: &'static str) -> Option<Vec<String>> {
+        self.typed(key, "a list of texts in quotes", |value| {
+            value.as_array()?.iter().map(|text| text.get_ref().as_str().map(str::to_owned)).collect()
+        })
+    }
+
     /// Yes or no.
     pub(super) fn flag(&self, key: &'static str) -> Option<bool> {
         self.typed(key, "true or false", DeValue::as_bool)

@@ -86,6 +86,10 @@ pub enum Scope {
     Hand,
     /// Grasps beside each other.
     Compare,
+    /// The start page.
+    Start,
+    /// The start page on a part that has to be written first; what does not stand here is looked up in `Start`.
+    StartDemo,
     /// A line of text being typed.
     Entry,
     /// Unsaved marks at the end.
@@ -99,6 +103,11 @@ pub enum Scope {
 }
 
 impl Scope {
+    /// True when a row holds in this scope.
+    fn takes(self, row: &Row) -> bool {
+        row.scope == self || (self == Self::StartDemo && row.scope == Self::Start)
+    }
+
     /// The scope of what lies on top.
     pub fn of(state: &State) -> Self {
         match state.layers.last() {
@@ -111,6 +120,8 @@ impl Scope {
             Some(Layer::Floors { .. }) => Self::Floors,
             Some(Layer::Hand) => Self::Hand,
             Some(Layer::Compare { .. }) => Self::Compare,
+            Some(Layer::Start(page)) if page.writes_first() => Self::StartDemo,
+            Some(Layer::Start(_)) => Self::Start,
             Some(Layer::Entry(_)) => Self::Entry,
             Some(Layer::Ask(Question::Quit)) => Self::AskQuit,
             Some(Layer::Ask(Question::Reload)) => Self::AskReload,
@@ -250,6 +261,10 @@ pub enum Action {
     TakeOut,
     /// Dry or oily, in the table of pairs.
     OtherCondition,
+    /// Bring the mark taken away last back.
+    BringBack,
+    /// Read part and setup again.
+    Reload,
     /// Save unsaved marks.
     Save,
     /// The help page.
@@ -334,7 +349,19 @@ fn no_mass_in_the_file(state: &State) -> bool {
 }
 
 fn any_unsaved(state: &State) -> bool {
-    state.unsaved() > 0
+    state.unsaved() > 0 || state.removals() > 0
+}
+
+fn any_lifted(state: &State) -> bool {
+    !state.lifted.is_empty()
+}
+
+fn any_mark_or_lifted(state: &State) -> bool {
+    any_mark(state) || any_lifted(state)
+}
+
+fn any_start_row(state: &State) -> bool {
+    matches!(state.layers.last(), Some(Layer::Start(page)) if page.rows() > 0)
 }
 
 use Action as A;
@@ -349,7 +376,7 @@ pub static TABLE: &[Row] = &[
     row(A::Up, S::Bench, &[C('k'), Key::Up], "up", "grasp before", any_row),
     row(A::OpenReading, S::Bench, &[Key::Enter], "read", "the whole reading of the grasp", any_reading),
     row(A::Mark, S::Bench, &[C('m'), C(' ')], "mark", "mark the grasp, or take its mark away", any_row),
-    row(A::Save, S::Bench, &[C('s')], "save", "save unsaved marks to the grasp file", any_unsaved),
+    row(A::Save, S::Bench, &[C('s')], "save", "save marks, new names and removals to the grasp file", any_unsaved),
     row(A::MuUp, S::Bench, &[C('l'), Key::Right, C('+')], "mu+", "mu up by 0.01", always),
     row(A::MuDown, S::Bench, &[C('h'), Key::Left, C('-')], "mu-", "mu down by 0.01", always),
     row(A::OpenLoads, S::Bench, &[C('L')], "loads", "list the load cases: make them larger, smaller, add some", always),
@@ -428,7 +455,14 @@ pub static TABLE: &[Row] = &[
     row(A::Cones, S::Bench, &[C('c')], "cones", "friction cones on the outline", always),
     row(A::Name, S::Bench, &[C('n')], "name", "mark the grasp and name it", any_row),
     row(A::Note, S::Bench, &[C('w')], "why", "mark the grasp and note why", any_row),
-    row(A::OpenMarks, S::Bench, &[C('M')], "marks", "list the marks, also those no longer ranked", any_mark),
+    row(
+        A::OpenMarks,
+        S::Bench,
+        &[C('M')],
+        "marks",
+        "list the marks and saved grasps: rename, note, remove",
+        any_mark_or_lifted,
+    ),
     row(A::MuEnter, S::Bench, &[C('=')], "set mu", "type mu", always),
     row(A::LimitEnter, S::Bench, &[C('N')], "set limit", "type the force limit, N per finger", always),
     row(A::OtherTip, S::Bench, &[C('T')], "tip", "pins or pads", always),
@@ -456,6 +490,7 @@ pub static TABLE: &[Row] = &[
     row(A::SpacingWider, S::Bench, &[C(',')], "wider", "sites farther apart (spacing x 1.25)", always),
     row(A::Marker, S::Bench, &[C('p')], "pen", "draw with ASCII, lines or braille dots", always),
     row(A::CellShape, S::Bench, &[C('a')], "", "another cell shape, until right angles look right", always),
+    row(A::Reload, S::Bench, &[C('R')], "", "read the part and the setup again from their files", always),
     row(A::NextPanel, S::Bench, &[Key::Tab], "panel", "on a small screen: bring in the next panel", always),
     row(A::PageDown, S::Bench, &[C('J'), Key::PageDown], "", "a page down", any_row),
     row(A::PageUp, S::Bench, &[C('K'), Key::PageUp], "", "a page up", any_row),
@@ -473,7 +508,10 @@ pub static TABLE: &[Row] = &[
     row(A::Down, S::Marks, &[C('j'), Key::Down], "down", "", always),
     row(A::Up, S::Marks, &[C('k'), Key::Up], "up", "", always),
     row(A::Accept, S::Marks, &[Key::Enter], "find in the list", "", any_mark),
-    row(A::Mark, S::Marks, &[C('m'), C(' ')], "unmark", "", any_mark),
+    row(A::Name, S::Marks, &[C('n')], "rename", "", any_mark),
+    row(A::Note, S::Marks, &[C('w')], "why", "", any_mark),
+    row(A::Mark, S::Marks, &[C('x'), C('m'), C(' ')], "remove", "", any_mark),
+    row(A::BringBack, S::Marks, &[C('u')], "bring back", "", any_lifted),
     row(A::Save, S::Marks, &[C('s')], "save", "", any_unsaved),
     row(A::Accept, S::Pairs, &[Key::Enter], "take", "", always),
     row(A::OtherCondition, S::Pairs, &[C('l'), C('h'), Key::Right, Key::Left], "dry or oily", "", always),
@@ -565,6 +603,16 @@ pub static TABLE: &[Row] = &[
     row(A::MuUp, S::Compare, &[C('l'), Key::Right, C('+')], "mu+", "", always),
     row(A::MuDown, S::Compare, &[C('h'), Key::Left, C('-')], "mu-", "", always),
     row(A::TakeOut, S::Compare, &[C('x')], "empty", "", always),
+    row(A::Accept, S::StartDemo, &[Key::Enter], "write it here and open", "", always),
+    row(A::Accept, S::Start, &[Key::Enter], "open", "", |state| Scope::of(state) == S::Start),
+    row(A::Down, S::Start, &[C('j'), Key::Down], "down", "", any_start_row),
+    row(A::Up, S::Start, &[C('k'), Key::Up], "up", "", any_start_row),
+    row(A::Quit, S::Start, &[C('q')], "leave", "", always),
+    row(A::Help, S::Start, &[C('?')], "help", "", always),
+    row(A::PageDown, S::Start, &[C(' '), C('J'), Key::PageDown], "", "", any_start_row),
+    row(A::PageUp, S::Start, &[C('K'), Key::PageUp], "", "", any_start_row),
+    row(A::First, S::Start, &[C('g'), Key::Home], "", "", any_start_row),
+    row(A::Last, S::Start, &[C('G'), Key::End], "", "", any_start_row),
     row(A::Accept, S::Entry, &[Key::Enter], "take", "", always),
     row(A::Close, S::Entry, &[Key::Esc], "leave", "", always),
     row(A::Backspace, S::Entry, &[Key::Backspace, Ctrl('h')], "", "", always),
@@ -593,7 +641,7 @@ pub fn action_of(state: &State, key: Key) -> Option<Action> {
     let holds = |row: &&Row| row.keys.contains(&key) && (row.allowed)(state);
     TABLE
         .iter()
-        .filter(|row| row.scope == scope)
+        .filter(|row| scope.takes(row))
         .find(holds)
         .or_else(|| TABLE.iter().filter(|row| row.scope == Scope::Any).find(holds))
         .map(|row| row.action)
@@ -602,7 +650,7 @@ pub fn action_of(state: &State, key: Key) -> Option<Action> {
 /// The rows the footer may show now, most useful first.
 pub fn footer(state: &State) -> impl Iterator<Item = &'static Row> {
     let scope = Scope::of(state);
-    TABLE.iter().filter(move |row| row.scope == scope && !row.label.is_empty() && (row.allowed)(state))
+    TABLE.iter().filter(move |row| scope.takes(row) && !row.label.is_empty() && (row.allowed)(state))
 }
 
 /// The keys of a row, joined for reading.

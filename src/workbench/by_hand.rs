@@ -140,6 +140,33 @@ pub(super) fn read_began(state: &mut State) {
     hand.began = spots.and_then(|spots| Reading::of(&state.order.scene, &spots));
 }
 
+/// After another part was read: what was in hand stays where it has its places there; steps before are forgotten, for they
+/// were steps on the part as it was.
+pub(super) fn on_another_part(state: &mut State) {
+    let scene = &state.order.scene;
+    let edge = state.filter.edge.filter(|edge| scene.part().outline().edge(*edge).is_some());
+    let places = state.hand.as_ref().is_some_and(|hand| scene.grasp(&hand.now.spots).is_ok());
+    state.filter.edge = edge;
+    if let Some(hand) = state.hand.as_mut().filter(|_| places) {
+        hand.past.clear();
+        hand.future.clear();
+    } else {
+        state.hand = None;
+        state.layers.retain(|layer| *layer != Layer::Hand);
+    }
+}
+
+/// Frees the fingers in hand that the scene does not keep, and reads what the grasp began as again.
+pub(super) fn free_what_is_not_kept(state: &mut State) {
+    let kept = state.order.scene.kept().to_vec();
+    if let Some(hand) = &mut state.hand {
+        for (locked, spot) in hand.now.locked.iter_mut().zip(&hand.now.spots) {
+            *locked &= kept.contains(spot);
+        }
+    }
+    read_began(state);
+}
+
 /// Carries out an action on the grasp in hand.
 pub(super) fn act(state: &mut State, action: Action) -> Vec<Effect> {
     let Some(hand) = &mut state.hand else { return Vec::new() };
@@ -327,6 +354,6 @@ fn history(state: &mut State, step: fn(&mut ByHand) -> bool, none: &str) -> Vec<
 /// Marks the grasp in hand, or takes its mark away.
 fn mark(state: &mut State) {
     let Some(spots) = state.hand.as_ref().map(|hand| hand.now.spots.clone()) else { return };
-    state.anchor = Some(Anchor { spots: spots.clone() });
+    state.anchor = Some(Anchor { spots: spots.clone(), places: None });
     marks::toggle_at(state, &spots);
 }

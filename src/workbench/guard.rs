@@ -1,8 +1,8 @@
 //! Every way out: the terminal is restored once, unsaved marks are kept, and the process ends as it should.
 
-use super::recovery::Recovery;
+use super::recovery::{Recovery, Unsaved};
 use super::terminal;
-use crate::file::{self, Keep};
+use crate::file;
 use signal_hook::consts::{SIGCONT, SIGHUP, SIGINT, SIGTERM, SIGTSTP};
 use std::io::{self, Write};
 use std::panic::{self, AssertUnwindSafe};
@@ -55,11 +55,14 @@ pub(super) fn guarded(work: impl FnOnce() -> io::Result<Ending>) -> Result<io::R
 ///
 /// # Errors
 /// The terminal could not be taken, or was lost.
-pub(super) fn conclude(ended: Result<io::Result<Ending>, Broken>, recovery: &Recovery, raft: &Raft) -> io::Result<()> {
-    if let Ok(Ok(Ending::Quit { recover: false })) = ended {
-        recovery.settle();
-    } else {
-        leave_word(recovery, &raft.take());
+pub(super) fn conclude(ended: Result<io::Result<Ending>, Broken>, raft: &Raft) -> io::Result<()> {
+    let (unsaved, recovery) = raft.take();
+    if let Some(recovery) = recovery {
+        if let Ok(Ok(Ending::Quit { recover: false })) = ended {
+            recovery.settle();
+        } else {
+            leave_word(&recovery, &unsaved);
+        }
     }
     raft.done();
     match ended {
@@ -74,40 +77,42 @@ pub(super) fn conclude(ended: Result<io::Result<Ending>, Broken>, recovery: &Rec
 }
 
 /// Writes the recovery file and says so on standard error, where someone may still read it.
-fn leave_word(recovery: &Recovery, keeps: &[Keep]) {
-    if keeps.is_empty() {
+fn leave_word(recovery: &Recovery, unsaved: &Unsaved) {
+    if unsaved.is_empty() {
         return;
     }
-    let count = keeps.len();
-    let word = match recovery.write(keeps) {
+    let word = match recovery.write(unsaved) {
         Ok(path) if path == recovery.path() => {
             format!("kept in {}, the next start offers them", path.display())
         }
         Ok(path) => format!("kept in {}", path.display()),
         Err(fault) => format!("lost: {fault}"),
     };
-    let marks = if count == 1 { "1 unsaved mark is".to_owned() } else { format!("{count} unsaved marks are") };
+    let count = unsaved.keeps.len() + unsaved.removals.len();
+    let what = if unsaved.removals.is_empty() { "mark" } else { "change" };
+    let marks = if count == 1 { format!("1 unsaved {what} is") } else { format!("{count} unsaved {what}s are") };
     let word = file::shown(&format!("{marks} {word}"));
     let _ = writeln!(io::stderr(), "{word}");
 }
 
-/// Unsaved marks, where every way out finds them.
+/// What is not saved and where it would go, where every way out finds them.
 #[derive(Clone, Default)]
 pub(super) struct Raft {
-    keeps: Arc<Mutex<Vec<Keep>>>,
+    aboard: Arc<Mutex<(Unsaved, Option<Recovery>)>>,
     done: Arc<AtomicBool>,
 }
 
 impl Raft {
-    fn lock(&self) -> MutexGuard<'_, Vec<Keep>> {
-        self.keeps.lock().unwrap_or_else(PoisonError::into_inner)
+    fn lock(&self) -> MutexGuard<'_, (Unsaved, Option<Recovery>)> {
+        self.aboard.lock().unwrap_or_else(PoisonError::into_inner)
     }
 
-    pub(super) fn load(&self, keeps: Vec<Keep>) {
-        *self.lock() = keeps;
+    /// What is not saved now, and where it goes when the run is cut off.
+    pub(super) fn load(&self, unsaved: Unsaved, recovery: Option<&Recovery>) {
+        *self.lock() = (unsaved, recovery.cloned());
     }
 
-    fn take(&self) -> Vec<Keep> {
+    fn take(&self) -> (Unsaved, Option<Recovery>) {
         std::mem::take(&mut *self.lock())
     }
 
@@ -121,13 +126,9 @@ impl Raft {
 ///
 /// # Errors
 /// The system refuses the handlers or the thread.
-pub(super) fn watch_signals(
-    tell: impl Fn(i32) -> bool + Send + 'static,
-    raft: &Raft,
-    recovery: &Recovery,
-) -> io::Result<()> {
+pub(super) fn watch_signals(tell: impl Fn(i32) -> bool + Send + 'static, raft: &Raft) -> io::Result<()> {
     let mut signals = signal_hook::iterator::Signals::new([SIGTERM, SIGHUP, SIGINT, SIGTSTP, SIGCONT])?;
-    let (raft, recovery) = (raft.clone(), recovery.clone());
+    let raft = raft.clone();
     thread::Builder::new().name("signals".to_owned()).spawn(move || {
         for signal in signals.forever() {
             let told = tell(signal);
@@ -139,10 +140,11 @@ pub(super) fn watch_signals(
             }
             if !raft.done.load(Ordering::SeqCst) {
                 terminal::abandon();
-                let keeps = raft.take();
-                if !keeps.is_empty() {
+                if let (unsaved, Some(recovery)) = raft.take()
+                    && !unsaved.is_empty()
+                {
                     // Nobody may be there to read a fault.
-                    let _ = recovery.write(&keeps);
+                    let _ = recovery.write(&unsaved);
                 }
             }
             let _ = signal_hook::low_level::emulate_default_handler(signal);
@@ -154,6 +156,7 @@ pub(super) fn watch_signals(
 #[cfg(test)]
 mod tests {
     use super::*;
+    use crate::file::Keep;
     use crate::part::{EdgeId, Part, PartDescription};
     use crate::search::{Scene, Setup, Spot};
     use portable_pty::{CommandBuilder, PtySize, native_pty_system};
@@ -181,13 +184,14 @@ mod tests {
             &part,
         );
         let raft = Raft::default();
-        raft.load(vec![Keep { name: "a".into(), note: String::new(), grasp, assessment, setup, density: None }]);
+        let keep = Keep { name: "a".into(), note: String::new(), grasp, assessment, setup, density: None };
+        raft.load(Unsaved { keeps: vec![(part, keep)], removals: vec!["b".to_owned()] }, Some(&recovery));
         let ended = guarded(|| {
             // A worker's panic is silent.
             let _ = thread::spawn(|| panic!("worker broke")).join();
             panic!("loop broke");
         });
-        let _ = conclude(ended, &recovery, &raft);
+        let _ = conclude(ended, &raft);
     }
 
     #[test]
@@ -218,6 +222,6 @@ mod tests {
         assert!(left < said, "the message must come after the terminal is restored: {log}");
         assert!(!log.contains("worker broke"), "{log}");
         let kept = file::read_grasps(&folder.path().join("cleat.grasps.toml.recovery")).unwrap();
-        assert_eq!(kept.grasps.len(), 1);
+        assert_eq!((kept.grasps.len(), kept.removed), (1, vec!["b".to_owned()]));
     }
 }

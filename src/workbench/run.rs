@@ -2,18 +2,27 @@
 
 use super::action::Key;
 use super::guard::{Ending, Raft, conclude, guarded, watch_signals};
+use super::kept;
+use super::keyboard;
 use super::look::is_utf8;
-use super::recovery::Recovery;
+use super::opening::chosen;
+use super::recovery::{Recovery, Unsaved};
+use super::reload::Fresh;
+use super::start::Choice;
 use super::state::State;
 use super::terminal::{self, Screen};
 use super::update::{Effect, Input, update};
-use super::{ColorChoice, Options};
-use crate::file::{self, Keep, SaveFault, Stamp};
+use super::watch::Watch;
+use super::{ColorChoice, Options, StartOptions};
+use crate::file::{self, Change, Keep, Revision, SaveFault, Stamp};
+use crate::part::Part;
+use crate::search::Setup;
 use crate::search::job::{News, Ranker, What};
-use crossterm::event::{self, Event, KeyCode, KeyEvent, KeyEventKind, KeyModifiers};
+use crossterm::event::{self, Event};
 use signal_hook::consts::{SIGCONT, SIGSTOP, SIGTSTP};
 use std::fs::File;
 use std::io;
+use std::sync::Arc;
 use std::sync::mpsc::{self, Receiver, RecvTimeoutError, Sender};
 use std::thread;
 use std::time::{Duration, Instant};
@@ -36,12 +45,26 @@ enum Message {
 /// # Errors
 /// A setup that cannot be used, a terminal that cannot be taken or is lost, an internal fault.
 pub fn run(mut options: Options) -> Result<(), Stopped> {
+    options.color = settled(options.color);
+    let state = State::new(&options).map_err(Stopped::Setup)?;
+    on_terminal(Opening::Part(options), state).map_err(Stopped::Terminal)
+}
+
+/// Opens the start page on the terminal, then the workbench on what is chosen there; returns when the user leaves.
+///
+/// # Errors
+/// As [`run`]. A part that cannot be read is told on the page.
+pub fn run_start(mut options: StartOptions) -> Result<(), Stopped> {
+    options.color = settled(options.color);
+    let state = State::start(&options).map_err(Stopped::Setup)?;
+    on_terminal(Opening::Start(options), state).map_err(Stopped::Terminal)
+}
+
+fn settled(color: ColorChoice) -> ColorChoice {
     let variable = |name: &str| std::env::var(name).ok();
-    options.color = options.color.settled(variable("NO_COLOR").as_deref(), variable("TERM").as_deref());
     // The screen decides by itself; the library's own reading of NO_COLOR would also drop reversed rows.
     crossterm::style::force_color_output(true);
-    let state = State::new(&options).map_err(Stopped::Setup)?;
-    on_terminal(&options, state).map_err(Stopped::Terminal)
+    color.settled(variable("NO_COLOR").as_deref(), variable("TERM").as_deref())
 }
 
 /// Why the workbench could not go on.
@@ -55,24 +78,27 @@ pub enum Stopped {
     Terminal(io::Error),
 }
 
-fn on_terminal(options: &Options, mut state: State) -> io::Result<()> {
+/// What the loop is opened on.
+enum Opening {
+    Part(Options),
+    Start(StartOptions),
+}
+
+fn on_terminal(opening: Opening, mut state: State) -> io::Result<()> {
     let variable = |name: &str| std::env::var(name).ok();
-    state.look.color = options.color == ColorChoice::Always;
+    let color = match &opening {
+        Opening::Part(options) => options.color,
+        Opening::Start(options) => options.color,
+    };
+    state.look.color = color == ColorChoice::Always;
     state.look.utf8 =
         is_utf8(variable("LC_ALL").as_deref(), variable("LC_CTYPE").as_deref(), variable("LANG").as_deref());
-    let recovery = Recovery::beside(&options.grasp_path, &options.part_path, &options.part);
-    if recovery.path().exists() {
-        match recovery.load() {
-            Ok(keeps) => update(&mut state, Input::RecoveryFound(keeps.len())),
-            Err(lines) => update(&mut state, not_taken_back(lines)),
-        };
-    }
     let raft = Raft::default();
     let (sender, receiver) = mpsc::channel();
     let tell = sender.clone();
-    watch_signals(move |signal| tell.send(Message::Signal(signal)).is_ok(), &raft, &recovery)?;
-    let ended = guarded(|| Bench::new(options, &recovery, &raft, sender, receiver)?.work(&mut state));
-    conclude(ended, &recovery, &raft)
+    watch_signals(move |signal| tell.send(Message::Signal(signal)).is_ok(), &raft)?;
+    let ended = guarded(|| Bench::new(&raft, sender, receiver)?.work(opening, &mut state));
+    conclude(ended, &raft)
 }
 
 /// Tells the loop when the input thread ends, however it ends.
@@ -99,35 +125,6 @@ fn read_input(sender: &Sender<Message>) -> io::Result<()> {
     Ok(())
 }
 
-/// A key press or repeat in the workbench's own terms; releases and unknown keys are nothing.
-fn key_of(event: &KeyEvent) -> Option<Key> {
-    if event.kind == KeyEventKind::Release {
-        return None;
-    }
-    let ctrl = event.modifiers.contains(KeyModifiers::CONTROL);
-    if event.modifiers.contains(KeyModifiers::ALT) {
-        return None;
-    }
-    Some(match event.code {
-        KeyCode::Char(c) if ctrl => Key::Ctrl(c.to_ascii_lowercase()),
-        KeyCode::Char(c) => Key::Char(c),
-        KeyCode::Up => Key::Up,
-        KeyCode::Down => Key::Down,
-        KeyCode::Left => Key::Left,
-        KeyCode::Right => Key::Right,
-        KeyCode::Enter => Key::Enter,
-        KeyCode::Esc => Key::Esc,
-        KeyCode::Tab => Key::Tab,
-        KeyCode::Backspace => Key::Backspace,
-        KeyCode::Delete => Key::Delete,
-        KeyCode::Home => Key::Home,
-        KeyCode::End => Key::End,
-        KeyCode::PageUp => Key::PageUp,
-        KeyCode::PageDown => Key::PageDown,
-        _ => return None,
-    })
-}
-
 /// When the next frame is due.
 #[derive(Clone, Copy, PartialEq, Eq, PartialOrd, Ord)]
 enum Due {
@@ -137,14 +134,22 @@ enum Due {
     Now,
 }
 
+/// A part on the bench, and the files about it.
+struct Desk {
+    options: Options,
+    recovery: Recovery,
+    known: Option<Stamp>,
+    watch: Watch,
+}
+
 struct Bench<'a> {
-    options: &'a Options,
-    recovery: &'a Recovery,
+    /// Nothing while the start page waits for a choice.
+    desk: Option<Desk>,
+    start: Option<StartOptions>,
     raft: &'a Raft,
     receiver: Receiver<Message>,
     ranker: Ranker,
     screen: Screen<File>,
-    known: Option<Stamp>,
     due: Due,
     progress_drawn: Instant,
     /// The SIGCONT that follows our own stop is expected and does nothing more.
@@ -152,37 +157,36 @@ struct Bench<'a> {
 }
 
 impl<'a> Bench<'a> {
-    fn new(
-        options: &'a Options,
-        recovery: &'a Recovery,
-        raft: &'a Raft,
-        sender: Sender<Message>,
-        receiver: Receiver<Message>,
-    ) -> io::Result<Self> {
+    fn new(raft: &'a Raft, sender: Sender<Message>, receiver: Receiver<Message>) -> io::Result<Self> {
         read_input(&sender)?;
         let ranker = Ranker::new(move |news| {
             // The loop may be gone already; then nobody wants the news.
             let _ = sender.send(Message::News(news));
         })?;
         Ok(Self {
-            options,
-            recovery,
+            desk: None,
+            start: None,
             raft,
             receiver,
             ranker,
             screen: terminal::screen()?,
-            known: file::stamp(&options.grasp_path),
             due: Due::Now,
             progress_drawn: Instant::now(),
             own_stop: false,
         })
     }
 
-    fn work(&mut self, state: &mut State) -> io::Result<Ending> {
+    fn work(&mut self, opening: Opening, state: &mut State) -> io::Result<Ending> {
         if let Ok((columns, rows)) = crossterm::terminal::size() {
             update(state, Input::Resize(columns, rows));
         }
-        let effects = update(state, Input::Start);
+        let effects = match opening {
+            Opening::Part(options) => self.lay_out(options, state),
+            Opening::Start(options) => {
+                self.start = Some(options);
+                Vec::new()
+            }
+        };
         if let Some(ending) = self.carry_out(state, effects) {
             return Ok(ending);
         }
@@ -193,7 +197,7 @@ impl<'a> Bench<'a> {
             let first = match self.wait() {
                 Ok(first) => first,
                 Err(RecvTimeoutError::Timeout) => {
-                    self.due = Due::Now;
+                    self.look_at_files(state);
                     continue;
                 }
                 // Every sender is gone: no key can come any more.
@@ -221,11 +225,86 @@ impl<'a> Bench<'a> {
         None
     }
 
-    fn wait(&self) -> Result<Message, RecvTimeoutError> {
-        match self.due {
-            Due::Soon => self.receiver.recv_timeout(PROGRESS_PAUSE.saturating_sub(self.progress_drawn.elapsed())),
-            Due::Never | Due::Now => self.receiver.recv().map_err(|_| RecvTimeoutError::Disconnected),
+    /// Puts a part on the bench: the marks of an earlier run are offered, the grasps of its file become marks.
+    fn lay_out(&mut self, options: Options, state: &mut State) -> Vec<Effect> {
+        let recovery = Recovery::beside(&options.grasp_path, &options.part_path, &options.part);
+        let watch = Watch::new(&options.part_path, options.setup_path.as_deref());
+        let known = match kept::read(&options.grasp_path, &options.part) {
+            Ok((kept, stamp)) => {
+                update(state, Input::Kept(kept));
+                stamp
+            }
+            Err(mut lines) => {
+                lines.push(String::new());
+                lines.push("That file stays as it is, and nothing is saved into it.".to_owned());
+                update(state, Input::Told { title: "saved grasps not read", lines });
+                file::stamp(&options.grasp_path)
+            }
+        };
+        if recovery.path().exists() {
+            match recovery.load() {
+                Ok((keeps, removals)) => update(state, Input::RecoveryFound(keeps.len() + removals.len())),
+                Err(lines) => update(state, not_taken_back(lines)),
+            };
         }
+        self.desk = Some(Desk { options, recovery, known, watch });
+        self.refresh_raft(state);
+        update(state, Input::Start)
+    }
+
+    /// Opens what was chosen on the start page, or tells there why it cannot be.
+    fn open(&mut self, state: &mut State, choice: &Choice) -> Vec<Effect> {
+        let Some(start) = &self.start else { return Vec::new() };
+        match chosen(start, choice) {
+            Ok((options, told)) => match State::new(&options) {
+                Ok(mut fresh) => {
+                    fresh.look = state.look;
+                    fresh.size = state.size;
+                    fresh.message = told.or(fresh.message);
+                    *state = fresh;
+                    self.start = None;
+                    self.lay_out(options, state)
+                }
+                Err(fault) => update(state, Input::Told { title: "not opened", lines: vec![fault] }),
+            },
+            Err(lines) => update(state, Input::Told { title: "not opened", lines }),
+        }
+    }
+
+    fn wait(&self) -> Result<Message, RecvTimeoutError> {
+        let progress = (self.due == Due::Soon).then(|| PROGRESS_PAUSE.saturating_sub(self.progress_drawn.elapsed()));
+        let files = self.desk.as_ref().and_then(|desk| desk.watch.rest());
+        match progress.into_iter().chain(files).min() {
+            Some(rest) => self.receiver.recv_timeout(rest),
+            None => self.receiver.recv().map_err(|_| RecvTimeoutError::Disconnected),
+        }
+    }
+
+    /// Has a look at the files now and then; only a change is worth a frame.
+    fn look_at_files(&mut self, state: &mut State) {
+        let Some(changed) = self.desk.as_mut().and_then(|desk| desk.watch.look()) else { return };
+        let before = state.on_disk;
+        update(state, Input::OnDisk(changed));
+        if state.on_disk != before {
+            self.due = Due::Now;
+        }
+    }
+
+    /// Reads part and setup as they are now.
+    fn reread(&mut self) -> Input {
+        let Some(desk) = &mut self.desk else { return Input::Reread(Err(Vec::new())) };
+        // What changes from here on is news again.
+        desk.watch.settle();
+        let options = &desk.options;
+        let read = || {
+            let (part, _) = file::read_part_with_notes(&options.part_path).map_err(|faults| faults.lines())?;
+            let setup = match &options.setup_path {
+                Some(path) => file::read_setup(path).map_err(|faults| faults.lines())?,
+                None => Setup::default(),
+            };
+            Ok(Fresh { part: Arc::new(part), setup: options.overrides.over(setup)? })
+        };
+        Input::Reread(read())
     }
 
     /// Takes every message that waits before anything is drawn: frames are dropped, keys never.
@@ -245,6 +324,7 @@ impl<'a> Bench<'a> {
             }
             next = self.receiver.try_recv().ok();
         }
+        self.look_at_files(state);
         self.carry_out(state, effects)
     }
 
@@ -266,7 +346,13 @@ impl<'a> Bench<'a> {
                 return None;
             }
             Message::Signal(signal) => return Some(Ending::Signal(signal)),
-            Message::Event(Event::Key(key)) => Input::Key(key_of(&key)?),
+            Message::Event(Event::Key(key)) => {
+                let own = keyboard::key_of(&key)?;
+                if keyboard::behind_esc(&key) {
+                    effects.extend(update(state, Input::Key(Key::Esc)));
+                }
+                Input::Key(own)
+            }
             Message::Event(Event::Paste(text)) => Input::Paste(text),
             Message::Event(Event::Resize(columns, rows)) => Input::Resize(columns, rows),
             Message::Event(_) => return None,
@@ -293,32 +379,49 @@ impl<'a> Bench<'a> {
                         update(state, Input::Asked(generation));
                     }
                 }
-                Effect::Save { ids, keeps, reread } => {
-                    let input = self.save(ids, &keeps, reread);
-                    let after = update(state, input);
+                Effect::Save { ids, keeps, changes, reread } => {
+                    let inputs = self.save(&state.opened.part, ids, &keeps, &changes, reread);
+                    let after: Vec<Effect> = inputs.into_iter().flat_map(|input| update(state, input)).collect();
                     self.refresh_raft(state);
-                    if state.unsaved() == 0 {
-                        self.recovery.settle();
+                    if state.unsaved() == 0
+                        && state.removals() == 0
+                        && let Some(desk) = &self.desk
+                    {
+                        desk.recovery.settle();
                     }
                     if let Some(ending) = self.carry_out(state, after) {
                         return Some(ending);
                     }
                 }
                 Effect::LoadRecovery => {
-                    let input = match self.recovery.load() {
-                        Ok(keeps) => {
-                            self.recovery.take();
-                            Input::Recovered(keeps)
-                        }
-                        Err(lines) => not_taken_back(lines),
-                    };
-                    update(state, input);
+                    if let Some(desk) = &self.desk {
+                        take_back(&desk.recovery, state);
+                    }
                     self.refresh_raft(state);
                 }
                 Effect::DropRecovery => {
-                    if let Err(fault) = self.recovery.remove() {
-                        let lines = vec![format!("{}: {fault}", self.recovery.path().display())];
+                    if let Some(desk) = &self.desk
+                        && let Err(fault) = desk.recovery.remove()
+                    {
+                        let lines = vec![format!("{}: {fault}", desk.recovery.path().display())];
                         update(state, Input::Told { title: "not deleted", lines });
+                    }
+                }
+                Effect::Reread => {
+                    let input = self.reread();
+                    let after = update(state, input);
+                    if let Some(desk) = &mut self.desk {
+                        desk.recovery = desk.recovery.for_part(&state.opened.part);
+                    }
+                    self.refresh_raft(state);
+                    if let Some(ending) = self.carry_out(state, after) {
+                        return Some(ending);
+                    }
+                }
+                Effect::Open(choice) => {
+                    let after = self.open(state, &choice);
+                    if let Some(ending) = self.carry_out(state, after) {
+                        return Some(ending);
                     }
                 }
                 Effect::Repaint => self.screen.repaint(),
@@ -335,7 +438,10 @@ impl<'a> Bench<'a> {
     }
 
     fn refresh_raft(&self, state: &State) {
-        self.raft.load(state.marks.iter().filter(|mark| !mark.saved).map(|mark| mark.keep.clone()).collect());
+        let unsaved = state.marks.iter().filter(|mark| !mark.saved);
+        let keeps = unsaved.map(|mark| (Arc::clone(&mark.part), mark.keep.clone())).collect();
+        let unsaved = Unsaved { keeps, removals: kept::removals(state) };
+        self.raft.load(unsaved, self.desk.as_ref().map(|desk| &desk.recovery));
     }
 
     fn suspend(&mut self) -> io::Result<()> {
@@ -348,21 +454,47 @@ impl<'a> Bench<'a> {
         Ok(())
     }
 
-    fn save(&mut self, ids: Vec<u64>, keeps: &[Keep], reread: bool) -> Input {
-        let path = &self.options.grasp_path;
+    /// Writes the grasp file and tells what came of it; after a save also what the file holds then.
+    fn save(
+        &mut self,
+        part: &Arc<Part>,
+        ids: Vec<u64>,
+        keeps: &[Keep],
+        changes: &[Change],
+        reread: bool,
+    ) -> Vec<Input> {
+        let Some(desk) = &mut self.desk else { return Vec::new() };
+        let path = &desk.options.grasp_path;
         if reread {
-            self.known = file::stamp(path);
+            desk.known = file::stamp(path);
         }
-        match file::save(path, &self.options.part_path, &self.options.part, keeps, self.known.as_ref()) {
+        let revision = Revision { keeps, changes, ..Revision::default() };
+        match file::revise(path, &desk.options.part_path, part, &revision, desk.known.as_ref()) {
             Ok(stamp) => {
-                self.known = Some(stamp);
-                Input::Saved(ids)
+                desk.known = stamp;
+                // The marks count as saved before they meet the file; what cannot be read now is told at the next start.
+                let kept = kept::read(path, part).map(|(kept, _)| Input::Kept(kept));
+                kept.into_iter().chain([Input::Saved(ids)]).rev().collect()
             }
             Err(fault) => {
                 let changed = matches!(fault, SaveFault::ChangedMeanwhile(_));
-                Input::SaveFailed { lines: told(&fault), changed }
+                vec![Input::SaveFailed { lines: told(&fault), changed }]
             }
         }
+    }
+}
+
+/// Takes what an earlier run left among the marks.
+fn take_back(recovery: &Recovery, state: &mut State) {
+    match recovery.load() {
+        Ok((keeps, removals)) => {
+            recovery.take();
+            update(state, Input::Recovered(keeps));
+            if !removals.is_empty() {
+                update(state, Input::RemovalsRecovered(removals));
+            }
+        }
+        Err(lines) => drop(update(state, not_taken_back(lines))),
     }
 }
 

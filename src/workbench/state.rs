@@ -1,9 +1,12 @@
 //! What the workbench knows: the scene, the ranking shown, the selection, the marks and the open layers. No I/O.
 
 use super::by_hand::{self, ByHand};
+use super::kept::Stored;
 use super::loads::{self, LoadRow};
 use super::look::{ColorChoice, Look, Marker};
 use super::picture::View;
+use super::reload;
+use super::start::StartPage;
 use crate::file::Keep;
 use crate::hand::{FingerCount, Tip};
 use crate::mechanics::assess::Doubt;
@@ -12,7 +15,8 @@ use crate::part::material::Density;
 use crate::part::{EdgeId, Part};
 use crate::search::job::Request;
 use crate::search::{Grasp, Key, Listed, Listing, Place, Ranking, Scene, Setup, Spot, Standing};
-use std::path::PathBuf;
+use nalgebra::Point2;
+use std::path::{Path, PathBuf};
 use std::sync::Arc;
 
 /// Rows asked of a ranking. More than anyone reads, few enough that the job stays quick.
@@ -93,6 +97,8 @@ pub struct Along {
 #[derive(Debug, Clone, PartialEq)]
 pub(super) struct Anchor {
     pub(super) spots: Vec<Spot>,
+    /// Where its fingers stood on the part before it was read again, in the file's frame; nothing otherwise.
+    pub(super) places: Option<Vec<Point2<f64>>>,
 }
 
 /// Everything told of the selected grasp, under the knobs as they stand now.
@@ -145,6 +151,10 @@ pub struct Mark {
     pub keep: Keep,
     /// Already in the file as it stands here.
     pub saved: bool,
+    /// As it stands in the file; nothing where it is not in it, or where the file was not read since.
+    pub stored: Option<Stored>,
+    /// The part it was read on, as the part file had it then.
+    pub part: Arc<Part>,
 }
 
 /// What a line of text is typed for.
@@ -156,6 +166,16 @@ pub enum EntryKind {
     Name,
     /// Why a grasp is kept.
     Note,
+    /// Another name for a mark in the list.
+    Rename {
+        /// Its number within this run.
+        mark: u64,
+    },
+    /// Another note for a mark in the list.
+    Renote {
+        /// Its number within this run.
+        mark: u64,
+    },
     /// The force limit.
     Limit,
     /// The size of a load case's motion.
@@ -264,6 +284,8 @@ pub enum Layer {
         /// First line shown.
         top: usize,
     },
+    /// The page shown when no part was named.
+    Start(StartPage),
     /// A line of text being typed.
     Entry(Entry),
     /// A question.
@@ -288,6 +310,17 @@ pub struct Opened {
     pub part: Arc<Part>,
     /// Friction by file and command line.
     pub friction: FrictionBand,
+    /// The whole setup by file and command line, with every load case.
+    pub setup: Setup,
+}
+
+/// Which files changed on disk since they were read.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Default)]
+pub struct OnDisk {
+    /// The part file.
+    pub part: bool,
+    /// The setup file.
+    pub setup: bool,
 }
 
 /// All of it.
@@ -339,8 +372,11 @@ pub struct State {
     pub grasp_path: PathBuf,
     pub(super) quit_when_saved: bool,
     pub(super) draft: Option<Entry>,
-    /// The mark taken away last; marking its grasp again brings it back with its name and note.
-    pub(super) lifted: Option<Mark>,
+    /// Marks taken away, the last uppermost; marking its grasp again brings one back with its name and note. Those that are
+    /// in the file are taken out of it when it is saved.
+    pub(super) lifted: Vec<Mark>,
+    /// What changed on disk and was not read again.
+    pub on_disk: OnDisk,
     /// Size of the screen, columns and rows, for page steps.
     pub size: (u16, u16),
 }
@@ -378,16 +414,43 @@ impl State {
                 aspect: 2.0,
                 utf8: true,
             },
-            opened: Opened { part: Arc::clone(&options.part), friction: options.setup.friction.clone() },
+            opened: Opened {
+                part: Arc::clone(&options.part),
+                friction: options.setup.friction.clone(),
+                setup: options.setup.clone(),
+            },
             density: None,
             loads,
             before_parallel: None,
             grasp_path: options.grasp_path.clone(),
             quit_when_saved: false,
             draft: None,
-            lifted: None,
+            lifted: Vec::new(),
+            on_disk: OnDisk::default(),
             size: (80, 24),
         })
+    }
+
+    /// The start page. Until a part is chosen, one of those that come with the program lies unseen behind it.
+    ///
+    /// # Errors
+    /// That part cannot be used, which would be a fault of the program.
+    pub fn start(options: &super::StartOptions) -> Result<Self, String> {
+        let demo = super::demo::PARTS[0];
+        let (part, _) =
+            crate::file::part_from_text(Path::new(demo.file), demo.text).map_err(|fault| fault.to_string())?;
+        let mut state = Self::new(&super::Options {
+            part_path: PathBuf::from(demo.file),
+            setup_path: None,
+            part: Arc::new(part),
+            setup: Setup::default(),
+            grasp_path: PathBuf::new(),
+            color: options.color,
+            marker: options.marker,
+            overrides: super::Overrides::default(),
+        })?;
+        state.layers.push(Layer::Start(StartPage::new(options.found.clone())));
+        Ok(state)
     }
 
     /// The setup as the knobs stand.
@@ -424,14 +487,27 @@ impl State {
         self.shown.as_ref().is_some_and(|shown| Some(shown.generation) != self.asked)
     }
 
-    /// Marks not in the file.
+    /// Marks not in the file as they stand here.
     pub fn unsaved(&self) -> usize {
         self.marks.iter().filter(|mark| !mark.saved).count()
+    }
+
+    /// Grasps of the file that are to be taken out of it.
+    pub fn removals(&self) -> usize {
+        self.lifted.iter().filter(|mark| mark.stored.is_some()).count()
     }
 
     /// The mark on a grasp.
     pub fn mark_on(&self, spots: &[Spot]) -> Option<&Mark> {
         self.marks.iter().find(|mark| mark.keep.grasp.spots == spots)
+    }
+
+    /// The mark that marking a grasp is about: the one made in this run, else the one saved under the knobs as they stand.
+    pub(super) fn mark_here(&self, spots: &[Spot]) -> Option<usize> {
+        let on = |mark: &Mark| mark.keep.grasp.spots == spots;
+        let own = self.marks.iter().position(|mark| on(mark) && mark.stored.is_none());
+        let alike = |mark: &Mark| same_terms(&mark.keep.setup, self.setup());
+        own.or_else(|| self.marks.iter().position(|mark| on(mark) && alike(mark)))
     }
 
     /// Reads the selected grasp again; while nothing is listed, the one last selected, so that it can be seen how it
@@ -456,7 +532,8 @@ impl State {
                     let family = family_of(&anchor.spots, self.order.scene.places())?;
                     rows.iter().position(|row| row.family == family)
                 };
-                same.or_else(family).unwrap_or(self.selected.min(rows.len().saturating_sub(1)))
+                let near = || reload::nearest(rows, self.order.scene.part(), anchor.places.as_deref()?);
+                same.or_else(family).or_else(near).unwrap_or(self.selected.min(rows.len().saturating_sub(1)))
             }
         };
         self.shown = Some(shown);
@@ -485,9 +562,15 @@ impl State {
     pub(super) fn select(&mut self, row: usize) {
         let rows = self.shown.as_ref().map_or(0, |shown| shown.ranking.grasps.len());
         self.selected = row.min(rows.saturating_sub(1));
-        self.anchor = self.row().map(|row| Anchor { spots: row.grasp.spots.clone() });
+        self.anchor = self.row().map(|row| Anchor { spots: row.grasp.spots.clone(), places: None });
         self.read();
     }
+}
+
+/// True when two setups score a grasp alike: what only steers the search does not count.
+fn same_terms(a: &Setup, b: &Setup) -> bool {
+    let scale = |setup: &Setup| (setup.search.torque_scale, setup.search.cone_sides);
+    a.friction == b.friction && a.hand == b.hand && a.loads == b.loads && scale(a) == scale(b)
 }
 
 /// The family spots belong to among the places of a scene, ascending: fingers that are kept on places of their own.

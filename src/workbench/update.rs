@@ -5,13 +5,16 @@ use super::by_hand;
 use super::compare;
 use super::entry;
 use super::floors;
+use super::kept::{self, Kept};
 use super::knobs;
 use super::loads;
 use super::marks;
 use super::picture;
-use super::state::{Along, Entry, EntryKind, Filter, Job, Layer, Panel, Question, Reading, State};
+use super::reload::{self, Fresh};
+use super::start::{self, Choice};
+use super::state::{Along, Entry, EntryKind, Filter, Job, Layer, Mark, OnDisk, Panel, Question, Reading, State};
 use super::tables;
-use crate::file::Keep;
+use crate::file::{Change, Keep};
 use crate::part::EdgeId;
 use crate::search::job::{News, Request, What};
 
@@ -50,6 +53,14 @@ pub enum Input {
     RecoveryFound(usize),
     /// The marks a broken run left behind.
     Recovered(Vec<Keep>),
+    /// Names of grasps a broken run had taken away, but not yet out of the file.
+    RemovalsRecovered(Vec<String>),
+    /// What the grasp file holds now.
+    Kept(Vec<Kept>),
+    /// Files that changed on disk since they were read.
+    OnDisk(OnDisk),
+    /// The part and the setup as their files have them now, or why they cannot be read.
+    Reread(Result<Fresh, Vec<String>>),
 }
 
 /// Something to be done outside.
@@ -63,6 +74,8 @@ pub enum Effect {
         ids: Vec<u64>,
         /// What goes to the file.
         keeps: Vec<Keep>,
+        /// What is done to the grasps that are in the file.
+        changes: Vec<Change>,
         /// Take the file as it stands now for known.
         reread: bool,
     },
@@ -70,6 +83,10 @@ pub enum Effect {
     LoadRecovery,
     /// Delete the recovery file.
     DropRecovery,
+    /// Read the part and the setup again.
+    Reread,
+    /// Open the workbench on what was chosen on the start page.
+    Open(Choice),
     /// Paint everything again.
     Repaint,
     /// Stop and give the shell back.
@@ -122,12 +139,28 @@ pub fn update(state: &mut State, input: Input) -> Vec<Effect> {
         Input::Recovered(keeps) => {
             let count = keeps.len();
             for keep in keeps {
-                marks::add(state, keep);
+                marks::take_back(state, keep);
             }
             let marks = if count == 1 { "mark" } else { "marks" };
             state.message = Some(format!("{count} {marks} taken back, not saved yet: s saves, M lists them"));
             Vec::new()
         }
+        Input::RemovalsRecovered(names) => {
+            let out = marks::take_out_again(state, &names);
+            state.message =
+                Some(format!("{out} taken out of the list again, still in the file: s saves, M then u brings back"));
+            Vec::new()
+        }
+        Input::Kept(kept) => {
+            kept::reconcile(state, kept);
+            Vec::new()
+        }
+        Input::OnDisk(changed) => {
+            state.on_disk.part |= changed.part;
+            state.on_disk.setup |= changed.setup;
+            Vec::new()
+        }
+        Input::Reread(read) => reload::take(state, read),
     }
 }
 
@@ -150,9 +183,19 @@ fn saved(state: &mut State, ids: &[u64]) -> Vec<Effect> {
     for mark in state.marks.iter_mut().filter(|mark| ids.contains(&mark.id)) {
         mark.saved = true;
     }
-    let s = if ids.len() == 1 { "" } else { "s" };
-    state.message = Some(format!("{} grasp{s} saved to {}", ids.len(), state.grasp_path.display()));
-    if state.quit_when_saved && state.unsaved() == 0 { vec![Effect::Quit { recover: false }] } else { Vec::new() }
+    let out = state.removals();
+    for mark in &mut state.lifted {
+        (mark.saved, mark.stored) = (false, None);
+    }
+    let grasps = |count: usize| if count == 1 { "1 grasp".to_owned() } else { format!("{count} grasps") };
+    let path = state.grasp_path.display();
+    state.message = Some(match (ids.len(), out) {
+        (saved, 0) => format!("{} saved to {path}", grasps(saved)),
+        (0, out) => format!("{} taken out of {path}", grasps(out)),
+        (saved, out) => format!("{} saved to {path}, {out} taken out", grasps(saved)),
+    });
+    let leave = std::mem::take(&mut state.quit_when_saved) && state.unsaved() == 0;
+    if leave { vec![Effect::Quit { recover: false }] } else { Vec::new() }
 }
 
 fn press(state: &mut State, key: Key) -> Vec<Effect> {
@@ -198,6 +241,7 @@ fn act(state: &mut State, action: Action) -> Vec<Effect> {
                 Vec::new()
             }
         },
+        Some(Layer::Start(_)) => start::act(state, action),
         Some(Layer::Entry(_)) => typing(state, action),
         Some(&Layer::Ask(question)) => answer(state, question, action),
     }
@@ -261,6 +305,7 @@ fn bench(state: &mut State, action: Action) -> Vec<Effect> {
             picture::act(state, action);
         }
         Action::Save => return marks::save(state, false),
+        Action::Reload => return vec![Effect::Reread],
         Action::Quit => return quit(state),
         _ => {}
     }
@@ -375,15 +420,24 @@ fn accept(state: &mut State) -> Vec<Effect> {
                 Vec::new()
             }
         },
+        EntryKind::Rename { mark } | EntryKind::Renote { mark } => {
+            state.layers.pop();
+            let text = entry.text.trim();
+            let rename = matches!(entry.kind, EntryKind::Rename { .. });
+            if let Some(mark) = state.marks.iter_mut().find(|own| own.id == mark) {
+                marks::reword(mark, rename.then_some(text), (!rename).then_some(text));
+            }
+            Vec::new()
+        }
         EntryKind::Name | EntryKind::Note => {
             state.layers.pop();
-            if state.mark_on(&entry.spots).is_none()
+            if state.mark_here(&entry.spots).is_none()
                 && let Some(reading) = Reading::of(&state.order.scene, &entry.spots)
             {
                 marks::mark(state, reading);
             }
             let text = entry.text.trim().to_owned();
-            if let Some(mark) = state.marks.iter_mut().find(|mark| mark.keep.grasp.spots == entry.spots) {
+            if let Some(mark) = state.mark_here(&entry.spots).and_then(|at| state.marks.get_mut(at)) {
                 let field = if entry.kind == EntryKind::Name { &mut mark.keep.name } else { &mut mark.keep.note };
                 if *field != text && !(entry.kind == EntryKind::Name && text.is_empty()) {
                     *field = text;
@@ -415,7 +469,9 @@ fn take_number(state: &mut State, kind: EntryKind, text: &str) -> Result<Vec<Eff
         EntryKind::Size { row } => loads::resize(state, row, number),
         EntryKind::Safety { row } => loads::set_safety(state, row, number),
         EntryKind::Floor { row } => floors::set(state, row, number),
-        EntryKind::Name | EntryKind::Note | EntryKind::Edge => Ok(Vec::new()),
+        EntryKind::Name | EntryKind::Note | EntryKind::Rename { .. } | EntryKind::Renote { .. } | EntryKind::Edge => {
+            Ok(Vec::new())
+        }
     }
 }
 
@@ -423,20 +479,30 @@ fn take_number(state: &mut State, kind: EntryKind, text: &str) -> Result<Vec<Eff
 const NO_LIMIT: &str = "none";
 
 pub(super) fn open_entry(state: &mut State, kind: EntryKind) {
-    let mark = match kind {
+    let in_list = |id: u64| state.marks.iter().find(|mark| mark.id == id);
+    let spots = match kind {
         EntryKind::Name | EntryKind::Note => match state.spots() {
-            Some(spots) => Some(spots),
+            Some(spots) => spots,
             None => return,
         },
-        _ => None,
+        EntryKind::Rename { mark } | EntryKind::Renote { mark } => match in_list(mark) {
+            Some(mark) => mark.keep.grasp.spots.clone(),
+            None => return,
+        },
+        _ => Vec::new(),
     };
-    let spots = mark.unwrap_or_default();
+    let here = || state.mark_here(&spots).and_then(|at| state.marks.get(at));
+    let name = |mark: Option<&Mark>| mark.map(|mark| mark.keep.name.clone()).unwrap_or_default();
+    let note = |mark: Option<&Mark>| mark.map(|mark| mark.keep.note.clone()).unwrap_or_default();
     let text = match kind {
-        EntryKind::Name => state.mark_on(&spots).map(|mark| mark.keep.name.clone()).unwrap_or_default(),
-        EntryKind::Note => state.mark_on(&spots).map(|mark| mark.keep.note.clone()).unwrap_or_default(),
+        EntryKind::Name => name(here()),
+        EntryKind::Note => note(here()),
+        EntryKind::Rename { mark } => name(in_list(mark)),
+        EntryKind::Renote { mark } => note(in_list(mark)),
         _ => String::new(),
     };
-    let suggested = kind == EntryKind::Name && text == marks::suggested_name(&spots);
+    let names = matches!(kind, EntryKind::Name | EntryKind::Rename { .. });
+    let suggested = names && text == marks::suggested_name(&spots);
     let fresh = Entry { kind, at: text.chars().count(), text, suggested, fault: None, spots };
     let entry = match state.draft.take() {
         Some(draft) if draft.kind == kind && draft.spots == fresh.spots => Entry { fault: None, ..draft },
@@ -446,7 +512,7 @@ pub(super) fn open_entry(state: &mut State, kind: EntryKind) {
 }
 
 fn quit(state: &mut State) -> Vec<Effect> {
-    if state.unsaved() == 0 {
+    if state.unsaved() == 0 && state.removals() == 0 {
         return vec![Effect::Quit { recover: false }];
     }
     state.layers.push(Layer::Ask(Question::Quit));
@@ -469,8 +535,9 @@ fn answer(state: &mut State, question: Question, action: Action) -> Vec<Effect> 
     state.layers.pop();
     match (question, action) {
         (Question::Quit, Action::Yes) => {
-            state.quit_when_saved = true;
-            marks::save(state, false)
+            let effects = marks::save(state, false);
+            state.quit_when_saved = !effects.is_empty();
+            effects
         }
         (Question::Quit, Action::No) => vec![Effect::Quit { recover: false }],
         (Question::Reload, Action::Yes) => marks::save(state, true),

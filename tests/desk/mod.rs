@@ -7,7 +7,7 @@ use holdwright::mechanics::LoadCase;
 use holdwright::part::{KeepOutDescription, Part, PartDescription};
 use holdwright::search::job::{News, Request, What};
 use holdwright::search::{Cancel, Ranking, SearchSettings, Setup, Spot, USUAL_GAP, Wanted, rank};
-use holdwright::workbench::{ColorChoice, Effect, Input, Key, Options, State, update, view};
+use holdwright::workbench::{ColorChoice, Effect, Input, Key, Options, Overrides, State, update, view};
 use ratatui::Terminal;
 use ratatui::backend::TestBackend;
 use ratatui::buffer::Buffer;
@@ -78,6 +78,7 @@ pub fn options(part: Part, setup: Setup) -> Options {
         grasp_path: PathBuf::from("hinge_leaf.grasps.toml"),
         color: ColorChoice::Never,
         marker: None,
+        overrides: Overrides::default(),
     }
 }
 

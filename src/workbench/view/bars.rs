@@ -97,10 +97,15 @@ pub(super) fn message(state: &State, area: Rect, buf: &mut Buffer) {
     let text = match (&state.message, &state.job) {
         (Some(message), _) => shown(message),
         (None, Job::Failed(why)) => format!("the ranking broke: {}; turn a knob to try again", shown(why)),
-        (None, _) if state.marks.is_empty() => String::new(),
+        (None, _) if on_disk(state).is_some() => on_disk(state).unwrap_or_default(),
+        (None, _) if state.marks.is_empty() && state.removals() == 0 => String::new(),
         (None, _) => {
-            let unsaved = state.unsaved();
-            let state_of = if unsaved == 0 { "all saved".to_owned() } else { format!("{unsaved} not saved") };
+            let (unsaved, out) = (state.unsaved(), state.removals());
+            let mut state_of =
+                if unsaved == 0 && out == 0 { "all saved".to_owned() } else { format!("{unsaved} not saved") };
+            if out > 0 {
+                state_of.push_str(&format!(", {out} to be taken out of the file"));
+            }
             format!("{}, {state_of}", number::count(state.marks.len() as u64, "mark", "marks"))
         }
     };
@@ -109,6 +114,17 @@ pub(super) fn message(state: &State, area: Rect, buf: &mut Buffer) {
     if state.message.is_none() && state.layers.is_empty() && !matches!(state.job, Job::Failed(_)) {
         missing(state, shifted(area, columns(&text) as u16), buf);
     }
+}
+
+/// What changed on disk and was not read again.
+fn on_disk(state: &State) -> Option<String> {
+    let what = match (state.on_disk.part, state.on_disk.setup) {
+        (true, true) => "the part and the setup file",
+        (true, false) => "the part file",
+        (false, true) => "the setup file",
+        (false, false) => return None,
+    };
+    Some(format!("{what} changed on disk: {} reads again", action::key_of(action::Action::Reload)))
 }
 
 /// What the setup or the part leaves out, as far as it fits.

@@ -2,12 +2,13 @@
 
 use super::super::floors;
 use super::super::loads;
-use super::super::state::{Entry, EntryKind, Question, State};
+use super::super::state::{Entry, EntryKind, Mark, Question, State};
 use super::{bars, number, put, shifted, split_rows, table, titled, wrapped};
-use crate::file::shown;
+use crate::file::{SCORES, shown};
 use ratatui::buffer::Buffer;
 use ratatui::layout::{Position, Rect};
 use ratatui::text::Line;
+use std::sync::Arc;
 
 /// Three rows above the footer; the bench stays in sight above them.
 fn strip(area: Rect, rows: u16, buf: &mut Buffer) -> (Rect, Rect) {
@@ -27,8 +28,8 @@ pub(super) fn entry(state: &State, area: Rect, entry: &Entry, buf: &mut Buffer) 
     let (strip, footer) = strip(area, 3, buf);
     let title = match entry.kind {
         EntryKind::Mu => "mu, the friction coefficient".to_owned(),
-        EntryKind::Name => "name of the grasp".to_owned(),
-        EntryKind::Note => "why it is kept".to_owned(),
+        EntryKind::Name | EntryKind::Rename { .. } => "name of the grasp".to_owned(),
+        EntryKind::Note | EntryKind::Renote { .. } => "why it is kept".to_owned(),
         EntryKind::Limit => "force limit, N per finger".to_owned(),
         EntryKind::Size { row } => format!("size of {}", case_name(state, row)),
         EntryKind::Safety { row } => format!("safety factor on {}", case_name(state, row)),
@@ -66,7 +67,7 @@ fn case_name(state: &State, row: usize) -> String {
 /// The value that is about to be typed over.
 fn now(state: &State, kind: EntryKind) -> Option<String> {
     let value = match kind {
-        EntryKind::Name | EntryKind::Note => return None,
+        EntryKind::Name | EntryKind::Note | EntryKind::Rename { .. } | EntryKind::Renote { .. } => return None,
         EntryKind::Floor { row } => number::given(floors::value(state, row)),
         EntryKind::Edge => match state.filter.edge {
             Some(edge) => format!("{}:{}", edge.ring, edge.edge),
@@ -90,9 +91,7 @@ fn now(state: &State, kind: EntryKind) -> Option<String> {
 pub(super) fn ask(state: &State, area: Rect, question: Question, buf: &mut Buffer) {
     let path = shown(&state.grasp_path.display().to_string());
     let (title, text) = match question {
-        Question::Quit => {
-            ("leave?", format!("{} not saved.", number::count(state.unsaved() as u64, "mark is", "marks are")))
-        }
+        Question::Quit => ("leave?", unsaved(state)),
         Question::Reload => (
             "not saved",
             format!("{path} was changed by someone else meanwhile. The file is as they left it; your marks are here."),
@@ -114,12 +113,38 @@ pub(super) fn ask(state: &State, area: Rect, question: Question, buf: &mut Buffe
     bars::footer(state, footer, buf);
 }
 
+/// What would be lost by leaving.
+fn unsaved(state: &State) -> String {
+    let reworded = state.marks.iter().filter(|mark| !mark.saved && mark.stored.is_some()).count();
+    let fresh = state.unsaved() - reworded;
+    let mut told = Vec::new();
+    if fresh > 0 {
+        told.push(format!("{} not saved.", number::count(fresh as u64, "mark is", "marks are")));
+    }
+    if reworded > 0 {
+        let other = number::count(reworded as u64, "saved grasp has", "saved grasps have");
+        told.push(format!("{other} another name or note than in the file."));
+    }
+    if state.removals() > 0 {
+        let out = number::count(state.removals() as u64, "grasp is", "grasps are");
+        told.push(format!("{out} still to be taken out of the file."));
+    }
+    told.join(" ")
+}
+
 /// Draws the list of marks over the whole screen.
 pub(super) fn marks(state: &State, area: Rect, at: usize, buf: &mut Buffer) {
     let (body, footer) = split_rows(area, area.height.saturating_sub(1));
     let (body, told) = split_rows(body, body.height.saturating_sub(1));
     let count = number::count(state.marks.len() as u64, "mark", "marks");
-    let inside = titled(state, body, &count, &format!("{} not saved", state.unsaved()), buf);
+    let out = match state.removals() {
+        0 => String::new(),
+        out => format!(", {out} to be taken out of the file"),
+    };
+    let inside = titled(state, body, &count, &format!("{} not saved{out}", state.unsaved()), buf);
+    if state.marks.is_empty() {
+        put(buf, shifted(Rect { height: 1, ..inside }, 2), "no marks; u brings the last one back", state.look.dim());
+    }
     let height = usize::from(inside.height);
     let top = at.saturating_sub(height.saturating_sub(1));
     let rows = state.shown.as_ref().map_or(&[][..], |shown| &shown.ranking.grasps);
@@ -129,18 +154,16 @@ pub(super) fn marks(state: &State, area: Rect, at: usize, buf: &mut Buffer) {
             Some(row) => format!("#{}", row + 1),
             None => "-".to_owned(),
         };
+        let was = Scored::of(mark);
         let text = format!(
             "{}{} {rank:>4} {}  {}  quality {}  margin {}{}  at mu {}  {}",
             if i == at { '>' } else { ' ' },
-            if mark.saved { "saved" } else { "NEW  " },
+            standing(state, mark),
             shown(&keep.name),
             table::edges(&keep.grasp.spots),
-            number::quality(keep.assessment.quality),
-            number::margin(keep.assessment.friction_margin),
-            keep.assessment.holding.as_ref().map_or(String::new(), |holding| format!(
-                "  load {}",
-                number::load(holding.load_margin(), holding.held())
-            )),
+            was.quality.map_or("-".to_owned(), number::quality),
+            number::margin(was.margin),
+            was.load.map_or(String::new(), |(load, held)| format!("  load {}", number::load(load, held))),
             number::mu(keep.setup.friction.mu),
             shown(&keep.note),
         );
@@ -150,6 +173,45 @@ pub(super) fn marks(state: &State, area: Rect, at: usize, buf: &mut Buffer) {
     }
     bars::message(state, told, buf);
     bars::footer(state, footer, buf);
+}
+
+/// How a mark stands to the file.
+fn standing(state: &State, mark: &Mark) -> &'static str {
+    if !Arc::ptr_eq(&mark.part, &state.opened.part) {
+        return "OLD  ";
+    }
+    match (mark.saved, &mark.stored) {
+        (true, _) => "saved",
+        (false, Some(_)) => "WORDS",
+        (false, None) => "NEW  ",
+    }
+}
+
+/// The scores a list of marks shows: as they stand in the file, or as they were read when the grasp was marked.
+struct Scored {
+    quality: Option<f64>,
+    margin: Option<f64>,
+    /// Load margin, and whether every load is held.
+    load: Option<(Option<f64>, bool)>,
+}
+
+impl Scored {
+    fn of(mark: &Mark) -> Self {
+        let assessment = &mark.keep.assessment;
+        match &mark.stored {
+            Some(stored) => {
+                let at =
+                    |name: &str| SCORES.iter().position(|score| *score == name).and_then(|at| stored.scores.scores[at]);
+                let load = stored.scores.held.map(|held| (at("load_margin"), held));
+                Self { quality: at("quality"), margin: at("friction_margin"), load }
+            }
+            None => Self {
+                quality: Some(assessment.quality),
+                margin: assessment.friction_margin,
+                load: assessment.holding.as_ref().map(|holding| (holding.load_margin(), holding.held())),
+            },
+        }
+    }
 }
 
 /// A fault with its mend, broken into lines.

@@ -21,6 +21,7 @@ mod outline;
 mod picture;
 mod reading;
 mod sheet;
+mod start;
 mod table;
 mod tables;
 
@@ -68,6 +69,7 @@ pub fn render(state: &State, area: Rect, buf: &mut Buffer) -> Option<Position> {
         Some(Layer::Pairs { at, condition }) => tables::pairs(state, area, *at, *condition, buf),
         Some(Layer::Materials { at }) => tables::materials(state, area, *at, buf),
         Some(Layer::Loads { at }) => loads::list(state, area, *at, buf),
+        Some(Layer::Start(page)) => start::render(state, area, page, buf),
         Some(Layer::Floors { at }) => floors::list(state, area, *at, buf),
         Some(Layer::Hand) => bench(state, &layout, buf),
         Some(Layer::Compare { top }) => {
@@ -77,6 +79,7 @@ pub fn render(state: &State, area: Rect, buf: &mut Buffer) -> Option<Position> {
             match state.layers.iter().rev().nth(1) {
                 Some(Layer::Loads { at }) => loads::list(state, area, *at, buf),
                 Some(Layer::Floors { at }) => floors::list(state, area, *at, buf),
+                Some(Layer::Marks { at }) => dialog::marks(state, area, *at, buf),
                 _ => bench(state, &layout, buf),
             }
             return match top {
