@@ -6,7 +6,7 @@
 
 use super::best::{self, Ask, Proved, Proving};
 use super::order::Key;
-use super::sample::sample_with_snapshots;
+use super::sample::{self, sample_with_snapshots};
 use super::scene::{Grasp, Scene, Spot};
 use crate::mechanics::Assessment;
 use std::sync::Arc;
@@ -175,7 +175,12 @@ pub(super) fn rank_with_snapshots(
     }
     let spots = |ranking: Ranking| ranking.grasps.into_iter().map(|listed| listed.grasp.spots);
     let mut begin = known.to_vec();
-    begin.extend(spots(sampled(most, sets.min(FIRST_SETS), &|_| (), 0)?));
+    let first_sets = sets.min(FIRST_SETS);
+    let (first, snapshot) = sample::leads(scene, key, most, first_sets, cancel, snapshot_rows.min(most))?;
+    begin.extend(first);
+    if snapshot.is_some() {
+        observe(Progress { done: first_sets, total: sets, gap: None, snapshot: snapshot.map(Arc::new) });
+    }
     let budget = (sets / SETS_A_BOX).max(1);
     let ask = Ask { key, want: most, gap, budget, known: &begin };
     let tell = |proving: Proving| {

@@ -3,7 +3,7 @@
 use super::order::{Candidate, Key};
 use super::plan::Plan;
 use super::rank::{Cancel, Cancelled, Listed, Listing, Progress, Ranking};
-use super::scene::Scene;
+use super::scene::{Scene, Spot};
 use super::screen::Screen;
 use super::sites::Sites;
 use super::tally::Tally;
@@ -58,6 +58,29 @@ pub(super) fn sample_with_snapshots(
         }
     }
     Ok(listed(&screen, &tally, most, plan.is_complete()))
+}
+
+/// The places of the best of a sample of families, unconfirmed: good to begin with. With `snapshot_rows`, the best so many
+/// confirmed too.
+pub(super) fn leads(
+    scene: &Scene,
+    key: Key,
+    most: usize,
+    budget: u64,
+    cancel: &Cancel,
+    snapshot_rows: usize,
+) -> Result<(Vec<Vec<Spot>>, Option<Ranking>), Cancelled> {
+    let sites = Sites::of(scene);
+    let screen = Screen::new(scene, &sites, key, Listing::Families, cancel);
+    let plan = Plan::of(&screen, budget)?;
+    let batches = plan.batches().into_iter();
+    let tally = { batches }.try_fold(Tally::new(most), |tally, batch| plan.run(batch, &screen, tally))?;
+    let fingers = scene.setup().hand.fingers.get();
+    let spots =
+        |candidate: &Candidate| candidate.sites[..fingers].iter().map(|&site| sites.spot(scene, site)).collect();
+    let all = tally.sorted().iter().map(spots).collect();
+    let snapshot = (snapshot_rows > 0).then(|| listed(&screen, &tally, snapshot_rows, false));
+    Ok((all, snapshot))
 }
 
 /// Assesses and confirms the first rows.
