@@ -128,7 +128,7 @@ impl Pen {
             [(r, 0.0), (-r, 0.0), (0.0, r), (0.0, -r)].map(|(x, y)| Point2::from(mark.at + Vector2::new(x, y)))
         });
         let Some(per_mm) = self.unit_per_mm(com, finite.chain(marked)) else { return };
-        let part = self.fit;
+        let (part, middle) = (self.fit, self.fit.rounded(com));
         self.fit = part.about(com, per_mm / zoom);
         // Where any acceleration is held the curve leaves the picture.
         let (columns, rows) = self.sheet.size();
@@ -140,8 +140,10 @@ impl Pen {
         }
         for (number, mark) in marks.iter().enumerate() {
             if mark.at.norm() + mark.radius > NOTHING {
-                let at = Point2::from(mark.at + Vector2::new(mark.radius, 0.0));
-                self.sign(at, number_sign(number), Depth::Finger, self.look.title());
+                let at = self.fit.rounded(Point2::from(mark.at + Vector2::new(mark.radius, 0.0)));
+                // Beside the centre of mass, not on it.
+                let column = if at == middle { at.0.saturating_add(1) } else { at.0 };
+                self.sheet.put(column, at.1, number_sign(number), Depth::Finger, self.look.title());
             }
         }
         self.scale_bar("m/s2");
