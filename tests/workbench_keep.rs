@@ -614,6 +614,7 @@ mod on_a_terminal {
         pty.wait_for("the setup file changed on disk");
         pty.send("R");
         pty.wait_for("setup read again");
+        pty.send("v");
         pty.wait_for("sites 8.00 mm");
         assert!(pty.screen().contains("mu 0.20"), "{}", pty.screen());
         pty.send("q");

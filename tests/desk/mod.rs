@@ -58,6 +58,8 @@ pub fn setup() -> Setup {
 /// A lift, a stop in any direction, a brush that pushes at a corner; 60 N per finger at most.
 pub fn setup_with_loads() -> Setup {
     let mut setup = setup();
+    // A proof under loads takes long in an unoptimised build.
+    setup.search.budget = 60_000;
     setup.hand.force_limit_n = Some(60.0);
     setup.friction.sliding = Some(0.15);
     let case = |name: &str| LoadCase { name: name.to_owned(), ..LoadCase::default() };
