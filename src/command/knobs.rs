@@ -190,7 +190,10 @@ impl Knobs {
     pub(super) fn use_threads_everywhere(&self) -> Result<(), Stop> {
         let threads = rayon::ThreadPoolBuilder::new().num_threads(self.threads.map_or(0, usize::from));
         // Where the system has no such thing, all are alike as before.
-        let built = threads.start_handler(|_| drop(rustix::process::nice(GIVES_WAY))).build_global();
+        let give_way = |_: usize| {
+            let _ = rustix::process::nice(GIVES_WAY);
+        };
+        let built = threads.start_handler(give_way).build_global();
         built.map_err(|error| Stop::bad(format!("--threads: {error}")))
     }
 }

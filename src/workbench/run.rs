@@ -48,7 +48,7 @@ enum Message {
 pub fn run(mut options: Options) -> Result<(), Stopped> {
     options.color = settled(options.color);
     let state = State::new(&options).map_err(Stopped::Setup)?;
-    on_terminal(Opening::Part(options), state).map_err(Stopped::Terminal)
+    on_terminal(Opening::Part(Box::new(options)), state).map_err(Stopped::Terminal)
 }
 
 /// Opens the start page on the terminal, then the workbench on what is chosen there; returns when the user leaves.
@@ -81,7 +81,7 @@ pub enum Stopped {
 
 /// What the loop is opened on.
 enum Opening {
-    Part(Options),
+    Part(Box<Options>),
     Start(StartOptions),
 }
 
@@ -94,6 +94,9 @@ fn on_terminal(opening: Opening, mut state: State) -> io::Result<()> {
     state.look.color = color == ColorChoice::Always;
     state.look.utf8 =
         is_utf8(variable("LC_ALL").as_deref(), variable("LC_CTYPE").as_deref(), variable("LANG").as_deref());
+    // Work shared out by this thread stays on it: in the pool of the ranking it would wait until that has a thread to spare.
+    // Where the system refuses, keys are slower while a ranking runs.
+    let _own = rayon::ThreadPoolBuilder::new().num_threads(1).use_current_thread().build();
     let raft = Raft::default();
     let (sender, receiver) = mpsc::channel();
     let tell = sender.clone();
@@ -182,7 +185,7 @@ impl<'a> Bench<'a> {
             update(state, Input::Resize(columns, rows));
         }
         let effects = match opening {
-            Opening::Part(options) => self.lay_out(options, state),
+            Opening::Part(options) => self.lay_out(*options, state),
             Opening::Start(options) => {
                 self.start = Some(options);
                 Vec::new()
@@ -303,7 +306,7 @@ impl<'a> Bench<'a> {
                 Some(path) => file::read_setup(path).map_err(|faults| faults.lines())?,
                 None => Setup::default(),
             };
-            Ok(Fresh { part: Arc::new(part), setup: options.overrides.over(setup)? })
+            Ok(Box::new(Fresh { part: Arc::new(part), setup: options.overrides.over(setup)? }))
         };
         Input::Reread(read())
     }
