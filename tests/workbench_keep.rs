@@ -235,7 +235,7 @@ fn a_file_changed_meanwhile_or_of_another_form_is_not_changed() {
 }
 
 fn fresh(part: Part, setup: Setup) -> Input {
-    Input::Reread(Ok(Fresh { part: Arc::new(part), setup }))
+    Input::Reread(Ok(Box::new(Fresh { part: Arc::new(part), setup })))
 }
 
 #[test]

@@ -25,6 +25,7 @@ pub mod start;
 pub mod state;
 mod tables;
 mod terminal;
+mod told;
 pub mod update;
 pub mod view;
 mod watch;

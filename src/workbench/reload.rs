@@ -24,9 +24,9 @@ pub struct Fresh {
 }
 
 /// Takes what was read again, or shows why it could not be.
-pub(super) fn take(state: &mut State, read: Result<Fresh, Vec<String>>) -> Vec<Effect> {
+pub(super) fn take(state: &mut State, read: Result<Box<Fresh>, Vec<String>>) -> Vec<Effect> {
     state.on_disk = OnDisk::default();
-    match read.and_then(|fresh| change(state, fresh).map_err(|fault| vec![fault])) {
+    match read.and_then(|fresh| change(state, *fresh).map_err(|fault| vec![fault])) {
         Ok(effects) => effects,
         Err(mut lines) => {
             lines.push(String::new());

@@ -11,6 +11,7 @@ use super::reload::Fresh;
 use super::start::Choice;
 use super::state::State;
 use super::terminal::{self, Screen};
+use super::told::{not_taken_back, told};
 use super::update::{Effect, Input, update};
 use super::watch::Watch;
 use super::{ColorChoice, Options, StartOptions};
@@ -47,7 +48,7 @@ enum Message {
 pub fn run(mut options: Options) -> Result<(), Stopped> {
     options.color = settled(options.color);
     let state = State::new(&options).map_err(Stopped::Setup)?;
-    on_terminal(Opening::Part(options), state).map_err(Stopped::Terminal)
+    on_terminal(Opening::Part(Box::new(options)), state).map_err(Stopped::Terminal)
 }
 
 /// Opens the start page on the terminal, then the workbench on what is chosen there; returns when the user leaves.
@@ -80,7 +81,7 @@ pub enum Stopped {
 
 /// What the loop is opened on.
 enum Opening {
-    Part(Options),
+    Part(Box<Options>),
     Start(StartOptions),
 }
 
@@ -93,6 +94,9 @@ fn on_terminal(opening: Opening, mut state: State) -> io::Result<()> {
     state.look.color = color == ColorChoice::Always;
     state.look.utf8 =
         is_utf8(variable("LC_ALL").as_deref(), variable("LC_CTYPE").as_deref(), variable("LANG").as_deref());
+    // Work shared out by this thread stays on it: in the pool of the ranking it would wait until that has a thread to spare.
+    // Where the system refuses, keys are slower while a ranking runs.
+    let _own = rayon::ThreadPoolBuilder::new().num_threads(1).use_current_thread().build();
     let raft = Raft::default();
     let (sender, receiver) = mpsc::channel();
     let tell = sender.clone();
@@ -181,7 +185,7 @@ impl<'a> Bench<'a> {
             update(state, Input::Resize(columns, rows));
         }
         let effects = match opening {
-            Opening::Part(options) => self.lay_out(options, state),
+            Opening::Part(options) => self.lay_out(*options, state),
             Opening::Start(options) => {
                 self.start = Some(options);
                 Vec::new()
@@ -302,7 +306,7 @@ impl<'a> Bench<'a> {
                 Some(path) => file::read_setup(path).map_err(|faults| faults.lines())?,
                 None => Setup::default(),
             };
-            Ok(Fresh { part: Arc::new(part), setup: options.overrides.over(setup)? })
+            Ok(Box::new(Fresh { part: Arc::new(part), setup: options.overrides.over(setup)? }))
         };
         Input::Reread(read())
     }
@@ -496,29 +500,4 @@ fn take_back(recovery: &Recovery, state: &mut State) {
         }
         Err(lines) => drop(update(state, not_taken_back(lines))),
     }
-}
-
-/// Marks of an earlier run that cannot be taken back; their file stays.
-fn not_taken_back(mut lines: Vec<String>) -> Input {
-    lines.push(String::new());
-    lines.push("Marks of an earlier run cannot be taken back. The file stays where it is.".to_owned());
-    Input::Told { title: "marks of an earlier run", lines }
-}
-
-/// A fault with its mend.
-fn told(fault: &SaveFault) -> Vec<String> {
-    let mut lines = vec![fault.to_string()];
-    let mend = match fault {
-        SaveFault::ChangedMeanwhile(_) => "Read it again, then save.",
-        SaveFault::Unreadable(faults) => {
-            lines = faults.lines();
-            "Mend that file or move it away, then press s again."
-        }
-        SaveFault::OtherPart(_) => "Move that file away, then press s again: a new one is made.",
-        SaveFault::Io { .. } => "See to the rights and the free space of its directory, then press s again.",
-    };
-    lines.push(String::new());
-    lines.push(mend.to_owned());
-    lines.push("The file is as it was, and the marks are still here.".to_owned());
-    lines
 }

@@ -60,7 +60,7 @@ pub enum Input {
     /// Files that changed on disk since they were read.
     OnDisk(OnDisk),
     /// The part and the setup as their files have them now, or why they cannot be read.
-    Reread(Result<Fresh, Vec<String>>),
+    Reread(Result<Box<Fresh>, Vec<String>>),
 }
 
 /// Something to be done outside.
