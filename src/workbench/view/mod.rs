@@ -229,7 +229,7 @@ fn titled(state: &State, area: Rect, title: &str, right: &str, buf: &mut Buffer)
     put(buf, shifted(row, 2), &format!(" {title} "), state.look.title());
     let right = format!(" {right} ");
     let wide = right.chars().count() as u16;
-    if right.len() > 2 && wide + title.chars().count() as u16 + 8 <= area.width {
+    if right.len() > 2 && wide + title.chars().count() as u16 + 6 <= area.width {
         put(buf, shifted(row, area.width - wide - 2), &right, state.look.dim());
     }
     Rect { y: area.y + 1, height: area.height - 1, ..area }
