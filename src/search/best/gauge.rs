@@ -148,9 +148,9 @@ impl<'a> Gauge<'a> {
                 Bound { merit, cut: if beside { longest } else { nearest } }
             }
             Key::Friction => Bound { merit: -self.least_factor(spans, &contacts, level), cut: longest },
-            Key::Squeeze => Bound { merit: 0.0, cut: longest },
+            Key::Squeeze | Key::LoadMargin => Bound { merit: 0.0, cut: longest },
         };
-        if bound.merit <= level && goal.key != Key::Squeeze {
+        if bound.merit <= level && !goal.key.is_by_squeeze() {
             return bound;
         }
         if let Some(merit) = self.tilted(spans, level) {
@@ -222,13 +222,15 @@ impl<'a> Gauge<'a> {
         // On arcs the loads are asked at the middle, and the reach enlarged.
         let at_middle = if self.curved { self.at_middle(spans) } else { *contacts };
         let most_n = loads.most_n;
-        let bound = if self.setting.goal.key == Key::Squeeze {
-            let squeeze_n = loads.at_least_n(&at_middle, wander, most_n.min(-level));
+        let key = self.setting.goal.key;
+        let bound = if key.is_by_squeeze() {
+            let unit_n = loads.unit_n(key);
+            let squeeze_n = loads.at_least_n(&at_middle, wander, most_n.min(-level * unit_n));
             let held = squeeze_n.is_finite() && squeeze_n <= most_n * (1.0 + FACTOR_HAIR);
-            if held { Bound { merit: -squeeze_n, ..bound } } else { NOTHING }
+            if held { Bound { merit: -squeeze_n / unit_n, ..bound } } else { NOTHING }
         } else if loads.never_within(&at_middle, wander, 1.0, most_n) {
             NOTHING
-        } else if self.setting.goal.key == Key::Friction && !self.curved {
+        } else if key == Key::Friction && !self.curved {
             let from = -bound.merit;
             let holding = loads.factor_needed(&at_middle, from).unwrap_or(from);
             Bound { merit: -(holding - FACTOR_HAIR * (1.0 + holding)).max(from), ..bound }
@@ -256,7 +258,7 @@ impl<'a> Gauge<'a> {
             Key::Quality => longest,
             Key::QualityPerFinger => self.k as f64 * longest,
             Key::Placement => room_mm,
-            Key::Friction | Key::Squeeze => 0.0,
+            Key::Friction | Key::Squeeze | Key::LoadMargin => 0.0,
         }
     }
 
@@ -399,7 +401,10 @@ impl<'a> Gauge<'a> {
                     None => -closing,
                 }
             }
-            Key::Squeeze => self.loads.as_ref().map_or(Some(0.0), |loads| loads.squeeze_n(&contacts).map(|n| -n))?,
+            Key::Squeeze | Key::LoadMargin => match &self.loads {
+                Some(loads) => -loads.squeeze_n(&contacts)? / loads.unit_n(goal.key),
+                None => 0.0,
+            },
         };
         if !(merit > beat) {
             return None;

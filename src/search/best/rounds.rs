@@ -166,7 +166,7 @@ impl<'a> Search<'a> {
             Key::Quality => longest,
             Key::QualityPerFinger => longest * self.setting.fingers as f64,
             Key::Placement => self.setting.rails.iter().map(|rail| rail.room_mm(rail.whole)).fold(0.0, f64::max),
-            Key::Friction | Key::Squeeze => 0.0,
+            Key::Friction | Key::Squeeze | Key::LoadMargin => 0.0,
         }
     }
 
