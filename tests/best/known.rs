@@ -172,11 +172,11 @@ fn never_below_the_sampler() {
     }
 }
 
-/// Without anything known, the first row is never below the best of the sampler at the same setting: where the search says
-/// it polished it, by more than a millionth; elsewhere by more than the gap.
+/// Without anything known, the first row is never below the best of the sampler at the same setting by more than a few
+/// millionths: that is certain where the search says that it polished it, and found to be so elsewhere.
 #[test]
 fn the_first_row_is_never_below_the_sampler() {
-    let (mut polished, mut compared) = (0, 0);
+    let (mut polished, mut compared, mut below) = (0, 0, 0);
     for seed in 6000..6330_u64 {
         let mut dice = Dice::seeded(seed);
         let with_loads = seed % 6 == 5;
@@ -203,13 +203,17 @@ fn the_first_row_is_never_below_the_sampler() {
         let found = proved(&scene, key, 1, gap, if with_loads { 1_500 } else { 20_000 });
         let best = merit(key, score(&scene, key, &best.grasp.spots).unwrap());
         let own = merit(key, found.grasps[0].value);
-        let part = if found.polished { 2e-6 } else { gap };
-        assert!(own >= best - part * best.abs().max(0.01) - 1e-7, "{seed} {key:?} {own} {best} {}", found.polished);
+        let is_below = own < best - 2e-6 * best.abs().max(0.01) - 1e-8;
+        if is_below {
+            println!("{seed} {key:?} {own} {best} {} {}", found.polished, found.proved);
+        }
+        assert!(!(is_below && found.polished));
+        below += usize::from(is_below);
         assert!(found.scored >= found.closed && found.closed > 0);
         polished += usize::from(found.polished);
         compared += 1;
     }
-    assert!(compared > 300 && polished > 250, "{polished} of {compared} polished");
+    assert!(compared > 300 && polished > 160 && below == 0, "{polished} of {compared} polished, {below} below");
 }
 
 /// Parallel jaws: one parameter for each run; the best of a channel's runs against a fine walk along each.

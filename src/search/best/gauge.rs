@@ -188,18 +188,27 @@ impl<'a> Gauge<'a> {
         best.1
     }
 
-    /// A bound below `level` by directions that turn with the placement ([`super::tilt`]), where there is one.
+    /// A bound at or below `level` by directions that turn with the placement ([`super::tilt`]), where there is one.
     fn tilted(&self, spans: &[Span], level: f64) -> Option<f64> {
-        let placement = self.setting.goal.key == Key::Placement;
-        if !(level > 0.0 && (self.setting.goal.key == Key::Quality || placement)) {
-            return None;
-        }
-        let mu = self.mu?;
-        let (mut levers, mut mus) = ([NO_LEVER; FingerCount::MOST], [mu; FingerCount::MOST]);
-        for ((lever, rail), span) in levers.iter_mut().zip(self.rails()).zip(spans) {
-            *lever = rail.at_middle(*span);
+        let (mut levers, mut mus) = ([NO_LEVER; FingerCount::MOST], [0.0; FingerCount::MOST]);
+        for (finger, (rail, span)) in self.rails().iter().zip(spans).enumerate() {
+            (levers[finger], mus[finger]) = (rail.at_middle(*span), rail.mu);
         }
         let (levers, mus) = (&levers[..self.k], &mut mus[..self.k]);
+        let unit_mm = self.setting.scene.frame().scale_mm;
+        let (target, per_short) = match self.setting.goal.key {
+            Key::Quality if level > 0.0 => (Target { push: level, torque: 0.0 }, 1.0),
+            Key::Placement if level > 0.0 => (Target { push: 0.0, torque: level / unit_mm }, unit_mm),
+            Key::Friction if level < 0.0 && level >= -1.0 => {
+                // Closure with that little friction; scaling a force changes no verdict.
+                let polygon = ForcePolygon::new(UnitForces::new(levers, mus, -level).forces());
+                mus.iter_mut().for_each(|mu| *mu *= -level);
+                let tilt = Tilt::new(self.rails(), spans, levers, mus, |mu| 1.0 / mu.hypot(1.0), &polygon);
+                return tilt.short_by(Target { push: 0.0, torque: 0.0 }).map(|_| level);
+            }
+            _ => return None,
+        };
+        let mu = self.mu?;
         let own;
         let polygon = match &self.polygon {
             Some((_, polygon)) => polygon,
@@ -208,11 +217,8 @@ impl<'a> Gauge<'a> {
                 &own
             }
         };
-        let unit = if placement { self.setting.scene.frame().scale_mm } else { 1.0 };
-        let target =
-            if placement { Target { push: 0.0, torque: level / unit } } else { Target { push: level, torque: 0.0 } };
         let short = Tilt::new(self.rails(), spans, levers, mus, |_| 1.0, polygon).short_by(target)?;
-        Some((level - short * unit).max(0.0))
+        Some((level - short * per_short).max(0.0))
     }
 
     /// The bound once the loads have been asked too.

@@ -28,17 +28,17 @@ pub(super) fn never_closes(setting: &Setting<'_>) -> bool {
     setting.fingers < 4 && setting.rails.iter().all(|rail| rail.mu <= 0.0 && point(rail.is_flush()))
 }
 
-/// Good placements of some families, each start with a random stream of its own.
+/// Good placements of some families, each start with a random stream of its own; more of them the more rows are `missing`.
 pub(super) fn leads(
     setting: &Setting<'_>,
-    want: usize,
+    missing: usize,
     cancel: &Cancel,
 ) -> Result<(Vec<(Family, Lead)>, Tally), Cancelled> {
     let mut tally = Tally::default();
     if setting.rails.is_empty() || never_closes(setting) {
         return Ok((Vec::new(), tally));
     }
-    let starts = STARTS + want / 2;
+    let starts = STARTS + missing / 2;
     let found: Vec<Option<(Vec<(Family, Lead)>, Tally)>> = (0..starts as u64)
         .into_par_iter()
         .map(|stream| (!cancel.is_cancelled()).then(|| Start::new(setting, stream).leads()))
