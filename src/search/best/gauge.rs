@@ -199,7 +199,7 @@ impl<'a> Gauge<'a> {
         let (target, per_short) = match self.setting.goal.key {
             Key::Quality if level > 0.0 => (Target { push: level, torque: 0.0 }, 1.0),
             Key::Placement if level > 0.0 => (Target { push: 0.0, torque: level / unit_mm }, unit_mm),
-            Key::Friction if level < 0.0 && level >= -1.0 => {
+            Key::Friction if (-1.0..0.0).contains(&level) => {
                 // Closure with that little friction; scaling a force changes no verdict.
                 let polygon = ForcePolygon::new(UnitForces::new(levers, mus, -level).forces());
                 mus.iter_mut().for_each(|mu| *mu *= -level);
