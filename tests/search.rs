@@ -43,7 +43,7 @@ struct Plain {
     families: BTreeSet<Vec<usize>>,
     /// Best quality, quality per finger, friction needed, placement and squeeze of each family, of the sets that hold
     /// every load.
-    best: BTreeMap<Vec<usize>, [f64; 5]>,
+    best: BTreeMap<Vec<usize>, [f64; 6]>,
 }
 
 fn subsets(n: usize, k: usize, visit: &mut dyn FnMut(&[usize])) {
@@ -108,8 +108,10 @@ fn plain(scene: &Scene) -> Plain {
         if !(squeeze <= scene.limit(&grasp).map_or(most, |limit| limit.squeeze_n)) {
             return;
         }
-        let best = plain.best.entry(family).or_insert([0.0, 0.0, f64::INFINITY, 0.0, f64::INFINITY]);
+        let best = plain.best.entry(family).or_insert([0.0, 0.0, f64::INFINITY, 0.0, f64::INFINITY, 0.0]);
         best[4] = best[4].min(squeeze);
+        // A squeeze grows with the loads.
+        best[5] = best[5].max(scene.limit(&grasp).map_or(0.0, |limit| limit.squeeze_n / squeeze));
         let (assessment, doubts) = scene.assess(&grasp);
         assert_eq!(doubts, []);
         best[0] = best[0].max(hull.signed_quality);
@@ -124,7 +126,7 @@ fn check_against_plain(scene: &Scene) {
     let plain = plain(scene);
     assert!(plain.closed > 10, "{}", plain.closed);
     for (at, key) in Key::ALL.into_iter().enumerate() {
-        if key == Key::Squeeze && scene.cases().is_empty() {
+        if !key.is_told_by(scene.setup()) {
             continue;
         }
         let ranking = ranked(scene, key, Listing::Families, 10_000);
@@ -137,6 +139,7 @@ fn check_against_plain(scene: &Scene) {
             Key::Friction => listed.assessment.friction_needed.unwrap(),
             Key::Placement => listed.assessment.placement.mm,
             Key::Squeeze => listed.assessment.holding.as_ref().and_then(Holding::squeeze_n).unwrap(),
+            Key::LoadMargin => listed.assessment.holding.as_ref().and_then(Holding::load_margin).unwrap(),
         };
         for listed in &ranking.grasps {
             assert_eq!(listed.assessment.verdict, Verdict::Closed);

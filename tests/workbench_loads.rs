@@ -379,8 +379,8 @@ fn the_squeeze_is_a_key_where_there_are_loads_and_is_left_out_where_there_are_no
             .collect()
     };
     let mut desk = Desk::loaded();
-    assert_eq!(words(&mut desk), ["quality_per_finger", "friction", "placement", "squeeze", "quality"]);
-    assert_eq!(words(&mut Desk::hinge())[3..], ["quality", "quality_per_finger"]);
+    assert_eq!(words(&mut desk), ["quality_per_finger", "friction", "placement", "squeeze", "load_margin", "quality"]);
+    assert_eq!(words(&mut Desk::hinge())[3..], ["quality", "quality_per_finger", "friction"]);
     // By squeeze the first row needs least, and its column is there on a narrow screen.
     desk.keys("oooo");
     let rows = &desk.state.shown.as_ref().unwrap().ranking.grasps;

@@ -62,6 +62,11 @@ pub(super) fn run(args: &RankArgs) -> Result<Answer, Stop> {
              start from",
         ));
     }
+    if !key.is_told_by(scene.setup()) {
+        return Err(Stop::bad(
+            "--sort load_margin needs loads and a force limit: give [[load]] and force_limit_n in a setup file",
+        ));
+    }
     let listing = if args.members { Listing::Members } else { Listing::Families };
     let wanted = Wanted { key, listing, most: args.top as usize, gap: args.gap, known: &[] };
     let line = ProgressLine::new();

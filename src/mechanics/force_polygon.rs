@@ -304,6 +304,7 @@ impl<const N: usize> Polygon<N> {
 
     /// Wraps the upper envelope of heights `z` over the polygon: the vertices of each facet, and its normal, which points
     /// up and is not of unit length.
+    #[inline]
     fn wrap(&self, z: &[f64; N], mut each: impl FnMut([usize; 3], [f64; 3])) {
         let point = |i: usize| [self.forces[i][0], self.forces[i][1], z[i]];
         let mut chords = [(0usize, 0usize); N];
@@ -368,6 +369,7 @@ struct Cap {
 }
 
 /// Upward normal of the plane through a, apex and a + base, for an apex on the right of the base.
+#[inline]
 fn facet_normal(base: &[f64; 3], a: &[f64; 3], apex: &[f64; 3]) -> [f64; 3] {
     let p = [apex[0] - a[0], apex[1] - a[1], apex[2] - a[2]];
     [p[1] * base[2] - p[2] * base[1], p[2] * base[0] - p[0] * base[2], p[0] * base[1] - p[1] * base[0]]

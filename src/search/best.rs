@@ -61,7 +61,7 @@ use rounds::Search;
 pub struct ProvedGrasp {
     /// The grasp, assessed and confirmed.
     pub listed: Listed,
-    /// Its score on the key: quality, quality per finger, friction coefficient, mm, or N.
+    /// Its score on the key: quality, quality per finger, friction coefficient, mm, N, or multiple of the load.
     pub value: f64,
     /// No placement of this family scores better than this.
     pub bound: f64,

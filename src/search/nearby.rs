@@ -143,6 +143,7 @@ fn merit(scene: &Scene, key: Key, spots: &[Spot]) -> Option<(u8, f64)> {
     let value = match key {
         Key::Quality => signed,
         Key::Squeeze => holding.as_ref().and_then(Holding::squeeze_n).map_or(f64::NEG_INFINITY, |squeeze_n| -squeeze_n),
+        Key::LoadMargin => holding.as_ref().and_then(Holding::load_margin).unwrap_or(f64::INFINITY),
         Key::QualityPerFinger | Key::Friction | Key::Placement => {
             let mut read = Assessment::of(&wrenches, scene.frame(), scene.setup().friction.mu, &grasp.rooms_mm);
             if let Some(holding) = holding {

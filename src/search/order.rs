@@ -4,6 +4,7 @@
 //! after the part was turned) are equal here, and the later tie-breaks decide: less friction needed, more placement
 //! tolerance, more room on the stretch (the middle of a plateau), then the site numbers.
 
+use super::setup::Setup;
 use crate::hand::FingerCount;
 use std::cmp::Ordering;
 use std::collections::{BTreeMap, HashMap};
@@ -21,11 +22,14 @@ pub enum Key {
     Placement,
     /// Squeeze needed for every load case; smallest first. Needs load cases.
     Squeeze,
+    /// Load margin; largest first. Needs load cases and a force limit.
+    LoadMargin,
 }
 
 impl Key {
     /// All keys, in the order they are offered.
-    pub const ALL: [Self; 5] = [Self::Quality, Self::QualityPerFinger, Self::Friction, Self::Placement, Self::Squeeze];
+    pub const ALL: [Self; 6] =
+        [Self::Quality, Self::QualityPerFinger, Self::Friction, Self::Placement, Self::Squeeze, Self::LoadMargin];
 
     /// The word used on the command line and in files.
     pub fn word(self) -> &'static str {
@@ -35,12 +39,27 @@ impl Key {
             Self::Friction => "friction",
             Self::Placement => "placement",
             Self::Squeeze => "squeeze",
+            Self::LoadMargin => "load_margin",
+        }
+    }
+
+    /// The squeeze tells it: the needed one, or its share of the limit.
+    pub(super) fn is_by_squeeze(self) -> bool {
+        matches!(self, Self::Squeeze | Self::LoadMargin)
+    }
+
+    /// Whether grasps can be sorted by it under a setup: the squeeze needs load cases, the load margin a force limit too.
+    pub fn is_told_by(self, setup: &Setup) -> bool {
+        match self {
+            Self::Quality | Self::QualityPerFinger | Self::Friction | Self::Placement => true,
+            Self::Squeeze => !setup.loads.is_empty(),
+            Self::LoadMargin => !setup.loads.is_empty() && setup.hand.force_limit_n.is_some(),
         }
     }
 
     /// True where a larger score is the better one.
     pub fn more_is_better(self) -> bool {
-        matches!(self, Self::Quality | Self::QualityPerFinger | Self::Placement)
+        !matches!(self, Self::Friction | Self::Squeeze)
     }
 
     /// The key of a word.
@@ -67,7 +86,7 @@ pub(super) fn below(quanta: i64) -> f64 {
 /// Quantum of a squeeze, as a part of the largest load: it comes from a linear program.
 const SQUEEZE_QUANTUM: f64 = 1e-8;
 
-/// Minus a squeeze in quanta, so that larger is better; `size_n` is the largest load.
+/// Minus a squeeze in quanta, so that larger is better; `size_n` is the largest load, or the limit for the load margin.
 pub(super) fn squeeze_quanta(squeeze_n: f64, size_n: f64) -> i64 {
     -((squeeze_n / size_n / SQUEEZE_QUANTUM).round() as i64)
 }

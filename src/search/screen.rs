@@ -220,7 +220,7 @@ impl<'a, 'b> Run<'a, 'b> {
             self.tally.spread.insert(hasher.finish());
         }
         // By squeeze nothing is known yet that could be compared.
-        let to_compare = (self.loads.is_some() || !self.lead_is_settled) && self.screen.key != Key::Squeeze;
+        let to_compare = (self.loads.is_some() || !self.lead_is_settled) && !self.screen.key.is_by_squeeze();
         if to_compare {
             self.set = best.sites;
             if let Some(worst) = self.tally.top.worst().copied()
@@ -312,7 +312,7 @@ impl<'a, 'b> Run<'a, 'b> {
                     self.members.push(candidate);
                 }
                 // By squeeze the second round alone decides.
-                let decided_later = self.screen.key == Key::Squeeze && self.best.is_some();
+                let decided_later = self.screen.key.is_by_squeeze() && self.best.is_some();
                 if !decided_later && self.takes_lead(&mut candidate) {
                     self.best = Some(candidate);
                 }
@@ -321,7 +321,7 @@ impl<'a, 'b> Run<'a, 'b> {
                 let worst = self.tally.top.worst().copied();
                 self.friction_under_load = false;
                 let in_question = match worst {
-                    Some(worst) if self.screen.key != Key::Squeeze => self.comes_before(&mut candidate, &worst),
+                    Some(worst) if !self.screen.key.is_by_squeeze() => self.comes_before(&mut candidate, &worst),
                     _ => true,
                 };
                 self.friction_under_load = self.screen.key == Key::Friction;
@@ -372,7 +372,7 @@ impl<'a, 'b> Run<'a, 'b> {
             Key::Placement => placement,
             Key::QualityPerFinger => order::quanta(self.per_finger()?),
             // Decided with the friction tie-break, or under load.
-            Key::Friction | Key::Squeeze => 0,
+            Key::Friction | Key::Squeeze | Key::LoadMargin => 0,
         })
     }
 

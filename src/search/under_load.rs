@@ -16,7 +16,7 @@ impl Run<'_, '_> {
     /// The best member that holds every load, if it enters the list. `first` is the best of them without the loads.
     pub(super) fn best_under_load(&mut self, first: Candidate) -> Option<Candidate> {
         self.friction_under_load = self.screen.key == Key::Friction;
-        let in_order = !matches!(self.screen.key, Key::Friction | Key::Squeeze);
+        let in_order = self.screen.key != Key::Friction && !self.screen.key.is_by_squeeze();
         if in_order {
             // The loads change nothing in the order, so that if it holds no other can be better.
             let mut best = first;
@@ -40,7 +40,7 @@ impl Run<'_, '_> {
             }
             match &mut lead.best {
                 // Only squeeze is not in order by now.
-                Some(best) if member.key < best.key && self.screen.key != Key::Squeeze => break,
+                Some(best) if member.key < best.key && !self.screen.key.is_by_squeeze() => break,
                 Some(best) if member.key == best.key && !lead.settled => {
                     self.settle(best);
                     lead.settled = true;
@@ -68,16 +68,17 @@ impl Run<'_, '_> {
     /// beyond the limit.
     #[expect(clippy::option_option, reason = "out of the question, decided before, and decided now are three things")]
     pub(super) fn key_under_load(&mut self, best: Option<&Candidate>) -> Option<Option<i64>> {
-        if self.screen.key != Key::Squeeze {
+        if !self.screen.key.is_by_squeeze() {
             return Some(None);
         }
         let levers = self.levers();
         let Some(mut loads) = self.loads.take() else { return Some(None) };
         let most_n = self.most_n(&loads);
         let bar = best.or_else(|| self.tally.top.worst());
-        let bar_n = bar.map_or(f64::INFINITY, |bar| order::squeeze_above(bar.key, loads.size_n));
+        let unit_n = if self.screen.key == Key::LoadMargin { loads.limit_n } else { loads.size_n };
+        let bar_n = bar.map_or(f64::INFINITY, |bar| order::squeeze_above(bar.key, unit_n));
         let squeeze_n = loads.squeeze_n(&levers[..self.k], &self.forces.mus[..self.k], most_n.min(bar_n));
-        let key = squeeze_n.map(|squeeze_n| order::squeeze_quanta(squeeze_n, loads.size_n));
+        let key = squeeze_n.map(|squeeze_n| order::squeeze_quanta(squeeze_n, unit_n));
         self.tally.not_held += u64::from(key.is_none() && bar.is_none());
         self.loads = Some(loads);
         key.map(Some)
@@ -95,7 +96,7 @@ impl Run<'_, '_> {
         let (levers, mus) = (&levers[..self.k], &self.forces.mus[..self.k]);
         let floors = &self.screen.scene.setup().floors;
         // By squeeze it is known already; without a floor whatever closes is listed.
-        let held = self.screen.key == Key::Squeeze
+        let held = self.screen.key.is_by_squeeze()
             || floors.load_margin <= 0.0
             || loads.within(levers, mus, 1.0, self.most_n(&loads));
         // Whoever lists what is not held asks for friction margin of closure alone.

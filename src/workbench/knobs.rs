@@ -14,7 +14,7 @@ use std::sync::Arc;
 /// Asks for a ranking by the knobs as they stand.
 pub(super) fn rank(state: &mut State) -> Vec<Effect> {
     state.job = Job::Running(None);
-    if state.order.key == Key::Squeeze && state.setup().loads.is_empty() {
+    if !state.order.key.is_told_by(state.setup()) {
         state.order.key = Key::Quality;
     }
     // Until the new number is known no ranking on the screen counts as that of the new knobs.
@@ -248,12 +248,11 @@ pub(super) fn next_cell_shape(state: &mut State) {
     state.message = Some(format!("cells taken as {} times as high as wide", state.look.aspect));
 }
 
-/// Sorts by the key that follows; the squeeze is left out where there are no loads.
+/// Sorts by the key that follows; those that the setup cannot tell are left out.
 pub(super) fn next_key(state: &mut State) -> Vec<Effect> {
     let at = Key::ALL.iter().position(|key| *key == state.order.key).unwrap_or(0);
-    let loads = !state.setup().loads.is_empty();
     let mut following = Key::ALL.iter().cycle().skip(at + 1).take(Key::ALL.len());
-    if let Some(key) = following.find(|key| loads || **key != Key::Squeeze) {
+    if let Some(key) = following.find(|key| key.is_told_by(state.setup())) {
         state.order.key = *key;
     }
     rank(state)

@@ -12,7 +12,7 @@ fn ring(dice: &mut Dice, corners: usize, star: bool) -> Vec<[f64; 2]> {
 }
 
 /// Outlines of all sorts: convex, concave, with a hole, near symmetric, with arcs.
-fn outline(dice: &mut Dice, sort: usize) -> PartDescription {
+pub(super) fn outline(dice: &mut Dice, sort: usize) -> PartDescription {
     let corners = 4 + dice.pick(5);
     let rings = match sort % 5 {
         0 => vec![ring(dice, corners, false)],
@@ -188,7 +188,7 @@ fn no_placement_beats_the_bound_under_loads() {
             setup.loads = loads();
             setup.hand.force_limit_n = Some(60.0);
         });
-        for key in [Key::Squeeze, Key::ALL[seed as usize % 4]] {
+        for key in [Key::Squeeze, Key::LoadMargin, Key::ALL[seed as usize % 4]] {
             let proved = proved(&scene, key, 2, 0.05, 1_500);
             check_rows(&scene, key, &proved, 0.05);
             let mut attack = Attack { scene: &scene, key, proved: &proved, tried: 0 };

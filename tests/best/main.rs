@@ -46,6 +46,7 @@ fn score(scene: &Scene, key: Key, spots: &[Spot]) -> Option<f64> {
         return None;
     }
     let squeeze = holding.as_ref().and_then(Holding::squeeze_n);
+    let margin = holding.as_ref().and_then(Holding::load_margin);
     if let Some(holding) = holding {
         read.hold(holding, &wrenches, scene.setup().friction.mu);
     }
@@ -55,6 +56,7 @@ fn score(scene: &Scene, key: Key, spots: &[Spot]) -> Option<f64> {
         Key::Placement => Some(read.placement.mm),
         Key::Friction => read.friction_needed,
         Key::Squeeze => squeeze,
+        Key::LoadMargin => margin,
     }
 }
 
@@ -92,7 +94,7 @@ fn check_rows(scene: &Scene, key: Key, proved: &Proved, gap: f64) {
                 Key::Quality | Key::QualityPerFinger => 1e-4,
                 Key::Placement => 1e-4 * scene.frame().scale_mm,
                 Key::Friction => 1e-2 * scene.setup().friction.mu,
-                Key::Squeeze => 1e-6,
+                Key::Squeeze | Key::LoadMargin => 1e-6,
             };
             let over = merit(key, bound) - merit(key, first.value);
             assert!(over <= gap * first.value.abs().max(small) * (1.0 + 1e-6) + 1e-6, "{over}");

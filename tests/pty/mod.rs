@@ -151,7 +151,10 @@ impl Pty {
     pub fn wait_ranked(&self) {
         self.wait("the ranking", |pty| {
             let screen = pty.screen();
-            screen.contains("families --") && !screen.contains("ranking") && !screen.contains("proving") && !screen.contains("so far")
+            screen.contains("families --")
+                && !screen.contains("ranking")
+                && !screen.contains("proving")
+                && !screen.contains("so far")
         });
     }
 

@@ -148,9 +148,9 @@ impl<'a> Gauge<'a> {
                 Bound { merit, cut: if beside { longest } else { nearest } }
             }
             Key::Friction => Bound { merit: -self.least_factor(spans, &contacts, level), cut: longest },
-            Key::Squeeze => Bound { merit: 0.0, cut: longest },
+            Key::Squeeze | Key::LoadMargin => Bound { merit: 0.0, cut: longest },
         };
-        if bound.merit <= level && goal.key != Key::Squeeze {
+        if bound.merit <= level && !goal.key.is_by_squeeze() {
             return bound;
         }
         if let Some(merit) = self.tilted(spans, level) {
@@ -188,18 +188,27 @@ impl<'a> Gauge<'a> {
         best.1
     }
 
-    /// A bound below `level` by directions that turn with the placement ([`super::tilt`]), where there is one.
+    /// A bound at or below `level` by directions that turn with the placement ([`super::tilt`]), where there is one.
     fn tilted(&self, spans: &[Span], level: f64) -> Option<f64> {
-        let placement = self.setting.goal.key == Key::Placement;
-        if !(level > 0.0 && (self.setting.goal.key == Key::Quality || placement)) {
-            return None;
-        }
-        let mu = self.mu?;
-        let (mut levers, mut mus) = ([NO_LEVER; FingerCount::MOST], [mu; FingerCount::MOST]);
-        for ((lever, rail), span) in levers.iter_mut().zip(self.rails()).zip(spans) {
-            *lever = rail.at_middle(*span);
+        let (mut levers, mut mus) = ([NO_LEVER; FingerCount::MOST], [0.0; FingerCount::MOST]);
+        for (finger, (rail, span)) in self.rails().iter().zip(spans).enumerate() {
+            (levers[finger], mus[finger]) = (rail.at_middle(*span), rail.mu);
         }
         let (levers, mus) = (&levers[..self.k], &mut mus[..self.k]);
+        let unit_mm = self.setting.scene.frame().scale_mm;
+        let (target, per_short) = match self.setting.goal.key {
+            Key::Quality if level > 0.0 => (Target { push: level, torque: 0.0 }, 1.0),
+            Key::Placement if level > 0.0 => (Target { push: 0.0, torque: level / unit_mm }, unit_mm),
+            Key::Friction if (-1.0..0.0).contains(&level) => {
+                // Closure with that little friction; scaling a force changes no verdict.
+                let polygon = ForcePolygon::new(UnitForces::new(levers, mus, -level).forces());
+                mus.iter_mut().for_each(|mu| *mu *= -level);
+                let tilt = Tilt::new(self.rails(), spans, levers, mus, |mu| 1.0 / mu.hypot(1.0), &polygon);
+                return tilt.short_by(Target { push: 0.0, torque: 0.0 }).map(|_| level);
+            }
+            _ => return None,
+        };
+        let mu = self.mu?;
         let own;
         let polygon = match &self.polygon {
             Some((_, polygon)) => polygon,
@@ -208,11 +217,8 @@ impl<'a> Gauge<'a> {
                 &own
             }
         };
-        let unit = if placement { self.setting.scene.frame().scale_mm } else { 1.0 };
-        let target =
-            if placement { Target { push: 0.0, torque: level / unit } } else { Target { push: level, torque: 0.0 } };
         let short = Tilt::new(self.rails(), spans, levers, mus, |_| 1.0, polygon).short_by(target)?;
-        Some((level - short * unit).max(0.0))
+        Some((level - short * per_short).max(0.0))
     }
 
     /// The bound once the loads have been asked too.
@@ -222,13 +228,15 @@ impl<'a> Gauge<'a> {
         // On arcs the loads are asked at the middle, and the reach enlarged.
         let at_middle = if self.curved { self.at_middle(spans) } else { *contacts };
         let most_n = loads.most_n;
-        let bound = if self.setting.goal.key == Key::Squeeze {
-            let squeeze_n = loads.at_least_n(&at_middle, wander, most_n.min(-level));
+        let key = self.setting.goal.key;
+        let bound = if key.is_by_squeeze() {
+            let unit_n = loads.unit_n(key);
+            let squeeze_n = loads.at_least_n(&at_middle, wander, most_n.min(-level * unit_n));
             let held = squeeze_n.is_finite() && squeeze_n <= most_n * (1.0 + FACTOR_HAIR);
-            if held { Bound { merit: -squeeze_n, ..bound } } else { NOTHING }
+            if held { Bound { merit: -squeeze_n / unit_n, ..bound } } else { NOTHING }
         } else if loads.never_within(&at_middle, wander, 1.0, most_n) {
             NOTHING
-        } else if self.setting.goal.key == Key::Friction && !self.curved {
+        } else if key == Key::Friction && !self.curved {
             let from = -bound.merit;
             let holding = loads.factor_needed(&at_middle, from).unwrap_or(from);
             Bound { merit: -(holding - FACTOR_HAIR * (1.0 + holding)).max(from), ..bound }
@@ -256,7 +264,7 @@ impl<'a> Gauge<'a> {
             Key::Quality => longest,
             Key::QualityPerFinger => self.k as f64 * longest,
             Key::Placement => room_mm,
-            Key::Friction | Key::Squeeze => 0.0,
+            Key::Friction | Key::Squeeze | Key::LoadMargin => 0.0,
         }
     }
 
@@ -399,7 +407,10 @@ impl<'a> Gauge<'a> {
                     None => -closing,
                 }
             }
-            Key::Squeeze => self.loads.as_ref().map_or(Some(0.0), |loads| loads.squeeze_n(&contacts).map(|n| -n))?,
+            Key::Squeeze | Key::LoadMargin => match &self.loads {
+                Some(loads) => -loads.squeeze_n(&contacts)? / loads.unit_n(goal.key),
+                None => 0.0,
+            },
         };
         if !(merit > beat) {
             return None;

@@ -7,11 +7,13 @@ use crate::mechanics::holding;
 /// The key of a search, its gap, and the units they are told in.
 ///
 /// Inside, every key is a *merit*, larger is better: quality, quality per finger, placement in mm, minus the friction
-/// factor, minus the squeeze in N.
+/// factor, minus the squeeze in N, minus its share of the limit, which is 1 over the load margin.
 #[derive(Debug, Clone, Copy)]
 pub(super) struct Goal {
     pub key: Key,
     gap: f64,
+    /// The gap as a part of the merit.
+    part: f64,
     /// A merit smaller than this is near 0, where no relative gap can be reached: the gap is a part of this instead.
     small: f64,
     /// Torque scale, mm.
@@ -31,9 +33,13 @@ impl Goal {
             Key::Placement => 1e-4 * scale_mm,
             Key::Friction => 1e-2,
             Key::Squeeze => 1e-6 * size_n,
+            Key::LoadMargin => 1e-6,
         };
         let mu = scene.setup().friction.mu;
-        Self { key, gap: gap.max(0.0), small, scale_mm, friction_unit: if mu > 0.0 { mu } else { 1.0 }, size_n }
+        let gap = gap.max(0.0);
+        // A load margin larger by a part is a share smaller by a little less.
+        let part = if key == Key::LoadMargin { gap / (1.0 + gap) } else { gap };
+        Self { key, gap, part, small, scale_mm, friction_unit: if mu > 0.0 { mu } else { 1.0 }, size_n }
     }
 
     /// What gaps are parts of: the best merit found, or that of a row where it is larger.
@@ -44,24 +50,31 @@ impl Goal {
     /// What a merit may be beaten by and still stand beside the best found; without one, what nobody looks for.
     pub(super) fn enough(&self, merit: Option<f64>, best: Option<f64>) -> f64 {
         match (merit, self.key) {
-            (Some(merit), _) => merit + self.gap * self.whole(Some(merit), best) + HAIR * self.unit(),
-            (None, Key::Friction | Key::Squeeze) => f64::NEG_INFINITY,
+            (Some(merit), _) => merit + self.part * self.whole(Some(merit), best) + HAIR * self.unit(),
+            (None, Key::Friction | Key::Squeeze | Key::LoadMargin) => f64::NEG_INFINITY,
             (None, _) => (self.gap * self.whole(None, best)).max(HAIR * self.unit()),
         }
     }
 
     /// The same with the gap to which the first row is polished.
     pub(super) fn nearly(&self, merit: f64) -> f64 {
-        merit + self.gap.min(POLISHED) * merit.abs().max(self.small) + HAIR * self.unit()
+        merit + self.part.min(POLISHED) * merit.abs().max(self.small) + HAIR * self.unit()
     }
 
     /// The gap between a merit and a bound on it, beside the best found.
     pub(super) fn gap_between(&self, merit: f64, bound: f64, best: f64) -> f64 {
-        // Nothing is better than no friction and no squeeze.
-        let most = if self.key.more_is_better() { f64::INFINITY } else { 0.0 };
+        // Nothing is better than no friction, no squeeze, no part of the limit.
+        let most = match self.key {
+            Key::Quality | Key::QualityPerFinger | Key::Placement => f64::INFINITY,
+            Key::Friction | Key::Squeeze | Key::LoadMargin => 0.0,
+        };
         let over = bound.min(most) - merit;
         // Rounding alone is no gap.
-        if over <= 2.0 * HAIR * self.unit() { 0.0 } else { over / self.whole(Some(merit), Some(best)) }
+        if over <= 2.0 * HAIR * self.unit() {
+            return 0.0;
+        }
+        let part = over / self.whole(Some(merit), Some(best));
+        if self.key == Key::LoadMargin { part / (1.0 - part).max(0.0) } else { part }
     }
 
     /// The gap asked for.
@@ -77,7 +90,7 @@ impl Goal {
     /// Width of one unit of the key, for rounding.
     fn unit(&self) -> f64 {
         match self.key {
-            Key::Quality | Key::QualityPerFinger | Key::Friction => 1.0,
+            Key::Quality | Key::QualityPerFinger | Key::Friction | Key::LoadMargin => 1.0,
             Key::Placement => self.scale_mm,
             Key::Squeeze => self.size_n,
         }
@@ -90,6 +103,7 @@ impl Goal {
             // No bound says less than nothing, though rounding may.
             Key::Friction => (-merit * self.friction_unit).max(0.0),
             Key::Squeeze => (-merit).max(0.0),
+            Key::LoadMargin => 1.0 / (-merit).max(0.0),
         }
     }
 
@@ -100,6 +114,7 @@ impl Goal {
             Key::Placement => order::quanta(merit / self.scale_mm),
             Key::Friction => -order::friction_quanta(-merit),
             Key::Squeeze => order::squeeze_quanta(-merit, self.size_n),
+            Key::LoadMargin => order::squeeze_quanta(-merit, 1.0),
         }
     }
 }

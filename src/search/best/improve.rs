@@ -6,8 +6,8 @@ use crate::hand::FingerCount;
 
 /// Steps of a climb get half as long so many times.
 const HALVINGS: u32 = 12;
-/// The same on the way to the middle of a plateau.
-const FINE_HALVINGS: u32 = 26;
+/// The same on the way to the middle of a plateau: for the first row, and for the others, whose last digits nobody reads.
+const FINE_HALVINGS: [u32; 2] = [26, 15];
 /// Steps of one length, at most.
 const MOST_STEPS: usize = 12;
 
@@ -53,13 +53,13 @@ fn rank(plot: &Plot<'_>, merit: f64, at: &Spots) -> Rank {
 
 /// Moves a placement to where tolerance is largest among those equal on the key (or better): along every edge, and along all
 /// of them in every combination of senses, so that a pair that can only move together does.
-pub(super) fn to_the_middle(plot: &mut Plot<'_>, mut lead: Lead) -> Lead {
+pub(super) fn to_the_middle(plot: &mut Plot<'_>, mut lead: Lead, is_first: bool) -> Lead {
     let whole = plot.whole();
     let mut best = rank(plot, lead.merit, &lead.at);
     let directions = directions(plot.dims);
     let longest = (0..plot.dims).map(|dim| whole[dim][1] - whole[dim][0]).fold(0.0, f64::max);
     let mut step = longest / 4.0;
-    for _ in 0..FINE_HALVINGS {
+    for _ in 0..FINE_HALVINGS[usize::from(!is_first)] {
         for _ in 0..MOST_STEPS {
             let mut better = false;
             for direction in &directions {

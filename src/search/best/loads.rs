@@ -4,6 +4,7 @@
 //! ([`Hold::reach`]). What is found with pads as wide as the box holds for every placement in it; on arcs the reach in
 //! direction u is enlarged by how far the wrenches can wander. A solver that gives up says nothing, and excludes nothing.
 
+use super::super::order::Key;
 use super::super::scene::Scene;
 use super::rail::{Contacts, Rail, Span};
 use crate::hand::{Drive, FingerCount};
@@ -39,6 +40,11 @@ impl<'a> Loads<'a> {
         let floor = scene.setup().floors.load_margin;
         let most_n = if floor > 0.0 { limit_n / floor } else { f64::INFINITY };
         Some(Self { pyramid, half_height, drive, asked, limit_n, most_n })
+    }
+
+    /// What a squeeze is told as a multiple of, N: itself, or the limit for the load margin.
+    pub(super) fn unit_n(&self, key: Key) -> f64 {
+        if key == Key::LoadMargin { self.limit_n } else { 1.0 }
     }
 
     fn hold(&self, contacts: &Contacts, factor: f64) -> Hold<'a> {

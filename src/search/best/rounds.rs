@@ -24,7 +24,7 @@ const SCREENED_A_BOX: u64 = 1000;
 const FIRST_SNAPSHOT: u32 = 4;
 /// Boxes the polishing of the first row may take: one for so many looked at before, and so many more.
 const POLISH_SHARE: u64 = 3;
-const POLISH_BOXES: u64 = 256;
+const POLISH_BOXES: u64 = 512;
 /// Beginnings screened between two looks at the budget and at the wish to stop.
 const BEGINNINGS: usize = 16;
 
@@ -127,7 +127,7 @@ impl<'a> Search<'a> {
     pub(super) fn start(&mut self, known: &[Vec<Spot>]) -> Result<(), Cancelled> {
         self.know(known)?;
         if self.setting.scene.setup().hand.closing == Closing::Free {
-            let (leads, tally) = start::leads(self.setting, self.want, self.cancel)?;
+            let (leads, tally) = start::leads(self.setting, self.want.saturating_sub(self.leads.len()), self.cancel)?;
             self.tally.add(tally);
             for (family, lead) in leads {
                 self.offer(family, lead);
@@ -210,7 +210,7 @@ impl<'a> Search<'a> {
             Key::Quality => longest,
             Key::QualityPerFinger => longest * self.setting.fingers as f64,
             Key::Placement => self.setting.rails.iter().map(|rail| rail.room_mm(rail.whole)).fold(0.0, f64::max),
-            Key::Friction | Key::Squeeze => 0.0,
+            Key::Friction | Key::Squeeze | Key::LoadMargin => 0.0,
         }
     }
 
@@ -314,6 +314,13 @@ impl<'a> Search<'a> {
             self.polished = !first.is_finite() && self.highest() <= self.setting.goal.enough(None, None);
             return Ok(());
         }
+        if let Some((&family, &lead)) = self.leads.iter().find(|(_, lead)| lead.merit >= first) {
+            let mut plot = Plot::new(self.setting, &family);
+            let better = improve::to_the_middle(&mut plot, lead, true);
+            self.tally.add(plot.gauge.tally);
+            self.offer(family, better);
+        }
+        let first = self.first();
         let extra = self.boxes / POLISH_SHARE + POLISH_BOXES;
         let budget = self.budget;
         self.budget = budget.min(self.boxes + extra);
@@ -454,13 +461,13 @@ impl<'a> Search<'a> {
         let list: Vec<(Family, Lead, f64)> = list.into_iter().map(own).collect();
         let mut rest = bounds.into_values().fold(self.dropped, f64::max).min(self.any());
         let (setting, cancel) = (self.setting, self.cancel);
-        let row = |(family, lead, bound): &(Family, Lead, f64)| {
+        let row = |(place, (family, lead, bound)): (usize, &(Family, Lead, f64))| {
             (!cancel.is_cancelled()).then(|| {
-                let (row, tally) = row(setting, family, *lead, *bound);
+                let (row, tally) = row(setting, family, *lead, *bound, place == 0);
                 (row.ok_or(*bound), tally)
             })
         };
-        let rows: Option<Vec<(Result<Row, f64>, Tally)>> = list.par_iter().map(row).collect();
+        let rows: Option<Vec<(Result<Row, f64>, Tally)>> = list.par_iter().enumerate().map(row).collect();
         let mut inconclusive = 0;
         let mut listed = Vec::with_capacity(list.len());
         for (row, tally) in rows.ok_or(Cancelled)? {
@@ -528,9 +535,9 @@ struct Row {
 }
 
 /// The grasp of a lead in the middle of its plateau; nothing when its two ways of scoring disagree.
-fn row(setting: &Setting<'_>, family: &Family, lead: Lead, bound: f64) -> (Option<Row>, Tally) {
+fn row(setting: &Setting<'_>, family: &Family, lead: Lead, bound: f64, is_first: bool) -> (Option<Row>, Tally) {
     let mut plot = Plot::new(setting, family);
-    let lead = improve::to_the_middle(&mut plot, lead);
+    let lead = improve::to_the_middle(&mut plot, lead, is_first);
     (confirmed(setting, &plot, lead, bound), plot.gauge.tally)
 }
 

@@ -28,18 +28,17 @@ pub(super) fn never_closes(setting: &Setting<'_>) -> bool {
     setting.fingers < 4 && setting.rails.iter().all(|rail| rail.mu <= 0.0 && point(rail.is_flush()))
 }
 
-/// Good placements of some families, each start with a random stream of its own.
-pub(super) fn leads(
-    setting: &Setting<'_>,
-    want: usize,
-    cancel: &Cancel,
-) -> Result<(Vec<(Family, Lead)>, Tally), Cancelled> {
+/// Placements found, and how many were looked at.
+pub(super) type Found = (Vec<(Family, Lead)>, Tally);
+
+/// Good placements of some families, each start with a random stream of its own; more of them the more rows are `missing`.
+pub(super) fn leads(setting: &Setting<'_>, missing: usize, cancel: &Cancel) -> Result<Found, Cancelled> {
     let mut tally = Tally::default();
     if setting.rails.is_empty() || never_closes(setting) {
         return Ok((Vec::new(), tally));
     }
-    let starts = STARTS + want / 2;
-    let found: Vec<Option<(Vec<(Family, Lead)>, Tally)>> = (0..starts as u64)
+    let starts = STARTS + missing / 2;
+    let found: Vec<Option<Found>> = (0..starts as u64)
         .into_par_iter()
         .map(|stream| (!cancel.is_cancelled()).then(|| Start::new(setting, stream).leads()))
         .collect();
@@ -118,7 +117,7 @@ impl<'a> Start<'a> {
     }
 
     /// The best of some draws, with fingers exchanged until none gains, and what was come by on the way.
-    fn leads(mut self) -> (Vec<(Family, Lead)>, Tally) {
+    fn leads(mut self) -> Found {
         let mut found: Vec<(Family, Lead)> = Vec::new();
         for _ in 0..DRAWS {
             let on = self.draw();

@@ -128,9 +128,14 @@ fn check(key: Key, seed: u64, rounds: usize, with_loads: bool) {
                     let hair = 1e-9 * (1.0 + merit.abs());
                     assert!(merit <= bound + hair, "{key:?} {merit} above {bound}, box of {share}");
                     // A bound that may stop at a level says no more than the level.
-                    let level = merit - 0.01 * merit.abs().max(1e-3);
-                    let stopped = plot.bound(&spans, level).merit;
-                    assert!(stopped > level && merit <= stopped + hair, "{key:?} {merit} {level} {stopped}");
+                    for below in [0.1, 0.01, 1e-4, 1e-7] {
+                        let level = merit - below * merit.abs().max(1e-3);
+                        let stopped = plot.bound(&spans, level).merit;
+                        assert!(stopped > level && merit <= stopped + hair, "{key:?} {merit} {level} {stopped}");
+                    }
+                    // Nor may one that stops at a level above say less than the merit.
+                    let stopped = plot.bound(&spans, merit + 0.003 * merit.abs()).merit;
+                    assert!(merit <= stopped + hair, "{key:?} {merit} {stopped}");
                 }
                 if share <= 1e-9 && best > f64::NEG_INFINITY {
                     // Under loads the friction on arcs is bounded by closure alone.
@@ -171,6 +176,7 @@ fn a_box_bounds_the_friction() {
 #[test]
 fn a_box_bounds_what_loads_ask() {
     check(Key::Squeeze, 5, 20, true);
+    check(Key::LoadMargin, 8, 20, true);
     check(Key::Friction, 6, 12, true);
     check(Key::Quality, 7, 12, true);
 }
@@ -182,7 +188,7 @@ fn families_excluded_by_directions_are_behind() {
         let mut dice = Dice(ChaCha8Rng::seed_from_u64(11));
         let (mut excluded, mut closed) = (0, 0);
         for _ in 0..25 {
-            let scene = scene(&mut dice, key == Key::Squeeze);
+            let scene = scene(&mut dice, key.is_by_squeeze());
             let setting = Setting::new(&scene, key, 0.01);
             if setting.rails.is_empty() {
                 continue;

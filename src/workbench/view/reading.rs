@@ -272,6 +272,7 @@ impl Page<'_> {
             Key::Placement => format!("{} mm", number::mm(value)),
             Key::Friction => number::mu(value),
             Key::Squeeze => format!("{} N", number::mm(value)),
+            Key::LoadMargin => number::times(Some(value)),
         };
         let limit = if shown.order.key.more_is_better() { "at most" } else { "at least" };
         let meaning = format!("is the {word} anywhere on these edges; {} on the whole outline", told(all));

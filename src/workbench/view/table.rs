@@ -117,7 +117,7 @@ fn columns(key: Key, loads: bool) -> Vec<Column> {
             a.holding.as_ref().map_or(String::new(), |holding| number::load(holding.load_margin(), holding.held()))
         };
         columns.push(column("squeeze", 8, squeeze, key == Key::Squeeze));
-        columns.push(column("load", 9, load, false));
+        columns.push(column("load", 9, load, key == Key::LoadMargin));
     }
     columns.push(column("needed", 8, |a| a.friction_needed.map_or("-".to_owned(), number::mu), false));
     if key != Key::QualityPerFinger {
