@@ -31,6 +31,8 @@ fn rank_prints_the_promised_object() {
             "best_bound",
             "gap",
             "proved",
+            "list_gap",
+            "list_proved",
             "grasps"
         ])
     );

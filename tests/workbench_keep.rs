@@ -225,13 +225,24 @@ fn a_file_changed_meanwhile_or_of_another_form_is_not_changed() {
     std::fs::write(&path, format!("{text}# a colleague\n")).unwrap();
     let fault = revise(&path, &part_path, &part, &revision, known.as_ref()).unwrap_err();
     assert!(fault.to_string().contains("changed by someone else"), "{fault}");
-    // Grasps in one list of brackets: names can be changed in place, taking one out is refused.
-    let inline = text.replace("\n[[grasp]]", "\n[[grasp]] # x").replacen("[[grasp]] # x", "[[\"grasp\"]]", 1);
+    // A heading in quotes is a heading all the same (TOML 1.0, keys).
+    let quoted = text.replacen("\n[[grasp]]", "\n[[\"grasp\"]]", 1);
+    std::fs::write(&path, &quoted).unwrap();
+    revise(&path, &part_path, &part, &revision, stamp(&path).as_ref()).unwrap();
+    let left: Vec<String> = read_grasps(&path).unwrap().grasps.into_iter().map(|grasp| grasp.name).collect();
+    assert_eq!(left, ["b", "c"]);
+    // Two names on one line of brackets are a form that is not written here: refused, and nothing is touched.
+    let head = text.split("\n[[grasp]]").next().unwrap().split("\n# tried").next().unwrap();
+    let contacts = "contacts = [{ ring = 0, edge = 0, along_mm = 30.0 }, { ring = 0, edge = 3, along_mm = 9.0 }]";
+    let line = format!("grasp = [{{ name = \"a\", verdict = \"open\", {contacts} }}]");
+    let inline = head.replacen("schema = 1\n", &format!("schema = 1\n{line}\n"), 1);
     std::fs::write(&path, &inline).unwrap();
-    match revise(&path, &part_path, &part, &revision, stamp(&path).as_ref()) {
-        Ok(_) => assert_eq!(read_grasps(&path).unwrap().grasps.len(), 2),
-        Err(_) => assert_eq!(std::fs::read_to_string(&path).unwrap(), inline),
-    }
+    let spots = read_grasps(&path).unwrap().grasps[0].spots.clone();
+    let changes = [Change { number: 0, name: "a".to_owned(), spots, to: Becomes::Removed }];
+    let revision = Revision { changes: &changes, ..Revision::default() };
+    let fault = revise(&path, &part_path, &part, &revision, stamp(&path).as_ref()).unwrap_err();
+    assert!(fault.to_string().contains("headed [[grasp]]"), "{fault}");
+    assert_eq!(std::fs::read_to_string(&path).unwrap(), inline);
 }
 
 fn fresh(part: Part, setup: Setup) -> Input {

@@ -302,9 +302,12 @@ fn a_mark_taken_away_by_mistake_comes_back_with_its_note() {
     desk.keys("jk");
     desk.keys("m");
     assert_eq!(desk.state.marks[0].keep.note, "clear of the seal");
+    // The list stays open when its last mark is taken away, so that it can be brought back there, or on the bench.
     desk.keys("Mm");
     assert!(desk.state.marks.is_empty());
     desk.keys("u");
+    assert_eq!(desk.state.marks[0].keep.note, "clear of the seal");
+    desk.keys("m<esc>m");
     assert_eq!(desk.state.marks[0].keep.note, "clear of the seal");
 }
 

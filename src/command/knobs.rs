@@ -186,21 +186,15 @@ impl Knobs {
         }
     }
 
-    /// Makes every later piece of work run on as many threads as asked for, which give way to the one that answers the keys.
+    /// Makes every later piece of work run on as many threads as asked for.
     pub(super) fn use_threads_everywhere(&self) -> Result<(), Stop> {
-        let threads = rayon::ThreadPoolBuilder::new().num_threads(self.threads.map_or(0, usize::from));
-        // Where the system has no such thing, all are alike as before.
-        let give_way = |_: usize| {
-            let _ = rustix::process::nice(GIVES_WAY);
-        };
-        let built = threads.start_handler(give_way).build_global();
-        built.map_err(|error| Stop::bad(format!("--threads: {error}")))
+        if let Some(n) = self.threads {
+            let built = rayon::ThreadPoolBuilder::new().num_threads(n.into()).build_global();
+            built.map_err(|error| Stop::bad(format!("--threads: {error}")))?;
+        }
+        Ok(())
     }
 }
-
-/// How far the threads of a ranking stand back behind the one that answers the keys, in steps of `nice` (POSIX; on Linux each
-/// thread has its own).
-const GIVES_WAY: i32 = 10;
 
 /// Reads a part and says what its file's reading noted.
 pub(super) fn part(path: &Path) -> Result<Arc<Part>, Stop> {

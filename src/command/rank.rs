@@ -102,10 +102,14 @@ pub(super) fn run(args: &RankArgs) -> Result<Answer, Stop> {
 pub(super) struct ProofReport {
     /// No placement scores better than this on the key; null where none is a grasp at all, or nothing is known.
     best_bound: Option<f64>,
-    /// How much better than its row a family can be, as a part of the best score; null where something may be missing.
+    /// How much better than the first row any placement can be, as a part of its score; null where that is not known.
     gap: Option<f64>,
     /// The gap is no wider than was asked for.
     proved: bool,
+    /// How much better than its row any family can be, as a part of the best score; null where one may be missing.
+    list_gap: Option<f64>,
+    /// That gap, too, is no wider than was asked for.
+    list_proved: bool,
 }
 
 impl ProofReport {
@@ -116,24 +120,32 @@ impl ProofReport {
             best_bound: proof.and_then(|proof| proof.best_bound).and_then(finite),
             gap: proof.and_then(|proof| finite(proof.gap)),
             proved: proof.is_some_and(|proof| proof.proved),
+            list_gap: proof.and_then(|proof| finite(proof.list_gap)),
+            list_proved: proof.is_some_and(|proof| proof.list_proved),
         }
     }
 }
 
-/// What a proof says, in a line.
-fn proved(proof: &Proof, key: Key, gap: f64) -> String {
+/// What a proof says, in words.
+fn proved(proof: &Proof, key: Key, asked: f64) -> String {
     let Some(bound) = proof.best_bound else {
         return "proved: no placement anywhere on the outline is such a grasp".to_owned();
     };
+    let percent = |part: f64| format!("{:.2} %", 100.0 * part);
     let better = if key.more_is_better() { "above" } else { "below" };
-    let none = format!("none {better} {} anywhere on the outline", short(bound));
-    match (proof.proved, proof.gap.is_finite()) {
-        (true, _) => format!("proved: {none}; no family beats its row by more than {:.2} % of that", 100.0 * proof.gap),
+    let none = format!("none {better} {} anywhere on the outline ({})", short(bound), percent(proof.gap));
+    let list = match (proof.list_proved, proof.list_gap.is_finite()) {
+        (true, _) => format!("no family beats its row by more than {} of the best score", percent(proof.list_gap)),
         (false, true) => {
-            let (open, asked) = (100.0 * proof.gap, 100.0 * gap);
-            format!("not proved to {asked} %: {none}, {open:.2} % from the list; raise --budget to close the gap")
+            let left = percent(proof.list_gap);
+            format!("below the first row, families may beat theirs by {left} of the best score; --budget closes that")
         }
-        (false, false) => format!("not proved: {none}, and families may be missing; raise --budget to find them"),
+        (false, false) => "below the first row, families may be missing; a larger --budget finds them".to_owned(),
+    };
+    if proof.proved {
+        format!("proved: {none}; {list}")
+    } else {
+        format!("not proved to {}: {none}; a larger --budget closes the gap", percent(asked))
     }
 }
 

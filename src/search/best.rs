@@ -77,11 +77,14 @@ pub struct Proved {
     pub best_bound: Option<f64>,
     /// No placement of a family that is not in the list scores better than this; nothing where all that are grasps are in it.
     pub rest_bound: Option<f64>,
+    /// How much better than the first row any placement can be, as a part of its score. Infinite when nothing is listed and
+    /// something may be there.
+    pub best_gap: f64,
     /// How much better than its row a family in the list can be, at most, as a part of the best score or of its own where
     /// that is larger; than the first row, any family; than the last row of a full list, any family that is not in it. Infinite
     /// when the list is not full and a family may be missing that reaches this part of the best score.
     pub gap: f64,
-    /// The gap is no wider than was asked for.
+    /// That gap is no wider than was asked for.
     pub proved: bool,
     /// All was settled before the budget ended.
     pub complete: bool,

@@ -16,7 +16,7 @@ use std::sync::atomic::{AtomicBool, Ordering};
 pub const USUAL_GAP: f64 = 0.01;
 
 /// Candidate sets of the budget that one box of a proof counts for: about as long a look, measured.
-const SETS_A_BOX: u64 = 16;
+const SETS_A_BOX: u64 = 8;
 
 /// What a ranking lists.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -72,16 +72,28 @@ pub struct Ranking {
 pub struct Proof {
     /// No placement scores better than this; nothing where no placement is a grasp at all.
     pub best_bound: Option<f64>,
-    /// How much better than its row any family of the list can be, as a part of the best score; see [`Proved::gap`]. Infinite
-    /// while something may be missing.
+    /// How much better than the first row any placement can be, as a part of its score; infinite where nothing is listed and
+    /// something may be there.
     pub gap: f64,
-    /// The gap is no wider than was asked for.
+    /// That gap is no wider than was asked for.
     pub proved: bool,
+    /// How much better than its row any family of the list can be, as a part of the best score; see [`Proved::gap`]. Infinite
+    /// while a family may be missing.
+    pub list_gap: f64,
+    /// That gap, too, is no wider than was asked for.
+    pub list_proved: bool,
 }
 
 impl Proof {
-    fn of(proved: &Proved) -> Self {
-        Self { best_bound: proved.best_bound, gap: proved.gap, proved: proved.proved }
+    fn of(proved: &Proved, asked: f64) -> Self {
+        let reached = proved.best_gap <= asked * (1.0 + 1e-6) + 1e-6;
+        Self {
+            best_bound: proved.best_bound,
+            gap: proved.best_gap,
+            proved: reached || proved.proved,
+            list_gap: proved.gap,
+            list_proved: proved.proved,
+        }
     }
 }
 
@@ -133,7 +145,8 @@ pub struct Wanted<'a> {
     pub most: usize,
     /// How much better than its row a family may be, as a part of the best score.
     pub gap: f64,
-    /// Placements to begin with, such as the list at another friction; they shorten the proof and change nothing else.
+    /// Placements to begin with, such as the list at another friction: they shorten the proof. What is proved holds with any;
+    /// which of several grasps within the gap is listed may depend on them.
     pub known: &'a [Vec<Spot>],
 }
 
@@ -191,7 +204,7 @@ pub(super) fn rank_with_snapshots(
     };
     let more = || Ok(spots(sampled(most, sets, observe, 0)?).collect());
     let proved = best::prove_or(scene, &ask, cancel, &tell, snapshot_rows.min(most), &more)?;
-    let proof = Proof::of(&proved);
+    let proof = Proof::of(&proved, gap);
     if proved.grasps.is_empty() {
         let told = sampled(1, sets, observe, 0)?;
         return Ok(Ranking { proof: Some(proof), grasps: Vec::new(), ..told });

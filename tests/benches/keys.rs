@@ -3,6 +3,7 @@
 //! The program runs on a pseudo-terminal of 120 x 40. Every key is timed from its writing to the end mark of the frame that shows
 //! what it did. `KEYS=2000` types more of them, `THREADS=1` leaves a core to the rest.
 #![allow(clippy::unwrap_used, clippy::expect_used, reason = "a measurement that cannot go on has failed")]
+#![allow(clippy::print_stdout, reason = "a bench prints what it measured")]
 
 #[path = "../pty/mod.rs"]
 mod pty;

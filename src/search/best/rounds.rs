@@ -20,6 +20,8 @@ const ROUND: [usize; 2] = [16, 512];
 const BOXES_A_ROUND: u64 = 128;
 /// Families screened by directions for each box of the budget.
 const SCREENED_A_BOX: u64 = 1000;
+/// First looks that count as one box: most families show at once that they are behind.
+const LOOKS_A_BOX: u64 = 8;
 /// Progress is told so many times before a list goes with it: a short search needs none.
 const FIRST_SNAPSHOT: u32 = 4;
 /// Boxes the polishing of the first row may take: one for so many looked at before, and so many more.
@@ -216,7 +218,7 @@ impl<'a> Search<'a> {
 
     /// Bounds families as a whole, as far as the budget goes.
     fn look_at(&mut self, families: &[Family], level: f64) -> Result<(), Cancelled> {
-        let left = usize::try_from(self.left()).unwrap_or(usize::MAX);
+        let left = usize::try_from(self.left().saturating_mul(LOOKS_A_BOX)).unwrap_or(usize::MAX);
         let (now, never) = families.split_at(left.min(families.len()));
         if !never.is_empty() {
             self.cut_short();
@@ -238,7 +240,7 @@ impl<'a> Search<'a> {
                 self.dropped = self.dropped.max(bound.merit);
             }
         }
-        self.boxes += now.len() as u64;
+        self.boxes += (now.len() as u64).div_ceil(LOOKS_A_BOX);
         Ok(())
     }
 
@@ -496,6 +498,8 @@ impl<'a> Search<'a> {
         let best = rows.iter().map(|row| row.merit).fold(f64::NEG_INFINITY, f64::max);
         let own = rows.iter().map(|row| goal.gap_between(row.merit, row.bound, best));
         let first = rows.first().map(|row| goal.gap_between(row.merit, best_bound, best));
+        // Where nothing is listed, nothing may be there to be listed.
+        let best_gap = first.unwrap_or(if rest <= goal.enough(None, None) { 0.0 } else { f64::INFINITY });
         let behind = match rows.last() {
             Some(last) if full => goal.gap_between(last.merit, rest, best),
             // Every family there is should be in the list.
@@ -510,6 +514,7 @@ impl<'a> Search<'a> {
             grasps: rows.into_iter().map(grasp).collect(),
             best_bound: told(best_bound),
             rest_bound: told(rest),
+            best_gap,
             gap,
             proved: gap <= goal.gap() + ROUNDING,
             complete: !self.spent,

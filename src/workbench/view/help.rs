@@ -40,7 +40,8 @@ const NUMBERS: [(&str, &str); 14] = [
     ),
     (
         "within, GAP",
-        "no placement anywhere on the outline beats its row by more than this part of the score; GAP: not proved to 1 %",
+        "no placement anywhere on the outline beats its row by more than this part of the best score; best within: this holds of \
+         the first row alone; GAP: not proved to 1 %",
     ),
     (
         "edges",

@@ -44,7 +44,8 @@ fn title(state: &State) -> (String, String) {
     let sample = match (&state.job, &ranking.proof) {
         (Job::Running(_), _) => "so far".to_owned(),
         (_, Some(proof)) if ranking.grasps.is_empty() && proof.proved => "proved".to_owned(),
-        (_, Some(proof)) if proof.proved => format!("within {}", number::percent(proof.gap)),
+        (_, Some(proof)) if proof.list_proved => format!("within {}", number::percent(proof.list_gap)),
+        (_, Some(proof)) if proof.proved => format!("best within {}", number::percent(proof.gap)),
         (_, Some(proof)) if proof.gap.is_finite() => format!("GAP {}", number::percent(proof.gap)),
         (_, Some(_)) => "GAP OPEN".to_owned(),
         (_, None) if !ranking.complete => "sample".to_owned(),
