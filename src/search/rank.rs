@@ -17,6 +17,19 @@ pub const USUAL_GAP: f64 = 0.01;
 
 /// Candidate sets of the budget that one box of a proof counts for: about as long a look, measured.
 const SETS_A_BOX: u64 = 8;
+/// The same with load cases: a few programs more.
+const SETS_A_BOX_WITH_LOADS: u64 = 16;
+/// The same by friction: the programs are solved again at every friction tried.
+const SETS_A_BOX_BY_FRICTION_WITH_LOADS: u64 = 256;
+
+/// Candidate sets of the budget that one box counts for.
+fn sets_a_box(scene: &Scene, key: Key) -> u64 {
+    match (scene.cases().is_empty(), key) {
+        (true, _) => SETS_A_BOX,
+        (false, Key::Friction) => SETS_A_BOX_BY_FRICTION_WITH_LOADS,
+        (false, _) => SETS_A_BOX_WITH_LOADS,
+    }
+}
 
 /// What a ranking lists.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
@@ -194,13 +207,14 @@ pub(super) fn rank_with_snapshots(
     if snapshot.is_some() {
         observe(Progress { done: first_sets, total: sets, gap: None, snapshot: snapshot.map(Arc::new) });
     }
-    let budget = (sets / SETS_A_BOX).max(1);
+    let sets_a_box = sets_a_box(scene, key);
+    let budget = (sets / sets_a_box).max(1);
     let ask = Ask { key, want: most, gap, budget, known: &begin };
     let tell = |proving: Proving| {
         let Proving { boxes, budget, gap, .. } = proving;
         let snapshot =
             proving.grasps.map(|grasps| Arc::new(Ranking { families: grasps.len(), grasps, ..Ranking::default() }));
-        observe(Progress { done: boxes * SETS_A_BOX, total: budget * SETS_A_BOX, gap, snapshot });
+        observe(Progress { done: boxes * sets_a_box, total: budget * sets_a_box, gap, snapshot });
     };
     let more = || Ok(spots(sampled(most, sets, observe, 0)?).collect());
     let proved = best::prove_or(scene, &ask, cancel, &tell, snapshot_rows.min(most), &more)?;

@@ -12,7 +12,7 @@ mod common;
 
 use common::Dice;
 use holdwright::hand::FingerCount;
-use holdwright::search::{Ask, Cancel, Key, Listing, Proved, Scene, Setup, prove, sample};
+use holdwright::search::{Ask, Cancel, Key, Listing, Proved, Scene, Setup, Spot, Wanted, prove, rank, sample};
 use std::sync::Arc;
 use std::time::Instant;
 
@@ -101,6 +101,41 @@ fn list(edges: usize, pins: usize, want: usize) {
     }
 }
 
+/// A knob turned step by step, as in the workbench: each ranking begins with the list before it.
+fn steps(edges: usize, pins: usize) {
+    let first = scene(edges, pins);
+    let ranked = |scene: &Scene, most: usize, known: &[Vec<Spot>]| {
+        let wanted = Wanted { known, ..Wanted::families(Key::Quality, most) };
+        let start = Instant::now();
+        let ranking = rank(scene, &wanted, &Cancel::default(), &|_| {}).unwrap();
+        let known: Vec<Vec<Spot>> = ranking.grasps.iter().map(|row| row.grasp.spots.clone()).collect();
+        (known, start.elapsed().as_secs_f64(), ranking.proof.is_some_and(|proof| proof.list_proved))
+    };
+    for most in [20, 200] {
+        let (mut known, cold, _) = ranked(&first, most, &[]);
+        let mut times = Vec::new();
+        let mut all_proved = true;
+        for step in 1..=15 {
+            let mut setup = first.setup().clone();
+            setup.friction.mu += 0.01 * f64::from(step);
+            setup.search.budget = 2_000_000;
+            let turned = Scene::new(Arc::clone(first.part()), setup).unwrap();
+            let (next, time, proved) = ranked(&turned, most, &known);
+            known = next;
+            times.push(time);
+            all_proved &= proved;
+        }
+        times.sort_by(f64::total_cmp);
+        println!(
+            "{pins} pins on {edges} edges, the best {most} families: {:.1} ms at first, {:.1} ms ({:.1} to {:.1}) for a step of mu, all proved: {all_proved}",
+            1e3 * cold,
+            1e3 * times[times.len() / 2],
+            1e3 * times[0],
+            1e3 * times[times.len() - 1],
+        );
+    }
+}
+
 fn main() {
     // `cargo test --benches` runs this too: once round, on the small ones.
     let timed = std::env::args().any(|argument| argument == "--bench");
@@ -112,6 +147,9 @@ fn main() {
         if timed || edges <= 20 && pins < 5 {
             run(edges, pins, if timed { 5 } else { 1 });
         }
+    }
+    if timed && only.as_ref().is_none_or(|only| only == "steps") {
+        steps(60, 3);
     }
     for (pins, edges) in [(3, 60), (4, 20)].into_iter().filter(|_| timed && only.is_none()) {
         for want in [1, 20] {

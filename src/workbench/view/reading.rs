@@ -275,7 +275,7 @@ impl Page<'_> {
             Key::LoadMargin => number::times(Some(value)),
         };
         let limit = if shown.order.key.more_is_better() { "at most" } else { "at least" };
-        let meaning = format!("is the {word} anywhere on these edges; {} on the whole outline", told(all));
+        let meaning = format!("{word} on these edges; {limit} {} anywhere", told(all));
         self.tell("proved", &format!("{limit} {}", told(family)), self.state.look.title(), &meaning);
     }
 

@@ -80,9 +80,7 @@ fn title(state: &State) -> (String, String) {
             count if count as usize >= MOST_ROWS => format!("best {count} families"),
             count => number::count(count, "family", "families"),
         },
-        Listing::Members => {
-            number::count(ranking.closed.saturating_sub(ranking.below_floors), "closed grasp", "closed grasps")
-        }
+        Listing::Members => number::count(ranking.closed.saturating_sub(ranking.below_floors), "grasp", "grasps"),
     };
     (title, right)
 }
