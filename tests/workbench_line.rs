@@ -5,7 +5,7 @@
 mod pty;
 
 use holdwright::file::read_grasps;
-use pty::{FAST, PART, Pty, SLOW, count, folder, recovery, size, some};
+use pty::{FAST, PART, Pty, SLOW, count, folder, recovery, size};
 use std::sync::atomic::Ordering;
 use std::thread;
 use std::time::Duration;
@@ -130,12 +130,7 @@ fn two_hundred_sizes_in_a_row_end_in_a_whole_screen() {
         thread::sleep(Duration::from_millis(5));
     }
     assert!(pty.child.try_wait().unwrap().is_none(), "ended");
-    pty.heard.lock().unwrap().parser.screen_mut().set_size(some(30), some(100));
-    pty.master.as_ref().unwrap().resize(size(100, 30)).unwrap();
-    pty.wait("the bench at its last size", |pty| {
-        let screen = pty.screen();
-        screen.lines().count() == 30 && screen.contains("Enter shows all") && screen.contains("? help")
-    });
+    pty.settles_at_another_size();
     pty.send("q");
     assert!(pty.ended());
     pty.assert_restored();

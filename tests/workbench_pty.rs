@@ -7,7 +7,7 @@ mod pty;
 
 use holdwright::file::read_grasps;
 use portable_pty::native_pty_system;
-use pty::{PATIENCE, Pty, count, folder, recovery, saved, size, some};
+use pty::{PATIENCE, Pty, count, folder, recovery, saved, size};
 use std::sync::Arc;
 use std::sync::atomic::Ordering;
 use std::thread;
@@ -261,12 +261,7 @@ fn any_size_of_the_window_is_lived_through() {
         thread::sleep(Duration::from_millis(150));
         assert!(pty.child.try_wait().unwrap().is_none(), "ended at {columns}x{rows}");
     }
-    pty.heard.lock().unwrap().parser.screen_mut().set_size(some(30), some(100));
-    pty.master.as_ref().unwrap().resize(size(100, 30)).unwrap();
-    pty.wait("the bench at its new size", |pty| {
-        let screen = pty.screen();
-        screen.lines().count() == 30 && screen.contains("Enter shows all") && screen.contains("? help")
-    });
+    pty.settles_at_another_size();
     pty.send("q");
     assert!(pty.ended());
     pty.assert_restored();

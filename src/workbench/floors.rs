@@ -59,7 +59,7 @@ pub const ROWS: [FloorRow; 4] = [
 
 /// The value of a floor.
 pub fn value(state: &State, row: usize) -> f64 {
-    let mut floors = state.setup().floors.clone();
+    let mut floors = state.setup().floors;
     ROWS.get(row).map_or(0.0, |own| *(own.value)(&mut floors))
 }
 

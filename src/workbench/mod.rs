@@ -21,6 +21,7 @@ pub mod picture;
 mod recovery;
 pub mod reload;
 mod run;
+mod shown;
 pub mod start;
 pub mod state;
 mod tables;

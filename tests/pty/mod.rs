@@ -158,6 +158,17 @@ impl Pty {
         });
     }
 
+    /// Takes another size, and waits until the bench is whole there.
+    pub fn settles_at_another_size(&self) {
+        let (columns, rows) = (100, 30);
+        self.heard.lock().unwrap().parser.screen_mut().set_size(some(rows), some(columns));
+        self.master.as_ref().unwrap().resize(size(columns, rows)).unwrap();
+        self.wait("the bench at another size", |pty| {
+            let screen = pty.screen();
+            screen.lines().count() == 30 && screen.contains("Enter shows all") && screen.contains("? help")
+        });
+    }
+
     /// Waits until nothing has come for a while.
     pub fn wait_quiet(&self) {
         let (start, mut last, mut since) = (Instant::now(), self.bytes(), Instant::now());
