@@ -123,22 +123,33 @@ impl Way {
     }
 }
 
+/// How far up a grasp is, how good there, and what tells equals apart.
+type Merit = (u8, f64, f64);
+
 /// How good a grasp is on the way up: fingers that do not fit, then open ones by how near they are to closing, then those
-/// that do not hold every load, then by the key; larger is better.
-fn merit(scene: &Scene, key: Key, spots: &[Spot]) -> Option<(u8, f64)> {
+/// below a floor, then those that do not hold every load, then by the key; larger is better.
+fn merit(scene: &Scene, key: Key, spots: &[Spot]) -> Option<Merit> {
     let grasp = scene.grasp(spots).ok()?;
     if !grasp.fits() {
         let off = grasp.rooms_mm.iter().filter(|room| **room < 0.0).count() + grasp.too_near.len();
-        return Some((0, -(off as f64)));
+        return Some((0, -(off as f64), 0.0));
     }
     let wrenches = scene.wrenches(&grasp);
-    let signed = quality::planar(&wrenches).signed_quality;
+    let planar = quality::planar(&wrenches);
+    let signed = planar.signed_quality;
     if signed <= MARGINAL {
-        return Some((1, signed));
+        return Some((1, signed, 0.0));
+    }
+    // Equals are told apart by placement tolerance, as in every list; as on straight edges, which is near enough here.
+    let closure_mm = planar.torque_up.min(planar.torque_down) * scene.frame().scale_mm;
+    let place_mm = grasp.rooms_mm.iter().copied().fold(closure_mm, f64::min);
+    let floors = &scene.setup().floors;
+    if signed < floors.quality || place_mm < floors.placement_mm {
+        return Some((2, place_mm.min(floors.placement_mm), signed));
     }
     let holding = scene.holding(&grasp, &wrenches);
     if holding.as_ref().is_some_and(|holding| !holding.held()) {
-        return Some((2, signed));
+        return Some((3, signed, place_mm));
     }
     let value = match key {
         Key::Quality => signed,
@@ -156,11 +167,12 @@ fn merit(scene: &Scene, key: Key, spots: &[Spot]) -> Option<(u8, f64)> {
             }
         }
     };
-    Some((3, value))
+    Some((4, value, place_mm))
 }
 
-fn better(a: (u8, f64), b: (u8, f64)) -> bool {
-    a.0 > b.0 || a.0 == b.0 && a.1 > b.1 + 1e-9 * (1.0 + b.1.abs())
+fn better(a: Merit, b: Merit) -> bool {
+    let above = |a: f64, b: f64| a > b + 1e-9 * (1.0 + b.abs());
+    a.0 > b.0 || a.0 == b.0 && (above(a.1, b.1) || !above(b.1, a.1) && above(a.2, b.2))
 }
 
 /// Steps of a climb get half as long so many times.
@@ -225,7 +237,7 @@ pub fn with_one_more(scene: &Scene, key: Key, spots: &[Spot]) -> Option<Vec<Spot
         return None;
     }
     let spacing_mm = scene.setup().search.spacing_for(scene.part());
-    let mut best: Option<(Vec<Spot>, (u8, f64))> = None;
+    let mut best: Option<(Vec<Spot>, Merit)> = None;
     for stretch in scene.stretches() {
         for along_mm in sites::positions(stretch.from_mm, stretch.to_mm, spacing_mm) {
             let mut tried = spots.to_vec();

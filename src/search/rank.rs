@@ -147,6 +147,10 @@ pub struct Cancelled;
 /// Candidate sets sampled before a proof: good placements to begin with, and among equals those with the best tie-breaks.
 const FIRST_SETS: u64 = 100_000;
 
+/// Families looked for, however few are listed: of those that are equal on the key the tie-breaks choose, and a short list is
+/// the beginning of a longer one.
+const LEAST_WANTED: usize = 64;
+
 /// What is wanted of a ranking.
 #[derive(Debug, Clone, Copy)]
 pub struct Wanted<'a> {
@@ -202,14 +206,15 @@ pub(super) fn rank_with_snapshots(
     let spots = |ranking: Ranking| ranking.grasps.into_iter().map(|listed| listed.grasp.spots);
     let mut begin = known.to_vec();
     let first_sets = sets.min(FIRST_SETS);
-    let (first, snapshot) = sample::leads(scene, key, most, first_sets, cancel, snapshot_rows.min(most))?;
+    let (first, snapshot) =
+        sample::leads(scene, key, most.max(LEAST_WANTED), first_sets, cancel, snapshot_rows.min(most))?;
     begin.extend(first);
     if snapshot.is_some() {
         observe(Progress { done: first_sets, total: sets, gap: None, snapshot: snapshot.map(Arc::new) });
     }
     let sets_a_box = sets_a_box(scene, key);
     let budget = (sets / sets_a_box).max(1);
-    let ask = Ask { key, want: most, gap, budget, known: &begin };
+    let ask = Ask { key, want: most.max(LEAST_WANTED), gap, budget, known: &begin };
     let tell = |proving: Proving| {
         let Proving { boxes, budget, gap, .. } = proving;
         let snapshot =
@@ -223,7 +228,8 @@ pub(super) fn rank_with_snapshots(
         let told = sampled(1, sets, observe, 0)?;
         return Ok(Ranking { proof: Some(proof), grasps: Vec::new(), ..told });
     }
-    let rows = proved.grasps.into_iter().map(|row| Listed { bound: Some(row.bound), ..row.listed });
+    let families = proved.grasps.len();
+    let rows = proved.grasps.into_iter().take(most).map(|row| Listed { bound: Some(row.bound), ..row.listed });
     let grasps: Vec<Listed> = rows.collect();
     Ok(Ranking {
         proof: Some(proof),
@@ -231,7 +237,7 @@ pub(super) fn rank_with_snapshots(
         closed: proved.closed,
         inconclusive: proved.inconclusive,
         complete: proved.complete,
-        families: grasps.len(),
+        families,
         grasps,
         ..Ranking::default()
     })

@@ -373,12 +373,12 @@ pub static TABLE: &[Row] = &[
     row(A::Help, S::Bench, &[C('?')], "help", "help: every key and every number", always),
     row(A::Quit, S::Bench, &[C('q')], "quit", "leave; asks when marks are unsaved", always),
     row(A::Down, S::Bench, &[C('j'), Key::Down], "down", "next grasp", any_row),
-    row(A::Up, S::Bench, &[C('k'), Key::Up], "up", "grasp before", any_row),
+    row(A::Up, S::Bench, &[C('k'), Key::Up], "", "grasp before", any_row),
     row(A::OpenReading, S::Bench, &[Key::Enter], "read", "the whole reading of the grasp", any_reading),
-    row(A::Mark, S::Bench, &[C('m'), C(' ')], "mark", "mark the grasp, or take its mark away", any_row),
+    row(A::Mark, S::Bench, &[C('m'), C(' ')], "mark", "mark the grasp, or take its mark away", any_reading),
     row(A::Save, S::Bench, &[C('s')], "save", "save marks, new names and removals to the grasp file", any_unsaved),
     row(A::MuUp, S::Bench, &[C('l'), Key::Right, C('+')], "mu+", "mu up by 0.01", always),
-    row(A::MuDown, S::Bench, &[C('h'), Key::Left, C('-')], "mu-", "mu down by 0.01", always),
+    row(A::MuDown, S::Bench, &[C('h'), Key::Left, C('-')], "", "mu down by 0.01", always),
     row(A::OpenLoads, S::Bench, &[C('L')], "loads", "list the load cases: make them larger, smaller, add some", always),
     row(A::Show(Picture::Fingers), S::Bench, &[C('1')], "to 7 picture", "picture: fingers with their normals", always),
     row(A::Show(Picture::Forces), S::Bench, &[C('2')], "", "picture: the finger forces that hold a load case", always),
@@ -434,9 +434,9 @@ pub static TABLE: &[Row] = &[
         picture::has_contacts,
     ),
     row(A::FingersMore, S::Bench, &[C('f')], "finger+", "one finger more", always),
-    row(A::FingersFewer, S::Bench, &[C('F')], "finger-", "one finger fewer", always),
+    row(A::FingersFewer, S::Bench, &[C('F')], "", "one finger fewer", always),
     row(A::LimitUp, S::Bench, &[C('u')], "limit+", "force limit up a step (about 12 %)", always),
-    row(A::LimitDown, S::Bench, &[C('U')], "limit-", "force limit down a step", always),
+    row(A::LimitDown, S::Bench, &[C('U')], "", "force limit down a step", always),
     row(A::SortNext, S::Bench, &[C('o')], "order", "sort by the next key", always),
     row(A::Listing, S::Bench, &[C('v')], "members", "list families' best grasps, or every grasp", always),
     row(
@@ -447,14 +447,21 @@ pub static TABLE: &[Row] = &[
         "change the grasp by hand: move, add, take away, lock fingers",
         any_reading,
     ),
-    row(A::Beside, S::Bench, &[C('x')], "beside", "set the grasp beside others, or take it away from there", any_row),
+    row(
+        A::Beside,
+        S::Bench,
+        &[C('x')],
+        "beside",
+        "set the grasp beside others, or take it away from there",
+        any_reading,
+    ),
     row(A::OpenCompare, S::Bench, &[C('X')], "compare", "compare the grasps set beside each other", always),
     row(A::OnlyUnbeaten, S::Bench, &[C('^')], "", "list only rows that no other beats, or all", always),
     row(A::OnEdge, S::Bench, &[C('/')], "edge", "list only grasps with a finger on an edge; empty lists all", always),
     row(A::OpenFloors, S::Bench, &[C('_')], "floors", "list the floors a grasp must reach: change them", always),
     row(A::Cones, S::Bench, &[C('c')], "cones", "friction cones on the outline", always),
-    row(A::Name, S::Bench, &[C('n')], "name", "mark the grasp and name it", any_row),
-    row(A::Note, S::Bench, &[C('w')], "why", "mark the grasp and note why", any_row),
+    row(A::Name, S::Bench, &[C('n')], "name", "mark the grasp and name it", any_reading),
+    row(A::Note, S::Bench, &[C('w')], "why", "mark the grasp and note why", any_reading),
     row(
         A::OpenMarks,
         S::Bench,
@@ -507,10 +514,13 @@ pub static TABLE: &[Row] = &[
     row(A::Close, S::Marks, &[Key::Esc, C('q')], "close", "", always),
     row(A::Down, S::Marks, &[C('j'), Key::Down], "down", "", always),
     row(A::Up, S::Marks, &[C('k'), Key::Up], "up", "", always),
-    row(A::Accept, S::Marks, &[Key::Enter], "find in the list", "", any_mark),
+    row(A::Accept, S::Marks, &[Key::Enter], "show", "", any_mark),
     row(A::Name, S::Marks, &[C('n')], "rename", "", any_mark),
     row(A::Note, S::Marks, &[C('w')], "why", "", any_mark),
-    row(A::Mark, S::Marks, &[C('x'), C('m'), C(' ')], "remove", "", any_mark),
+    row(A::ByHand, S::Marks, &[C('b')], "by hand", "", any_mark),
+    row(A::Mark, S::Marks, &[C('d'), C('m'), C(' '), Key::Delete], "remove", "", any_mark),
+    row(A::Beside, S::Marks, &[C('x')], "beside", "", any_mark),
+    row(A::OpenCompare, S::Marks, &[C('X')], "compare", "", any_mark),
     row(A::BringBack, S::Marks, &[C('u')], "bring back", "", any_lifted),
     row(A::Save, S::Marks, &[C('s')], "save", "", any_unsaved),
     row(A::Accept, S::Pairs, &[Key::Enter], "take", "", always),
@@ -635,16 +645,51 @@ pub static TABLE: &[Row] = &[
     row(A::Interrupt, S::Any, &[Ctrl('c')], "", "leave; twice leaves at once, marks go to a recovery file", always),
 ];
 
+/// Actions of the bench that also work with a grasp in hand, by the same keys where those are free there.
+fn works_in_hand(action: Action) -> bool {
+    matches!(
+        action,
+        Action::Show(_)
+            | Action::NextSide
+            | Action::ZoomIn
+            | Action::ZoomOut
+            | Action::NextContact
+            | Action::MuEnter
+            | Action::Marker
+            | Action::CellShape
+            | Action::NextPanel
+    )
+}
+
 /// What a key does now, if anything.
 pub fn action_of(state: &State, key: Key) -> Option<Action> {
+    row_of(state, key).filter(|row| (row.allowed)(state)).map(|row| row.action)
+}
+
+/// The row of a key here, allowed now or not; of several the one that is.
+pub(super) fn row_of(state: &State, key: Key) -> Option<&'static Row> {
     let scope = Scope::of(state);
-    let holds = |row: &&Row| row.keys.contains(&key) && (row.allowed)(state);
-    TABLE
-        .iter()
-        .filter(|row| scope.takes(row))
-        .find(holds)
-        .or_else(|| TABLE.iter().filter(|row| row.scope == Scope::Any).find(holds))
-        .map(|row| row.action)
+    let has = |row: &&Row| row.keys.contains(&key);
+    let here = || TABLE.iter().filter(move |row| scope.takes(row)).filter(has);
+    let in_hand = || TABLE.iter().filter(|row| row.scope == Scope::Bench && works_in_hand(row.action)).find(has);
+    here()
+        .find(|row| (row.allowed)(state))
+        .or_else(|| here().next())
+        .or_else(|| in_hand().filter(|_| scope == Scope::Hand))
+        .or_else(|| TABLE.iter().filter(|row| row.scope == Scope::Any).find(has))
+}
+
+/// Why a row's key does nothing now.
+pub(super) fn refusal(row: &Row) -> &'static str {
+    match row.action {
+        Action::Save => "nothing is unsaved",
+        Action::OpenMarks => "there are no marks yet; m makes one",
+        Action::OpenMaterials => "the part file gives the mass",
+        Action::Up | Action::Down | Action::PageUp | Action::PageDown | Action::First | Action::Last => {
+            "nothing is listed"
+        }
+        _ => "no grasp to do it with",
+    }
 }
 
 /// The rows the footer may show now, most useful first.

@@ -26,10 +26,6 @@ pub struct Placed {
 }
 
 impl Placed {
-    fn new(spots: Vec<Spot>) -> Self {
-        Self { locked: vec![false; spots.len()], spots }
-    }
-
     /// The places of the fingers that stay.
     pub fn kept(&self) -> Vec<Spot> {
         let kept = self.spots.iter().zip(&self.locked).filter(|(_, locked)| **locked);
@@ -95,27 +91,41 @@ pub fn in_hand(state: &State) -> bool {
     state.layers.contains(&Layer::Hand)
 }
 
-/// Takes the selected grasp in hand. What was in hand before can be had back by undoing.
+/// Takes the grasp that is read in hand.
 pub(super) fn open(state: &mut State) {
-    let Some(reading) = state.reading.clone() else { return };
-    let spots = reading.grasp.spots.clone();
-    let began = Some(reading);
-    match &mut state.hand {
-        Some(hand) => {
-            if hand.now.spots != spots {
-                // Fingers locked before stay locked where the grasp has them.
-                let locked = hand.now.kept();
-                let mut next = Placed::new(spots);
-                for (locked_here, spot) in next.locked.iter_mut().zip(&next.spots) {
-                    *locked_here = locked.contains(spot);
-                }
-                hand.take(next);
-            }
-            hand.began = began;
+    if let Some(reading) = state.reading.clone() {
+        take_up(state, reading);
+    }
+}
+
+/// Takes the grasp at these places in hand, listed or not.
+pub(super) fn open_at(state: &mut State, spots: &[Spot]) {
+    match Reading::of(&state.order.scene, spots) {
+        Some(reading) => {
+            state.layers.clear();
+            take_up(state, reading);
+            state.read();
         }
+        None => state.message = Some("this part has no such places".to_owned()),
+    }
+}
+
+/// What was in hand before can be had back by undoing, as long as it began as the same grasp.
+fn take_up(state: &mut State, reading: Reading) {
+    let spots = reading.grasp.spots.clone();
+    let kept = state.order.scene.kept();
+    let locked: Vec<bool> = spots.iter().map(|spot| kept.contains(spot)).collect();
+    let next = Placed { spots, locked };
+    let began_here = |hand: &ByHand| {
+        let began = hand.began.as_ref().is_some_and(|began| began.grasp.spots == next.spots);
+        began || hand.now.spots == next.spots
+    };
+    match state.hand.as_mut().filter(|hand| began_here(hand)) {
+        Some(hand) => hand.take(next),
         None => {
-            let now = Placed::new(spots);
-            state.hand = Some(ByHand { now, began, picked: 0, step: FIRST_STEP, past: Vec::new(), future: Vec::new() });
+            let step = state.hand.as_ref().map_or(FIRST_STEP, |hand| hand.step);
+            let began = Some(reading);
+            state.hand = Some(ByHand { now: next, began, picked: 0, step, past: Vec::new(), future: Vec::new() });
         }
     }
     state.layers.push(Layer::Hand);
@@ -195,10 +205,11 @@ pub(super) fn act(state: &mut State, action: Action) -> Vec<Effect> {
         Action::MuUp => return knobs::step_mu(state, 100.0, 1.0),
         Action::MuDown => return knobs::step_mu(state, 100.0, -1.0),
         Action::Cones => state.cones = !state.cones,
-        Action::Help => state.layers.push(Layer::Help { top: 0 }),
+        Action::Help => state.layers.push(Layer::Help { top: super::view::help_in_hand(state) }),
         Action::OpenReading => state.layers.push(Layer::Reading { top: 0 }),
         Action::Close => close(state),
-        _ => {}
+        // Pictures and the like work as on the bench.
+        other => return update::bench(state, other),
     }
     Vec::new()
 }

@@ -111,7 +111,28 @@ pub(super) fn step_mu(state: &mut State, per_unit: f64, way: f64) -> Vec<Effect>
     // A hair is taken off so that 0.29999999999999999 counts as 0.3.
     let next = if way > 0.0 { (mu + 1e-6).floor() + 1.0 } else { (mu - 1e-6).ceil() - 1.0 };
     let next = (next / per_unit).clamp(0.0, crate::part::MU_LARGEST);
-    turn_or_say(state, |setup| setup.friction.mu = next)
+    set_mu(state, next).unwrap_or_else(|fault| {
+        state.message = Some(fault);
+        Vec::new()
+    })
+}
+
+/// Sets mu. Sliding friction is never above it: it goes down with mu, and back up to what the workbench was opened with.
+///
+/// # Errors
+/// Why mu cannot be so; it stays as it was.
+pub(super) fn set_mu(state: &mut State, mu: f64) -> Result<Vec<Effect>, String> {
+    let opened = state.opened.friction.sliding;
+    let sliding = state.setup().friction.sliding.map(|now| opened.unwrap_or(now).min(mu));
+    let told = sliding.filter(|sliding| opened.is_some_and(|opened| *sliding < opened));
+    let effects = turn(state, |setup| {
+        setup.friction.mu = mu;
+        setup.friction.sliding = sliding.filter(|sliding| *sliding >= 0.0);
+    })?;
+    if let Some(sliding) = told {
+        state.message = Some(format!("sliding friction goes down with mu, to {sliding}"));
+    }
+    Ok(effects)
 }
 
 pub(super) fn step_fingers(state: &mut State, way: isize) -> Vec<Effect> {
@@ -234,7 +255,7 @@ pub(super) fn next_marker(state: &mut State) {
     state.message = Some(if state.look.marker == Marker::Ascii || state.look.utf8 {
         format!("drawn with {word}")
     } else {
-        format!("drawn with {word}, but the locale is not UTF-8: if the outline is rubbish, press p again")
+        format!("drawn with {word}; p again if it is rubbish: the locale is not UTF-8")
     });
 }
 

@@ -1,6 +1,8 @@
 //! Marks: made, taken away, brought back, listed and handed over to be saved.
 
 use super::action::Action;
+use super::by_hand;
+use super::compare;
 use super::kept;
 use super::state::{EntryKind, Layer, Mark, Reading, State};
 use super::update::{self, Effect};
@@ -11,7 +13,7 @@ use std::sync::Arc;
 
 /// Marks the selected grasp, or takes its mark away.
 pub(super) fn toggle(state: &mut State) {
-    if let Some(spots) = state.row().map(|row| row.grasp.spots.clone()) {
+    if let Some(spots) = state.spots() {
         toggle_at(state, &spots);
     }
 }
@@ -187,15 +189,25 @@ pub(super) fn act(state: &mut State, action: Action) -> Vec<Effect> {
                 update::open_entry(state, kind);
             }
         }
-        Action::Accept => {
-            let spots = state.marks.get(*at).map(|mark| mark.keep.grasp.spots.clone());
+        Action::Accept | Action::ByHand => {
+            let at = *at;
+            let Some(spots) = state.marks.get(at).map(|mark| mark.keep.grasp.spots.clone()) else { return Vec::new() };
             let rows = state.shown.as_ref().map_or(&[][..], |shown| &shown.ranking.grasps);
-            match spots.and_then(|spots| rows.iter().position(|row| row.grasp.spots == spots)) {
+            let row = rows.iter().position(|row| row.grasp.spots == spots);
+            match row.filter(|_| action == Action::Accept) {
                 Some(row) => {
                     state.layers.pop();
                     state.select(row);
                 }
-                None => state.message = Some("not in the list under the present knobs".to_owned()),
+                // What the list does not have is shown in hand.
+                None => by_hand::open_at(state, &spots),
+            }
+        }
+        Action::Beside | Action::OpenCompare => {
+            let spots = state.marks.get(*at).map(|mark| mark.keep.grasp.spots.clone());
+            match spots {
+                Some(spots) if action == Action::Beside => compare::toggle_at(state, &spots),
+                _ => compare::open(state),
             }
         }
         _ => {}

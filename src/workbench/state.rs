@@ -447,10 +447,11 @@ impl State {
         self.filter.lists(shown, self.selected).then_some(row)
     }
 
-    /// Where the fingers of the grasp stand that is read: the one in hand, else the selected one.
+    /// Where the fingers of the grasp stand that is read: the one in hand, else the selected one, else the one last selected.
     pub fn spots(&self) -> Option<Vec<Spot>> {
         let in_hand = self.hand.as_ref().filter(|_| by_hand::in_hand(self)).map(|hand| hand.now.spots.clone());
-        in_hand.or_else(|| self.row().map(|row| row.grasp.spots.clone()))
+        let read = || self.reading.as_ref().map(|reading| reading.grasp.spots.clone());
+        in_hand.or_else(|| self.row().map(|row| row.grasp.spots.clone())).or_else(read)
     }
 
     /// True when the list on the screen belongs to other knobs than those that stand now.

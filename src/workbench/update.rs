@@ -202,6 +202,9 @@ fn press(state: &mut State, key: Key) -> Vec<Effect> {
     let Some(action) = action::action_of(state, key) else {
         if let (Key::Char(c), Some(Layer::Entry(entry))) = (key, state.layers.last_mut()) {
             entry::insert(entry, c);
+        } else if let Some(row) = action::row_of(state, key) {
+            // A key that does something elsewhere or later is not passed over in silence.
+            state.message = Some(format!("{key}: {}", action::refusal(row)));
         }
         return Vec::new();
     };
@@ -247,7 +250,7 @@ fn act(state: &mut State, action: Action) -> Vec<Effect> {
     }
 }
 
-fn bench(state: &mut State, action: Action) -> Vec<Effect> {
+pub(super) fn bench(state: &mut State, action: Action) -> Vec<Effect> {
     let page = isize::try_from(state.size.1 / 2).unwrap_or(1).max(1);
     match action {
         Action::Down => state.step(1),
@@ -464,7 +467,7 @@ fn take_number(state: &mut State, kind: EntryKind, text: &str) -> Result<Vec<Eff
     };
     let number: f64 = text.replace(',', ".").parse().map_err(|_| format!("give a number, for example {example}"))?;
     match kind {
-        EntryKind::Mu => knobs::turn(state, |setup| setup.friction.mu = number),
+        EntryKind::Mu => knobs::set_mu(state, number),
         EntryKind::Limit => knobs::turn(state, |setup| setup.hand.force_limit_n = Some(number)),
         EntryKind::Size { row } => loads::resize(state, row, number),
         EntryKind::Safety { row } => loads::set_safety(state, row, number),

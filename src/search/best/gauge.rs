@@ -432,18 +432,21 @@ impl<'a> Gauge<'a> {
         Some(merit)
     }
 
-    /// Placement tolerance of a grasp, mm, and the least room of its fingers, mm.
-    pub(super) fn comfort(&self, at: &[f64]) -> (f64, f64) {
+    /// Placement tolerance of a grasp, what of it closure alone would allow, the least room of its fingers and that of all
+    /// together, mm.
+    pub(super) fn comfort(&self, at: &[f64]) -> [f64; 4] {
         let mut spans: Spans = [[0.0; 2]; FingerCount::MOST];
         for (span, &x) in spans.iter_mut().zip(at) {
             *span = [x, x];
         }
         let spans = &spans[..self.k];
-        let Some(contacts) = contacts_over(self.rails(), spans, |rail| rail.mu) else { return (0.0, 0.0) };
+        let Some(contacts) = contacts_over(self.rails(), spans, |rail| rail.mu) else { return [0.0; 4] };
         let score = self.planar(&contacts);
         let straight_mm = score.torque_up.min(score.torque_down) * self.setting.scene.frame().scale_mm;
         let (room_mm, _) = self.room_mm(spans);
-        (self.placement(spans, straight_mm.max(0.0), f64::NEG_INFINITY).0.min(room_mm), room_mm)
+        let closure_mm = self.placement(spans, straight_mm.max(0.0), f64::NEG_INFINITY).0;
+        let all_mm = self.rails().iter().zip(spans).map(|(rail, span)| rail.room_mm(*span)).sum();
+        [closure_mm.min(room_mm), closure_mm, room_mm, all_mm]
     }
 
     /// The goal of the search.

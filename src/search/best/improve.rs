@@ -40,15 +40,15 @@ pub(super) fn climb(plot: &mut Plot<'_>, mut lead: Lead) -> Lead {
     lead
 }
 
-/// What decides between placements of one family that are equal on the key: placement tolerance, then room.
-type Rank = (i64, i64, i64);
+/// What decides between placements of one family that are equal on the key: placement tolerance, then what closure alone would
+/// allow, then the least room, then that of all fingers. So many, that from any start the same place is come to.
+type Rank = (i64, [i64; 4]);
 
 fn rank(plot: &Plot<'_>, merit: f64, at: &Spots) -> Rank {
     let spots = plot.spots(at);
-    let (placement_mm, room_mm) = plot.gauge.comfort(&spots[..plot.gauge.k]);
     let scale_mm = plot.gauge.scale_mm();
-    let quanta = super::super::order::quanta;
-    (plot.gauge.goal().quanta(merit), quanta(placement_mm / scale_mm), quanta(room_mm / scale_mm))
+    let comfort = plot.gauge.comfort(&spots[..plot.gauge.k]);
+    (plot.gauge.goal().quanta(merit), comfort.map(|mm| super::super::order::quanta(mm / scale_mm)))
 }
 
 /// Moves a placement to where tolerance is largest among those equal on the key (or better): along every edge, and along all

@@ -426,8 +426,8 @@ impl<'a> Search<'a> {
         let comforts = |(family, lead): (&Family, &Lead)| {
             let plot = Plot::new(self.setting, family);
             let spots = plot.spots(&lead.at);
-            let (placement_mm, room_mm) = plot.gauge.comfort(&spots[..plot.gauge.k]);
-            ((self.setting.goal.quanta(lead.merit), quanta(placement_mm), quanta(room_mm)), *family, *lead)
+            let comfort = plot.gauge.comfort(&spots[..plot.gauge.k]).map(quanta);
+            ((self.setting.goal.quanta(lead.merit), comfort), *family, *lead)
         };
         let mut list: Vec<_> = self.leads.iter().map(comforts).collect();
         list.sort_by(|a, b| b.0.cmp(&a.0).then_with(|| a.1.cmp(&b.1)));

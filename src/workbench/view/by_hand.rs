@@ -14,7 +14,11 @@ pub(super) fn render(state: &State, hand: &ByHand, area: Rect, buf: &mut Buffer)
     let right = format!("step {} mm  undo {undo}  redo {redo}", number::given(hand.step_mm()));
     let inside = titled(state, area, "by hand", &right, buf);
     let mut lines = vec![("  # edge        at mm   room mm".to_owned(), state.look.dim())];
-    lines.extend(fingers(state, hand));
+    // On a low panel the picked finger stays in sight, and the scores below it.
+    let fingers = fingers(state, hand);
+    let room = usize::from(inside.height).saturating_sub(lines.len()).max(1);
+    let first = (hand.picked + 1).saturating_sub(room).min(fingers.len());
+    lines.extend(fingers.into_iter().skip(first));
     lines.extend(scores(state, hand));
     for ((text, style), y) in lines.into_iter().zip(inside.top()..inside.bottom()) {
         put(buf, Rect { y, height: 1, ..inside }, &bars::cut(&text, usize::from(inside.width)), style);
@@ -58,14 +62,6 @@ fn scores(state: &State, hand: &ByHand) -> Vec<(String, Style)> {
         let style = if sign == ' ' { state.look.plain() } else { state.look.title() };
         lines.push((format!("{sign} {name:<10} {was:>10} {is:>12}"), style));
     };
-    tell("verdict", &|r| {
-        let rank = match r.assessment.verdict {
-            Verdict::Closed => 2.0,
-            Verdict::Marginal => 1.0,
-            Verdict::Open => 0.0,
-        };
-        (r.assessment.verdict.word().to_owned(), Some(rank))
-    });
     tell("quality", &|r| (number::quality(r.assessment.quality), Some(r.assessment.quality)));
     tell("margin", &|r| {
         let margin = r.assessment.friction_margin;

@@ -76,6 +76,12 @@ pub(super) fn lines(state: &State, width: u16) -> Vec<Line<'static>> {
     lines
 }
 
+/// The number of the line that is this heading; the first where there is none.
+pub(super) fn line_of(state: &State, width: u16, heading: &str) -> usize {
+    let is_it = |line: &Line<'_>| line.spans.iter().map(|span| span.content.as_ref()).collect::<String>() == heading;
+    lines(state, width).iter().position(is_it).unwrap_or(0)
+}
+
 fn two_columns(state: &State, left: &str, right: &str, width: usize, lines: &mut Vec<Line<'static>>) {
     const LEFT: usize = 12;
     for (i, part) in wrapped(right, width.saturating_sub(LEFT)).into_iter().enumerate() {

@@ -25,6 +25,7 @@ mod start;
 mod table;
 mod tables;
 
+use super::action;
 use super::state::{Layer, Panel, State};
 use ratatui::Frame;
 use ratatui::buffer::Buffer;
@@ -93,6 +94,11 @@ pub fn render(state: &State, area: Rect, buf: &mut Buffer) -> Option<Position> {
         }
     }
     None
+}
+
+/// The line of the help page at which the keys with a grasp in hand begin.
+pub(super) fn help_in_hand(state: &State) -> usize {
+    help::line_of(state, state.size.0, action::help_parts()[1].0)
 }
 
 /// The highest first line a page layer may be scrolled to; 0 when none lies on top.
@@ -187,6 +193,8 @@ fn split_rows(area: Rect, upper: u16) -> (Rect, Rect) {
 }
 
 fn bench(state: &State, layout: &Layout, buf: &mut Buffer) {
+    // A low pane is all drawing: its words stand above the reading.
+    let words_below = layout.reading.is_some() && layout.outline.is_some_and(picture::is_low);
     bars::header(state, layout.header, buf);
     if let Some(area) = layout.divider {
         for y in area.top()..area.bottom() {
@@ -194,7 +202,7 @@ fn bench(state: &State, layout: &Layout, buf: &mut Buffer) {
         }
     }
     if let Some(area) = layout.outline {
-        picture::render(state, area, buf);
+        picture::render(state, area, words_below, buf);
     }
     if let Some(area) = layout.table {
         match state.hand.as_ref().filter(|_| super::by_hand::in_hand(state)) {
@@ -204,7 +212,13 @@ fn bench(state: &State, layout: &Layout, buf: &mut Buffer) {
     }
     if let Some(area) = layout.reading {
         let inside = titled(state, area, "reading", "Enter shows all", buf);
-        let lines = reading::lines(state, inside.width, false);
+        let mut lines = Vec::new();
+        if words_below {
+            lines.extend(
+                picture::words(state, inside.width).into_iter().map(|line| Line::styled(line, state.look.title())),
+            );
+        }
+        lines.extend(reading::lines(state, inside.width, false));
         show_lines(&lines, 0, inside, buf);
     }
     match layout.message {
@@ -227,9 +241,11 @@ fn titled(state: &State, area: Rect, title: &str, right: &str, buf: &mut Buffer)
     let row = Rect { height: 1, ..area };
     put(buf, row, &state.look.rule().repeat(usize::from(area.width)), state.look.dim());
     put(buf, shifted(row, 2), &format!(" {title} "), state.look.title());
-    let right = format!(" {right} ");
-    let wide = right.chars().count() as u16;
-    if right.len() > 2 && wide + title.chars().count() as u16 + 6 <= area.width {
+    // What does not fit is cut from the right, and left out where nothing of it would be told.
+    let room = usize::from(area.width).saturating_sub(title.chars().count() + 8);
+    if !right.is_empty() && room >= right.chars().count().min(6) {
+        let right = format!(" {} ", bars::cut(right, room));
+        let wide = right.chars().count() as u16;
         put(buf, shifted(row, area.width - wide - 2), &right, state.look.dim());
     }
     Rect { y: area.y + 1, height: area.height - 1, ..area }

@@ -10,8 +10,9 @@ pub(super) fn margin(value: Option<f64>) -> String {
     match value {
         None => "any".to_owned(),
         Some(value) if value >= 99.5 => ">99".to_owned(),
-        // A margin that is shown as 1.00 although it is below would mislead: it is rounded down.
-        Some(value) => format!("{:.2}", (value * 100.0).floor() / 100.0),
+        // A margin that is shown as 1.00 although it is below would mislead: it is rounded down. A hair is
+        // left for rounding, so that twenty does not become 19.99.
+        Some(value) => format!("{:.2}", (value * 100.0 * (1.0 + 1e-6)).floor() / 100.0),
     }
 }
 

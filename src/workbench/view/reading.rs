@@ -276,7 +276,9 @@ impl Page<'_> {
         };
         let limit = if shown.order.key.more_is_better() { "at most" } else { "at least" };
         let meaning = format!("{word} on these edges; {limit} {} anywhere", told(all));
-        self.tell("proved", &format!("{limit} {}", told(family)), self.state.look.title(), &meaning);
+        let proof = shown.ranking.proof.as_ref();
+        let name = if proof.is_some_and(|proof| proof.proved) { "proved" } else { "not proved" };
+        self.tell(name, &format!("{limit} {}", told(family)), self.state.look.title(), &meaning);
     }
 
     fn weakest(&mut self, weakest: &Weakest) {

@@ -1,7 +1,7 @@
 //! The ranked table, and what is said when it is empty.
 
 use super::super::floors;
-use super::super::state::{Job, MOST_ROWS, Shown, State};
+use super::super::state::{Filter, Job, MOST_ROWS, Shown, State};
 use super::{bars, number, put, titled, wrapped};
 use crate::hand::{Closing, Drive, Hand, Tip};
 use crate::mechanics::{Assessment, Holding};
@@ -77,6 +77,7 @@ fn title(state: &State) -> (String, String) {
     let right = format!("{kept}{filter}{hidden}{doubtful}{sample}").trim().to_owned();
     let title = match shown.order.listing {
         Listing::Families => match ranking.families as u64 {
+            count if state.filter != Filter::default() => format!("{} of {count}", state.rows()),
             count if count as usize >= MOST_ROWS => format!("best {count} families"),
             count => number::count(count, "family", "families"),
         },
@@ -251,6 +252,13 @@ fn nothing(state: &State) -> Vec<String> {
         return vec!["Ranking ...".to_owned()];
     };
     let ranking = &shown.ranking;
+    if ranking.grasps.is_empty() && !scene.kept().is_empty() && !matches!(state.job, Job::Running(_)) {
+        let locked = number::count(scene.kept().len() as u64, "finger is", "fingers are");
+        return vec![
+            format!("{locked} locked, and no grasp that keeps them is listed."),
+            "Take the grasp in hand (b), free a finger (L), or lower the floors (_).".to_owned(),
+        ];
+    }
     if !ranking.grasps.is_empty() {
         return hidden_by_filter(state, ranking.grasps.len());
     }
@@ -306,10 +314,11 @@ fn not_held(state: &State, sets: u64) -> Vec<String> {
         Some(limit) => format!(" within {} N each", number::given(limit)),
         None => String::new(),
     };
-    let drive = if hand.drive == Drive::Equal { " or forces of their own (e)" } else { "" };
+    let drive = if hand.drive == Drive::Equal { "forces of their own (e), " } else { "" };
+    let more = if hand.closing == Closing::Parallel { "" } else { "one finger more (f), " };
     let mut lines = vec![
         format!("{sets} in question, none holds every load{limit}."),
-        format!("Try a higher force limit (u), more friction (l), one finger more (f), smaller loads (L){drive}."),
+        format!("Try {drive}a higher force limit (u), more friction (l), {more}smaller loads (L)."),
     ];
     let holding = state.reading.as_ref().and_then(|reading| reading.assessment.holding.as_ref());
     if let Some(case) = holding.map(Holding::governing_case) {

@@ -83,22 +83,44 @@ struct Shown<'a> {
     paint: Box<dyn FnOnce(Paper) -> Sheet + 'a>,
 }
 
-/// Draws the pane.
-pub(super) fn render(state: &State, area: Rect, buf: &mut Buffer) {
-    let area = area.intersection(buf.area);
-    if area.is_empty() {
-        return;
-    }
-    let Some(reading) = &state.reading else { return outline::render(state, area, buf) };
-    let shown = match state.view.picture {
-        Picture::Fingers => return outline::render(state, area, buf),
+/// Panes of fewer rows are all drawing; the words go elsewhere where there is another place for them.
+const WORDS_FROM: u16 = 16;
+
+/// True when a pane is so low that its words had better stand elsewhere.
+pub(super) fn is_low(area: Rect) -> bool {
+    area.height < WORDS_FROM
+}
+
+/// The words of the picture for a width; none of the fingers, whose line stays with them.
+pub(super) fn words(state: &State, width: u16) -> Vec<String> {
+    picture(state).map_or_else(Vec::new, |shown| told_lines(state, &shown.told, usize::from(width)))
+}
+
+/// The picture chosen; nothing for the fingers, or without a grasp.
+fn picture(state: &State) -> Option<Shown<'_>> {
+    let reading = state.reading.as_ref()?;
+    Some(match state.view.picture {
+        Picture::Fingers => return None,
         Picture::Forces => forces::picture(state, reading),
         Picture::Labels => labels::picture(state, reading),
         Picture::Envelope => envelope::picture(state, reading),
         Picture::Room => room::picture(state, reading),
         Picture::Wrenches => wrenches::picture(state, reading),
         Picture::Friction => friction::picture(state, reading),
-    };
+    })
+}
+
+/// Draws the pane, without words when they stand elsewhere.
+pub(super) fn render(state: &State, area: Rect, words_elsewhere: bool, buf: &mut Buffer) {
+    let area = area.intersection(buf.area);
+    if area.is_empty() {
+        return;
+    }
+    let Some(shown) = picture(state) else { return outline::render(state, area, buf) };
+    if words_elsewhere {
+        (shown.paint)(Paper { size: (area.width, area.height), look: state.look }).render(area, buf);
+        return;
+    }
     let mut lines = told_lines(state, &shown.told, usize::from(area.width));
     // Two fifths are text: it says what the drawing means.
     let most = if area.height < 3 { 0 } else { (area.height * 2 / 5).max(1) };
