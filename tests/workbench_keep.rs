@@ -87,7 +87,7 @@ fn saved_grasps_are_renamed_noted_taken_away_and_brought_back() {
     assert_eq!(desk.state.unsaved(), 1);
     desk.keys("n<c-u>bow end<cr>");
     assert_eq!(desk.state.unsaved(), 0, "the words are those of the file again");
-    desk.keys("jw<c-u>clear of the seal<cr>jx");
+    desk.keys("jw<c-u>clear of the seal<cr>jd");
     assert_eq!(names(&desk), ["bow end", "stern"]);
     desk.keys("kkm");
     assert_eq!((names(&desk), desk.state.removals()), (vec!["stern"], 2));
@@ -99,7 +99,7 @@ fn saved_grasps_are_renamed_noted_taken_away_and_brought_back() {
     assert_eq!(names(&desk), ["bow end", "stern", "spare"]);
     desk.keys("u");
     assert_eq!(desk.state.removals(), 0);
-    desk.keys("jx");
+    desk.keys("jd");
     let (ids, keeps, changes) = saving(&mut desk);
     assert_eq!((ids.len(), keeps.len()), (1, 0));
     assert_eq!(changes.len(), 2);
@@ -111,7 +111,7 @@ fn saved_grasps_are_renamed_noted_taken_away_and_brought_back() {
 #[test]
 fn leaving_asks_for_removals_and_renames_too() {
     let mut desk = reopened(&["bow end", "stern"]);
-    desk.keys("Mxn<c-u>aft<cr><esc>q");
+    desk.keys("Mdn<c-u>aft<cr><esc>q");
     assert_eq!(desk.state.layers, [Layer::Ask(Question::Quit)]);
     let screen = desk.screen(80, 24);
     let flowing = screen.split_whitespace().collect::<Vec<_>>().join(" ");
@@ -512,7 +512,7 @@ mod on_a_terminal {
         let mut pty = start(&folder);
         pty.wait_ranked();
         pty.wait_for("3 marks, all saved");
-        pty.send("Mw\x15why not\rjjx");
+        pty.send("Mw\x15why not\rjjd");
         pty.wait_for("1 to be taken out");
         pty.send("\x1bqs");
         assert!(pty.ended());
@@ -529,7 +529,7 @@ mod on_a_terminal {
         pty.wait_ranked();
         pty.send("n\x15bow end\rjn\x15stern\rs");
         pty.wait_for("2 grasps saved to");
-        pty.send("Mxn\x15aft\r");
+        pty.send("Mdn\x15aft\r");
         pty.wait_for("aft");
         pty.signal("TERM");
         assert!(!pty.ended());

@@ -105,10 +105,16 @@ fn a_setting_that_cannot_be_is_refused_with_its_reason() {
     let mut slippery = setup();
     slippery.friction.sliding = Some(0.195);
     let mut desk = Desk::new(hinge(), slippery);
+    // Sliding friction goes down with mu, says so, and comes back up with it.
     desk.keys("h");
-    assert!((desk.state.setup().friction.mu - 0.2).abs() < 1e-15);
+    let friction = desk.state.setup().friction.clone();
+    assert!((friction.mu - 0.19).abs() < 1e-15 && (friction.sliding.unwrap() - 0.19).abs() < 1e-15);
     assert!(desk.state.message.as_ref().unwrap().contains("sliding"));
-    desk.keys("FF");
+    desk.keys("l");
+    assert!((desk.state.setup().friction.sliding.unwrap() - 0.195).abs() < 1e-15);
+    desk.keys("=-1<cr>");
+    assert!(desk.screen(80, 24).contains("friction.mu"), "{}", desk.screen(80, 24));
+    desk.keys("<esc>FF");
     assert_eq!(desk.state.setup().hand.fingers.get(), 2);
     assert!(desk.state.message.as_ref().unwrap().contains("2 to 6 fingers"));
 }
@@ -394,9 +400,13 @@ fn marks_that_left_the_list_can_still_be_seen() {
     desk.keys("jjm=0<cr>M");
     let screen = desk.screen(80, 24);
     assert!(screen.contains("NEW") && screen.contains("at mu 0.20"), "{screen}");
+    // What the list does not have is shown in hand.
     desk.keys("<cr>");
-    assert!(desk.screen(80, 24).contains("not in the list"));
-    desk.keys("m");
+    let hand = desk.state.hand.as_ref().unwrap();
+    assert_eq!(hand.now.spots, desk.state.marks[0].keep.grasp.spots);
+    assert_eq!(Scope::of(&desk.state), Scope::Hand);
+    assert!(desk.screen(80, 24).contains("by hand"));
+    desk.keys("<esc>Mm");
     assert!(desk.state.marks.is_empty());
     desk.keys("u");
     assert_eq!(desk.state.marks.len(), 1);
