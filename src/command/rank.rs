@@ -135,10 +135,12 @@ fn proved(proof: &Proof, key: Key, asked: f64) -> String {
     let better = if key.more_is_better() { "above" } else { "below" };
     let none = format!("none {better} {} anywhere on the outline ({})", short(bound), percent(proof.gap));
     let list = match (proof.list_proved, proof.list_gap.is_finite()) {
-        (true, _) => format!("no family beats its row by more than {} of the best score", percent(proof.list_gap)),
+        (true, _) => {
+            format!("no family beats its row by more than {} of that row or the first", percent(proof.list_gap))
+        }
         (false, true) => {
             let left = percent(proof.list_gap);
-            format!("below the first row, families may beat theirs by {left} of the best score; --budget closes that")
+            format!("below the first row, families may beat theirs by {left} of it or the first; --budget closes that")
         }
         (false, false) => "below the first row, families may be missing; a larger --budget finds them".to_owned(),
     };

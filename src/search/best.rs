@@ -81,7 +81,7 @@ pub struct Proved {
     /// something may be there.
     pub best_gap: f64,
     /// How much better than its row a family in the list can be, at most, as a part of the best score or of its own where
-    /// that is larger; than the first row, any family; than the last row of a full list, any family that is not in it. Infinite
+    /// that is larger (near 0 of a small score, see [`prove`]); than the first row, any family; than the last row of a full list, any family that is not in it. Infinite
     /// when the list is not full and a family may be missing that reaches this part of the best score.
     pub gap: f64,
     /// That gap is no wider than was asked for.

@@ -226,7 +226,8 @@ pub(super) fn rank_with_snapshots(
     let proof = Proof::of(&proved, gap);
     if proved.grasps.is_empty() {
         let told = sampled(1, sets, observe, 0)?;
-        return Ok(Ranking { proof: Some(proof), grasps: Vec::new(), ..told });
+        let complete = told.complete || proved.complete;
+        return Ok(Ranking { proof: Some(proof), complete, grasps: Vec::new(), ..told });
     }
     let families = proved.grasps.len();
     let rows = proved.grasps.into_iter().take(most).map(|row| Listed { bound: Some(row.bound), ..row.listed });

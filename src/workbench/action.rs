@@ -387,7 +387,6 @@ pub static TABLE: &[Row] = &[
     ),
     row(A::MuUp, S::Bench, &[C('l'), Key::Right, C('+')], "mu+", "mu up by 0.01", always),
     row(A::MuDown, S::Bench, &[C('h'), Key::Left, C('-')], "", "mu down by 0.01", always),
-    row(A::OpenLoads, S::Bench, &[C('L')], "loads", "list the load cases: make them larger, smaller, add some", always),
     row(A::Show(Picture::Fingers), S::Bench, &[C('1')], "to 7 picture", "picture: fingers with their normals", always),
     row(A::Show(Picture::Forces), S::Bench, &[C('2')], "", "picture: the finger forces that hold a load case", always),
     row(
@@ -423,6 +422,7 @@ pub static TABLE: &[Row] = &[
         always,
     ),
     row(A::Show(Picture::Friction), S::Bench, &[C('7')], "", "picture: quality and squeeze over friction", always),
+    row(A::OpenLoads, S::Bench, &[C('L')], "loads", "list the load cases: make them larger, smaller, add some", always),
     row(
         A::NextSide,
         S::Bench,
