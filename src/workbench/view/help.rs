@@ -9,18 +9,27 @@ use ratatui::text::{Line, Span};
 /// What each number means.
 const NUMBERS: [(&str, &str); 14] = [
     ("mu", "friction coefficient of the finger tips on the part, as entered; every score uses it"),
-    ("closed", "every push and turn in the part plane can be balanced by pressing hard enough; open: one cannot"),
+    (
+        "closed",
+        "every push and turn in the part plane can be balanced by pressing hard enough; open: one cannot (Reuleaux 1876; Nguyen 1988)",
+    ),
     (
         "quality",
-        "the largest load held in every direction by 1 N of total squeeze; a torque counts as tau over the reach",
+        "the largest load held in every direction by 1 N of total squeeze; a torque counts as tau over the reach (Ferrari & Canny 1992)",
     ),
-    ("per finger", "the same with 1 N allowed to each finger; /finger in the list when sorted by it"),
+    ("per finger", "the same with 1 N allowed to each finger; /finger in the list (Ferrari & Canny 1992)"),
     (
         "margin",
-        "mu over the friction needed to close and to hold the loads; below 1 one of them fails, \"any\": any friction will do",
+        "mu over the friction needed to close and to hold the loads; below 1 one of them fails, \"any\": any friction will do (Coulomb's law)",
     ),
-    ("place", "mm every finger may be off along its edge, all at once, before closure or the stretch is lost"),
-    ("weakest", "the push and turn against which this grasp gives least"),
+    (
+        "place",
+        "mm every finger may be off along its edge, all at once, before closure or the stretch is lost (statics; README)",
+    ),
+    (
+        "weakest",
+        "the push and turn against which this grasp gives least (normal of the nearest facet: Ferrari & Canny 1992)",
+    ),
     (
         "squeeze",
         "N of normal force per finger that hold every load case, with the forces shared as the drive allows; x fingers in all",
@@ -31,7 +40,7 @@ const NUMBERS: [(&str, &str); 14] = [
     ),
     (
         "held",
-        "some finger forces within the limit hold the load; fingers locked in place may not reach them by themselves",
+        "some finger forces within the limit hold the load; fingers locked in place may not reach them by themselves (weak stability: Pang & Trinkle 2000)",
     ),
     ("S", "safety factor: the whole load of the case is taken so many times"),
     (
