@@ -254,18 +254,18 @@ fn free_finger(state: &mut State) -> Option<usize> {
 }
 
 fn walk(state: &mut State, way: f64) {
-    let Some(finger) = free_finger(state) else { return };
-    let Some(hand) = &state.hand else { return };
-    let Some(scene) = scene(state, hand.now.spots.len()) else { return };
-    let next = nearby::walked(&scene, &hand.now.spots, finger, way * hand.step_mm());
-    moved(state, next, NO_STRETCH);
+    move_picked(state, |scene, hand, finger| nearby::walked(scene, &hand.now.spots, finger, way * hand.step_mm()));
 }
 
 fn jump(state: &mut State, forward: bool) {
+    move_picked(state, |scene, hand, finger| nearby::on_next_edge(scene, &hand.now.spots, finger, forward));
+}
+
+fn move_picked(state: &mut State, next: impl FnOnce(&Scene, &ByHand, usize) -> Option<Vec<Spot>>) {
     let Some(finger) = free_finger(state) else { return };
     let Some(hand) = &state.hand else { return };
     let Some(scene) = scene(state, hand.now.spots.len()) else { return };
-    let next = nearby::on_next_edge(&scene, &hand.now.spots, finger, forward);
+    let next = next(&scene, hand, finger);
     moved(state, next, NO_STRETCH);
 }
 

@@ -75,12 +75,10 @@ pub(super) fn known(setting: &Setting<'_>, spots: &[Spot]) -> Vec<(Family, Lead)
     let mut candidates = Vec::new();
     if setting.scene.setup().hand.closing == Closing::Parallel {
         for (number, run) in setting.scene.jaw_runs().iter().enumerate() {
-            let (from, to) = (run.along_mm(0.0), run.along_mm(run.length_mm()));
-            if run.stretches == [placed[0].0, placed[1].0] {
-                // The finger that moves farther tells the parameter best.
-                let finger = usize::from((to[1] - from[1]).abs() > (to[0] - from[0]).abs());
-                let way = to[finger] - from[finger];
-                at[0] = ((placed[finger].1 - from[finger]) * way.signum()).clamp(0.0, run.length_mm());
+            if run.stretches == [placed[0].0, placed[1].0]
+                && let Some(u_mm) = run.u_mm([placed[0].1, placed[1].1])
+            {
+                at[0] = u_mm;
                 candidates.push((Family::new(&[number as u32]), at));
             }
         }
